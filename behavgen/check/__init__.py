@@ -1,0 +1,1 @@
+"""Hold emitted models against the reference: stimulus, agreement, verdict."""

@@ -1,0 +1,1 @@
+"""Published laws and exact arithmetic as pure numpy functions, each with its source."""

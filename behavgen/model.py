@@ -1,0 +1,529 @@
+"""ComparatorModel: what is known of one comparator, and its model file.
+
+The waist of the project: downstream of it nothing sees tables or fits,
+upstream of it nothing sees hardware description languages.
+
+A model is a set of effects, each optional: an effect that was not
+characterised is absent. Effects depend on the operating condition through
+`Surface`, a polynomial that every language evaluates in the same order.
+"""
+
+from __future__ import annotations
+
+import json
+import math
+from collections.abc import Mapping
+from dataclasses import asdict, dataclass, field
+from pathlib import Path
+
+from behavgen.errors import Fault, ModelFileError
+
+__all__ = [
+    "FORMAT",
+    "Axis",
+    "Box",
+    "Cell",
+    "ComparatorModel",
+    "Condition",
+    "ConditionFit",
+    "CurvePoints",
+    "DelayEffect",
+    "Estimate",
+    "MismatchEffect",
+    "NoiseEffect",
+    "OffsetEffect",
+    "Parameter",
+    "Pins",
+    "Process",
+    "Range",
+    "ResetEffect",
+    "Source",
+    "Surface",
+    "Variant",
+    "dump_model",
+    "load_model",
+    "significant",
+]
+
+FORMAT = 1
+"""Version of the model file; raised when an old reader would misread a new file."""
+
+Matrix = tuple[tuple[float, ...], ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Estimate:
+    """A value with its interval.
+
+    Parameters
+    ----------
+    value : float
+    low, high : float or None
+        Interval at confidence `level`; None where no interval can be given.
+    level : float
+        Confidence, 0..1.
+    """
+
+    value: float
+    low: float | None = None
+    high: float | None = None
+    level: float = 0.95
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Parameter:
+    """One fitted number that people speak about.
+
+    Parameters
+    ----------
+    name : str
+        With the unit in the name, e.g. ``"tau_s"``.
+    estimate : Estimate
+    unit : str
+        SI unit, ``"1"`` for pure numbers.
+    low, high : float or None
+        Bounds outside which the value would be absurd.
+    description : str
+        One line: what it is and at which condition.
+    source : str
+        How it was obtained and from which file.
+    """
+
+    name: str
+    estimate: Estimate
+    unit: str
+    low: float | None = None
+    high: float | None = None
+    description: str = ""
+    source: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Range:
+    """A closed interval in SI units."""
+
+    low: float
+    high: float
+
+    @property
+    def middle(self) -> float:
+        """Arithmetic middle."""
+        return 0.5 * (self.low + self.high)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Box:
+    """The characterised range; None: the condition is not characterised and has no influence."""
+
+    vdd_v: Range | None = None
+    temperature_k: Range | None = None
+    vcm_v: Range | None = None
+    overdrive_v: Range | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Process:
+    """A process name and the stable code that models know it by."""
+
+    name: str
+    code: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Pins:
+    """Pin names of the emitted modules; None: the pin is left out.
+
+    `vss` exists in Verilog-A only, `unresolved` in SystemVerilog only.
+    """
+
+    inp: str = "inp"
+    inn: str = "inn"
+    clk: str = "clk"
+    outp: str = "outp"
+    outn: str | None = "outn"
+    vdd: str | None = "vdd"
+    unresolved: str | None = "unresolved"
+    enable: str | None = None
+    vss: str = "vss"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Cell:
+    """What the user decided about the cell.
+
+    Parameters
+    ----------
+    name : str
+        Also the module name.
+    description : str
+    decides_on : str
+        Clock edge that decides: ``"rising"`` or ``"falling"``.
+    in_reset : str
+        Output state in reset: ``"high"``, ``"low"``, ``"mid"`` or ``"hold"``.
+    when_unresolved : str
+        ``"x"``, ``"coin"`` or ``"hold"``.
+    time_precision : str
+        ``"1fs"`` or ``"1ps"``: all times of the models are multiples of it.
+    supply_off_v : float or None
+        Below this supply the cell is off; None: the supply is not characterised.
+    pins : Pins
+    """
+
+    name: str
+    description: str = ""
+    decides_on: str = "rising"
+    in_reset: str = "high"
+    when_unresolved: str = "x"
+    time_precision: str = "1fs"
+    supply_off_v: float | None = None
+    pins: Pins = Pins()
+
+    @property
+    def time_unit_s(self) -> float:
+        """The time precision in s."""
+        return {"1fs": 1e-15, "1ps": 1e-12}[self.time_precision]
+
+    @property
+    def ticks_per_second(self) -> float:
+        """Inverse of the time precision; exact, unlike its reciprocal."""
+        return {"1fs": 1e15, "1ps": 1e12}[self.time_precision]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Axis:
+    """How one condition enters a polynomial: ``(shape(x) - centre) / half_range``.
+
+    Parameters
+    ----------
+    condition : str
+        ``"temperature_k"``, ``"vdd_v"`` or ``"vcm_v"``.
+    shape : str
+        ``"plain"``, ``"reciprocal"`` or ``"reciprocal_square"``.
+    centre, half_range : float
+        In the unit of ``shape(x)``.
+    """
+
+    condition: str
+    shape: str = "plain"
+    centre: float = 0.0
+    half_range: float = 1.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Variant:
+    """A surface's polynomial for one process.
+
+    Parameters
+    ----------
+    process : str
+    coefficients : tuple of float
+        One for each of the surface's exponents.
+    box : Box
+        Conditions are clamped to it: where this quantity was measured in this process.
+    scaled_from : str
+        Process whose shape was scaled to this one; empty for a fit of its own.
+    """
+
+    process: str
+    coefficients: tuple[float, ...]
+    box: Box
+    scaled_from: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Surface:
+    """One number as a function of the operating condition.
+
+    ``value = transform(sum over terms of coefficient * product of coordinate^power)``.
+
+    Parameters
+    ----------
+    unit : str
+        SI unit of the value.
+    transform : str
+        ``"plain"``: the polynomial itself; ``"log"``: its exponential, the
+        polynomial being the natural logarithm of the value in SI units.
+    axes : tuple of Axis
+        Slow conditions first, always in the order temperature, supply, common
+        mode; an axis that the data cannot see is absent.
+    exponents : tuple of tuple of int
+        One tuple a term, one power an axis.
+    variants : tuple of Variant
+        One a process, in the model's order of processes.
+    covariance : Matrix
+        Of the first variant's coefficients, shape (terms, terms); empty when unknown.
+    """
+
+    unit: str
+    transform: str
+    axes: tuple[Axis, ...]
+    exponents: tuple[tuple[int, ...], ...]
+    variants: tuple[Variant, ...]
+    covariance: Matrix = ()
+
+    def variant(self, process: str) -> Variant:
+        """Return the polynomial for a process; KeyError when there is none."""
+        for variant in self.variants:
+            if variant.process == process:
+                return variant
+        raise KeyError(process)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class OffsetEffect:
+    """Nominal trip point in V (transform plain)."""
+
+    surface: Surface
+    source: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class MismatchEffect:
+    """Offset differences between instances.
+
+    An instance's mismatch is the sum over components of ``component(condition) * z``
+    with one standard normal `z` a component and instance, drawn once.
+
+    Parameters
+    ----------
+    components : tuple of Surface
+        In V per sigma (transform plain).
+    instances : int
+        How many were measured.
+    """
+
+    components: tuple[Surface, ...]
+    instances: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class NoiseEffect:
+    """Input-referred noise sigma of one decision in V (transform log)."""
+
+    surface: Surface
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class DelayEffect:
+    """Delay over overdrive, carried by its values at nodes (see `formulas.node_law`).
+
+    Parameters
+    ----------
+    tau : Surface
+        Regeneration time constant in s (transform log).
+    node_overdrive_v : tuple of float, length K
+        Rising; the last is the largest characterised overdrive.
+    nodes : tuple of Surface, length K
+        Delay at each node in s (transform log), all with the axes and exponents of `tau`.
+    floor_v : float
+        Overdrives below it are not distinguished, so that every delay is finite.
+    law : str
+        Name of the law that gave the nodes their values at each condition.
+    measured : str
+        Reference levels of the delay in the user's words.
+    node_correlation : Matrix
+        Correlation between tau and the nodes, shape (K+1, K+1); empty when unknown.
+    """
+
+    tau: Surface
+    node_overdrive_v: tuple[float, ...]
+    nodes: tuple[Surface, ...]
+    floor_v: float = 1e-15
+    law: str = ""
+    measured: str = ""
+    node_correlation: Matrix = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ResetEffect:
+    """Time from the reset edge to the outputs' reset state in s (transform log)."""
+
+    surface: Surface
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Condition:
+    """One operating condition; None or "" where the table does not say."""
+
+    process: str = ""
+    vdd_v: float | None = None
+    temperature_k: float | None = None
+    vcm_v: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CurvePoints:
+    """Table points of one quantity at one condition, for plots and closure.
+
+    Parameters
+    ----------
+    quantity : str
+        ``"noise"``: x = vdiff in V, y = share of ones, trials given;
+        ``"delay"``: x = magnitude of the overdrive in V, y = delay in s;
+        ``"window"``: x = resolve time in s, y = window in V;
+        ``"offset"``: x = instance number, y = offset in V;
+        ``"reset"``: x = 0, y = reset delay in s.
+    condition : Condition
+    x, y : tuple of float
+    trials : tuple of int
+        Only for noise.
+    """
+
+    quantity: str
+    condition: Condition
+    x: tuple[float, ...]
+    y: tuple[float, ...]
+    trials: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ConditionFit:
+    """How well one quantity is fitted at one tabulated condition, by the model as emitted.
+
+    Parameters
+    ----------
+    quantity : str
+        ``"delay"``, ``"window"``, ``"noise"``, ...
+    condition : Condition
+    rows : int
+    rms_relative, worst_relative : float or None
+        Relative errors of the emitted model against the rows (delay, window, reset).
+    held_out_rms_relative : float or None
+        The same for a model fitted without this condition.
+    parameters : tuple of Parameter
+        Estimates at this condition alone, e.g. ``offset_v`` and ``noise_sigma_v`` or ``tau_s``.
+    goodness : float or None
+        P-value of the goodness-of-fit test, where there is one.
+    """
+
+    quantity: str
+    condition: Condition
+    rows: int
+    rms_relative: float | None = None
+    worst_relative: float | None = None
+    held_out_rms_relative: float | None = None
+    parameters: tuple[Parameter, ...] = ()
+    goodness: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Source:
+    """A table file that went into the model."""
+
+    quantity: str
+    file: str
+    sha256: str
+    rows: int
+    failed_rows: int = 0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ComparatorModel:
+    """All that is known of one comparator.
+
+    Parameters
+    ----------
+    cell : Cell
+    processes : tuple of Process
+        In the order of first appearance; the first is the default.
+        A cell without process information has one, ``nominal`` with code 0.
+    box : Box
+        The cell's characterised range: that of the delay table, else the union.
+    offset, mismatch, noise, delay, reset : effect or None
+    parameters : tuple of Parameter
+        The numbers people ask for first, at the middle of the box.
+    fits : tuple of ConditionFit
+    points : tuple of CurvePoints
+    notices : tuple of str
+        What the fit wants its reader to know, in full sentences.
+    sources : tuple of Source
+    generator : str
+        Name and version of the program that made the model.
+    format : int
+        Version of the file format.
+    """
+
+    cell: Cell
+    processes: tuple[Process, ...]
+    box: Box
+    offset: OffsetEffect | None = None
+    mismatch: MismatchEffect | None = None
+    noise: NoiseEffect | None = None
+    delay: DelayEffect | None = None
+    reset: ResetEffect | None = None
+    parameters: tuple[Parameter, ...] = ()
+    fits: tuple[ConditionFit, ...] = ()
+    points: tuple[CurvePoints, ...] = ()
+    notices: tuple[str, ...] = ()
+    sources: tuple[Source, ...] = ()
+    generator: str = ""
+    format: int = field(default=FORMAT)
+
+
+def significant(value: float, digits: int = 10) -> float:
+    """Round to significant decimal digits, so that models read well and bytes repeat.
+
+    Ten digits lie far below any measurement and above the last-place noise
+    that linear algebra libraries leave.
+    """
+    if value == 0.0 or not math.isfinite(value):
+        return value
+    return float(f"{value:.{digits - 1}e}")
+
+
+def dump_model(model: ComparatorModel) -> str:
+    """Return the model as JSON text; the same model gives the same bytes."""
+    return _json_text(asdict(model), indent=0) + "\n"
+
+
+def _json_text(value: object, indent: int) -> str:
+    """Write keys sorted, one a line, and lists of plain values on one line."""
+    pad = "  " * (indent + 1)
+    if isinstance(value, Mapping) and value:
+        rows = [f"{pad}{json.dumps(k)}: {_json_text(value[k], indent + 1)}" for k in sorted(value)]
+        return "{\n" + ",\n".join(rows) + "\n" + "  " * indent + "}"
+    if isinstance(value, list | tuple) and any(isinstance(v, list | tuple | dict) for v in value):
+        rows = [pad + _json_text(v, indent + 1) for v in value]
+        return "[\n" + ",\n".join(rows) + "\n" + "  " * indent + "]"
+    return json.dumps(value, allow_nan=False)
+
+
+def load_model(path: Path) -> ComparatorModel:
+    """Read a model file.
+
+    Raises
+    ------
+    ModelFileError
+        When the file cannot be read, has another format version, or is not a
+        model; names every fault with its place in the file.
+    """
+    try:
+        text = path.read_text(encoding="utf-8")
+        raw = json.loads(text)
+    except (OSError, ValueError) as error:
+        raise ModelFileError(
+            Fault(file=str(path), what=f"cannot be read as a model file: {error}",
+                  allowed="make it anew with: behavgen fit")
+        ) from None
+    found = raw.get("format") if isinstance(raw, dict) else None
+    if found != FORMAT:
+        raise ModelFileError(
+            Fault(file=str(path), what=f"model file format {found!r}",
+                  allowed=f"this version reads format {FORMAT}; make it anew with: behavgen fit")
+        )
+    return _validated(path, text)
+
+
+def _validated(path: Path, text: str) -> ComparatorModel:
+    from pydantic import TypeAdapter, ValidationError  # noqa: PLC0415  heavy, and only here
+
+    try:
+        return TypeAdapter(ComparatorModel).validate_json(text)
+    except ValidationError as error:
+        raise ModelFileError(
+            *(
+                Fault(file=str(path), column=".".join(str(part) for part in fault["loc"]),
+                      what=fault["msg"], allowed="make it anew with: behavgen fit")
+                for fault in error.errors()
+            )
+        ) from None
