@@ -502,14 +502,20 @@ def load_model(path: Path) -> ComparatorModel:
         raw = json.loads(text)
     except (OSError, ValueError) as error:
         raise ModelFileError(
-            Fault(file=str(path), what=f"cannot be read as a model file: {error}",
-                  allowed="make it anew with: behavgen fit")
+            Fault(
+                file=str(path),
+                what=f"cannot be read as a model file: {error}",
+                allowed="make it anew with: behavgen fit",
+            )
         ) from None
     found = raw.get("format") if isinstance(raw, dict) else None
     if found != FORMAT:
         raise ModelFileError(
-            Fault(file=str(path), what=f"model file format {found!r}",
-                  allowed=f"this version reads format {FORMAT}; make it anew with: behavgen fit")
+            Fault(
+                file=str(path),
+                what=f"model file format {found!r}",
+                allowed=f"this version reads format {FORMAT}; make it anew with: behavgen fit",
+            )
         )
     return _validated(path, text)
 
@@ -522,8 +528,12 @@ def _validated(path: Path, text: str) -> ComparatorModel:
     except ValidationError as error:
         raise ModelFileError(
             *(
-                Fault(file=str(path), column=".".join(str(part) for part in fault["loc"]),
-                      what=fault["msg"], allowed="make it anew with: behavgen fit")
+                Fault(
+                    file=str(path),
+                    column=".".join(str(part) for part in fault["loc"]),
+                    what=fault["msg"],
+                    allowed="make it anew with: behavgen fit",
+                )
                 for fault in error.errors()
             )
         ) from None

@@ -19,10 +19,12 @@ from functools import cache
 from typing import TypeVar, cast
 
 __all__ = [
+    "CELL_PATTERN",
     "SI_PREFIXES",
     "ZERO_CELSIUS_K",
     "Unit",
     "UnitError",
+    "cell_suffixes",
     "default_unit",
     "find_unit",
     "format_celsius",
@@ -54,7 +56,7 @@ SI_PREFIXES = {
 }
 """Prefix to power of ten (BIPM, SI Brochure, table 7); ``M`` is mega, never milli."""
 
-_ENGINEERING = {power: prefix for prefix, power in SI_PREFIXES.items() if prefix.isascii()} | {0: ""}
+_ENGINEERING = {0: ""} | {power: text for text, power in SI_PREFIXES.items() if text.isascii()}
 _SYMBOLS = {
     "V": ("V", "v"),
     "s": ("s",),
@@ -64,9 +66,12 @@ _SYMBOLS = {
 }
 _KELVIN = ("K", "k")
 _CELSIUS = ("C", "c", "degC", "degc", "\N{DEGREE SIGN}C", "\N{DEGREE CELSIUS}")
-_NUMBER = r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?"
-_CELL = re.compile(rf"({_NUMBER})\s*(\S*)")
-_BRACKETED = re.compile(r"(?P<stem>.*?)(?P<gap>[\s_]*)(?:\[(?P<square>[^\[\]]*)\]|\((?P<round>[^()]*)\))")
+CELL_PATTERN = r"^([+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+))(?:[eE]([+-]?[0-9]{1,4}))?\s*(\S*)$"
+"""A cell's mantissa, exponent of ten (may be missing), and what follows (may be empty)."""
+
+_BRACKETED = re.compile(
+    r"(?P<stem>.*?)(?P<gap>[\s_]*)(?:\[(?P<square>[^\[\]]*)\]|\((?P<round>[^()]*)\))"
+)
 
 Scalable = TypeVar("Scalable")
 
@@ -190,20 +195,32 @@ def parse_si(text: str, dimension: str, unit: Unit | None = None) -> float:
     UnitError
         When the text is not such a number; the message names it.
     """
-    match = _CELL.fullmatch(text.strip())
+    match = re.match(CELL_PATTERN, text.strip())
     if match is None:
         raise UnitError(_not_a_number(text))
-    number, suffix = match.groups()
+    mantissa, exponent, suffix = match.groups()
     plain = unit or default_unit(dimension)
-    if not suffix:
-        return plain.to_si(float(number))
-    if suffix in unit_spellings(dimension):
-        return _scaled(number, unit_spellings(dimension)[suffix])
-    if suffix not in SI_PREFIXES:
-        raise UnitError(f"'{text.strip()}' is not a number; {_examples(dimension)}")
-    if plain.power or plain.shift:
+    found = cell_suffixes(dimension, plain).get(suffix)
+    if found is None and suffix in SI_PREFIXES:
         raise UnitError(f"'{text.strip()}' has a prefix of its own beside the unit {plain.text}")
-    return _scaled(number, Unit(text=suffix, power=SI_PREFIXES[suffix]))
+    if found is None:
+        raise UnitError(f"'{text.strip()}' is not a number; {_examples(dimension)}")
+    # Scaling the text instead of the float gives the float nearest to what was written.
+    value = float(f"{mantissa}e{int(exponent or 0) + found.power}") + found.shift
+    if not math.isfinite(value):
+        raise UnitError(f"'{text.strip()}' is too large a number")
+    return value
+
+
+def cell_suffixes(dimension: str, plain: Unit) -> dict[str, Unit]:
+    """Return what may follow the digits in a cell, and the unit that this means.
+
+    A bare prefix is allowed only where plain numbers are in SI: ``12p`` in a
+    column of ps could mean either of two things.
+    """
+    scaled_already = plain.power or plain.shift
+    bare = {} if scaled_already else {p: Unit(text=p, power=n) for p, n in SI_PREFIXES.items()}
+    return {**bare, **unit_spellings(dimension), "": plain}
 
 
 def format_si(value: float, unit: str, digits: int = 3) -> str:
@@ -257,18 +274,12 @@ def _split_header(header: str) -> tuple[str, str, bool]:
     return stem, suffix, False
 
 
-def _scaled(number: str, unit: Unit) -> float:
-    """Scale the text, not the float: the result is the float nearest to what was written."""
-    mantissa, _, exponent = number.lower().partition("e")
-    return float(f"{mantissa}e{int(exponent or 0) + unit.power}") + unit.shift
-
-
 def _examples(dimension: str) -> str:
     if dimension == "K":
         return "a temperature in C or K"
     if dimension == "1":
         return "a plain number"
-    return f"a number in {dimension}, with or without an SI prefix such as m{dimension} or u{dimension}"
+    return f"a number in {dimension}, with or without an SI prefix as in m{dimension}, u{dimension}"
 
 
 def _not_a_number(text: str) -> str:

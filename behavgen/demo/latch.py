@@ -263,7 +263,7 @@ def node_slopes(circuit: Circuit, shares: Floats, clock: float, nodes_v: Floats)
 
 
 def _runge_kutta_step(slopes: Slopes, time_s: float, step_s: float, nodes_v: Floats) -> Floats:
-    """One classical fourth-order step (W. Kutta, 1901)."""
+    """Take one classical fourth-order step (W. Kutta, 1901)."""
     half_s = step_s / 2
     a = slopes(time_s, nodes_v)
     b = slopes(time_s + half_s, nodes_v + half_s * a)
@@ -275,14 +275,14 @@ def _runge_kutta_step(slopes: Slopes, time_s: float, step_s: float, nodes_v: Flo
 def _heun_step(
     slopes: Slopes, time_s: float, step_s: float, nodes_v: Floats, kick_v: Floats
 ) -> Floats:
-    """One stochastic Heun step; the noise is additive, so Ito and Stratonovich agree."""
+    """Take one stochastic Heun step; the noise is additive, so Ito and Stratonovich agree."""
     a = slopes(time_s, nodes_v)
     b = slopes(time_s + step_s, nodes_v + step_s * a + kick_v)
     return nodes_v + step_s / 2 * (a + b) + kick_v
 
 
 def _noise_step(circuit: Circuit, clock: float, step_s: float) -> Floats:
-    """Standard deviation of the voltage that noise adds in one step, shape (2, N, 1)."""
+    """Return the standard deviation of what noise adds in one step, V, shape (2, N, 1)."""
     density = clock * circuit.pair_noise_a2_s + (1 - clock) * circuit.reset_noise_a2_s
     return np.asarray(np.sqrt(density * step_s) / circuit.capacitance_f, dtype=np.float64)
 

@@ -2,26 +2,21 @@
 
 from __future__ import annotations
 
-import os
 from pathlib import Path
 
 from behavgen.errors import Fault, ProjectError
+from behavgen.files import write_whole
 
 __all__ = ["copy_demo"]
 
-
-def _demo_files() -> tuple[Path, ...]:
-    """Return the files of the demo project, relative to this package's folder."""
-    here = Path(__file__).parent
-    tables = sorted(path for path in (here / "tables").rglob("*") if path.is_file())
-    return (*(path.relative_to(here) for path in tables), Path("behavgen.toml"))
+PROJECT_FILE = "behavgen.toml"
 
 
 def copy_demo(folder: Path) -> Path:
     """Lay the demo project out in `folder`.
 
-    Files already there and unchanged are left alone, so the demo may be run again in
-    place.
+    Files already there must be the demo's own, so that the demo may be run again in place
+    and nothing of the user's is lost.
 
     Parameters
     ----------
@@ -36,43 +31,36 @@ def copy_demo(folder: Path) -> Path:
     Raises
     ------
     ProjectError
-        When a file of the demo is there with other content, all such files named, or
-        when the folder cannot be written.
+        When files are there under the demo's names with other content, all of them named,
+        or when the folder cannot be written.
     """
+    texts = {folder / name: text for name, text in _demo_texts().items()}
+    taken = [path for path, text in texts.items() if path.exists() and not _holds(path, text)]
+    if taken:
+        raise ProjectError(*map(_not_ours, taken))
+    for path, text in texts.items():
+        write_whole(path, text)
+    return folder / PROJECT_FILE
+
+
+def _demo_texts() -> dict[str, str]:
+    """Return the demo's files by their name in the project; the project file comes last."""
     here = Path(__file__).parent
-    contents = {folder / name: (here / name).read_bytes() for name in _demo_files()}
+    tables = sorted(path for path in (here / "tables").rglob("*") if path.is_file())
+    paths = [*tables, here / PROJECT_FILE]
+    return {path.relative_to(here).as_posix(): path.read_text(encoding="utf-8") for path in paths}
+
+
+def _holds(path: Path, text: str) -> bool:
     try:
-        faults = [_not_ours(path) for path, content in contents.items() if _differs(path, content)]
-        if faults:
-            raise ProjectError(*faults)
-        for path, content in contents.items():
-            _write_whole(path, content)
-    except OSError as error:
-        fault = Fault(
-            file=str(error.filename or folder),
-            what=f"cannot be written: {error.strerror}",
-            allowed="choose another folder",
-        )
-        raise ProjectError(fault) from error
-    return folder / "behavgen.toml"
-
-
-def _differs(path: Path, content: bytes) -> bool:
-    return path.exists() and (path.is_dir() or path.read_bytes() != content)
+        return path.read_bytes() == text.encode("utf-8")
+    except OSError:
+        return False
 
 
 def _not_ours(path: Path) -> Fault:
     return Fault(
         file=str(path),
         what="is there already and is not the demo's",
-        allowed="choose another folder or move it away",
+        allowed="choose another folder with --out, or move it away",
     )
-
-
-def _write_whole(path: Path, content: bytes) -> None:
-    if path.exists():
-        return
-    path.parent.mkdir(parents=True, exist_ok=True)
-    unfinished = path.with_name(f"{path.name}.unfinished")
-    unfinished.write_bytes(content)
-    os.replace(unfinished, path)

@@ -75,17 +75,18 @@ def _crossing_time(times_s: Floats, trace: Floats) -> Floats:
     Inverts the cubic through the four samples around the crossing.
     """
     positive = trace > 0
-    after = np.clip(np.argmax(positive, axis=0), 2, len(times_s) - 2)
-    rows = after + np.arange(-2, 2).reshape(-1, *([1] * after.ndim))
-    a, b, c, d = np.take_along_axis(trace, rows, axis=0)
+    crosses = positive.any(axis=0)
+    after = np.clip(np.argmax(positive, axis=0)[crosses], 2, len(times_s) - 2)
+    around = after + np.arange(-2, 2)[:, None]
+    a, b, c, d = np.take_along_axis(trace[:, crosses], around, axis=0)
+    first, second, third = c - a / 3 - b / 2 - d / 6, (c - 2 * b + a) / 2, (d - a) / 6 + (b - c) / 2
     x = b / (b - c)
-    for _ in range(20):  # Newton from the chord; two or three rounds suffice
-        third = (d - 3 * c + 3 * b - a) / 6
-        second = (c - 2 * b + a) / 2
-        first = c - a / 3 - b / 2 - d / 6
+    for _ in range(5):  # Newton from the chord; two or three rounds suffice
         value = b + x * (first + x * (second + x * third))
         x = x - value / (first + x * (2 * second + x * 3 * third))
-    return np.where(positive.any(axis=0), times_s[after - 1] + x * STEP_S, np.nan)
+    found_s = np.full(crosses.shape, np.nan)
+    found_s[crosses] = times_s[after - 1] + x * STEP_S
+    return found_s
 
 
 def decision_delay(circuit: Circuit, vdiff_v: Floats, *, watched_s: float) -> Floats:
@@ -138,7 +139,8 @@ def count_ones(
     """Return how many of `trials` noisy decisions are one, shape (N, L), levels of shape (L,)."""
     vdiff_v = np.repeat(levels_v, trials)[None, :]
     last_v = separation(circuit, vdiff_v, _times(until_s), noise=noise)[-1]
-    return np.count_nonzero(last_v.reshape(last_v.shape[0], -1, trials) > 0, axis=2)
+    is_one = last_v.reshape(last_v.shape[0], -1, trials) > 0
+    return np.asarray(np.count_nonzero(is_one, axis=2), dtype=np.int64)
 
 
 def input_noise(

@@ -7,7 +7,6 @@ from table to table on purpose, as they do in practice.
 
 from __future__ import annotations
 
-import os
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -16,7 +15,16 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.demo import measurements
-from behavgen.demo.latch import SENSE_LATCH, SLICER, Circuit, Design, Mismatch, Operating, circuit_at
+from behavgen.demo.latch import (
+    SENSE_LATCH,
+    SLICER,
+    Circuit,
+    Design,
+    Mismatch,
+    Operating,
+    circuit_at,
+)
+from behavgen.files import write_whole
 
 __all__ = [
     "CORNERS",
@@ -288,11 +296,7 @@ def all_tables() -> dict[str, Table]:
 def write_tables(folder: Path) -> None:
     """Simulate every table and write it below `folder`, each whole or not at all."""
     for name, table in all_tables().items():
-        path = folder / name
-        path.parent.mkdir(parents=True, exist_ok=True)
-        unfinished = path.with_suffix(".tmp")
-        unfinished.write_text(table.text(), encoding="utf-8", newline="\n")
-        os.replace(unfinished, path)
+        write_whole(folder / name, table.text())
 
 
 if __name__ == "__main__":

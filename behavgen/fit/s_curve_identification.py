@@ -15,7 +15,13 @@ import numpy.typing as npt
 
 from behavgen.errors import Fault
 from behavgen.fit.intervals import normal_quantile
-from behavgen.fit.s_curve_likelihood import Rows, profile_end
+from behavgen.fit.s_curve_likelihood import (
+    Rows,
+    counts_loglik,
+    evaluate,
+    flat_loglik,
+    profile_end,
+)
 
 __all__ = ["Identification", "Reason", "identify"]
 
@@ -45,10 +51,10 @@ class Identification:
     ----------
     reason : ndarray of int
         One of `Reason`.
-    levels, decisions, ones : ndarray of int
-        Distinct input levels, decisions and ones in total.
+    decisions, ones : ndarray of int
+        In total.
     lowest_v, highest_v : ndarray
-        Range of the levels, V.
+        Range of the levels, V; infinite where there is no decision.
     highest_zero_v, lowest_one_v : ndarray
         Highest level that gave a zero, lowest that gave a one, V; infinite
         where there is none.
@@ -62,7 +68,6 @@ class Identification:
     """
 
     reason: Integers
-    levels: Integers
     decisions: Integers
     ones: Integers
     lowest_v: Floats
@@ -75,7 +80,8 @@ class Identification:
 
     def fault(self, curve: int) -> Fault:
         """Return what was found and what to measure instead; for curves that are not fine."""
-        return Fault(**_WORDS[Reason(self.reason[curve])](self, curve))
+        what, allowed = _WORDS[Reason(self.reason[curve])](self, curve)
+        return Fault(what=what, allowed=allowed)
 
 
 def identify(rows: Rows, level: float = 0.95) -> Identification:
@@ -85,16 +91,14 @@ def identify(rows: Rows, level: float = 0.95) -> Identification:
     rises by more than `LEAST_SLOPE_Z` standard errors.
     """
     trials = rows.ones + rows.zeros
-    used = trials > 0
-    lowest_v, highest_v = _ends(rows, used)
+    lowest_v, highest_v = _ends(rows, trials > 0)
     lowest_zero_v, highest_zero_v = _ends(rows, rows.zeros > 0)
     lowest_one_v, highest_one_v = _ends(rows, rows.ones > 0)
     slope_z = _slope_z(rows, trials)
     all_ones, decisions = rows.total(rows.ones), rows.total(trials)
-    levels = _distinct_levels(rows, used)
     reason = np.select(
         [
-            levels < 2,
+            lowest_v >= highest_v,
             (all_ones == 0) | (all_ones == decisions),
             lowest_one_v >= highest_zero_v,
             (highest_one_v <= lowest_zero_v) | (slope_z <= -LEAST_SLOPE_Z),
@@ -110,7 +114,6 @@ def identify(rows: Rows, level: float = 0.95) -> Identification:
     )
     return Identification(
         reason=reason,
-        levels=levels,
         decisions=decisions.astype(np.int64),
         ones=all_ones.astype(np.int64),
         lowest_v=lowest_v,
@@ -131,15 +134,6 @@ def _ends(rows: Rows, chosen: npt.NDArray[np.bool_]) -> tuple[Floats, Floats]:
     return low, high
 
 
-def _distinct_levels(rows: Rows, used: npt.NDArray[np.bool_]) -> Integers:
-    curve, vdiff_v = rows.curve[used], rows.vdiff_v[used]
-    order = np.lexsort((vdiff_v, curve))
-    curve, vdiff_v = curve[order], vdiff_v[order]
-    new = np.ones(curve.size, dtype=bool)
-    new[1:] = (np.diff(curve) > 0) | (np.diff(vdiff_v) > 0)
-    return np.bincount(curve[new], minlength=rows.curves)
-
-
 def _slope_z(rows: Rows, trials: Floats) -> Floats:
     """Return the score statistic of the slope; 0 where all decisions are alike."""
     decisions = np.maximum(rows.total(trials), 1.0)
@@ -153,14 +147,95 @@ def _slope_z(rows: Rows, trials: Floats) -> Floats:
 def _sigma_bound(rows: Rows, highest_zero_v: Floats, lowest_one_v: Floats, level: float) -> Floats:
     """Return where the profile likelihood of sigma has fallen by half a chi-square quantile.
 
-    Its supremum, at sigma zero, gives every level its own probability.
+    Its supremum, at sigma zero, is that of the one level with both outcomes, if there is one.
     """
-    if rows.curves == 0:
-        return np.empty(0)
-    trials = rows.ones + rows.zeros
-    target = _counts_loglik(rows, trials, rows.ones, rows.zeros) - 0.5 * normal_quantile(level) ** 2
-    decisions = rows.total(trials)
-    share = (rows.total(rows.ones) / decisions)[rows.curve]
-    flat = rows.total(_xlogy(rows.ones, share) + _xlogy(rows.zeros, 1.0 - share))
-    bounded = flat < target
-    ...
+    both = (rows.vdiff_v == highest_zero_v[rows.curve]) & (rows.vdiff_v == lowest_one_v[rows.curve])
+    supremum = counts_loglik(rows.total(rows.ones * both), rows.total(rows.zeros * both))
+    target = supremum - 0.5 * normal_quantile(level) ** 2
+    bound_v = np.full(rows.curves, np.inf)
+    bounded = flat_loglik(rows) < target
+    low_v, high_v = _ends(rows, rows.ones + rows.zeros > 0)
+    rows, offset_v = rows.of(bounded), 0.5 * (highest_zero_v + lowest_one_v)[bounded]
+    sigma_v = 0.25 * (high_v - low_v)[bounded]
+    bound_v[bounded] = profile_end(
+        rows,
+        parameter=1,
+        side=1,
+        offset_v=offset_v,
+        sigma_v=sigma_v,
+        local=evaluate(rows, offset_v, sigma_v),
+        target=target[bounded],
+    )
+    return bound_v
+
+
+def _volts(x: float) -> str:
+    return f"{x * 1e3:.4g} mV"
+
+
+def _too_few(found: Identification, c: int) -> tuple[str, str]:
+    only = f"all {found.decisions[c]} decisions are at {_volts(found.lowest_v[c])}"
+    what = only if found.decisions[c] else "there is no decision"
+    return (
+        f"{what}: one input level cannot tell offset and sigma apart",
+        "measure at two levels or more, best five to nine within 2 sigma of the trip point",
+    )
+
+
+def _one_sided(found: Identification, c: int) -> tuple[str, str]:
+    ones = bool(found.ones[c])
+    span = f"{_volts(found.lowest_v[c])} to {_volts(found.highest_v[c])}"
+    beyond = f"below {_volts(found.lowest_v[c])}" if ones else f"above {_volts(found.highest_v[c])}"
+    return (
+        f"all {found.decisions[c]} decisions from {span} are {'ones' if ones else 'zeros'}",
+        f"the trip point lies {beyond}, or inp and inn are not what the columns say; "
+        "measure on both sides of it",
+    )
+
+
+def _separated(found: Identification, c: int) -> tuple[str, str]:
+    low_v, high_v = found.highest_zero_v[c], found.lowest_one_v[c]
+    bound_v, confidence = found.sigma_bound_v[c], f"{100 * found.level:g} %"
+    bounded = (
+        f"sigma is at most {_volts(bound_v)} ({confidence})"
+        if np.isfinite(bound_v)
+        else "sigma may have any size"
+    )
+    if low_v < high_v:
+        seen = f"only zeros up to {_volts(low_v)}, only ones from {_volts(high_v)} on"
+        middle_v, half_v = 0.5 * (low_v + high_v), 0.5 * (high_v - low_v)
+    else:
+        seen = f"only the level {_volts(low_v)} gave both"
+        middle_v, half_v = low_v, min(1.5 * bound_v, 0.5 * (found.highest_v[c] - found.lowest_v[c]))
+    return (
+        f"ones and zeros do not overlap: {seen}; {bounded}, its value cannot be told",
+        f"measure levels {_volts(half_v / 3)} apart from {_volts(middle_v - half_v)} to "
+        f"{_volts(middle_v + half_v)}, closer again if they still do not overlap: two levels or "
+        "more, best within 1.5 sigma of the trip point, must give both ones and zeros",
+    )
+
+
+def _reversed(found: Identification, c: int) -> tuple[str, str]:
+    return (
+        f"the share of ones falls as vdiff rises ({found.slope_z[c]:.1f} standard errors)",
+        "vdiff is V(inp) - V(inn): swap the inputs' roles or the sense of the bit",
+    )
+
+
+def _flat(found: Identification, c: int) -> tuple[str, str]:
+    span = f"{_volts(found.lowest_v[c])} to {_volts(found.highest_v[c])}"
+    return (
+        f"the share of ones does not rise from {span}: "
+        f"slope {found.slope_z[c]:.1f} standard errors, {LEAST_SLOPE_Z:.1f} needed",
+        "measure a wider range of levels, about +-2 sigma around the trip point, "
+        "or more decisions at each",
+    )
+
+
+_WORDS = {
+    Reason.TOO_FEW: _too_few,
+    Reason.ONE_SIDED: _one_sided,
+    Reason.SEPARATED: _separated,
+    Reason.REVERSED: _reversed,
+    Reason.FLAT: _flat,
+}

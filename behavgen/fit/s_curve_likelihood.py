@@ -11,24 +11,34 @@ over rows, whatever the scale of the voltages.
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
-from scipy.special import ndtri
+from scipy.special import ndtri, xlogy
 
 from behavgen.formulas.gaussian import gaussian_tails
 
-__all__ = ["Local", "Maximum", "Rows", "evaluate", "maximise", "profile_end"]
+__all__ = [
+    "Local",
+    "Rows",
+    "Settled",
+    "counts_loglik",
+    "evaluate",
+    "flat_loglik",
+    "maximise",
+    "profile_end",
+]
 
 Floats = npt.NDArray[np.float64]
 Integers = npt.NDArray[np.int64]
 Booleans = npt.NDArray[np.bool_]
 
 _MAX_STEPS = 60
-_SETTLED = 1e-4
-"""Newton step, in standard errors, after which the next one is exact to rounding."""
+_SETTLED = 1e-3
+"""Newton step, in standard errors, after which the error is of the order of its square."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -75,6 +85,10 @@ class Local(NamedTuple):
     q1: Floats
     q2: Floats
 
+    def of(self, wanted: Booleans) -> Local:
+        """Return the wanted curves' part."""
+        return Local(*(part[wanted] for part in self))
+
 
 def evaluate(rows: Rows, offset_v: Floats, sigma_v: Floats) -> Local:
     """Return the log likelihood, without its constant, and its derivatives."""
@@ -94,49 +108,33 @@ def evaluate(rows: Rows, offset_v: Floats, sigma_v: Floats) -> Local:
     )
 
 
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class Maximum:
-    """Maximum likelihood estimates, shape (C,) each."""
-
-    offset_v: Floats
-    sigma_v: Floats
-    converged: Booleans
+def counts_loglik(ones: Floats, zeros: Floats) -> Floats:
+    """Return the log likelihood of counts at their own proportion, without its constant."""
+    trials = np.maximum(ones + zeros, 1.0)
+    loglik: Floats = xlogy(ones, ones / trials) + xlogy(zeros, zeros / trials)
+    return loglik
 
 
-def maximise(rows: Rows) -> Maximum:
+def flat_loglik(rows: Rows) -> Floats:
+    """Return the log likelihood of each curve as sigma grows without bound, shape (C,)."""
+    return counts_loglik(rows.total(rows.ones), rows.total(rows.zeros))
+
+
+def maximise(rows: Rows) -> Settled:
     """Return the maximum likelihood estimates of curves known to have one.
 
-    Newton's method on the linear predictor ``z -> z + shift + stretch z``, in which
-    the log likelihood is concave (J. W. Pratt, J. Am. Stat. Assoc. 76, 1981); a
-    step that lowers it is halved. Curves that have settled drop out of the work.
+    Newton's method on the linear predictor, in which the log likelihood is
+    concave (J. W. Pratt, J. Am. Stat. Assoc. 76, 1981).
     """
-    offset_v, sigma_v = _start(rows)
-    loglik = np.full(rows.curves, -np.inf)
-    converged = np.zeros(rows.curves, dtype=bool)
-    live = np.arange(rows.curves)
-    shift, stretch = np.zeros(rows.curves), np.zeros(rows.curves)
-    for _ in range(_MAX_STEPS):
-        trial_v = _moved(offset_v[live], sigma_v[live], shift, stretch)
-        local = evaluate(rows, *trial_v)
-        better = local.loglik >= loglik[live] - 1e-12 * np.abs(local.loglik)
-        taken = live[better]
-        offset_v[taken], sigma_v[taken] = trial_v[0][better], trial_v[1][better]
-        loglik[taken] = local.loglik[better]
-        newton = _newton_step(local)
-        shift = np.where(better, newton[0], 0.5 * shift)
-        stretch = np.where(better, newton[1], 0.5 * stretch)
-        gain = shift * local.s0 + stretch * local.s1
-        settled = better & (gain < _SETTLED**2)
-        last = live[settled]
-        offset_v[last], sigma_v[last] = _moved(
-            offset_v[last], sigma_v[last], shift[settled], stretch[settled]
-        )
-        converged[last] = True
-        rows, live = rows.of(~settled), live[~settled]
-        shift, stretch = shift[~settled], stretch[~settled]
-        if not live.size:
-            break
-    return Maximum(offset_v=offset_v, sigma_v=sigma_v, converged=converged)
+    still = np.zeros(rows.curves)
+    return _walk(
+        rows,
+        _start(rows),
+        (still, still),
+        lambda local, _: _newton_step(local),
+        np.full(rows.curves, -np.inf),
+        climb=True,
+    )
 
 
 def _start(rows: Rows) -> tuple[Floats, Floats]:
@@ -156,39 +154,33 @@ def _start(rows: Rows) -> tuple[Floats, Floats]:
     return level - height / slope, 1.0 / slope
 
 
-def _moved(
-    offset_v: Floats, sigma_v: Floats, shift: Floats, stretch: Floats
-) -> tuple[Floats, Floats]:
-    """Return offset and sigma after ``z -> z + shift + stretch z``."""
-    new_sigma_v = sigma_v / (1.0 + stretch)
-    return offset_v - shift * new_sigma_v, new_sigma_v
-
-
-def _newton_step(local: Local) -> tuple[Floats, Floats]:
-    """Return shift and stretch, shortened where sigma would grow more than tenfold."""
-    det = local.q0 * local.q2 - local.q1 * local.q1
-    shift = (local.q2 * local.s0 - local.q1 * local.s1) / det
-    stretch = (local.q0 * local.s1 - local.q1 * local.s0) / det
-    shorter = 0.9 / np.maximum(-stretch, 0.9)
-    return shift * shorter, stretch * shorter
-
-
 def profile_end(
-    rows: Rows, parameter: int, offset_v: Floats, sigma_v: Floats, target: Floats
+    rows: Rows,
+    *,
+    parameter: int,
+    side: int,
+    offset_v: Floats,
+    sigma_v: Floats,
+    local: Local,
+    target: Floats,
 ) -> Floats:
     """Return where the profile likelihood of a parameter falls to a target.
 
-    Newton's method on "the other parameter is at its best" and "the log
-    likelihood is at the target" together (D. J. Venzon & S. H. Moolgavkar, Applied
-    Statistics 37, 1988).
+    That is the parameter's extreme over all lines ``z(vdiff)`` whose log likelihood
+    reaches the target, a convex set. Each step goes to the extreme over the
+    ellipse that the local quadratic makes of that set.
 
     Parameters
     ----------
     rows : Rows
     parameter : int
         0 for the offset, 1 for sigma.
+    side : int
+        -1 for the lower end, 1 for the upper.
     offset_v, sigma_v : ndarray, shape (C,)
-        A start on the wanted side of the maximum.
+        A start, such as the maximum.
+    local : Local
+        `evaluate` there.
     target : ndarray, shape (C,)
         Log likelihood on the scale of `evaluate`.
 
@@ -197,32 +189,120 @@ def profile_end(
     ndarray, shape (C,)
         The parameter in V; NaN where no end was found.
     """
-    end_v = np.full(rows.curves, np.nan)
+    end = _walk(
+        rows,
+        (offset_v, sigma_v),
+        _extreme_step(parameter, side, local, target),
+        lambda here, live: _extreme_step(parameter, side, here, target[live]),
+        target - np.abs(local.loglik - target),
+        climb=False,
+    )
+    return np.where(end.converged, (end.offset_v, end.sigma_v)[parameter], np.nan)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Settled:
+    """Where a walk over the likelihood ended, shape (C,) each."""
+
+    offset_v: Floats
+    sigma_v: Floats
+    converged: Booleans
+
+
+Step = tuple[Floats, Floats]
+"""``z -> z + shift + stretch z``: shift and stretch, shape (C,) each."""
+
+
+def _walk(
+    rows: Rows,
+    start: tuple[Floats, Floats],
+    step: Step,
+    next_step: Callable[[Local, Integers], Step],
+    floor: Floats,
+    *,
+    climb: bool,
+) -> Settled:
+    """Take steps until they are far below a standard error.
+
+    A step that ends below the floor is halved; when climbing, the floor is the
+    likelihood reached. Curves that have settled drop out of the work.
+
+    Parameters
+    ----------
+    rows : Rows
+    start : tuple of ndarray, shape (C,)
+        Offset and sigma, V.
+    step : Step
+        The first one.
+    next_step : callable
+        From the derivatives at the curves named by an index array, the next step.
+    floor : ndarray, shape (C,)
+        Log likelihood.
+    climb : bool
+    """
+    offset_v, sigma_v = start[0].copy(), start[1].copy()
+    floor = floor.copy()
+    converged = np.zeros(rows.curves, dtype=bool)
     live = np.arange(rows.curves)
+    shift, stretch = step
     for _ in range(_MAX_STEPS):
-        shift, growth = _profile_step(parameter, evaluate(rows, offset_v, sigma_v), target)
-        size = np.maximum(np.abs(shift), 2.0 * np.abs(growth))
-        shorter = 1.0 / np.maximum(size, 1.0)
-        offset_v = offset_v + shorter * shift * sigma_v
-        sigma_v = sigma_v * np.exp(shorter * growth)
-        settled = size < _SETTLED**1.5
-        end_v[live[settled]] = (offset_v, sigma_v)[parameter][settled]
-        rows, live, target = rows.of(~settled), live[~settled], target[~settled]
-        offset_v, sigma_v = offset_v[~settled], sigma_v[~settled]
+        trial_v = _moved(offset_v[live], sigma_v[live], shift, stretch)
+        local = evaluate(rows, *trial_v)
+        kept = local.loglik >= floor[live]
+        offset_v[live[kept]], sigma_v[live[kept]] = trial_v[0][kept], trial_v[1][kept]
+        if climb:
+            floor[live[kept]] = local.loglik[kept] - 1e-12 * np.abs(local.loglik[kept])
+        shift, stretch = 0.5 * shift, 0.5 * stretch
+        shift[kept], stretch[kept] = next_step(local.of(kept), live[kept])
+        settled = kept & (_size2(local, shift, stretch) < _SETTLED**2)
+        last = live[settled]
+        offset_v[last], sigma_v[last] = _moved(
+            offset_v[last], sigma_v[last], shift[settled], stretch[settled]
+        )
+        converged[last] = True
+        rows, live = rows.of(~settled), live[~settled]
+        shift, stretch = shift[~settled], stretch[~settled]
         if not live.size:
             break
-    return end_v
+    return Settled(offset_v=offset_v, sigma_v=sigma_v, converged=converged)
 
 
-def _profile_step(parameter: int, local: Local, target: Floats) -> tuple[Floats, Floats]:
-    """Return the change of the offset in sigmas and of ln sigma."""
-    excess = local.loglik - target
-    mixed = local.s0 - local.q1
+def _size2(local: Local, shift: Floats, stretch: Floats) -> Floats:
+    """Return the square of a step in standard errors."""
+    return (local.q0 * shift + 2.0 * local.q1 * stretch) * shift + local.q2 * stretch * stretch
+
+
+def _moved(
+    offset_v: Floats, sigma_v: Floats, shift: Floats, stretch: Floats
+) -> tuple[Floats, Floats]:
+    """Return offset and sigma after ``z -> z + shift + stretch z``.
+
+    Steps are shortened where sigma would grow more than tenfold.
+    """
+    shorter = 0.9 / np.maximum(-stretch, 0.9)
+    new_sigma_v = sigma_v / (1.0 + shorter * stretch)
+    return offset_v - shorter * shift * new_sigma_v, new_sigma_v
+
+
+def _newton_step(local: Local) -> tuple[Floats, Floats]:
+    """Return the shift and stretch that reach the top of the local quadratic."""
+    det = local.q0 * local.q2 - local.q1 * local.q1
+    shift = (local.q2 * local.s0 - local.q1 * local.s1) / det
+    stretch = (local.q0 * local.s1 - local.q1 * local.s0) / det
+    return shift, stretch
+
+
+def _extreme_step(parameter: int, side: int, local: Local, target: Floats) -> tuple[Floats, Floats]:
+    """Return shift and stretch to the extreme of a parameter over the local ellipse.
+
+    A higher offset is a lower shift, a higher sigma a lower stretch. Where the
+    ellipse is empty the step goes to its centre.
+    """
+    shift, stretch = _newton_step(local)
+    top = local.loglik - target + 0.5 * (shift * local.s0 + stretch * local.s1)
+    det = local.q0 * local.q2 - local.q1 * local.q1
+    own = local.q2 if parameter == 0 else local.q0
+    reach = side * np.sqrt(2.0 * np.maximum(top, 0.0) / (det * own))
     if parameter == 0:
-        row, wanting = (mixed, local.s1 - local.q2), local.s1
-    else:
-        row, wanting = (-local.q0, mixed), local.s0
-    det = local.s0 * row[1] - local.s1 * row[0]
-    shift = (excess * row[1] - wanting * local.s1) / det
-    growth = (wanting * local.s0 - excess * row[0]) / det
-    return shift, growth
+        return shift - reach * local.q2, stretch + reach * local.q1
+    return shift + reach * local.q1, stretch - reach * local.q0

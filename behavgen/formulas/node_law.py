@@ -60,9 +60,7 @@ def _limited(slope: Floats, secant: Floats) -> Floats:
     return np.minimum(np.maximum(slope, 3.0 * flattest), 0.0)
 
 
-def _hermite(
-    log_node: Floats, tau_s: Floats, node_s: Floats, slope: Floats, x: Floats
-) -> Floats:
+def _hermite(log_node: Floats, tau_s: Floats, node_s: Floats, slope: Floats, x: Floats) -> Floats:
     tail = node_s[..., 0] + tau_s * (log_node[0] - x)
     if len(log_node) == 1:
         return np.where(x < log_node[0], tail, node_s[..., 0])
@@ -83,9 +81,7 @@ def _hermite(
     return np.where(x < log_node[0], tail, curve)
 
 
-def node_law_delay(
-    overdrive_v: Floats, log_node: Floats, tau_s: Floats, node_s: Floats
-) -> Floats:
+def node_law_delay(overdrive_v: Floats, log_node: Floats, tau_s: Floats, node_s: Floats) -> Floats:
     """Return the delay at each overdrive.
 
     Parameters

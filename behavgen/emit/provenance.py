@@ -1,0 +1,187 @@
+"""What the head of an emitted file says about it, as plain lines for any language.
+
+What it models and how well, from which tables, for which conditions, what it
+leaves out, and what must not be read into it.
+"""
+
+from __future__ import annotations
+
+import textwrap
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+from behavgen.emit.literals import comment_text, range_text
+from behavgen.model import Box, ComparatorModel, ConditionFit, Parameter, Range
+from behavgen.units import format_si
+
+__all__ = ["HeaderSection", "header_lines", "header_sections"]
+
+_CONDITIONS = (
+    ("vdd_v", "supply", "V"),
+    ("temperature_k", "temperature", "K"),
+    ("vcm_v", "common mode", "V"),
+    ("overdrive_v", "overdrive", "V"),
+)
+_NEVER_MODELLED = ("memory of earlier decisions", "aperture", "energy", "kickback")
+_CAUTIONS = (
+    "Fitted to the tables named above and valid inside the stated ranges; outside, conditions "
+    "are clamped and results are no predictions.",
+    "It replaces neither transistor-level, extracted, timing or reliability sign-off nor your "
+    "own safety process, and claims no integrity level.",
+    "Rates far below what was counted rest on a Gaussian and an exponential law. Intervals "
+    "leave out the process kit's accuracy, parasitics, ageing, supply noise and jitter; "
+    "mismatch has no spatial correlation.",
+    "What an unresolved output shows is a convention; coin and hold can hide a synchroniser "
+    "fault. Random numbers reproduce a simulation and are not for security.",
+    "The file reveals performance that derives from a process kit: check its licence before "
+    "passing it on.",
+)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class HeaderSection:
+    """A titled group of lines; each line is one fact, not yet wrapped."""
+
+    title: str
+    lines: tuple[str, ...]
+
+
+def header_sections(model: ComparatorModel) -> tuple[HeaderSection, ...]:
+    """Return the head of an emitted file in reading order; sections without content are absent."""
+    candidates = (
+        ("Valid for", _ranges(model)),
+        ("Models", _effects(model)),
+        ("Does not model", (", ".join(_absent(model)),)),
+        ("Values at the middle of the range", tuple(map(_value, model.parameters))),
+        ("Made from", _tables(model)),
+        ("Fits the tables", _fits(model)),
+        ("Note", tuple(map(comment_text, model.notices))),
+        ("Caution", _CAUTIONS),
+        ("Use", (_origin(model),)),
+    )
+    return tuple(HeaderSection(title=title, lines=lines) for title, lines in candidates if lines)
+
+
+def header_lines(sections: Iterable[HeaderSection], width: int = 96) -> tuple[str, ...]:
+    """Return the sections as wrapped lines of at most `width` characters, without comment marks."""
+    lines: list[str] = []
+    for section in sections:
+        lines += ["", f"{section.title}:"]
+        for line in section.lines:
+            lines += textwrap.wrap(
+                line, width, initial_indent="  ", subsequent_indent="    ", break_on_hyphens=False
+            )
+    return tuple(lines[1:])
+
+
+def _ranges(model: ComparatorModel) -> tuple[str, ...]:
+    lines = []
+    for name, label, unit in _CONDITIONS:
+        span: Range | None = getattr(model.box, name)
+        known = range_text(span, unit) if span else "not characterised: has no influence"
+        lines.append(f"{label} {known}")
+    if model.cell.supply_off_v is not None and model.cell.pins.vdd is not None:
+        lines.append(f"off below a supply of {format_si(model.cell.supply_off_v, 'V')}")
+    lines += [
+        f"process {p.name} (code {p.code}){_own_range(model, p.name)}" for p in model.processes
+    ]
+    return tuple(map(comment_text, lines))
+
+
+def _own_range(model: ComparatorModel, process: str) -> str:
+    """Say so where a process was measured in a smaller range than the cell."""
+    if model.delay is None:
+        return ""
+    variant = model.delay.tau.variant(process)
+    parts = [f"scaled from {variant.scaled_from}"] if variant.scaled_from else []
+    parts += [
+        f"{label} {range_text(span, unit)}"
+        for name, label, unit in _CONDITIONS[:3]
+        if (span := _span(variant.box, name)) is not None and span != _span(model.box, name)
+    ]
+    return ": " + ", ".join(parts) if parts else ""
+
+
+def _span(box: Box, condition: str) -> Range | None:
+    span: Range | None = getattr(box, condition)
+    return span
+
+
+def _effects(model: ComparatorModel) -> tuple[str, ...]:
+    lines = []
+    if model.offset is not None:
+        lines.append(f"offset: {model.offset.source or 'nominal trip point'}")
+    if model.mismatch is not None:
+        lines.append(f"mismatch between instances: {model.mismatch.instances} measured")
+    if model.noise is not None:
+        lines.append("noise: Gaussian, no draws beyond 8.3 sigma where they cannot change a bit")
+    if model.delay is not None:
+        law = f"delay over overdrive: {model.delay.law or 'nodes'}"
+        measured = f", measured from {model.delay.measured}" if model.delay.measured else ""
+        lines.append(law + measured)
+    if model.reset is not None:
+        lines.append("reset delay")
+    return tuple(map(comment_text, lines))
+
+
+def _absent(model: ComparatorModel) -> tuple[str, ...]:
+    effects = {
+        "offset": model.offset,
+        "mismatch": model.mismatch,
+        "noise": model.noise,
+        "delay": model.delay,
+        "reset delay": model.reset,
+    }
+    missing = [name for name, effect in effects.items() if effect is None]
+    return (*missing, *_NEVER_MODELLED)
+
+
+def _value(parameter: Parameter) -> str:
+    estimate, unit = parameter.estimate, "" if parameter.unit == "1" else parameter.unit
+    text = f"{parameter.name} {format_si(estimate.value, unit)}"
+    if estimate.low is not None and estimate.high is not None:
+        span = f"{format_si(estimate.low, unit)} to {format_si(estimate.high, unit)}"
+        text += f" ({span} at {100 * estimate.level:g} %)"
+    return comment_text(f"{text}: {parameter.description}" if parameter.description else text)
+
+
+def _tables(model: ComparatorModel) -> tuple[str, ...]:
+    lines = []
+    for source in model.sources:
+        failed = f", {source.failed_rows} failed" if source.failed_rows else ""
+        lines.append(
+            f"{source.quantity}: {source.file}, {source.rows} rows{failed}, "
+            f"sha256 {source.sha256[:12]}"
+        )
+    return tuple(map(comment_text, lines))
+
+
+def _fits(model: ComparatorModel) -> tuple[str, ...]:
+    quantities = dict.fromkeys(fit.quantity for fit in model.fits)
+    lines = [_fit([f for f in model.fits if f.quantity == q], q) for q in quantities]
+    return tuple(line for line in lines if line)
+
+
+def _fit(fits: list[ConditionFit], quantity: str) -> str:
+    rows = sum(fit.rows for fit in fits)
+    errors = (
+        ("rms", [f.rms_relative for f in fits]),
+        ("worst", [f.worst_relative for f in fits]),
+        ("rms without that condition", [f.held_out_rms_relative for f in fits]),
+    )
+    shown = [
+        f"{label} up to {100 * max(known):.2g} %"
+        for label, values in errors
+        if (known := [value for value in values if value is not None])
+    ]
+    goodness = [f.goodness for f in fits if f.goodness is not None]
+    if goodness:
+        shown.append(f"smallest p-value of the goodness of fit {min(goodness):.2g}")
+    return f"{quantity}: {rows} rows, {len(fits)} conditions; {', '.join(shown)}" if shown else ""
+
+
+def _origin(model: ComparatorModel) -> str:
+    by = f"Written by {model.generator}. " if model.generator else ""
+    return comment_text(
+        f"{by}This file belongs to you: use, change and pass it on without condition."
+    )

@@ -1,0 +1,162 @@
+"""Values at sites in several processes -> surfaces with one variant a process.
+
+The process measured at most conditions gets a polynomial of its own. Every
+other process is that one plus a difference, fitted in the same terms as far as
+its own conditions reach: measured once, it is the first process scaled.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.fit.conditions import Sites, range_of
+from behavgen.fit.surfaces import (
+    SurfaceFit,
+    choose_by_left_out,
+    choose_by_likelihood,
+    difference_by_left_out,
+)
+from behavgen.model import Box, Range, Surface, Variant, significant
+
+__all__ = ["SurfaceFamily", "exact_family", "noisy_family"]
+
+Floats = npt.NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class SurfaceFamily:
+    """L surfaces over the same conditions.
+
+    Parameters
+    ----------
+    primary : str
+        Process with a polynomial of its own.
+    fit : SurfaceFit
+        Of the primary process.
+    coefficients : dict of str to ndarray, shape (terms, L)
+        By process.
+    boxes : dict of str to Box
+    scaled : dict of str to str
+        Process whose shape was used; "" for a polynomial of its own.
+    left_out : ndarray, shape (C, L)
+        Held-out errors at the primary process's sites, NaN elsewhere.
+    """
+
+    primary: str
+    fit: SurfaceFit
+    coefficients: dict[str, Floats]
+    boxes: dict[str, Box]
+    scaled: dict[str, str]
+    left_out: Floats
+
+    def surface(self, position: int, unit: str, transform: str, variance: float) -> Surface:
+        """Return one surface of the family as the model carries it.
+
+        Parameters
+        ----------
+        position : int
+            Which of the L surfaces.
+        unit, transform : str
+        variance : float
+            Of the residual whose unit `SurfaceFit.covariance` is.
+        """
+        form = self.fit.form
+        covariance = self.fit.covariance * variance
+        return Surface(
+            unit=unit,
+            transform=transform,
+            axes=form.axes,
+            exponents=form.exponents,
+            variants=tuple(
+                Variant(
+                    process=process,
+                    coefficients=tuple(significant(float(c)) for c in values[:, position]),
+                    box=self.boxes[process],
+                    scaled_from=self.scaled[process],
+                )
+                for process, values in self.coefficients.items()
+            ),
+            covariance=tuple(tuple(significant(float(v), 6) for v in row) for row in covariance),
+        )
+
+
+def exact_family(
+    sites: Sites, targets: Floats, processes: tuple[str, ...], metric: Floats | None = None,
+    overdrive_v: Range | None = None,
+) -> SurfaceFamily:  # fmt: skip
+    """Fit values without random error.
+
+    Parameters
+    ----------
+    sites : Sites
+    targets : ndarray, shape (C, L)
+    processes : tuple of str
+        All processes of the cell.
+    metric : ndarray, shape (C, L, L), optional
+        See `choose_by_left_out`.
+    overdrive_v : Range, optional
+        Carried into the variants' boxes.
+    """
+    primary = _primary(sites, processes)
+    rows = _rows(sites, primary)
+    fit = choose_by_left_out(
+        sites.values[rows], targets[rows], None if metric is None else metric[rows]
+    )
+    coefficients, boxes, scaled = {}, {}, {}
+    for process in processes:
+        own = _rows(sites, process)
+        away = process != primary and len(own) > 0
+        coefficients[process] = fit.coefficients
+        if away:
+            difference = difference_by_left_out(fit, sites.values[own], targets[own])
+            coefficients[process] = fit.coefficients + difference
+        boxes[process] = range_of(sites.values[own if len(own) else rows], overdrive_v)
+        scaled[process] = "" if process == primary else primary
+    left_out = np.full_like(targets, np.nan)
+    left_out[rows] = fit.left_out
+    return SurfaceFamily(
+        primary=primary, fit=fit, coefficients=coefficients, boxes=boxes, scaled=scaled,
+        left_out=left_out,
+    )  # fmt: skip
+
+
+def noisy_family(
+    sites: Sites, target: Floats, variance: Floats, processes: tuple[str, ...]
+) -> SurfaceFamily:
+    """Fit one surface to values with known random errors, shape (C,) each.
+
+    A process measured beside the primary one is the primary one shifted by the
+    weighted mean difference.
+    """
+    primary = _primary(sites, processes)
+    rows = _rows(sites, primary)
+    fit = choose_by_likelihood(sites.values[rows], target[rows], variance[rows])
+    coefficients, boxes, scaled = {}, {}, {}
+    for process in processes:
+        own = _rows(sites, process)
+        coefficients[process] = fit.coefficients.copy()
+        if process != primary and len(own):
+            gap = target[own] - fit.predict(sites.values[own])[:, 0]
+            shift = float(np.average(gap, weights=1.0 / variance[own]))
+            coefficients[process][fit.constant_term] += shift
+        boxes[process] = range_of(sites.values[own if len(own) else rows])
+        scaled[process] = "" if process == primary else primary
+    left_out = np.full((sites.count, 1), np.nan)
+    left_out[rows] = fit.left_out
+    return SurfaceFamily(
+        primary=primary, fit=fit, coefficients=coefficients, boxes=boxes, scaled=scaled,
+        left_out=left_out,
+    )  # fmt: skip
+
+
+def _rows(sites: Sites, process: str) -> npt.NDArray[np.intp]:
+    """Return the sites measured in a process; those that hold for all count for every one."""
+    return np.flatnonzero([name in (process, "") for name in sites.process])
+
+
+def _primary(sites: Sites, processes: tuple[str, ...]) -> str:
+    counts = [len(_rows(sites, process)) for process in processes]
+    return processes[int(np.argmax(counts))]

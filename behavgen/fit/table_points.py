@@ -1,0 +1,66 @@
+"""Table rows that travel in the model file, for plots and for closure."""
+
+from __future__ import annotations
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.fit.conditions import conditions_of, find_sites
+from behavgen.model import CurvePoints, significant
+from behavgen.tables.characterisation import Characterisation, Conditions
+
+__all__ = ["table_points"]
+
+Floats = npt.NDArray[np.float64]
+
+
+def table_points(tables: Characterisation) -> tuple[CurvePoints, ...]:
+    """Return all rows by quantity and condition, sorted by their abscissa."""
+    found: list[CurvePoints] = []
+    if tables.delay is not None:
+        t = tables.delay
+        use = np.isfinite(t.delay_s)
+        found += _curves("delay", t.conditions, np.abs(t.overdrive_v), t.delay_s, use)
+    if tables.window is not None:
+        w = tables.window
+        found += _curves("window", w.conditions, w.resolve_time_s, w.window_v, w.window_v > 0.0)
+    if tables.noise is not None and len(tables.noise.vdiff_v):
+        n = tables.noise
+        share = n.ones / n.trials
+        found += _curves("noise", n.conditions, n.vdiff_v, share, n.trials > 0, n.trials)
+    if tables.offset is not None:
+        o = tables.offset
+        _, number = np.unique(o.instance, return_inverse=True)
+        found += _curves("offset", o.conditions, number.astype(float), o.offset_v,
+                         np.isfinite(o.offset_v))  # fmt: skip
+    if tables.reset is not None:
+        r = tables.reset
+        found += _curves("reset", r.conditions, np.zeros(len(r.reset_delay_s)), r.reset_delay_s,
+                         np.isfinite(r.reset_delay_s))  # fmt: skip
+    return tuple(found)
+
+
+def _curves(
+    quantity: str,
+    conditions: Conditions,
+    x: Floats,
+    y: Floats,
+    use: npt.NDArray[np.bool_],
+    trials: npt.NDArray[np.int64] | None = None,
+) -> list[CurvePoints]:
+    sites = find_sites(conditions)
+    curves = []
+    for c, condition in enumerate(conditions_of(sites)):
+        rows = np.flatnonzero((sites.of_row == c) & use)
+        rows = rows[np.argsort(x[rows], kind="stable")]
+        if len(rows):
+            curves.append(
+                CurvePoints(
+                    quantity=quantity,
+                    condition=condition,
+                    x=tuple(significant(float(v), 8) for v in x[rows]),
+                    y=tuple(significant(float(v), 8) for v in y[rows]),
+                    trials=() if trials is None else tuple(int(v) for v in trials[rows]),
+                )
+            )
+    return curves

@@ -1,0 +1,211 @@
+"""What a parsed project file says -> Project, with defaults merged and all faults found."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+from pathlib import Path
+from typing import Any
+
+from behavgen.errors import ProjectError
+from behavgen.nearest import did_you_mean
+from behavgen.project import (
+    FAILED_TOKENS,
+    CellSettings,
+    Corner,
+    Project,
+    TableSettings,
+)
+from behavgen.project_rules import (
+    ProjectFaults,
+    check_cell_names,
+    check_defaults,
+    check_measured,
+    check_process_codes,
+    check_table,
+    named_pins,
+)
+from behavgen.project_schema import (
+    AnyPart,
+    CellPart,
+    CornerPart,
+    DefaultsPart,
+    ProjectPart,
+    TablePart,
+    checked,
+)
+from behavgen.quantities import columns_of
+from behavgen.toml_lines import KeyPath, key_lines, line_of
+
+__all__ = ["read_project"]
+
+_TOP = ("project", "defaults", "cells", "corners")
+
+
+def read_project(file: Path, text: str, content: Mapping[str, Any]) -> Project:
+    """Build the project from its parsed file.
+
+    Parameters
+    ----------
+    file : Path
+        The project file.
+    text : str
+        Its text, to find lines in.
+    content : mapping
+        What tomllib made of it.
+
+    Raises
+    ------
+    ProjectError
+        With every fault found.
+    """
+    faults = ProjectFaults(file=file.name, lines=key_lines(text))
+    for key in content.keys() - set(_TOP):
+        faults.add((key,), f"unknown key '{key}'{did_you_mean(key, _TOP)}", ", ".join(_TOP))
+    project = _part(ProjectPart, _table(content, ("project",), faults), ("project",), faults)
+    defaults = _part(DefaultsPart, _table(content, ("defaults",), faults), ("defaults",), faults)
+    if defaults is not None:
+        check_defaults(defaults, ("defaults",), faults)
+    corners = _corners(_table(content, ("corners",), faults), faults)
+    cells = _cells(content, defaults or DefaultsPart(), corners, faults)
+    if faults.found or project is None:
+        raise ProjectError(*sorted(faults.found, key=lambda fault: fault.row or 0))
+    return Project(file=file, out=file.parent / project.out, cells=cells, corners=corners)
+
+
+def _cells(
+    content: Mapping[str, Any],
+    defaults: DefaultsPart,
+    corners: tuple[Corner, ...],
+    faults: ProjectFaults,
+) -> tuple[CellSettings, ...]:
+    described = _table(content, ("cells",), faults)
+    if not described:
+        faults.add(("cells",), "no cell", "describe at least one under [cells.NAME]")
+    check_cell_names(described, faults)
+    built = (
+        _cell(name, _table(described, ("cells", name), faults), defaults, corners, faults)
+        for name in described
+    )
+    return tuple(cell for cell in built if cell is not None)
+
+
+def _cell(
+    name: str,
+    content: Mapping[str, Any],
+    defaults: DefaultsPart,
+    corners: tuple[Corner, ...],
+    faults: ProjectFaults,
+) -> CellSettings | None:
+    path = ("cells", name)
+    part = _part(CellPart, content, path, faults)
+    processes = part.processes if part else {}
+    tables = _tables(content, path, defaults, processes, corners, faults)
+    if not content.get("tables"):
+        faults.add(
+            path, f"cell '{name}' has no tables", f"add at least one [[cells.{name}.tables]]"
+        )
+    if part is None:
+        return None
+    check_process_codes(processes, (*path, "processes"), faults)
+    check_measured(tables, (*path, "tables"), faults)
+    return CellSettings(
+        name=name,
+        description=part.description,
+        decides_on=part.decides_on,
+        in_reset=part.in_reset,
+        when_unresolved=part.when_unresolved,
+        process_codes=processes,
+        reset_delay_s=part.reset_delay,
+        supply_off_v=part.supply_off,
+        time_precision=part.time_precision,
+        pins=named_pins(part.pins, (*path, "pins"), faults),
+        tables=tables,
+    )
+
+
+def _tables(
+    content: Mapping[str, Any],
+    path: KeyPath,
+    defaults: DefaultsPart,
+    processes: Iterable[str],
+    corners: tuple[Corner, ...],
+    faults: ProjectFaults,
+) -> tuple[TableSettings, ...]:
+    entries = content.get("tables")
+    tables = []
+    for index, entry in enumerate(entries if isinstance(entries, list) else ()):
+        here = (*path, "tables", index)
+        if not isinstance(entry, dict):
+            continue  # the shape of the cell has said so
+        part = _part(TablePart, entry, here, faults)
+        if part is not None and check_table(
+            part,
+            processes=processes,
+            corners=[corner.name for corner in corners],
+            path=here,
+            faults=faults,
+        ):
+            tables.append(_merged(part, defaults, line_of(here, faults.lines) or 0))
+    return tuple(tables)
+
+
+def _merged(part: TablePart, defaults: DefaultsPart, line: int) -> TableSettings:
+    """Return a table's settings with the shared ones filled in: its own entries win."""
+    known = columns_of(part.quantity)
+    own = part.columns.keys() | part.at.keys()
+    columns = {name: header for name, header in defaults.columns.items() if name not in own}
+    at = {name: value for name, value in defaults.at.items() if name not in own}
+    columns = {name: header for name, header in columns.items() if name in known}
+    at = {name: value for name, value in at.items() if name in known}
+    units = {name: unit for name, unit in defaults.units.items() if name in known}
+    failed = part.failed if part.failed is not None else defaults.failed
+    measured = part.measured if part.measured is not None else defaults.measured
+    return TableSettings(
+        quantity=part.quantity,
+        file=part.file,
+        columns={**columns, **part.columns},
+        units={**units, **part.units},
+        where={**defaults.where, **part.where},
+        at={**at, **part.at},
+        failed=tuple(failed) if failed is not None else FAILED_TOKENS,
+        measured=measured or "",
+        default_columns=frozenset(columns),
+        default_at=frozenset(at),
+        line=line,
+    )
+
+
+def _corners(content: Mapping[str, Any], faults: ProjectFaults) -> tuple[Corner, ...]:
+    corners = []
+    for name in content:
+        path = ("corners", name)
+        part = _part(CornerPart, _table(content, path, faults), path, faults)
+        if part is not None:
+            corners.append(
+                Corner(
+                    name=name,
+                    process=part.process,
+                    temperature_k=part.temp,
+                    vdd_v=part.vdd,
+                    vcm_v=part.vcm,
+                )
+            )
+    return tuple(corners)
+
+
+def _table(content: Mapping[str, Any], path: KeyPath, faults: ProjectFaults) -> Mapping[str, Any]:
+    """Return the TOML table under the last key of `path`, empty when it is none."""
+    value = content.get(str(path[-1]), {})
+    if isinstance(value, dict):
+        return value
+    faults.add(path, f"{value!r}", f"a table is needed, as in [{'.'.join(map(str, path))}]")
+    return {}
+
+
+def _part(
+    part: type[AnyPart], content: Mapping[str, Any], path: KeyPath, faults: ProjectFaults
+) -> AnyPart | None:
+    def add(key: KeyPath, what: str, allowed: str) -> None:
+        faults.add((*path, *key), what, allowed)
+
+    return checked(part, content, add)

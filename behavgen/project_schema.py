@@ -1,0 +1,176 @@
+"""The shape of behavgen.toml: which keys stand where and what each may hold.
+
+Imported only when a project file is read, since pydantic is slow to load.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Mapping
+from typing import Annotated, Any, Literal, TypeVar
+
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, ValidationError
+
+from behavgen.nearest import did_you_mean
+from behavgen.units import UnitError, parse_si
+
+__all__ = [
+    "CellPart",
+    "CornerPart",
+    "DefaultsPart",
+    "ProjectPart",
+    "TablePart",
+    "checked",
+]
+
+
+def _text_or_number(value: object) -> str | float:
+    if isinstance(value, str):
+        return value
+    if isinstance(value, (int, float)) and not isinstance(value, bool):
+        return value
+    raise ValueError("a text or a number is needed")
+
+
+def _texts_or_numbers(value: object) -> tuple[str | float, ...]:
+    listed = value if isinstance(value, list) else [value]
+    if not listed:
+        raise ValueError("an empty list keeps no row; a text, a number or a list of them")
+    return tuple(_text_or_number(item) for item in listed)
+
+
+def _in_si(dimension: str) -> Callable[[object], float]:
+    def convert(value: object) -> float:
+        try:
+            return parse_si(str(_text_or_number(value)), dimension)
+        except UnitError as error:
+            raise ValueError(str(error)) from None
+
+    return convert
+
+
+def _pin(value: object) -> str | bool:
+    if isinstance(value, (str, bool)):
+        return value
+    raise ValueError("a name in quotes is needed, or false to leave the pin out")
+
+
+TextOrNumber = Annotated[str | float, BeforeValidator(_text_or_number)]
+TextsOrNumbers = Annotated[tuple[str | float, ...], BeforeValidator(_texts_or_numbers)]
+Volts = Annotated[float, BeforeValidator(_in_si("V"))]
+Seconds = Annotated[float, BeforeValidator(_in_si("s"))]
+Kelvin = Annotated[float, BeforeValidator(_in_si("K"))]
+Pin = Annotated[str | bool, BeforeValidator(_pin)]
+
+
+class _Part(BaseModel):
+    model_config = ConfigDict(extra="forbid", strict=True, frozen=True)
+
+
+class ProjectPart(_Part):
+    """``[project]``."""
+
+    out: str = Field("build", min_length=1)
+
+
+class DefaultsPart(_Part):
+    """``[defaults]``."""
+
+    columns: dict[str, str] = {}
+    units: dict[str, str] = {}
+    where: dict[str, TextsOrNumbers] = {}
+    at: dict[str, TextOrNumber] = {}
+    failed: list[str] | None = None
+    measured: str | None = None
+
+
+class TablePart(DefaultsPart):
+    """``[[cells.NAME.tables]]``."""
+
+    quantity: str
+    file: str = Field(min_length=1)
+
+
+class CellPart(_Part):
+    """``[cells.NAME]``."""
+
+    description: str = ""
+    decides_on: Literal["rising", "falling"] = "rising"
+    in_reset: Literal["high", "low", "mid", "hold"] = "high"
+    when_unresolved: Literal["x", "coin", "hold"] = "x"
+    processes: dict[str, int] = {}
+    reset_delay: Seconds | None = Field(None, ge=0)
+    supply_off: Volts | None = Field(None, ge=0)
+    time_precision: Literal["1fs", "1ps"] = "1fs"
+    pins: dict[str, Pin] = {}
+    tables: list[dict[str, Any]] = []
+
+
+class CornerPart(_Part):
+    """``[corners.NAME]``."""
+
+    process: str | None = None
+    temp: Kelvin | None = Field(None, gt=0)
+    vdd: Volts | None = Field(None, gt=0)
+    vcm: Volts | None = None
+
+
+AnyPart = TypeVar("AnyPart", bound=_Part)
+KeyPath = tuple[str | int, ...]
+
+
+def checked(
+    part: type[AnyPart], raw: Mapping[str, Any], add: Callable[[KeyPath, str, str], None]
+) -> AnyPart | None:
+    """Return the part if its shape is right, else report every fault.
+
+    Parameters
+    ----------
+    part : type
+        Which part of the file.
+    raw : mapping
+        As tomllib gave it.
+    add : callable
+        Takes the path inside the part, what was found, and what is allowed.
+    """
+    try:
+        return part.model_validate(dict(raw))
+    except ValidationError as error:
+        for details in error.errors():
+            location = tuple(details["loc"])
+            add(location, *_in_words(details, part.model_fields))
+        return None
+
+
+def _in_words(details: Mapping[str, Any], known: Iterable[str]) -> tuple[str, str]:
+    """Return a validation error as (what was found, what is allowed)."""
+    kind, found = details["type"], details["input"]
+    context = details.get("ctx", {})
+    if kind == "extra_forbidden":
+        keys = sorted(known)
+        name = str(details["loc"][-1])
+        return f"unknown key '{name}'{did_you_mean(name, keys)}", f"known: {', '.join(keys)}"
+    if kind == "missing":
+        return "missing", "this key is required"
+    if kind == "literal_error":
+        hint = did_you_mean(str(found), [*_quoted_words(context["expected"])])
+        return f"'{found}'{hint}", f"one of {context['expected'].replace(' or ', ', ')}"
+    if kind == "value_error":
+        return f"{found!r}: {context['error']}", ""
+    if kind in _LIMITS:
+        return f"{found!r}", f"{_LIMITS[kind]} {next(iter(context.values())):g}"
+    if kind == "string_too_short":
+        return "empty text", "a name is needed here"
+    return f"{found!r}", _NEEDED.get(kind, details["msg"])
+
+
+_LIMITS = {"greater_than": "above", "greater_than_equal": "at least"}
+_NEEDED = {
+    "string_type": "a text in quotes is needed",
+    "dict_type": "a table is needed, as in { name = ... } or under a [heading] of its own",
+    "list_type": "a list is needed, as in [ ... ]",
+    "int_type": "a whole number is needed",
+}
+
+
+def _quoted_words(text: str) -> Iterable[str]:
+    return (word.strip("',") for word in text.split() if word.startswith("'"))

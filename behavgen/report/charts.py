@@ -1,0 +1,244 @@
+"""Charts as SVG text: panels one above the other, with lines, bands and markers.
+
+Colours and line weights are classes of the page's style sheet, so that a chart
+follows the reader's light or dark theme and prints well. A marker is one
+zero-length or closed stroke of a single path, which keeps a thousand table
+points near ten kilobytes.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+from html import escape
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.report.axes import PlotAxis, Tick, axis_title, ticks
+
+__all__ = ["MARKERS", "Band", "Chart", "Dots", "Layer", "Line", "Panel", "draw_chart", "swatch"]
+
+Floats = npt.NDArray[np.float64]
+
+MARKERS = {
+    "dot": "h0",
+    "square": "m-2.6-2.6h5.2v5.2h-5.2z",
+    "triangle": "m0-3.6l3.4 6h-6.8z",
+    "diamond": "m0-3.8l3.6 3.8-3.6 3.8-3.6-3.8z",
+    "cross": "m-2.7-2.7l5.4 5.4m0-5.4l-5.4 5.4",
+    "plus": "m-3.4 0h6.8m-3.4-3.4v6.8",
+    "speck": "h0",
+}
+"""Name to the relative path drawn at each point."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Line:
+    """A curve; `style` names the colour class, `title` is shown by a resting pointer."""
+
+    x: Floats
+    y: Floats
+    style: str = "s0"
+    title: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Dots:
+    """Markers, with vertical error bars where `low` and `high` are given."""
+
+    x: Floats
+    y: Floats
+    marker: str = "dot"
+    style: str = "s0"
+    low: Floats | None = None
+    high: Floats | None = None
+    title: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Band:
+    """The area between two curves."""
+
+    x: Floats
+    low: Floats
+    high: Floats
+    style: str = "band"
+
+
+Layer = Line | Dots | Band
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Panel:
+    """One plot area; layers are drawn in order, the last on top."""
+
+    x: PlotAxis
+    y: PlotAxis
+    layers: tuple[Layer, ...]
+    height: float
+    zero_line: bool = False
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Chart:
+    """Panels that share their x axis.
+
+    Parameters
+    ----------
+    name : str
+        Unique in the page; letters, digits and dashes.
+    title, description : str
+        For readers who hear the page.
+    width, left, bottom : float
+        Of the whole drawing and of the margins for labels, in its own units.
+    """
+
+    name: str
+    title: str
+    description: str
+    panels: tuple[Panel, ...]
+    width: float = 480.0
+    left: float = 54.0
+    bottom: float = 46.0
+
+
+_RIGHT = 14.0
+_ABOVE = 24.0
+
+
+def draw_chart(chart: Chart) -> str:
+    """Return the chart as one ``<svg>`` element."""
+    top, parts = 0.0, []
+    for panel in chart.panels:
+        last = panel is chart.panels[-1]
+        parts.append(_draw_panel(chart, panel, top + _ABOVE, with_x=last))
+        top += _ABOVE + panel.height
+    height = top + chart.bottom
+    name = chart.name
+    return (
+        f'<svg class="chart" viewBox="0 0 {_n(chart.width)} {_n(height)}" role="img" '
+        f'aria-labelledby="{name}-t {name}-d"><title id="{name}-t">{escape(chart.title)}</title>'
+        f'<desc id="{name}-d">{escape(chart.description)}</desc>{"".join(parts)}</svg>'
+    )
+
+
+def swatch(style: str, marker: str = "", line: bool = True) -> str:
+    """Return a small sample of a series for a legend."""
+    parts = [f'<path class="line {style}" d="M1 7H27"/>'] if line else []
+    if marker:
+        parts.append(f'<path class="{_marker_class(marker)} {style}" d="M14 7{MARKERS[marker]}"/>')
+    return f'<svg class="swatch" viewBox="0 0 28 14" aria-hidden="true">{"".join(parts)}</svg>'
+
+
+def _draw_panel(chart: Chart, panel: Panel, top: float, *, with_x: bool) -> str:
+    width, height = chart.width - chart.left - _RIGHT, panel.height
+    grid = _grid(panel, width, height)
+    drawn = "".join(_draw_layer(panel, layer, width, height) for layer in panel.layers)
+    frame = (
+        f'<svg x="{_n(chart.left)}" y="{_n(top)}" width="{_n(width)}" height="{_n(height)}">'
+        f"{grid}{drawn}</svg>"
+    )
+    labels = _y_labels(panel, chart.left, top)
+    if with_x:
+        labels += _x_labels(panel, chart.left, width, top + height)
+    return frame + labels
+
+
+def _grid(panel: Panel, width: float, height: float) -> str:
+    across = [f"M{_n(x * width)} 0V{_n(height)}" for x in _labelled_places(panel.x)]
+    along = [f"M0 {_n(height - y * height)}H{_n(width)}" for y in _labelled_places(panel.y)]
+    text = f'<path class="grid" d="{"".join(across + along)}"/>'
+    if panel.zero_line:
+        zero = height - float(panel.y.place(0.0)) * height
+        text += f'<path class="zero" d="M0 {_n(zero)}H{_n(width)}"/>'
+    return text
+
+
+def _labelled_places(axis: PlotAxis) -> Iterable[float]:
+    return (float(axis.place(tick.value)) for tick in ticks(axis) if tick.label)
+
+
+def _y_labels(panel: Panel, left: float, top: float) -> str:
+    def text(tick: Tick) -> str:
+        y = top + panel.height * (1.0 - float(panel.y.place(tick.value)))
+        return f'<text class="tick" x="{_n(left - 7)}" y="{_n(y + 4)}">{escape(tick.label)}</text>'
+
+    title = f'<text class="axis" x="{_n(left)}" y="{_n(top - 9)}">{escape(axis_title(panel.y))}</text>'
+    return '<g class="y">' + title + "".join(text(t) for t in ticks(panel.y) if t.label) + "</g>"
+
+
+def _x_labels(panel: Panel, left: float, width: float, base: float) -> str:
+    marks, texts = [], []
+    for tick in ticks(panel.x):
+        x = left + width * float(panel.x.place(tick.value))
+        marks.append(f"M{_n(x)} {_n(base)}v{5 if tick.label else 3}")
+        if tick.label:
+            texts.append(f'<text class="tick" x="{_n(x)}" y="{_n(base + 18)}">{escape(tick.label)}</text>')
+    title = (f'<text class="axis" x="{_n(left + 0.5 * width)}" y="{_n(base + 37)}">'
+             f"{escape(axis_title(panel.x))}</text>")  # fmt: skip
+    axis = f'<path class="base" d="M{_n(left)} {_n(base)}h{_n(width)}{"".join(marks)}"/>'
+    return f'<g class="x">{axis}{"".join(texts)}{title}</g>'
+
+
+def _draw_layer(panel: Panel, layer: Layer, width: float, height: float) -> str:
+    if isinstance(layer, Band):
+        return _draw_band(panel, layer, width, height)
+    if isinstance(layer, Line):
+        d = _polyline(*_pixels(panel, layer.x, layer.y, width, height))
+        return _path(f"line {layer.style}", d, layer.title)
+    return _draw_dots(panel, layer, width, height)
+
+
+def _draw_band(panel: Panel, band: Band, width: float, height: float) -> str:
+    low = _pixels(panel, band.x, band.low, width, height)
+    high = _pixels(panel, band.x, band.high, width, height)
+    x, y = np.concatenate([low[0], high[0][::-1]]), np.concatenate([low[1], high[1][::-1]])
+    return _path(band.style, _polyline(x, y) + "z")
+
+
+def _draw_dots(panel: Panel, dots: Dots, width: float, height: float) -> str:
+    text = ""
+    if dots.low is not None and dots.high is not None:
+        x, low = _pixels(panel, dots.x, dots.low, width, height)
+        _, high = _pixels(panel, dots.x, dots.high, width, height)
+        bars = (f"M{_n(a)} {_n(b)}V{_n(c)}" for a, b, c in zip(x, low, high, strict=True))
+        text = _path(f"bar {dots.style}", "".join(bars))
+    x, y = _pixels(panel, dots.x, dots.y, width, height)
+    mark = MARKERS[dots.marker]
+    d = "".join(f"M{_n(a)} {_n(b)}{mark}" for a, b in zip(x, y, strict=True))
+    return text + _path(f"{_marker_class(dots.marker)} {dots.style}", d, dots.title)
+
+
+def _marker_class(marker: str) -> str:
+    return {"dot": "dot", "speck": "speck", "cross": "open", "plus": "open"}.get(marker, "solid")
+
+
+def _pixels(
+    panel: Panel, x: Floats, y: Floats, width: float, height: float
+) -> tuple[Floats, Floats]:
+    """Return places in the plot area of the finite points; far outside is just outside."""
+    finite = np.isfinite(x) & np.isfinite(y)
+    across = np.clip(panel.x.place(x[finite]), -0.5, 1.5) * width
+    along = (1.0 - np.clip(panel.y.place(y[finite]), -0.5, 1.5)) * height
+    return across, along
+
+
+def _polyline(x: Floats, y: Floats) -> str:
+    if len(x) == 0:
+        return ""
+    points = [f"{_n(a)} {_n(b)}" for a, b in zip(x, y, strict=True)]
+    return "M" + "L".join(points)
+
+
+def _path(style: str, d: str, title: str = "") -> str:
+    if not d:
+        return ""
+    inner = f"<title>{escape(title)}</title>" if title else ""
+    return f'<path class="{style}" d="{d}">{inner}</path>'
+
+
+def _n(value: float) -> str:
+    """Write a place with a tenth of a unit."""
+    text = f"{value:.1f}"
+    return text[:-2] if text.endswith(".0") else text

@@ -1,0 +1,92 @@
+"""Table points of one condition beside what the emitted model gives there."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.model import ComparatorModel, Condition, CurvePoints
+from behavgen.reference import Reference
+from behavgen.report.conditions import reference_keywords
+
+__all__ = ["Curve", "curves", "rms", "worst"]
+
+Floats = npt.NDArray[np.float64]
+
+_LINE_POINTS = 41
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Curve:
+    """One condition of one quantity.
+
+    Parameters
+    ----------
+    condition : Condition
+    x, y : ndarray, shape (N,)
+        Table points, as in `CurvePoints`.
+    model_y : ndarray, shape (N,)
+        The emitted model at the table's x.
+    line_x, line_y : ndarray, shape (M,)
+        The emitted model as a line.
+    trials : ndarray of int, shape (N,) or (0,)
+    """
+
+    condition: Condition
+    x: Floats
+    y: Floats
+    model_y: Floats
+    line_x: Floats
+    line_y: Floats
+    trials: npt.NDArray[np.int64]
+
+    @property
+    def residual(self) -> Floats:
+        """Relative error of the model, shape (N,); NaN where one side is not finite or zero."""
+        usable = np.isfinite(self.model_y) & (self.y != 0.0)
+        return np.where(usable, self.model_y, np.nan) / np.where(usable, self.y, 1.0) - 1.0
+
+
+def curves(model: ComparatorModel, reference: Reference, quantity: str) -> tuple[Curve, ...]:
+    """Return one curve for each condition of ``"delay"``, ``"window"`` or ``"noise"``."""
+    law = {"delay": reference.delay, "window": reference.window, "noise": reference.probability}
+    found = (p for p in model.points if p.quantity == quantity and len(p.x) > 0)
+    return tuple(_curve(points, law[quantity]) for points in found)
+
+
+def worst(members: Sequence[Curve]) -> float:
+    """Return the largest magnitude of the residuals; NaN without any."""
+    values = _residuals(members)
+    return float(np.abs(values).max()) if len(values) else float("nan")
+
+
+def rms(members: Sequence[Curve]) -> float:
+    """Return the root mean square of the residuals; NaN without any."""
+    values = _residuals(members)
+    return float(np.sqrt(np.mean(values**2))) if len(values) else float("nan")
+
+
+def _residuals(members: Sequence[Curve]) -> Floats:
+    values = np.concatenate([c.residual for c in members]) if members else np.empty(0)
+    return values[np.isfinite(values)]
+
+
+def _curve(points: CurvePoints, law: Callable[..., Floats]) -> Curve:
+    x, y = np.array(points.x), np.array(points.y)
+    keywords = reference_keywords(points.condition)
+    line_x = _line_places(x, logarithmic=points.quantity == "delay")
+    return Curve(condition=points.condition, x=x, y=y, model_y=law(x, **keywords), line_x=line_x,
+                 line_y=law(line_x, **keywords),
+                 trials=np.array(points.trials, dtype=np.int64))  # fmt: skip
+
+
+def _line_places(x: Floats, *, logarithmic: bool) -> Floats:
+    low, high = float(x.min()), float(x.max())
+    if low == high:  # a single point still deserves a line through it
+        low, high = (0.5 * low, 2.0 * high) if low > 0.0 else (low - 1e-3, high + 1e-3)
+    if logarithmic and low > 0.0:
+        return np.geomspace(low, high, _LINE_POINTS)
+    return np.linspace(low, high, _LINE_POINTS)

@@ -1,0 +1,178 @@
+"""Delay over overdrive: one overview of all conditions, then small charts by condition."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from behavgen.model import Condition
+from behavgen.report.axes import PlotAxis, spanning
+from behavgen.report.charts import Chart, Dots, Layer, Line, Panel, draw_chart
+from behavgen.report.conditions import (
+    FIELD_TITLES,
+    FIELDS,
+    condition_words,
+    field_text,
+    shared_words,
+    varying_fields,
+)
+from behavgen.report.curves import Curve, rms, worst
+from behavgen.report.figure import (
+    Figure,
+    Multiples,
+    series_legend,
+    series_marker,
+    series_style,
+)
+from behavgen.report.numbers import percent_text
+from behavgen.report.overlay import (
+    drawn_curves,
+    overlay_legend,
+    overlay_panels,
+    spotlights,
+)
+
+__all__ = ["delay_multiples", "delay_overview"]
+
+_MOST_PANELS = 12
+_MOST_SERIES = 6
+_Panels = dict[tuple[object, ...], list[Curve]]
+
+
+def delay_overview(members: Sequence[Curve], middle: Condition) -> Figure:
+    """Return the chart of all conditions with the residuals under it."""
+    drawn = drawn_curves(members)
+    chosen = spotlights(drawn, middle, [float(c.model_y.max()) for c in drawn])
+    x = _overdrive_axis(drawn, most_ticks=7)
+    low, high = spanning([0.0], *(c.y for c in drawn), *(c.line_y for c in drawn))
+    y = PlotAxis(label="Delay", unit="s", low=max(low, 0.0), high=high)
+    chart = Chart(
+        name="delay",
+        title="Delay over overdrive",
+        description=f"{len(drawn)} conditions: markers are table rows, lines the emitted model; "
+        f"below, the model's error in per cent, at most {percent_text(worst(drawn))}.",
+        panels=overlay_panels(drawn, chosen, x, y),
+    )
+    return Figure(svg=draw_chart(chart), caption=_overview_caption(members, drawn),
+                  legend=overlay_legend(drawn, chosen))  # fmt: skip
+
+
+def _overview_caption(members: Sequence[Curve], drawn: Sequence[Curve]) -> str:
+    rows = sum(len(c.x) for c in members)
+    text = (
+        f"Markers: table rows ({rows}); lines: the emitted model. Below: model against table, "
+        f"{percent_text(rms(members))} rms, {percent_text(worst(members))} at worst."
+    )
+    if len(drawn) < len(members):
+        text += f" Of {len(members)} conditions the {len(drawn)} that fit worst are drawn."
+    shared = shared_words([c.condition for c in members])
+    return f"{text} All at {shared}." if shared else text
+
+
+def delay_multiples(members: Sequence[Curve]) -> Multiples | None:
+    """Return small charts, each for a few conditions; None when the overview shows it all."""
+    conditions = [c.condition for c in members]
+    names = varying_fields(conditions)
+    if len(members) < 5 or not names:
+        return None
+    series = _series_field(conditions, names)
+    panels = _grouped(members, tuple(name for name in names if name != series))
+    shown = _worst_panels(panels)
+    levels = _levels(conditions, series)[:_MOST_SERIES]
+    axes = _small_axes(shown)
+    figures = tuple(
+        _small_figure(i, group, series, levels, axes[i]) for i, group in enumerate(shown)
+    )
+    legend = tuple(
+        series_legend(i, f"{FIELD_TITLES[series]} {field_text(c, series)}")
+        for i, c in enumerate(_samples(conditions, series, levels))
+    )
+    return Multiples(figures=figures, legend=legend, note=_note(len(panels), len(shown)))
+
+
+def _series_field(conditions: Sequence[Condition], names: Sequence[str]) -> str:
+    """Return what tells the lines of a small chart apart: the supply if it may, else what fits."""
+    counts = {name: len(_levels(conditions, name)) for name in names}
+    fitting = [name for name in names if counts[name] <= _MOST_SERIES]
+    if "vdd_v" in fitting:
+        return "vdd_v"
+    return max(fitting, key=lambda n: counts[n]) if fitting else min(names, key=lambda n: counts[n])
+
+
+def _levels(conditions: Sequence[Condition], name: str) -> list[object]:
+    found = dict.fromkeys(getattr(c, name) for c in conditions)
+    if name == "process":
+        return list(found)
+    return sorted(found, key=lambda v: -np.inf if v is None else v)
+
+
+def _samples(
+    conditions: Sequence[Condition], name: str, levels: Sequence[object]
+) -> list[Condition]:
+    return [next(c for c in conditions if getattr(c, name) == level) for level in levels]
+
+
+def _grouped(members: Sequence[Curve], names: tuple[str, ...]) -> _Panels:
+    panels: _Panels = {}
+    for curve in members:
+        key = tuple(getattr(curve.condition, name) for name in FIELDS if name in names)
+        panels.setdefault(key, []).append(curve)
+    return panels
+
+
+def _worst_panels(panels: _Panels) -> list[list[Curve]]:
+    """Return the groups to draw, in the table's order; of many those that fit worst."""
+    ranked = sorted(panels.values(), key=lambda group: -np.nan_to_num(worst(group), nan=-1.0))
+    kept = {id(group) for group in ranked[:_MOST_PANELS]}
+    return [group for group in panels.values() if id(group) in kept]
+
+
+def _note(panels: int, shown: int) -> str:
+    note = "Each small chart holds one combination of the remaining conditions."
+    if shown < panels:
+        note += f" Of {panels} combinations the {shown} that fit worst are drawn."
+    return note
+
+
+def _small_axes(groups: Sequence[Sequence[Curve]]) -> list[tuple[PlotAxis, PlotAxis]]:
+    """Return one pair of axes a chart; all alike unless that would flatten the fast ones."""
+    tops = [max(float(max(c.y.max(), c.line_y.max())) for c in group) for group in groups]
+    common = max(tops) < 3.0 * min(tops)
+    x = _overdrive_axis([c for group in groups for c in group], most_ticks=3)
+    return [
+        (x, PlotAxis(label="Delay", unit="s", low=0.0,
+                     high=1.06 * (max(tops) if common else top), most_ticks=4))
+        for top in tops
+    ]  # fmt: skip
+
+
+def _small_figure(
+    number: int,
+    group: Sequence[Curve],
+    series: str,
+    levels: Sequence[object],
+    axes: tuple[PlotAxis, PlotAxis],
+) -> Figure:
+    layers: list[Layer] = []
+    for curve in group:
+        if getattr(curve.condition, series) not in levels:
+            continue
+        i = levels.index(getattr(curve.condition, series))
+        title = condition_words(curve.condition)
+        layers.append(Line(x=curve.line_x, y=curve.line_y, style=series_style(i), title=title))
+        layers.append(Dots(x=curve.x, y=curve.y, marker=series_marker(i), style=series_style(i)))
+    words = condition_words(group[0].condition, [n for n in FIELDS if n != series])
+    chart = Chart(
+        name=f"delay-{number}", title=f"Delay over overdrive, {words}",
+        description=f"{len(group)} conditions, worst error {percent_text(worst(group))}.",
+        panels=(Panel(x=axes[0], y=axes[1], layers=tuple(layers), height=130.0),),
+        width=240.0, left=42.0,
+    )  # fmt: skip
+    return Figure(svg=draw_chart(chart), caption=f"{words}: worst {percent_text(worst(group))}")
+
+
+def _overdrive_axis(members: Sequence[Curve], most_ticks: int) -> PlotAxis:
+    low, high = spanning(*(c.x for c in members), logarithmic=True)
+    return PlotAxis(label="Overdrive", unit="V", low=low, high=high, logarithmic=True,
+                    most_ticks=most_ticks)  # fmt: skip

@@ -1,0 +1,151 @@
+"""The check's outcome in words and tables."""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from behavgen.check.verdict import CheckReport, Disagreement, Stratum
+from behavgen.model import ComparatorModel, dump_model
+from behavgen.report.numbers import count_text, si_text
+from behavgen.report.tabulation import Column, Row, Table
+
+__all__ = ["Findings", "findings"]
+
+_MOST_SHOWN = 24
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Findings:
+    """What the page says about the check.
+
+    Parameters
+    ----------
+    status : str
+        ``"passed"``, ``"failed"``, ``"stale"`` or ``"absent"``.
+    headline, sentence : str
+        The verdict in three words and in full.
+    tables : tuple of Table
+    """
+
+    status: str
+    headline: str
+    sentence: str
+    tables: tuple[Table, ...] = ()
+
+
+def findings(model: ComparatorModel, check: CheckReport | None) -> Findings:
+    """Return the outcome; a check of another model file does not speak for this one."""
+    if check is None:
+        return Findings(
+            status="absent", headline="Not checked yet",
+            sentence="No emitted text of this model has been compared with the reference in a "
+            "simulator yet. Next: behavgen check.",
+        )  # fmt: skip
+    tables = _tables(check)
+    if check.model_sha256 != hashlib.sha256(dump_model(model).encode()).hexdigest():
+        return Findings(
+            status="stale", headline="Check is out of date", tables=tables,
+            sentence="The last check was made with another version of this model file, so that its "
+            f"result ({_outcome(check)}) says nothing about this one. Next: behavgen check.",
+        )  # fmt: skip
+    status = "passed" if check.passed else "failed"
+    return Findings(status=status, headline=f"Check {status}", sentence=_sentence(check),
+                    tables=tables)  # fmt: skip
+
+
+def _outcome(check: CheckReport) -> str:
+    return "passed" if check.passed else "failed"
+
+
+def _sentence(check: CheckReport) -> str:
+    compared = f"{count_text(check.decisions)} decisions of the emitted text in {check.simulator}"
+    if check.passed:
+        return (
+            f"{compared} agree with the reference; the largest delay difference is "
+            f"{check.worst_delay_ticks} units of the time precision. "
+            f"{_count(len(check.benches), 'bench', 'benches')} passed and every stratum of the "
+            "stimulus was exercised as often as required."
+        )
+    faults = [
+        _count(sum(not b.passed for b in check.benches), "bench failed", "benches failed"),
+        _count(check.disagreement_count, "decision disagrees", "decisions disagree"),
+        _count(sum(map(_short, check.strata)), "stratum is too thin", "strata are too thin"),
+    ]
+    real = [fault for fault in faults if not fault.startswith("0 ")]
+    return f"{compared} were compared with the reference: {', '.join(real) or 'it did not pass'}."
+
+
+def _count(number: int, one: str, many: str) -> str:
+    return f"{count_text(number)} {one if number == 1 else many}"
+
+
+def _short(stratum: Stratum) -> bool:
+    return stratum.decisions < stratum.required
+
+
+def _tables(check: CheckReport) -> tuple[Table, ...]:
+    candidates = (
+        _disagreement_table(check),
+        _bench_table(check),
+        *(_stratum_table(group, [s for s in check.strata if s.group == group])
+          for group in dict.fromkeys(s.group for s in check.strata)),
+    )  # fmt: skip
+    return tuple(table for table in candidates if table is not None)
+
+
+def _bench_table(check: CheckReport) -> Table | None:
+    if not check.benches:
+        return None
+    rows = tuple(
+        Row(
+            cells=(bench.name, "✓ passed" if bench.passed else "✗ failed", bench.message or "–"),
+            mark="" if bench.passed else "bad",
+        )
+        for bench in check.benches
+    )
+    columns = (Column(title="bench"), Column(title="outcome"), Column(title="message"))
+    return Table(caption="Benches", columns=columns, rows=rows)
+
+
+def _stratum_table(group: str, strata: Sequence[Stratum]) -> Table:
+    columns = (Column(title=group), Column(title="decisions", numeric=True),
+               Column(title="required", numeric=True), Column(title="disagree", numeric=True),
+               Column(title="outcome"))  # fmt: skip
+    return Table(caption=f"Decisions by {group}", columns=columns,
+                 rows=tuple(map(_stratum_row, strata)))  # fmt: skip
+
+
+def _stratum_row(stratum: Stratum) -> Row:
+    faults = (["✗ too few"] if _short(stratum) else []) + (
+        ["✗ disagrees"] if stratum.disagreements else []
+    )
+    return Row(
+        cells=(stratum.name, count_text(stratum.decisions), count_text(stratum.required),
+               count_text(stratum.disagreements), ", ".join(faults) or "✓ enough, all agree"),
+        mark="bad" if faults else "",
+    )  # fmt: skip
+
+
+def _disagreement_table(check: CheckReport) -> Table | None:
+    if not check.disagreements:
+        return None
+    shown = check.disagreements[:_MOST_SHOWN]
+    titles = (("run", False), ("decision", True), ("time", True), ("conditions", False),
+              ("input", True), ("overdrive", True), ("what", False), ("expected", False),
+              ("got", False))  # fmt: skip
+    total = max(check.disagreement_count, len(check.disagreements))
+    return Table(
+        caption=f"Disagreements, {count_text(len(shown))} of {count_text(total)}",
+        columns=tuple(Column(title=t, numeric=n) for t, n in titles),
+        rows=tuple(Row(cells=_disagreement_cells(d), mark="bad") for d in shown),
+    )
+
+
+def _disagreement_cells(found: Disagreement) -> tuple[str, ...]:
+    return (
+        found.run, count_text(found.decision), si_text(found.time_s, "s", 6), found.conditions,
+        si_text(found.vdiff_v, "V", 4), si_text(found.overdrive_v, "V", 4), found.what,
+        found.expected, found.got,
+    )  # fmt: skip

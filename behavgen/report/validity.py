@@ -1,0 +1,116 @@
+"""Where each quantity was characterised, as bars across the cell's whole range."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from dataclasses import dataclass, replace
+
+from behavgen.model import Box, ComparatorModel, Range, Surface, Variant
+from behavgen.report.numbers import range_text
+
+__all__ = ["ValidityCell", "ValidityRow", "validity_rows"]
+
+CONDITIONS = (
+    ("vdd_v", "supply", "V"),
+    ("temperature_k", "temperature", "K"),
+    ("vcm_v", "common mode", "V"),
+    ("overdrive_v", "overdrive", "V"),
+)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ValidityCell:
+    """A range in words and as a bar (SVG; empty without a range)."""
+
+    text: str
+    bar: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ValidityRow:
+    """One quantity in one process or several processes that share a range."""
+
+    quantity: str
+    processes: str
+    cells: tuple[ValidityCell, ...]
+
+
+def validity_rows(model: ComparatorModel) -> tuple[ValidityRow, ...]:
+    """Return one row for the cell, then one for each quantity and distinct range."""
+    boxes = [("cell", "", model.box)]
+    for quantity, surface in _surfaces(model):
+        boxes += [(quantity, names, box) for box, names in _shared_boxes(surface)]
+    ends = {name: _union(getattr(box, name) for *_, box in boxes) for name, *_ in CONDITIONS}
+    return tuple(
+        ValidityRow(
+            quantity=quantity, processes=names,
+            cells=tuple(
+                _cell(getattr(box, name), ends[name], unit, quantity)
+                for name, _, unit in CONDITIONS
+            ),
+        )
+        for quantity, names, box in boxes
+    )  # fmt: skip
+
+
+def _surfaces(model: ComparatorModel) -> list[tuple[str, Surface]]:
+    found: list[tuple[str, Surface]] = []
+    if model.delay:
+        found.append(("delay", model.delay.tau))
+    if model.noise:
+        found.append(("noise", model.noise.surface))
+    if model.offset:
+        found.append(("offset", model.offset.surface))
+    if model.mismatch and model.mismatch.components:
+        found.append(("mismatch", model.mismatch.components[0]))
+    if model.reset:
+        found.append(("reset", model.reset.surface))
+    return found
+
+
+def _shared_boxes(surface: Surface) -> list[tuple[Box, str]]:
+    """Return distinct boxes with the processes that have them."""
+    names: dict[Box, list[str]] = {}
+    for variant in surface.variants:
+        names.setdefault(variant.box, []).append(_variant_words(variant))
+    if len(names) == 1 and len(surface.variants) == 1 and not surface.variants[0].scaled_from:
+        return [(box, "") for box in names]
+    return [(box, ", ".join(words)) for box, words in names.items()]
+
+
+def _variant_words(variant: Variant) -> str:
+    if not variant.scaled_from:
+        return variant.process
+    return f"{variant.process} (scaled from {variant.scaled_from})"
+
+
+def _union(spans: Iterable[Range | None]) -> Range | None:
+    known = [span for span in spans if span is not None]
+    if not known:
+        return None
+    return Range(low=min(s.low for s in known), high=max(s.high for s in known))
+
+
+def _cell(span: Range | None, ends: Range | None, unit: str, quantity: str) -> ValidityCell:
+    if span is None:
+        nothing = unit and quantity not in ("cell", "delay") and ends is not None
+        return ValidityCell(text="no influence" if nothing else "–", bar="")
+    return ValidityCell(text=range_text(span, unit), bar=_bar(span, ends or span))
+
+
+def _bar(span: Range, ends: Range) -> str:
+    """Draw a range inside the ends; overdrives, which span decades, by their logarithm."""
+    if ends.low > 0.0 and ends.high / ends.low > 100.0:
+        span, ends = (
+            replace(r, low=math.log(r.low), high=math.log(r.high)) for r in (span, ends)
+        )
+    width = ends.high - ends.low
+    start = 100.0 * (span.low - ends.low) / width if width > 0.0 else 0.0
+    length = 100.0 * (span.high - span.low) / width if width > 0.0 else 100.0
+    start, length = min(start, 98.0), max(length, 2.0)
+    return (
+        '<svg class="range" viewBox="0 0 100 6" preserveAspectRatio="none" aria-hidden="true">'
+        '<path class="rail" d="M0 3H100"/>'
+        f'<path class="extent" d="M{start:.1f} 3h{length:.1f}"/></svg>'
+    )

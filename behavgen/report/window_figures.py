@@ -1,0 +1,76 @@
+"""The metastable window: how wide the unresolved input interval is after a time."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from behavgen.model import ComparatorModel, Condition
+from behavgen.reference import Reference
+from behavgen.report.axes import PlotAxis, spanning
+from behavgen.report.charts import Chart, Line, Panel, draw_chart
+from behavgen.report.conditions import condition_words, shared_words
+from behavgen.report.curves import Curve, rms, worst
+from behavgen.report.figure import Figure
+from behavgen.report.numbers import percent_text
+from behavgen.report.overlay import (
+    drawn_curves,
+    overlay_legend,
+    overlay_panels,
+    spotlights,
+)
+
+__all__ = ["window_figure", "window_from_delay"]
+
+
+def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
+    """Return table and model over the resolve time, with the residuals under them."""
+    drawn = drawn_curves(members)
+    chosen = spotlights(drawn, middle, [float(c.x.max()) for c in drawn])
+    x = _time_axis(*(c.x for c in drawn))
+    y = _window_axis(*(c.y for c in drawn))
+    chart = Chart(
+        name="window", title="Unresolved window over resolve time",
+        description=f"{len(drawn)} conditions: markers are table rows, lines the emitted model.",
+        panels=overlay_panels(drawn, chosen, x, y),
+    )  # fmt: skip
+    caption = (
+        "Width of the input interval that is still unresolved at a time after the decision edge: "
+        "table rows and twice the overdrive whose delay in the emitted model is that time. "
+        f"Model against table: {percent_text(rms(members))} rms, "
+        f"{percent_text(worst(members))} at worst."
+    )
+    shared = shared_words([c.condition for c in members])
+    caption += f" All at {shared}." if shared else ""
+    return Figure(svg=draw_chart(chart), caption=caption, legend=overlay_legend(drawn, chosen))
+
+
+def window_from_delay(
+    model: ComparatorModel, reference: Reference, middle: Condition
+) -> Figure:
+    """Return the window that the delay alone implies, at the middle of the range."""
+    span = model.box.overdrive_v
+    largest = span.high if span else 0.1
+    smallest = span.low if span else 1e-6
+    overdrive = np.geomspace(smallest, largest, 41)[::-1]
+    time_s = reference.delay(overdrive)
+    x, y = _time_axis(time_s), _window_axis(2.0 * overdrive)
+    where = condition_words(middle)
+    chart = Chart(
+        name="window", title="Unresolved window over resolve time, from the delay alone",
+        description="No window table; the line is the emitted delay read the other way.",
+        panels=(Panel(x=x, y=y, layers=(Line(x=time_s, y=2.0 * overdrive),), height=250.0),),
+    )  # fmt: skip
+    caption = "No window table was given. The line is the emitted delay read the other way"
+    return Figure(svg=draw_chart(chart), caption=f"{caption}, at {where}." if where else caption + ".")
+
+
+def _time_axis(*times_s: np.ndarray) -> PlotAxis:
+    low, high = spanning(*times_s)
+    return PlotAxis(label="Time after the decision edge", unit="s", low=low, high=high)
+
+
+def _window_axis(*windows_v: np.ndarray) -> PlotAxis:
+    low, high = spanning(*windows_v, logarithmic=True)
+    return PlotAxis(label="Unresolved window", unit="V", low=low, high=high, logarithmic=True)

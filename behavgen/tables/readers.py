@@ -1,0 +1,240 @@
+"""Files -> raw frames: CSV, Parquet and Excel behind one face.
+
+A raw frame is lazy, holds the cells as the file has them, and numbers its rows
+by the line (or spreadsheet row) on which they stand, the header being line 1.
+"""
+
+from __future__ import annotations
+
+import glob
+import hashlib
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from behavgen.nearest import did_you_mean
+from behavgen.tables.csv_lines import CsvHeader, check_encoding, judge_lines, read_csv_header
+from behavgen.tables.faults import TableFaults
+
+if TYPE_CHECKING:
+    import polars as pl
+
+__all__ = ["LINE", "RawTable", "collect", "find_files", "open_table", "sha256_of"]
+
+LINE = "@line"
+"""Name of the raw frame's column of line numbers; no header reads like this."""
+
+_KINDS = (".csv", ".parquet", ".xlsx")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RawTable:
+    """One file, opened.
+
+    Parameters
+    ----------
+    path : Path
+        The file.
+    shown : str
+        Its name relative to the project, for messages.
+    headers : tuple of str
+        Column headers in the order of the file.
+    frame : polars.LazyFrame
+        Column ``"0"``, ``"1"``, ... for each header, and `LINE`.
+    csv_header : CsvHeader or None
+        Set for CSV files, whose rows may be too short or too long.
+    """
+
+    path: Path
+    shown: str
+    headers: tuple[str, ...]
+    frame: pl.LazyFrame
+    csv_header: CsvHeader | None = None
+
+
+def find_files(folder: Path, pattern: str, faults: TableFaults) -> tuple[Path, ...]:
+    """Return the files that a path or glob names, sorted, or note that there are none."""
+    literal = folder / pattern
+    if literal.is_file():
+        return (literal,)
+    if glob.has_magic(pattern):
+        names = sorted(glob.glob(pattern, root_dir=folder, recursive=True))  # noqa: PTH207
+        files = tuple(folder / name for name in names if (folder / name).is_file())
+        if not files:
+            faults.add(pattern, "no file matches", f"a pattern relative to {folder.name}/")
+        return files
+    around = literal.parent
+    siblings = sorted(item.name for item in around.iterdir()) if around.is_dir() else []
+    hint = did_you_mean(literal.name, siblings)
+    kind = "is a folder" if literal.is_dir() else f"no such file{hint}"
+    faults.add(pattern, kind, "a path or glob relative to the project file")
+    return ()
+
+
+def sha256_of(path: Path) -> str:
+    """Return the hash of a file's bytes."""
+    with path.open("rb") as file:
+        return hashlib.file_digest(file, "sha256").hexdigest()
+
+
+def open_table(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
+    """Open one file, or note why it cannot be.
+
+    Parameters
+    ----------
+    path : Path
+        The file.
+    shown : str
+        Its name for messages.
+    faults : TableFaults
+        Takes what is wrong.
+    """
+    kind = path.suffix.lower()
+    before = len(faults)
+    try:
+        if kind == ".csv":
+            table = _open_csv(path, shown, faults)
+        elif kind == ".parquet":
+            table = _open_parquet(path, shown, faults)
+        elif kind == ".xlsx":
+            table = _open_excel(path, shown, faults)
+        else:
+            faults.add(shown, f"'{path.suffix}' files are not read", f"one of {', '.join(_KINDS)}")
+            return None
+    except OSError as error:
+        faults.add(shown, f"cannot be read: {error.strerror or error}")
+        return None
+    if table is None or len(faults) > before:
+        return None
+    return table if _headers_differ(table, faults) else None
+
+
+def _headers_differ(table: RawTable, faults: TableFaults) -> bool:
+    named = [header for header in table.headers if header]
+    twice = sorted({header for header in named if named.count(header) > 1})
+    for header in twice:
+        faults.add(
+            table.shown,
+            f"{named.count(header)} columns have this header",
+            "headers that differ",
+            row=table.csv_header.line if table.csv_header else 1,
+            column=header,
+        )
+    return not twice
+
+
+def collect(
+    table: RawTable,
+    plan: Callable[[pl.LazyFrame], Sequence[pl.LazyFrame]],
+    faults: TableFaults,
+) -> list[pl.DataFrame] | None:
+    """Run queries on a raw table in one pass over the file.
+
+    Parameters
+    ----------
+    table : RawTable
+        The opened file.
+    plan : callable
+        Takes the raw frame, returns the queries.
+    faults : TableFaults
+        Takes what is wrong with the file as a whole, such as rows of a wrong length.
+
+    Returns
+    -------
+    list of polars.DataFrame or None
+        One result for each query; None when the file cannot be read.
+    """
+    import polars as pl  # noqa: PLC0415  (slow to load)
+
+    try:
+        return pl.collect_all(plan(table.frame), engine="streaming")
+    except pl.exceptions.PolarsError as error:
+        reason = str(error).splitlines()[0]
+    header = table.csv_header
+    if header is None or not check_encoding(table.path, table.shown, faults):
+        if header is None:
+            faults.add(table.shown, f"cannot be read: {reason}")
+        return None
+    judge_lines(table.path, table.shown, header, faults)
+    try:
+        return pl.collect_all(plan(_scan_csv(table.path, header, ragged=True)), engine="streaming")
+    except pl.exceptions.PolarsError:
+        faults.add(table.shown, f"cannot be read as CSV: {reason}")
+        return None
+
+
+def _open_csv(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
+    header = read_csv_header(path, shown, faults)
+    if header is None:
+        return None
+    frame = _scan_csv(path, header)
+    return RawTable(path=path, shown=shown, headers=header.names, frame=frame, csv_header=header)
+
+
+def _scan_csv(path: Path, header: CsvHeader, *, ragged: bool = False) -> pl.LazyFrame:
+    import polars as pl  # noqa: PLC0415  (slow to load)
+
+    scanned = pl.scan_csv(
+        path,
+        skip_lines=header.line - 1,
+        infer_schema=False,
+        truncate_ragged_lines=ragged,
+        row_index_name=LINE,
+        row_index_offset=header.line + 1,
+    )
+    return _numbered(scanned)
+
+
+def _open_parquet(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
+    import polars as pl  # noqa: PLC0415  (slow to load)
+
+    try:
+        scanned = pl.scan_parquet(path, row_index_name=LINE, row_index_offset=2)
+        headers = tuple(name for name in scanned.collect_schema().names() if name != LINE)
+    except pl.exceptions.PolarsError as error:
+        faults.add(shown, f"cannot be read as Parquet: {str(error).splitlines()[0]}")
+        return None
+    return RawTable(path=path, shown=shown, headers=headers, frame=_numbered(scanned))
+
+
+def _numbered(scanned: pl.LazyFrame) -> pl.LazyFrame:
+    """Name columns by position: headers may hold anything."""
+    names = [name for name in scanned.collect_schema().names() if name != LINE]
+    return scanned.rename({name: str(index) for index, name in enumerate(names)})
+
+
+def _open_excel(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
+    import polars as pl  # noqa: PLC0415  (slow to load)
+    from python_calamine import CalamineError, load_workbook  # noqa: PLC0415
+
+    try:
+        with load_workbook(path) as book:
+            rows = book.get_sheet_by_index(0).to_python(skip_empty_area=False)
+    except CalamineError as error:
+        faults.add(shown, f"cannot be read as an Excel file: {error}")
+        return None
+    texts = [[_cell_text(cell) for cell in row] for row in rows]
+    first = next((number for number, row in enumerate(texts) if any(row)), None)
+    if first is None:
+        faults.add(shown, "empty first sheet", "a header row and one row for each measurement")
+        return None
+    headers = tuple((header or "").strip() for header in texts[first])
+    cells = {
+        str(index): pl.Series([row[index] for row in texts[first + 1 :]], dtype=pl.String)
+        for index in range(len(headers))
+    }
+    frame = pl.LazyFrame(cells).with_row_index(LINE, offset=first + 2)
+    frame = frame.filter(~pl.all_horizontal(pl.exclude(LINE).is_null()))
+    return RawTable(path=path, shown=shown, headers=headers, frame=frame)
+
+
+def _cell_text(cell: object) -> str | None:
+    """Return a spreadsheet cell as text: 27.0 is written 27, an empty cell is None."""
+    if cell is None or cell == "":
+        return None
+    if isinstance(cell, bool):
+        return str(int(cell))
+    if isinstance(cell, float):
+        return str(int(cell)) if cell.is_integer() and abs(cell) < 1e15 else repr(cell)
+    return str(cell)
