@@ -8,6 +8,8 @@ from collections.abc import Sequence
 
 from behavgen.cli.parser import Options, command_module, parse
 
+# Everything else is imported where it is needed: --help needs none of it.
+
 __all__ = ["main"]
 
 INTERRUPTED = 130
@@ -29,32 +31,45 @@ def main(arguments: Sequence[str] | None = None) -> int:
         130 when interrupted, 70 for a bug.
     """
     words = list(sys.argv[1:] if arguments is None else arguments)
-    # A mistake in the command line is told in the manner that the rest of it asks for.
+    # Even a command line that is not understood is answered in the manner it asks for.
     options = Options(json="--json" in words, verbose="-v" in words or "--verbose" in words)
     try:
-        return _run(words, options)
+        parse(words, options)
+        return _run(options)
     except SystemExit as leave:  # argparse, after a help text
         return int(leave.code or 0)
-    except KeyboardInterrupt:
-        _complain(options, "behavgen: interrupted; no file was left half-written")
-        return INTERRUPTED
-    except Exception as error:  # noqa: BLE001  whatever it is, a user gets two lines
-        return _bug(error, options)
+    except (Exception, KeyboardInterrupt) as error:
+        return _failed(error, options)
 
 
-def _run(words: Sequence[str], options: Options) -> int:
-    parse(words, options)
-    # What follows is not for --help, which must cost nothing.
+def _run(options: Options) -> int:
+    from behavgen.cli.terminal import Terminal  # noqa: PLC0415
+    from behavgen.cli.verdict import finish  # noqa: PLC0415
+
+    terminal = Terminal(options)
+    return finish(command_module(options.command).run(options, terminal), options, terminal)
+
+
+def _failed(error: BaseException, options: Options) -> int:
+    """Tell what went wrong, in as few lines as that takes."""
     from behavgen.cli.terminal import Terminal  # noqa: PLC0415
     from behavgen.cli.verdict import Outcome, finish  # noqa: PLC0415
     from behavgen.errors import BehavgenError  # noqa: PLC0415
 
     terminal = Terminal(options)
-    try:
-        outcome = command_module(options.command).run(options, terminal)
-    except BehavgenError as error:
-        outcome = Outcome(errors=(error,))
-    return finish(outcome, options, terminal)
+    if isinstance(error, BehavgenError):
+        return finish(Outcome(errors=(error,)), options, terminal)
+    if isinstance(error, KeyboardInterrupt):
+        terminal.complain("behavgen: interrupted; no file is half-written")
+        return INTERRUPTED
+    terminal.complain(f"behavgen: this is a bug: {type(error).__name__}: {error}")
+    if options.verbose or os.environ.get("BEHAVGEN_DEBUG"):
+        from traceback import format_exception  # noqa: PLC0415
+
+        terminal.complain("".join(format_exception(error)).rstrip())
+    else:
+        terminal.complain("please report it; -v shows where it happened")
+    return BUG
 
 
 if __name__ == "__main__":

@@ -4,7 +4,7 @@
     fitted  = fit_cell(place)
     emitted = emit_cell(fitted)
     checked = check_cell(emitted)
-    page    = report_cell(emitted, current_check(emitted))
+    page    = report_cell(emitted, current_check(place))
 
 Every step returns what the next one needs, whether it was made now or read
 back from the cell's output folder. The heavy parts are imported by the step
@@ -15,6 +15,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from glob import glob, has_magic
 from itertools import count
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -121,10 +122,11 @@ class EmittedCell:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class CheckedCell:
-    """A cell with the verdict on its emitted model; `made` tells that it was simulated now."""
+    """A cell with the verdict on a model of it; `made` tells that it was simulated now."""
 
-    emitted: EmittedCell
+    place: CellPlace
     report: CheckReport
+    folder: Path
     made: bool
 
 
@@ -191,33 +193,32 @@ def check_cell(emitted: EmittedCell, *, jobs: int = 2, progress: Progress = None
     ToolError
         When no simulator is found.
     """
-    known = current_check(emitted)
-    if known is not None:
-        return CheckedCell(emitted=emitted, report=known, made=False)
     place = emitted.place
+    folder = place.check_file.parent
+    known = current_check(place)
+    if known is not None:
+        return CheckedCell(place=place, report=known, folder=folder, made=False)
     from behavgen.check.check import check  # noqa: PLC0415  cocotb
 
     report = check(
-        emitted.model, emitted.systemverilog, folder=place.check_file.parent, jobs=jobs,
-        progress=progress,
-    )  # fmt: skip
+        emitted.model, emitted.systemverilog, folder=folder, jobs=jobs, progress=progress
+    )
     _check_step(place).write({CHECK_FILE: dump_check_report(report)})
-    return CheckedCell(emitted=emitted, report=report, made=True)
+    return CheckedCell(place=place, report=report, folder=folder, made=True)
 
 
-def current_check(emitted: EmittedCell) -> CheckReport | None:
-    """Return what the last check said, or None when it was not about these files."""
-    if not _check_step(emitted.place).is_current():
-        return None
-    return load_check_report(emitted.place.check_file)
+def current_check(place: CellPlace) -> CheckReport | None:
+    """Return what the last check said, or None when it was not about the present files."""
+    return load_check_report(place.check_file) if _check_step(place).is_current() else None
 
 
 def check_given_file(
     fitted: FittedCell, file: Path, *, jobs: int = 2, progress: Progress = None
-) -> CheckReport:
+) -> CheckedCell:
     """Simulate a SystemVerilog file of the user's against the reference.
 
-    Its logs lie in a folder of their own; nothing is noted, since it is no step of the cell.
+    It leaves its logs in a folder of their own and is no step of the cell: it is
+    done again whenever it is asked for.
 
     Raises
     ------
@@ -235,13 +236,12 @@ def check_given_file(
             file=str(file), what=f"cannot be read: {error}", allowed="a SystemVerilog file in UTF-8"
         )
         raise ProjectError(fault) from error
-    folder = fitted.place.folder / "check-of-given-file"
-    report = check(
-        fitted.model, EmittedFile(path=file.name, text=text), folder=folder, jobs=jobs,
-        progress=progress,
-    )  # fmt: skip
+    place = fitted.place
+    folder = place.folder / "check-of-given-file"
+    given = EmittedFile(path=file.name, text=text)
+    report = check(fitted.model, given, folder=folder, jobs=jobs, progress=progress)
     write_whole(folder / "check.json", dump_check_report(report))
-    return report
+    return CheckedCell(place=place, report=report, folder=folder, made=True)
 
 
 def report_cell(emitted: EmittedCell, checked: CheckReport | None) -> ReportedCell:
@@ -277,11 +277,18 @@ _UPSTREAM = ((), (0,), (0, 1), (0, 1))
 def _fit_step(place: CellPlace) -> Step:
     root = place.project.file.parent
     tables = {
-        file.as_posix(): sha256_of_file(file)
+        name: sha256_of_file(root / name)
         for table in place.settings.tables
-        for file in table_files(root, table.file)
+        for name in (table.file, *_matches(root, table.file))
     }
     return place.step("fit", place.settings, place.project.corners, tables)
+
+
+def _matches(root: Path, pattern: str) -> list[str]:
+    """Return the files of a glob; the table reader, which knows more, is slow to import."""
+    if not has_magic(pattern):
+        return []
+    return glob(pattern, root_dir=root, recursive=True)  # noqa: PTH207  absolute ones too
 
 
 def _emit_step(place: CellPlace) -> Step:

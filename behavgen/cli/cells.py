@@ -2,26 +2,156 @@
 
 from __future__ import annotations
 
-import os
 import shlex
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
-from behavgen.cli.parser import Options
+from behavgen.cli.parser import Options, Parser
 from behavgen.cli.terminal import Terminal
 from behavgen.cli.verdict import Outcome
-from behavgen.errors import BehavgenError, Fault, ProjectError
+from behavgen.errors import BehavgenError, Fault, ProjectError, ToolError
 from behavgen.nearest import did_you_mean
 from behavgen.pipeline import CellPlace
 from behavgen.project import CellSettings, Project, load_project
 
 __all__ = [
     "CellResult",
+    "CellsDone",
     "add_cells_argument",
+    "chosen_places",
     "command_line",
-    "count_of",
     "each_cell",
-    "places",
-    "shown_path",
+    "number_of",
 ]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CellResult:
+    """What a command has to say of one cell.
+
+    Parameters
+    ----------
+    lines, more : sequence of str
+        Printed always, and only with ``-v``.
+    data : mapping
+        For ``--json``, plain values only.
+    agrees : bool
+        False when a check failed.
+    warnings : tuple of str
+        What ``--strict`` does not let pass.
+    """
+
+    lines: Sequence[str]
+    more: Sequence[str] = ()
+    data: Mapping[str, object] = field(default_factory=dict)
+    agrees: bool = True
+    warnings: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CellsDone:
+    """The results of the cells that went well, and the errors of the others."""
+
+    results: Mapping[str, CellResult]
+    errors: tuple[BehavgenError, ...]
+
+    def outcome(self, options: Options, *, done: str, then: str) -> Outcome:
+        """Return how the command ends.
+
+        Parameters
+        ----------
+        options : Options
+        done : str
+            What happened to the cells, as in ``"2 cells fitted"``.
+        then : str
+            The next step when nothing went wrong.
+        """
+        total = len(self.results) + len(self.errors)
+        share = f"{len(self.results)} of {number_of(total, 'cell')}"
+        against = tuple(name for name, result in self.results.items() if not result.agrees)
+        return Outcome(
+            said=f"{share if self.errors else number_of(total, 'cell')} {done}",
+            next_step=_mend(self.errors, options) if self.errors else then,
+            data={"cells": {name: dict(result.data) for name, result in self.results.items()}},
+            errors=self.errors,
+            disagreements=against,
+            warnings=tuple(
+                f"{name}: {text}" for name, r in self.results.items() for text in r.warnings
+            ),
+            shows_results=bool(self.results),
+        )
+
+
+def add_cells_argument(parser: Parser) -> None:
+    """Let a command take cell names."""
+    parser.add_argument("cells", nargs="*", metavar="CELL", help="all cells when none is named")
+
+
+def chosen_places(options: Options) -> list[CellPlace]:
+    """Return the cells asked for, in the project's order.
+
+    Raises
+    ------
+    ProjectError
+        When the project file is faulty or has no such cell.
+    """
+    project = load_project(Path(options.folder))
+    names = [cell.name for cell in project.cells]
+    faults = [_unknown(name, names, project) for name in options.cells if name not in names]
+    if faults:
+        raise ProjectError(*faults)
+    wanted = set(options.cells or names)
+    return [
+        CellPlace(project=project, settings=cell) for cell in project.cells if cell.name in wanted
+    ]
+
+
+def each_cell(
+    options: Options, terminal: Terminal, work: Callable[[CellPlace], CellResult]
+) -> CellsDone:
+    """Do the work on each cell and print its lines; the fault of one does not stop the others."""
+    results: dict[str, CellResult] = {}
+    errors: list[BehavgenError] = []
+    for place in chosen_places(options):
+        try:
+            result = results[place.name] = work(place)
+        except BehavgenError as error:
+            errors.append(error)
+            continue
+        _print_block(place.settings, result, terminal)
+    return CellsDone(results=results, errors=tuple(errors))
+
+
+def command_line(options: Options, command: str) -> str:
+    """Return the command line that does another command on the same cells."""
+    where = ("-C", options.folder) if options.folder != Options.folder else ()
+    return shlex.join(("behavgen", *where, command, *options.cells))
+
+
+def number_of(count: int, what: str) -> str:
+    """Write a count with its noun: ``1 cell``, ``2 cells``."""
+    return f"{count} {what}" if count == 1 else f"{count} {what}s"
+
+
+def _print_block(cell: CellSettings, result: CellResult, terminal: Terminal) -> None:
+    terminal.say(f"{terminal.paint(cell.name, 'strong')}   {cell.description}".rstrip())
+    for line in result.lines:
+        terminal.say(line)
+    for line in result.more:
+        terminal.say_more(line)
+    terminal.flush()
+
+
+def _unknown(name: str, names: Sequence[str], project: Project) -> Fault:
+    return Fault(
+        file=project.file.name,
+        what=f"no cell '{name}'{did_you_mean(name, names)}",
+        allowed=f"cells: {', '.join(names)}",
+    )
+
+
+def _mend(errors: Sequence[BehavgenError], options: Options) -> str:
+    if all(isinstance(error, ToolError) for error in errors):
+        return "behavgen tools"
+    return f"mend what stands above, then {command_line(options, options.command)}"

@@ -110,7 +110,8 @@ def aligned(rows: Sequence[Sequence[str]], *, indent: int = 2) -> list[str]:
         max((len(row[i]) for row in rows if i < len(row) - 1), default=0) for i in range(count)
     ]
     return [
-        " " * indent + "  ".join(cell.ljust(w) for cell, w in zip(row, widths, strict=False)).rstrip()
+        " " * indent
+        + "  ".join(cell.ljust(w) for cell, w in zip(row, widths, strict=False)).rstrip()
         for row in rows
     ]
 
@@ -123,7 +124,7 @@ def _wants_colour(choice: str, stream: TextIO) -> bool:
 
 
 def _never_refuse_a_character(stream: TextIO) -> None:
-    """A name that stdout's encoding cannot show is escaped: no result is lost for it."""
+    """Escape what the stream's encoding cannot show: no result is lost for it."""
     reconfigure = getattr(stream, "reconfigure", None)
     if reconfigure is not None:
         reconfigure(errors="backslashreplace")

@@ -92,9 +92,7 @@ def finish(outcome: Outcome, options: Options, terminal: Terminal) -> int:
     return exit_code
 
 
-def _verdict_line(
-    outcome: Outcome, options: Options, terminal: Terminal, *, passed: bool
-) -> str:
+def _verdict_line(outcome: Outcome, options: Options, terminal: Terminal, *, passed: bool) -> str:
     mark = terminal.paint("OK", "good") if passed else terminal.paint("NOT OK", "bad")
     said = outcome.said
     if options.strict and outcome.warnings:

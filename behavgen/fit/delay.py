@@ -247,7 +247,11 @@ def _padded(rows: ResolvedRows, sites: Sites) -> DelayRows:
 
 def _effect(law: LawFit, family: SurfaceFamily, measured: str) -> DelayEffect:
     errors = family.left_out[np.isfinite(family.left_out).all(axis=-1)]
-    variances = np.mean(errors**2, axis=0)
+    if len(errors):
+        variances = np.mean(errors**2, axis=0)
+    else:
+        own = np.diagonal(law.covariance, axis1=-2, axis2=-1) / law.parameters**2
+        variances = own.mean(axis=0)
     surfaces = [
         family.surface(k, "s", "log", float(variances[k])) for k in range(law.parameters.shape[-1])
     ]

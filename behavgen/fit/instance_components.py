@@ -23,9 +23,12 @@ Booleans = npt.NDArray[np.bool_]
 FEWEST_SHARED = 3
 """Instances a condition must share with the reference before it is compared with it."""
 
-_MAX_SWEEPS = 5000
-_SETTLED = 1e-10
+_MAX_SWEEPS = 3000
+_SETTLED = 1e-9
 """Change of the covariance in a sweep, relative to its largest variance."""
+
+_RIDGE = 1e-12
+"""Keeps perfectly correlated conditions invertible; relative to their variances."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -108,7 +111,7 @@ def instance_components(
     shift_v, low_v, high_v = _shifts(offset_v - offset_v[:, [reference]], compared, level)
     mean_v[compared] = mean_v[reference] + shift_v[compared]
     noise_v2 = np.broadcast_to(np.asarray(measurement_variance_v2, dtype=float), compared.shape)
-    between_v2 = _covariance(offset_v[:, compared]) - np.diag(noise_v2[compared])
+    between_v2 = _covariance(offset_v[np.ix_(seen[:, compared].any(axis=1), compared)]) - np.diag(noise_v2[compared])
     factors, share = _factors(between_v2)
     loadings_v = np.full((compared.size, share.size), np.nan)
     loadings_v[compared] = factors
@@ -152,20 +155,21 @@ def _covariance(offset_v: Floats) -> Floats:
     Squares are divided by ``I - 1``, so that a sample without gaps gets its
     usual covariance.
     """
-    seen = ~np.isnan(offset_v)
-    offset_v, seen = offset_v[seen.any(axis=1)], seen[seen.any(axis=1)]
-    patterns, pattern = np.unique(seen, axis=0, return_inverse=True)
+    patterns, pattern, count = np.unique(
+        ~np.isnan(offset_v), axis=0, return_inverse=True, return_counts=True
+    )
+    both = patterns[:, :, None] & patterns[:, None, :]
+    gaps = np.eye(patterns.shape[1]) * ~patterns[:, None, :]
     mean = _means(offset_v)
     covariance = np.diag(_means(np.square(offset_v - mean)))
     for _ in range(_MAX_SWEEPS):
-        filled, hidden = offset_v - mean, np.zeros_like(covariance)
-        for i, there in enumerate(patterns):
-            gap, rows = ~there, pattern.ravel() == i
-            slopes = np.linalg.pinv(covariance[np.ix_(there, there)], hermitian=True)
-            slopes = slopes @ covariance[np.ix_(there, gap)]
-            filled[np.ix_(rows, gap)] = filled[np.ix_(rows, there)] @ slopes
-            left = covariance[np.ix_(gap, gap)] - covariance[np.ix_(gap, there)] @ slopes
-            hidden[np.ix_(gap, gap)] += rows.sum() * left
+        ridge = np.diag(_RIDGE * covariance.diagonal())
+        # The inverse of what each pattern shows, zero where it has gaps.
+        inverse = np.where(both, np.linalg.inv(both * (covariance + ridge) + gaps), 0.0)
+        slopes = inverse @ covariance
+        known = np.nan_to_num(offset_v - mean)
+        filled = (known[:, None, :] @ slopes[pattern.ravel()])[:, 0]
+        hidden = np.tensordot(count, covariance - covariance @ slopes, axes=1)
         mean = mean + filled.mean(axis=0)
         filled = filled - filled.mean(axis=0)
         previous, covariance = covariance, (filled.T @ filled + hidden) / (len(filled) - 1)

@@ -163,8 +163,8 @@ def outliers(
     alpha : float
         Probability that a clean sample is said to hold any.
     most : int, optional
-        Largest number looked for; default a tenth of the sample, at least 1.
-        Samples below 3 have none.
+        Largest number looked for; default a tenth of the sample, at least 1
+        and at most 20. Samples below 3 have none.
 
     Returns
     -------
@@ -176,7 +176,8 @@ def outliers(
     left = np.arange(n)
     removed: list[int] = []
     found = 0
-    for i in range(1, min(max(n // 10, 1) if most is None else most, n - 2) + 1):
+    wanted = min(max(n // 10, 1), 20) if most is None else most
+    for i in range(1, min(wanted, n - 2) + 1):
         away = np.abs(x[left] - x[left].mean())
         spread = x[left].std(ddof=1)
         if spread == 0.0:

@@ -3,7 +3,8 @@
 The law is linear in its parameters (`formulas.node_law`), so all conditions
 are fitted in one batch of weighted linear least squares without starting
 values. Errors count relative to the delay. How many nodes, and from which
-overdrive on, is chosen by leaving rows out, in closed form.
+overdrive on, is chosen by generalised cross-validation (P. Craven, G. Wahba, Numer. Math.
+31, 1979, 377-403), which does not mistake sparse ends for bad laws.
 """
 
 from __future__ import annotations
@@ -25,10 +26,12 @@ _FIRST_NODE_SHARES = (0.3, 0.1, 0.03, 0.01, 0.003, 0.001, 0.0003)
 """Candidates for the first node's overdrive as a share of the largest one."""
 _ROUGHNESS = 1e-3
 """Weight of bends against relative errors: only speaks where no data do."""
-_WORTH_A_NODE = 1.15
-"""More nodes must lower the left-out error by this factor."""
+_AS_GOOD = 1.1
+"""Laws whose left-out error is within this factor of the best are as good as it."""
+_AS_LOGARITHMIC = 1.02
+"""The same for the law with two parameters."""
 _NEGLIGIBLE = 1e-3
-"""Left-out relative error below which no further node is worth its cost."""
+"""Left-out relative error below which nothing is gained any more."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -125,7 +128,7 @@ def fit_law(rows: DelayRows) -> LawFit:
         for s in solutions
     ]  # fmt: skip
     order = sorted(range(len(trials)), key=lambda i: trials[i].left_out)
-    chosen = _simplest(trials, order)
+    chosen = _preferred(trials)
     others = [i for i in order if trials[i].nodes != trials[chosen].nodes]
     solution = solutions[chosen]
     parameters = _monotone(rows, solution)
@@ -142,11 +145,19 @@ def fit_law(rows: DelayRows) -> LawFit:
     )
 
 
-def _simplest(trials: list[LawTrial], order: list[int]) -> int:
-    """Return the trial with the fewest nodes whose error is about the best."""
-    enough = max(trials[order[0]].left_out * _WORTH_A_NODE, _NEGLIGIBLE)
-    good = [i for i in order if trials[i].left_out <= enough]
-    return min(good, key=lambda i: (trials[i].nodes, trials[i].left_out))
+def _preferred(trials: list[LawTrial]) -> int:
+    """Return the logarithmic law if it is as good as any, else the one that is straight longest.
+
+    Metastability extrapolates the tail over many decades: of laws as good as
+    the best, the one whose tail starts lowest bends it least; of those, the
+    one with the fewest nodes.
+    """
+    best = min(trial.left_out for trial in trials)
+    enough = max(best * _AS_GOOD, _NEGLIGIBLE)
+    good = [i for i, trial in enumerate(trials) if trial.left_out <= enough]
+    if trials[0].left_out <= max(best * _AS_LOGARITHMIC, _NEGLIGIBLE):
+        return 0
+    return min(good, key=lambda i: (trials[i].first_node_v, trials[i].nodes))
 
 
 def _candidates(rows: DelayRows) -> list[Floats]:
@@ -176,13 +187,13 @@ def _solve(rows: DelayRows, log_node: Floats) -> _Solution:
     parameters = (inverse @ scaled.transpose(0, 2, 1) @ root[..., None])[..., 0]
     residual = (scaled @ parameters[..., None])[..., 0] - root
     leverage = np.einsum("crk,ckl,crl->cr", scaled, inverse, scaled, optimize=True)
-    left_out = residual / np.maximum(1.0 - leverage, 1e-6)
     used = np.maximum((rows.weight > 0.0).sum(axis=-1), 1)
-    freedom = np.maximum(rows.weight.sum(axis=-1) - leverage.sum(axis=-1), 1.0)
+    freedom = np.maximum(used - leverage.sum(axis=-1), 1.0)
+    variance = (residual**2).sum(axis=-1) / freedom
     return _Solution(
         log_node=log_node, parameters=parameters, inverse=inverse, scaled=scaled,
-        left_out_rms=np.sqrt((left_out**2).sum(axis=-1) / used),
-        residual_variance=(residual**2).sum(axis=-1) / freedom,
+        left_out_rms=np.sqrt(variance * used / freedom),
+        residual_variance=variance,
     )  # fmt: skip
 
 

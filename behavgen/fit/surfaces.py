@@ -230,6 +230,8 @@ def choose_by_left_out(
     terms = _terms(candidates)
     best = _simplest(_cost(single, metric).mean(axis=-1), terms)
     left_out = _nested(smoother, residual, single, metric, terms) if nested else single[best]
+    if len(values) == 1:
+        left_out = np.full_like(targets, np.nan)
     return _finished(candidates, best, values, targets, weights, left_out)
 
 

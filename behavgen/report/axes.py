@@ -8,15 +8,12 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from behavgen.report.numbers import si_text, typographic
-from behavgen.units import SI_PREFIXES
+from behavgen.report.numbers import PREFIX, si_text, typographic
 
 __all__ = ["PlotAxis", "Tick", "axis_title", "spanning", "symmetric", "ticks"]
 
 Floats = npt.NDArray[np.float64]
 
-_PREFIX = {power: text for text, power in SI_PREFIXES.items() if text.isascii()}
-_PREFIX.update({0: "", -6: "µ"})
 _UNPREFIXED = ("", "1", "%", "σ")
 
 
@@ -92,7 +89,7 @@ def axis_title(axis: PlotAxis) -> str:
     """Return label and unit; a logarithmic axis has its units at the ticks."""
     if axis.logarithmic or axis.unit in ("", "1"):
         return axis.label
-    return f"{axis.label} ({_PREFIX[_axis_power(axis)]}{axis.unit})"
+    return f"{axis.label} ({PREFIX[_axis_power(axis)]}{axis.unit})"
 
 
 def _axis_power(axis: PlotAxis) -> int:
@@ -100,7 +97,7 @@ def _axis_power(axis: PlotAxis) -> int:
         return 0
     largest = max(abs(axis.low), abs(axis.high))
     power = 3 * math.floor(math.log10(largest) / 3) if largest > 0.0 else 0
-    return min(max(power, min(_PREFIX)), max(_PREFIX))
+    return min(max(power, min(PREFIX)), max(PREFIX))
 
 
 def _linear_ticks(axis: PlotAxis) -> tuple[Tick, ...]:
@@ -132,5 +129,7 @@ def _log_ticks(axis: PlotAxis) -> tuple[Tick, ...]:
             if not axis.low * (1.0 - 1e-9) <= value <= axis.high * (1.0 + 1e-9):
                 continue
             shown = factor in labelled and power % stride == 0
+            if stride > 1 and factor > 1:
+                continue
             found.append(Tick(value=value, label=si_text(value, axis.unit) if shown else ""))
     return tuple(found)

@@ -22,15 +22,15 @@ __all__ = ["MARKERS", "Band", "Chart", "Dots", "Layer", "Line", "Panel", "draw_c
 Floats = npt.NDArray[np.float64]
 
 MARKERS = {
-    "dot": "h0",
-    "square": "m-2.6-2.6h5.2v5.2h-5.2z",
-    "triangle": "m0-3.6l3.4 6h-6.8z",
-    "diamond": "m0-3.8l3.6 3.8-3.6 3.8-3.6-3.8z",
-    "cross": "m-2.7-2.7l5.4 5.4m0-5.4l-5.4 5.4",
-    "plus": "m-3.4 0h6.8m-3.4-3.4v6.8",
-    "speck": "h0",
+    "dot": (0.0, 0.0, "h0"),
+    "square": (-2.5, -2.5, "h5v5h-5z"),
+    "triangle": (0.0, -3.5, "l3 6h-6z"),
+    "diamond": (0.0, -3.5, "l3.5 3.5-3.5 3.5-3.5-3.5z"),
+    "cross": (-2.5, -2.5, "l5 5m0-5l-5 5"),
+    "plus": (-3.0, 0.0, "h6m-3-3v6"),
+    "speck": (0.0, 0.0, "h0"),
 }
-"""Name to the relative path drawn at each point."""
+"""Name to where the stroke starts, seen from the point, and how it goes on."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -103,6 +103,8 @@ class Chart:
     bottom: float = 46.0
 
 
+_INVISIBLE = 0.12
+"""Of a unit of the drawing."""
 _RIGHT = 14.0
 _ABOVE = 24.0
 
@@ -127,7 +129,8 @@ def swatch(style: str, marker: str = "", line: bool = True) -> str:
     """Return a small sample of a series for a legend."""
     parts = [f'<path class="line {style}" d="M1 7H27"/>'] if line else []
     if marker:
-        parts.append(f'<path class="{_marker_class(marker)} {style}" d="M14 7{MARKERS[marker]}"/>')
+        d = _marks(marker, [14.0], [7.0])
+        parts.append(f'<path class="{_marker_class(marker)} {style}" d="{d}"/>')
     return f'<svg class="swatch" viewBox="0 0 28 14" aria-hidden="true">{"".join(parts)}</svg>'
 
 
@@ -205,9 +208,15 @@ def _draw_dots(panel: Panel, dots: Dots, width: float, height: float) -> str:
         bars = (f"M{_n(a)} {_n(b)}V{_n(c)}" for a, b, c in zip(x, low, high, strict=True))
         text = _path(f"bar {dots.style}", "".join(bars))
     x, y = _pixels(panel, dots.x, dots.y, width, height)
-    mark = MARKERS[dots.marker]
-    d = "".join(f"M{_n(a)} {_n(b)}{mark}" for a, b in zip(x, y, strict=True))
-    return text + _path(f"{_marker_class(dots.marker)} {dots.style}", d, dots.title)
+    style = f"{_marker_class(dots.marker)} {dots.style}"
+    return text + _path(style, _marks(dots.marker, x, y), dots.title)
+
+
+def _marks(marker: str, x: Iterable[float], y: Iterable[float]) -> str:
+    across, along, stroke = MARKERS[marker]
+    return "".join(
+        f"M{_n(a + across)} {_n(b + along)}{stroke}" for a, b in zip(x, y, strict=True)
+    )
 
 
 def _marker_class(marker: str) -> str:
@@ -227,8 +236,20 @@ def _pixels(
 def _polyline(x: Floats, y: Floats) -> str:
     if len(x) == 0:
         return ""
-    points = [f"{_n(a)} {_n(b)}" for a, b in zip(x, y, strict=True)]
-    return "M" + "L".join(points)
+    return "M" + "L".join(f"{_n(x[i])} {_n(y[i])}" for i in _corners(x, y))
+
+
+def _corners(x: Floats, y: Floats) -> list[int]:
+    """Return the points of a line without which it would look different."""
+    kept = [0]
+    for end in range(2, len(x)):
+        start = kept[-1]
+        dx, dy = x[end] - x[start], y[end] - y[start]
+        inside = slice(start + 1, end)
+        distance = dx * (y[inside] - y[start]) - dy * (x[inside] - x[start])
+        if np.max(np.abs(distance)) > _INVISIBLE * np.hypot(dx, dy):
+            kept.append(end - 1)
+    return kept if len(x) == 1 else [*kept, len(x) - 1]
 
 
 def _path(style: str, d: str, title: str = "") -> str:

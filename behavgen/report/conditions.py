@@ -6,7 +6,7 @@ from collections.abc import Iterable, Sequence
 from typing import Any
 
 from behavgen.model import ComparatorModel, Condition, Range
-from behavgen.report.numbers import si_text, temperature_text
+from behavgen.report.numbers import temperature_text, volts_text
 from behavgen.units import ZERO_CELSIUS_K
 
 __all__ = [
@@ -38,13 +38,13 @@ def field_text(condition: Condition, name: str) -> str:
         return "–"
     if name == "process":
         return str(value)
-    return temperature_text(value) if name == "temperature_k" else si_text(value, "V", 4)
+    return temperature_text(value) if name == "temperature_k" else volts_text(value)
 
 
 def condition_words(condition: Condition, names: Iterable[str] = FIELDS) -> str:
-    """Write a condition in one line, e.g. ``tt, 1.8 V, 27 °C, common mode 0.95 V``."""
+    """Write a condition in one line, e.g. ``tt, 1.8 V, 27 °C, vcm 0.95 V``."""
     parts = [
-        ("common mode " if name == "vcm_v" else "") + field_text(condition, name)
+        ("vcm\N{NO-BREAK SPACE}" if name == "vcm_v" else "") + field_text(condition, name)
         for name in names
         if getattr(condition, name) not in (None, "")
     ]
@@ -60,7 +60,8 @@ def shared_words(conditions: Sequence[Condition]) -> str:
     """Write the parts that all conditions share; empty when there are none."""
     varying = varying_fields(conditions)
     shared = [name for name in FIELDS if name not in varying]
-    return condition_words(conditions[0], shared) if conditions else ""
+    words = condition_words(conditions[0], shared) if conditions else ""
+    return f"process {words}" if words and shared == ["process"] else words
 
 
 def middle_condition(model: ComparatorModel) -> Condition:

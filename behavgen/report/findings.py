@@ -27,12 +27,15 @@ class Findings:
     headline, sentence : str
         The verdict in three words and in full.
     tables : tuple of Table
+    hashes : tuple of (str, str)
+        What was checked, and its SHA-256.
     """
 
     status: str
     headline: str
     sentence: str
     tables: tuple[Table, ...] = ()
+    hashes: tuple[tuple[str, str], ...] = ()
 
 
 def findings(model: ComparatorModel, check: CheckReport | None) -> Findings:
@@ -44,15 +47,17 @@ def findings(model: ComparatorModel, check: CheckReport | None) -> Findings:
             "simulator yet. Next: behavgen check.",
         )  # fmt: skip
     tables = _tables(check)
+    hashes = (("model file", check.model_sha256), ("emitted text", check.emitted_sha256))
     if check.model_sha256 != hashlib.sha256(dump_model(model).encode()).hexdigest():
         return Findings(
             status="stale", headline="Check is out of date", tables=tables,
+            hashes=hashes,
             sentence="The last check was made with another version of this model file, so that its "
             f"result ({_outcome(check)}) says nothing about this one. Next: behavgen check.",
         )  # fmt: skip
     status = "passed" if check.passed else "failed"
     return Findings(status=status, headline=f"Check {status}", sentence=_sentence(check),
-                    tables=tables)  # fmt: skip
+                    tables=tables, hashes=hashes)  # fmt: skip
 
 
 def _outcome(check: CheckReport) -> str:

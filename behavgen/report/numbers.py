@@ -5,9 +5,10 @@ from __future__ import annotations
 import math
 
 from behavgen.model import Estimate, Range
-from behavgen.units import format_celsius, format_si
+from behavgen.units import SI_PREFIXES, format_celsius, format_si
 
 __all__ = [
+    "PREFIX",
     "count_text",
     "estimate_text",
     "interval_text",
@@ -17,7 +18,13 @@ __all__ = [
     "si_text",
     "temperature_text",
     "typographic",
+    "volts_range_text",
+    "volts_text",
 ]
+
+PREFIX = {power: text for text, power in SI_PREFIXES.items() if text.isascii()} | {0: "", -6: "µ"}
+"""Power of ten to the prefix in print."""
+
 
 _SMALLEST_SHOWN = 1e-24
 """Below the smallest SI prefix in use a number is a zero that was computed."""
@@ -52,16 +59,27 @@ def temperature_text(temperature_k: float) -> str:
     return typographic(format_celsius(temperature_k))
 
 
+def volts_text(volts: float) -> str:
+    """Write a supply or common mode: in V as people say them, unless they are tiny.
+
+    >>> volts_text(0.95), volts_text(1.8), volts_text(0.02)
+    ('0.95\\xa0V', '1.8\\xa0V', '20\\xa0mV')
+    """
+    if abs(volts) < 0.1:
+        return si_text(volts, "V", 4)
+    return typographic(f"{volts:.4g} V")
+
+
 def percent_text(ratio: float, digits: int = 2) -> str:
-    """Write a ratio in per cent.
+    """Write a ratio in per cent with significant digits.
 
     >>> percent_text(0.00912), percent_text(0.123), percent_text(-0.00004)
-    ('0.91\\xa0%', '12\\xa0%', '−0.004\\xa0%')
+    ('0.91\\xa0%', '12\\xa0%', '−0.0040\\xa0%')
     """
     if not math.isfinite(ratio):
         return "not finite"
-    percent = float(f"{100.0 * ratio:.{digits - 1}e}")
-    return f"{percent:g}".replace("-", "\N{MINUS SIGN}") + "\N{NO-BREAK SPACE}%"
+    percent = 100.0 * ratio
+    return typographic(f"{percent:.{_decimals(percent, digits)}f} %")
 
 
 def probability_text(probability: float) -> str:
@@ -76,18 +94,22 @@ def count_text(number: int) -> str:
 
 def estimate_text(estimate: Estimate, unit: str) -> str:
     """Write an estimate with as many digits as its interval supports."""
-    return si_text(estimate.value, unit, _supported_digits(estimate.value, estimate))
+    if not _has_interval(estimate):
+        return si_text(estimate.value, unit)
+    return _fixed(estimate.value, unit, estimate)
 
 
 def interval_text(estimate: Estimate, unit: str) -> str:
-    """Write the interval of an estimate; says so where there is none."""
+    """Write the interval of an estimate; says so where there is none.
+
+    >>> interval_text(Estimate(value=20e-12, low=19.8e-12, high=20.3e-12), "s")
+    '19.80 … 20.30\\xa0ps'
+    """
     if estimate.low is None or estimate.high is None:
         return "no interval"
-    ends = (
-        si_text(end, unit, _supported_digits(end, estimate))
-        for end in (estimate.low, estimate.high)
-    )
-    return _joined(*ends)
+    if not _has_interval(estimate):
+        return _joined(si_text(estimate.low, unit), si_text(estimate.high, unit))
+    return _joined(*(_fixed(end, unit, estimate) for end in (estimate.low, estimate.high)))
 
 
 def range_text(span: Range | None, unit: str) -> str:
@@ -99,8 +121,15 @@ def range_text(span: Range | None, unit: str) -> str:
     if span is None:
         return "not characterised"
     if span.low == span.high:
-        return si_text(span.low, unit, 4)
-    return _joined(si_text(span.low, unit, 4), si_text(span.high, unit, 4))
+        return si_text(span.low, unit)
+    return _joined(si_text(span.low, unit), si_text(span.high, unit))
+
+
+def volts_range_text(span: Range) -> str:
+    """Write a range of supplies or common modes."""
+    if span.low == span.high:
+        return volts_text(span.low)
+    return _joined(volts_text(span.low), volts_text(span.high))
 
 
 def _joined(low: str, high: str) -> str:
@@ -109,12 +138,27 @@ def _joined(low: str, high: str) -> str:
     return f"{number if shared else low} … {high}"
 
 
-def _supported_digits(value: float, estimate: Estimate) -> int:
-    """Return how many digits of `value` two digits of the interval's half width reach."""
+def _has_interval(estimate: Estimate) -> bool:
     if estimate.low is None or estimate.high is None:
-        return 4
-    half = 0.5 * (estimate.high - estimate.low)
-    if not (half > 0.0 and math.isfinite(half)) or value == 0.0:
-        return 4
-    digits = math.floor(math.log10(abs(value))) - math.floor(math.log10(half)) + 2
-    return min(max(digits, 2), 6)
+        return False
+    return estimate.high > estimate.low and math.isfinite(estimate.high - estimate.low)
+
+
+def _fixed(value: float, unit: str, estimate: Estimate) -> str:
+    """Write a value in the estimate's prefix with two digits of the interval's half width."""
+    half = 0.5 * ((estimate.high or 0.0) - (estimate.low or 0.0))
+    power = 0
+    if unit not in ("1", "K", ""):
+        largest = max(abs(estimate.value), half)
+        power = min(max(3 * math.floor(math.log10(largest) / 3), min(PREFIX)), max(PREFIX))
+    decimals = min(_decimals(half / 10.0**power, 2), 4)
+    symbol = "" if unit == "1" else PREFIX[power] + unit
+    return typographic(f"{value / 10.0**power:.{decimals}f} {symbol}".strip())
+
+
+def _decimals(value: float, digits: int) -> int:
+    """Return the decimals that show `digits` significant digits of a value."""
+    if value == 0.0:
+        return 0
+    exponent = int(f"{value:.{digits - 1}e}".partition("e")[2])
+    return max(0, digits - 1 - exponent)

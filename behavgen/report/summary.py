@@ -86,13 +86,15 @@ def _held_out_clause(fits: Sequence[ConditionFit]) -> str:
 
 
 def key_numbers(parameters: Sequence[Parameter]) -> tuple[KeyNumber, ...]:
-    """Return the parameters people ask for first."""
+    """Return the parameters people ask for first; a name given many times is a curve, not one."""
+    names = [p.name for p in parameters]
     return tuple(
         KeyNumber(
             name=p.name, value=estimate_text(p.estimate, p.unit), interval=_interval_words(p),
             meaning=p.description,
         )
         for p in parameters
+        if names.count(p.name) == 1
     )  # fmt: skip
 
 

@@ -1,0 +1,1 @@
+"""Files -> Characterisation: readers, row-precise faults, summary."""

@@ -203,7 +203,10 @@ class ResetTable:
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class Characterisation:
-    """All tables of one cell; an absent table is an absent effect."""
+    """All tables of one cell; an absent table is an absent effect.
+
+    `notices` are what a user should look at although nothing is wrong.
+    """
 
     cell: str
     processes: tuple[str, ...]
@@ -214,3 +217,4 @@ class Characterisation:
     window: WindowTable | None = None
     reset: ResetTable | None = None
     sources: tuple[TableSource, ...] = ()
+    notices: tuple[str, ...] = ()

@@ -11,12 +11,10 @@ import csv
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING
+
+import polars as pl
 
 from behavgen.tables.faults import TableFaults
-
-if TYPE_CHECKING:
-    import polars as pl
 
 __all__ = ["CsvHeader", "OddLines", "check_encoding", "judge_lines", "read_csv_header"]
 
@@ -108,8 +106,6 @@ def judge_lines(
     only : sequence of int, optional
         Lines to look at instead of all.
     """
-    import polars as pl  # noqa: PLC0415  (slow to load)
-
     raw = _raw_lines(path, header)
     if only is not None:
         raw = raw.filter(pl.col("line").is_in(pl.Series(only, dtype=pl.UInt32).implode()))
@@ -146,8 +142,6 @@ def check_encoding(path: Path, shown: str, faults: TableFaults) -> bool:
 
 
 def _raw_lines(path: Path, header: CsvHeader) -> pl.LazyFrame:
-    import polars as pl  # noqa: PLC0415  (slow to load)
-
     lines = pl.scan_csv(
         path,
         has_header=True,

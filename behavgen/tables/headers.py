@@ -225,7 +225,7 @@ def _unused_notices(
     headers: Sequence[str],
     shown: str,
 ) -> tuple[str, ...]:
-    """Return a word on every column that was asked for and not needed, or looks like a condition."""
+    """Return a word on every column that was named in vain or that looks like a condition."""
     notices = [
         f"{shown} column '{headers[index]}' is not used: {name} is not needed beside the others"
         for name, index in found.items()

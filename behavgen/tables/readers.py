@@ -11,14 +11,13 @@ import hashlib
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING
+
+import polars as pl
+from python_calamine import CalamineError, load_workbook
 
 from behavgen.nearest import did_you_mean
 from behavgen.tables.csv_lines import CsvHeader, check_encoding, judge_lines, read_csv_header
 from behavgen.tables.faults import TableFaults
-
-if TYPE_CHECKING:
-    import polars as pl
 
 __all__ = ["LINE", "RawTable", "collect", "find_files", "open_table", "sha256_of"]
 
@@ -145,8 +144,6 @@ def collect(
     list of polars.DataFrame or None
         One result for each query; None when the file cannot be read.
     """
-    import polars as pl  # noqa: PLC0415  (slow to load)
-
     try:
         return pl.collect_all(plan(table.frame), engine="streaming")
     except pl.exceptions.PolarsError as error:
@@ -173,8 +170,6 @@ def _open_csv(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
 
 
 def _scan_csv(path: Path, header: CsvHeader, *, ragged: bool = False) -> pl.LazyFrame:
-    import polars as pl  # noqa: PLC0415  (slow to load)
-
     scanned = pl.scan_csv(
         path,
         skip_lines=header.line - 1,
@@ -187,8 +182,6 @@ def _scan_csv(path: Path, header: CsvHeader, *, ragged: bool = False) -> pl.Lazy
 
 
 def _open_parquet(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
-    import polars as pl  # noqa: PLC0415  (slow to load)
-
     try:
         scanned = pl.scan_parquet(path, row_index_name=LINE, row_index_offset=2)
         headers = tuple(name for name in scanned.collect_schema().names() if name != LINE)
@@ -205,9 +198,6 @@ def _numbered(scanned: pl.LazyFrame) -> pl.LazyFrame:
 
 
 def _open_excel(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
-    import polars as pl  # noqa: PLC0415  (slow to load)
-    from python_calamine import CalamineError, load_workbook  # noqa: PLC0415
-
     try:
         with load_workbook(path) as book:
             rows = book.get_sheet_by_index(0).to_python(skip_empty_area=False)

@@ -51,11 +51,12 @@ def test_the_means_of_its_subset_are_not_compared_directly(latch_v: np.ndarray) 
 
 
 def test_the_scatter_of_its_subset_is_not_taken_for_all(latch_v: np.ndarray) -> None:
-    """At nominal the 30 scatter 16 % less than the 120; so they do, by chance, elsewhere."""
+    """At nominal the 120 scatter 19 % more than the 30; so they would at the other conditions."""
     found = instance_components(latch_v)
     assert deviations(found)[0] == pytest.approx(instance_statistics(latch_v[:, 0]).sigma_v)
-    subset_v = latch_v[:30].std(axis=0, ddof=1)
-    np.testing.assert_allclose(deviations(found)[1:3] / subset_v[1:3], 1.19, atol=0.01)
+    ratio = deviations(found) / latch_v[:30].std(axis=0, ddof=1)
+    assert ratio[0] == pytest.approx(1.19, abs=0.005)
+    assert np.all((ratio[1:] > 1.15) & (ratio[1:] < 1.20))
 
 
 def test_its_conditions_are_highly_correlated(latch_v: np.ndarray) -> None:
@@ -107,9 +108,9 @@ def test_the_truth_is_recovered() -> None:
         found.append(one.covariance_v2)
         covered.append((one.shift_low_v[1:] < [1.0, -2.0]) & ([1.0, -2.0] < one.shift_high_v[1:]))
     mean, error = np.mean(found, axis=0), np.std(found, axis=0) / 20.0
-    # Where the subset decides, a divisor of 19 instead of 18 leaves up to 1/19 of the
-    # residual variance missing.
-    np.testing.assert_array_less(np.abs(mean - truth), 5.0 * error + 0.06 * np.diag(truth).max() / 1)
+    # The subset's residual variance is divided by 19, not by its 18 degrees of freedom.
+    residual = np.diag(truth) - truth[0] ** 2 / truth[0, 0]
+    np.testing.assert_array_less(np.abs(mean - truth), 5.0 * error + np.max(residual) / 18.0)
     np.testing.assert_allclose(
         np.mean(covered, axis=0), 0.95, atol=4.4 * np.sqrt(0.95 * 0.05 / 400)
     )
@@ -136,9 +137,9 @@ def test_perfectly_correlated_conditions_share_one_component() -> None:
     offset_v = np.column_stack([first, 2.0 * first + 1.0, -first])
     offset_v[15:, 1] = np.nan
     found = instance_components(offset_v)
-    assert found.share[0] == pytest.approx(1.0, abs=1e-6)
+    assert found.share[0] == pytest.approx(1.0, abs=1e-5)
     np.testing.assert_allclose(
-        found.loadings_v[:, 0] / found.loadings_v[0, 0], [1.0, 2.0, -1.0], rtol=1e-3
+        found.loadings_v[:, 0] / found.loadings_v[0, 0], [1.0, 2.0, -1.0], rtol=1e-2
     )
 
 

@@ -85,7 +85,10 @@ def test_intervals_with_measurement_error_cover() -> None:
     hits = np.zeros(2)
     for offset_v in rng.normal(0.0, 4.0, (4000, 20)) + rng.normal(0.0, 3.0, (4000, 20)):
         found = instance_statistics(offset_v, 9.0)
-        hits += found.mean_low_v < 0.0 < found.mean_high_v, found.sigma_low_v < 4 < found.sigma_high_v
+        hits += (
+            found.mean_low_v < 0.0 < found.mean_high_v,
+            found.sigma_low_v < 4 < found.sigma_high_v,
+        )
     np.testing.assert_allclose(hits / 4000, 0.95, atol=4.4 * np.sqrt(0.95 * 0.05 / 4000))
 
 

@@ -51,7 +51,9 @@ def test_saturating_latch_solves_its_differential_equation() -> None:
     from scipy.integrate import quad
 
     for initial_v in (1e-3, 0.03, 0.2):
-        time_in_tau, _ = quad(lambda v: 1.0 / (0.2 * np.tanh(v / 0.2)), initial_v, 0.5, epsabs=1e-12)
+        time_in_tau, _ = quad(
+            lambda v: 1.0 / (0.2 * np.tanh(v / 0.2)), initial_v, 0.5, epsabs=1e-12
+        )
         assert float(saturating_latch_delay(initial_v, 1.0, 0.5, 0.2)) == pytest.approx(
             time_in_tau, rel=1e-9
         )
@@ -60,7 +62,9 @@ def test_saturating_latch_solves_its_differential_equation() -> None:
 def test_saturating_latch_becomes_linear_far_below_saturation() -> None:
     initial_v = np.array([1e-6, 1e-3, 0.1])
     linear = regeneration_delay(initial_v, 1e-11, 0.5)
-    np.testing.assert_allclose(saturating_latch_delay(initial_v, 1e-11, 0.5, 1e4), linear, rtol=1e-8)
+    np.testing.assert_allclose(
+        saturating_latch_delay(initial_v, 1e-11, 0.5, 1e4), linear, rtol=1e-8
+    )
 
 
 def test_saturating_latch_survives_deep_saturation() -> None:
@@ -77,7 +81,9 @@ def test_window_is_the_delay_read_the_other_way() -> None:
 
 
 def test_probability_of_a_uniform_input() -> None:
-    np.testing.assert_allclose(unresolved_probability_uniform([1e-6, 0.1, 3.0], 1.0), [1e-6, 0.1, 1])
+    np.testing.assert_allclose(
+        unresolved_probability_uniform([1e-6, 0.1, 3.0], 1.0), [1e-6, 0.1, 1]
+    )
 
 
 def test_probability_at_balance() -> None:

@@ -1,0 +1,207 @@
+"""Waveforms of one instance's outputs: what is expected, and what the harness recorded."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.check.runs import Run
+from behavgen.check.stimulus import Stimulus
+from behavgen.formulas import random_stream
+from behavgen.model import ComparatorModel
+
+__all__ = [
+    "ANY",
+    "CAUSE",
+    "FLAG",
+    "OUTN",
+    "OUTP",
+    "UNKNOWN",
+    "Expectation",
+    "Record",
+    "expect",
+    "read_record",
+]
+
+Integers = npt.NDArray[np.int64]
+States = npt.NDArray[np.int8]
+
+OUTP, OUTN, FLAG, CAUSE = range(4)
+"""Columns of a state: the two outputs, the unresolved flag, x_cause."""
+UNKNOWN, HIGH_IMPEDANCE = 2, 3
+"""Values of a logic state beside 0 and 1."""
+KEEP, ANY = -1, -2
+"""Expected: as before; not stated, so anything will do."""
+
+_LINE = 25
+"""Characters of a record's line, without the line end."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Expectation:
+    """What must happen at the ready, the end and the reset of each decision.
+
+    Times are ticks from the start of the block, shape (N,); states have shape (N, 4).
+
+    Parameters
+    ----------
+    edge, ready, end, reset : ndarray of int
+        `ready` is the end where the decision stays unresolved; `reset` is the
+        next edge where that cancels the reset.
+    resolved, returns : ndarray of bool
+        Whether there is a ready, and whether the reset state returns.
+    before, shown, after, rest : ndarray
+        States before the ready, from it, from the end, and from the reset on.
+    delay_tolerance, reset_tolerance : int
+        Ticks by which ready and reset may differ; 0 where they are exact.
+    excluded : ndarray of bool
+        Decisions so close to a boundary that the tolerance decides them.
+    """
+
+    edge: Integers
+    ready: Integers
+    end: Integers
+    reset: Integers
+    resolved: npt.NDArray[np.bool_]
+    returns: npt.NDArray[np.bool_]
+    before: States
+    shown: States
+    after: States
+    rest: States
+    delay_tolerance: int
+    reset_tolerance: int
+    excluded: npt.NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Record:
+    """Settled states of the outputs at every instant at which one changed.
+
+    Parameters
+    ----------
+    time : ndarray of int, shape (M,)
+        In ticks, rising.
+    state : ndarray, shape (M, 4)
+    """
+
+    time: Integers
+    state: States
+
+    def at(self, time: Integers) -> States:
+        """Return the states at some times, shape (N, 4)."""
+        return self.state[np.maximum(np.searchsorted(self.time, time, side="right") - 1, 0)]
+
+    def changes(self, after: Integers, until: Integers) -> Integers:
+        """Return how many instants of change lie in ``after < time <= until``, shape (N,)."""
+        last = np.searchsorted(self.time, until, side="right")
+        return np.maximum(last - np.searchsorted(self.time, after, side="right"), 0)
+
+    def first_change(self, after: Integers) -> Integers:
+        """Return the time of the first change later than `after`; -1 where there is none."""
+        place = np.searchsorted(self.time, after, side="right")
+        return np.append(self.time, -1)[np.minimum(place, len(self.time))]
+
+
+def expect(model: ComparatorModel, run: Run, stimulus: Stimulus) -> Expectation:
+    """Return what a run must show.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+    run : Run
+    stimulus : Stimulus
+        With the reference's trace.
+    """
+    trace, phase = stimulus.trace, stimulus.end - stimulus.edge
+    resolved = ~trace.unresolved
+    wait = np.where(resolved, trace.reset_ticks, np.maximum(trace.reset_ticks, 1))
+    gap = stimulus.gap
+    returns = wait < gap
+    delay_tolerance = int(run.meant.delay_on and model.delay is not None)
+    reset_tolerance = int(run.meant.delay_on and model.reset is not None)
+    excluded = np.abs(wait - gap) <= reset_tolerance
+    if delay_tolerance:
+        excluded |= np.abs(phase - trace.delay_ticks) <= delay_tolerance
+    excluded[1:] |= excluded[:-1].copy()
+    states = _states(model, run, stimulus, resolved, returns)
+    return Expectation(
+        edge=stimulus.edge,
+        ready=np.where(resolved, stimulus.edge + trace.delay_ticks, stimulus.end),
+        end=stimulus.end,
+        reset=np.where(returns, stimulus.end + wait, stimulus.end + gap),
+        resolved=resolved, returns=returns,
+        before=states[:, 0], shown=states[:, 1], after=states[:, 2], rest=states[:, 3],
+        delay_tolerance=delay_tolerance, reset_tolerance=reset_tolerance, excluded=excluded,
+    )  # fmt: skip
+
+
+def _states(
+    model: ComparatorModel,
+    run: Run,
+    stimulus: Stimulus,
+    resolved: npt.NDArray[np.bool_],
+    returns: npt.NDArray[np.bool_],
+) -> States:
+    """Return states before, shown, after and at rest, shape (N, 4, 4): what is kept filled in."""
+    count = len(resolved)
+    states = np.full((count, 4, 4), KEEP, dtype=np.int8)
+    bit = stimulus.trace.leaning.astype(np.int8)
+    states[resolved, 1, :2] = np.stack([bit, 1 - bit], axis=-1)[resolved]
+    states[resolved, 1, 2:] = 0
+    states[~resolved, 2, :2] = _unresolved_outputs(run, stimulus)[~resolved]
+    states[~resolved, 2, 2:] = 1
+    level = {"high": 1, "low": 0, "mid": UNKNOWN, "hold": KEEP}[model.cell.in_reset]
+    states[returns, 3, :2] = level
+    states[returns, 3, CAUSE] = 0
+    if level == KEEP:
+        states[returns & ~resolved, 3, CAUSE] = ANY
+    first = [UNKNOWN, UNKNOWN, ANY, ANY] if level == KEEP else [level, level, ANY, 0]
+    states[0, 0] = first
+    states = _filled(states.reshape(4 * count, 4)).reshape(count, 4, 4)
+    for column, pin in ((OUTN, model.cell.pins.outn), (FLAG, model.cell.pins.unresolved)):
+        if pin is None:
+            states[:, :, column] = ANY
+    return states
+
+
+def _unresolved_outputs(run: Run, stimulus: Stimulus) -> States:
+    count = len(stimulus.edge)
+    if run.meant.unresolved_mode == 0:
+        return np.full((count, 2), UNKNOWN, dtype=np.int8)
+    if run.meant.unresolved_mode == 2:
+        return np.full((count, 2), KEEP, dtype=np.int8)
+    coin = stimulus.trace.bits.astype(np.int8)
+    return np.stack([coin, 1 - coin], axis=-1)
+
+
+def _filled(states: States) -> States:
+    """Replace what is kept by what was there before; the first row keeps nothing."""
+    rows = np.arange(len(states))[:, None]
+    source = np.maximum.accumulate(np.where(states == KEEP, 0, rows), axis=0)
+    return np.take_along_axis(states, source, axis=0)
+
+
+def read_record(path: Path) -> Record:
+    """Read the record that the harness wrote, times counted from its first line.
+
+    Raises
+    ------
+    ValueError
+        When the file is not a whole record.
+    """
+    raw = np.frombuffer(path.read_bytes(), dtype=np.uint8)
+    if len(raw) == 0 or len(raw) % (_LINE + 1):
+        raise ValueError(f"{path.name} is not a whole record")
+    lines = raw.reshape(-1, _LINE + 1)
+    digits = np.where(lines[:, 1:20] == ord(" "), ord("0"), lines[:, 1:20]).astype(np.int64)
+    time = (digits - ord("0")) @ 10 ** np.arange(18, -1, -1, dtype=np.int64)
+    letters = lines[:, 20:24]
+    codes = np.full(256, ANY, dtype=np.int8)
+    codes[[ord("0"), ord("1"), ord("2"), ord("3"), ord("4"), ord("5")]] = range(6)
+    state = codes[letters]
+    for letter, code in (("x", UNKNOWN), ("z", HIGH_IMPEDANCE)):
+        state[:, :3][letters[:, :3] == ord(letter)] = code
+    return Record(time=time - time[0], state=state)

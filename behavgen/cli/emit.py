@@ -1,0 +1,47 @@
+"""The command ``emit``: the behavioural models of each cell."""
+
+from __future__ import annotations
+
+from behavgen.cli.cells import CellResult, add_cells_argument, command_line, each_cell
+from behavgen.cli.parser import Options, Parser
+from behavgen.cli.terminal import Terminal
+from behavgen.cli.verdict import Outcome
+from behavgen.cli.wording import labelled, shown_path, state_text
+from behavgen.pipeline import CellPlace, EmittedCell, emit_cell, fit_cell
+
+ABOUT = """\
+Write the behavioural models of each cell under <out>/<cell>/: SystemVerilog with real
+ports and Verilog-A. Cells whose model is not current are fitted first."""
+ARGUMENTS = "[CELL ...]"
+EXAMPLE = "behavgen emit latch_a"
+
+_LANGUAGES = {".sv": "SystemVerilog", ".va": "Verilog-A"}
+
+
+def add_arguments(parser: Parser) -> None:
+    """Declare what the command takes."""
+    add_cells_argument(parser)
+
+
+def run(options: Options, terminal: Terminal) -> Outcome:
+    """Emit the cells asked for."""
+    done = each_cell(options, terminal, _emit)
+    return done.outcome(options, done="emitted", then=command_line(options, "check"))
+
+
+def _emit(place: CellPlace) -> CellResult:
+    return emit_result(emit_cell(fit_cell(place)))
+
+
+def emit_result(emitted: EmittedCell) -> CellResult:
+    """Return what there is to say of an emitted cell."""
+    paths = [shown_path(path) for path in emitted.paths]
+    labels = [_LANGUAGES.get(path.suffix, path.suffix) for path in emitted.paths]
+    return CellResult(
+        lines=[
+            line
+            for label, path in zip(labels, paths, strict=True)
+            for line in labelled(label, path + state_text(made=emitted.made))
+        ],
+        data={"files": paths, "made": emitted.made},
+    )

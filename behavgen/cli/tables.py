@@ -1,0 +1,7 @@
+ABOUT = "x"
+ARGUMENTS = ""
+EXAMPLE = "behavgen tools"
+
+
+def add_arguments(parser):
+    pass

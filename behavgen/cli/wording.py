@@ -1,0 +1,88 @@
+"""How the command line writes ranges, shares, numbers with intervals and labelled lines; ASCII."""
+
+from __future__ import annotations
+
+import os
+import textwrap
+from pathlib import Path
+
+from behavgen.model import Estimate, Range
+from behavgen.units import format_celsius, format_si
+
+__all__ = [
+    "estimate_text",
+    "interval_text",
+    "labelled",
+    "percent_text",
+    "range_text",
+    "shown_path",
+    "state_text",
+]
+
+_LABEL_WIDTH = 11
+_LINE_WIDTH = 100
+
+
+def labelled(label: str, text: str) -> list[str]:
+    """Return a text behind its label, its further lines under its first.
+
+    >>> labelled("noise", "5 conditions")
+    ['  noise      5 conditions']
+    """
+    head = f"  {label:<{_LABEL_WIDTH}}"
+    lines = textwrap.wrap(
+        text, _LINE_WIDTH - len(head), break_long_words=False, break_on_hyphens=False
+    )
+    pad = " " * len(head)
+    return [(head if index == 0 else pad) + line for index, line in enumerate(lines or [""])]
+
+
+def range_text(span: Range | None, unit: str) -> str:
+    """Write a range with its units; a single value stands alone.
+
+    >>> range_text(Range(low=233.15, high=398.15), "K"), range_text(Range(low=0.6, high=0.6), "V")
+    ('-40 degC..125 degC', '600 mV')
+    """
+    if span is None:
+        return "not characterised"
+    ends = [_number(value, unit, 4) for value in (span.low, span.high)]
+    return ends[0] if span.low == span.high else "..".join(ends)
+
+
+def percent_text(ratio: float) -> str:
+    """Write a ratio in per cent with two digits.
+
+    >>> percent_text(0.00912), percent_text(0.123)
+    ('0.91 %', '12 %')
+    """
+    return f"{float(f'{100.0 * ratio:.1e}'):g} %"
+
+
+def estimate_text(estimate: Estimate, unit: str) -> str:
+    """Write an estimate without its interval."""
+    return _number(estimate.value, unit, 4)
+
+
+def interval_text(estimate: Estimate, unit: str) -> str:
+    """Write the interval of an estimate, empty where there is none."""
+    if estimate.low is None or estimate.high is None:
+        return ""
+    ends = "..".join(_number(value, unit, 4) for value in (estimate.low, estimate.high))
+    return f"{ends} ({100.0 * estimate.level:g} %)"
+
+
+def shown_path(path: Path) -> str:
+    """Write a path as one would type it from here."""
+    near = os.path.relpath(path)
+    return near if len(near) < len(str(path)) else str(path)
+
+
+def state_text(*, made: bool) -> str:
+    """Tell a result made now from one that was current already."""
+    return "" if made else "   (current already)"
+
+
+def _number(value: float, unit: str, digits: int) -> str:
+    if unit == "K":
+        return format_celsius(value)
+    return f"{value:.{digits}g}" if unit in ("1", "") else format_si(value, unit, digits)

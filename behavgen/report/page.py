@@ -1,0 +1,174 @@
+"""The report page: one HTML file that needs nothing else and runs no script."""
+
+from __future__ import annotations
+
+import base64
+import hashlib
+from dataclasses import dataclass
+from functools import cache
+
+from jinja2 import Environment, FileSystemLoader, StrictUndefined
+from markupsafe import Markup
+
+from behavgen.check.verdict import CheckReport
+from behavgen.model import ComparatorModel
+from behavgen.reference import Reference
+from behavgen.report.cautions import cautions, is_invented
+from behavgen.report.conditions import condition_words, middle_condition
+from behavgen.report.curves import curves
+from behavgen.report.delay_figures import delay_multiples, delay_overview
+from behavgen.report.figure import Figure, Multiples
+from behavgen.report.findings import Findings, findings
+from behavgen.report.noise_figures import (
+    observed_sigmas,
+    s_curve_multiples,
+    standardised_s_curves,
+)
+from behavgen.report.numbers import si_text
+from behavgen.report.offset_figures import offset_multiples
+from behavgen.report.summary import (
+    Effect,
+    KeyNumber,
+    effects,
+    fit_sentences,
+    key_numbers,
+    middle_numbers,
+)
+from behavgen.report.symbol import draw_symbol
+from behavgen.report.tabulation import Table, fit_tables, parameter_table, source_table
+from behavgen.report.timing import draw_timing, timing_words
+from behavgen.report.validity import ValidityRow, validity_rows
+from behavgen.report.window_figures import window_figure, window_from_delay
+from behavgen.resources import template_folder
+
+__all__ = ["report_page"]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Drawings:
+    """Figures of the page; None where there is nothing to draw."""
+
+    symbol: str
+    timing: str
+    timing_words: str
+    delay: Figure | None
+    delay_small: Multiples | None
+    window: Figure | None
+    noise: Figure | None
+    noise_small: Multiples | None
+    offset: Multiples | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Content:
+    """Everything the template prints."""
+
+    model: ComparatorModel
+    invented: bool
+    findings: Findings
+    fit_sentences: tuple[str, ...]
+    key_numbers: tuple[KeyNumber, ...]
+    middle_numbers: tuple[KeyNumber, ...]
+    middle: str
+    supply_off: str
+    drawings: _Drawings
+    fit_tables: tuple[Table, ...]
+    parameters: Table | None
+    validity: tuple[ValidityRow, ...]
+    sources: Table | None
+    effects: tuple[Effect, ...]
+    cautions: tuple[str, ...]
+
+
+def report_page(model: ComparatorModel, check: CheckReport | None) -> str:
+    """Return the report of a cell as one self-contained HTML page.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+    check : CheckReport or None
+        None: not checked yet, which the page says.
+
+    Returns
+    -------
+    str
+        HTML with its own style and drawings; no script, and a content security
+        policy that lets the page load nothing.
+    """
+    style = _style_sheet()
+    template = _environment().get_template("page.html")
+    return template.render(
+        content=_content(model, check), style=Markup(style), style_hash=_csp_hash(style)
+    )
+
+
+def _content(model: ComparatorModel, check: CheckReport | None) -> _Content:
+    reference = Reference(model)
+    middle = middle_condition(model)
+    return _Content(
+        model=model,
+        invented=is_invented(model),
+        findings=findings(model, check),
+        fit_sentences=fit_sentences(model),
+        key_numbers=key_numbers(model.parameters),
+        middle_numbers=middle_numbers(model, reference, middle),
+        middle=condition_words(middle),
+        supply_off=si_text(model.cell.supply_off_v or 0.0, "V"),
+        drawings=_drawings(model, reference),
+        fit_tables=fit_tables(model),
+        parameters=parameter_table(model.parameters),
+        validity=validity_rows(model),
+        sources=source_table(model.sources),
+        effects=effects(model),
+        cautions=cautions(model, observed_sigmas(curves(model, reference, "noise"))),
+    )
+
+
+def _drawings(model: ComparatorModel, reference: Reference) -> _Drawings:
+    delays = curves(model, reference, "delay") if model.delay else ()
+    noise = curves(model, reference, "noise") if model.noise else ()
+    return _Drawings(
+        symbol=draw_symbol(model.cell),
+        timing=draw_timing(model.cell),
+        timing_words=timing_words(model.cell),
+        delay=delay_overview(delays, middle_condition(model)) if delays else None,
+        delay_small=delay_multiples(delays) if delays else None,
+        window=_window(model, reference),
+        noise=standardised_s_curves(noise, reference),
+        noise_small=s_curve_multiples(noise, reference),
+        offset=offset_multiples(model),
+    )
+
+
+def _window(model: ComparatorModel, reference: Reference) -> Figure | None:
+    if model.delay is None:
+        return None
+    middle = middle_condition(model)
+    windows = curves(model, reference, "window")
+    return window_figure(windows, middle) if windows else window_from_delay(model, reference, middle)
+
+
+def _style_sheet() -> str:
+    return (template_folder() / "report" / "style.css").read_text(encoding="utf-8").strip()
+
+
+def _csp_hash(text: str) -> str:
+    """Return the source expression that lets a page use exactly this inline text.
+
+    W3C, Content Security Policy Level 3, 2.3.1: ``'sha256-'`` and the base64 of the digest.
+    """
+    digest = hashlib.sha256(text.encode("utf-8")).digest()
+    return f"'sha256-{base64.b64encode(digest).decode('ascii')}'"
+
+
+@cache
+def _environment() -> Environment:
+    environment = Environment(
+        loader=FileSystemLoader(template_folder() / "report"),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
+    environment.filters["drawing"] = Markup  # our own SVG, whose texts are escaped where drawn
+    return environment

@@ -1,0 +1,206 @@
+"""Rows read from files -> the tables of a characterisation, one function a quantity.
+
+Arrays are taken out of the frames column by column, so that a large table is
+never in memory twice.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Mapping, Sequence
+
+import numpy as np
+import polars as pl
+
+from behavgen.tables.characterisation import (
+    Conditions,
+    DelayTable,
+    Floats,
+    Integers,
+    NoiseTable,
+    OffsetStatistics,
+    OffsetTable,
+    ResetTable,
+    Texts,
+    WindowTable,
+)
+from behavgen.tables.parts import Part
+
+__all__ = ["ASSEMBLERS", "conditions_of"]
+
+
+def conditions_of(parts: Sequence[Part]) -> Conditions:
+    """Return the operating conditions of all rows, one after another."""
+    return Conditions(
+        vdd_v=_numbers(parts, "vdd"),
+        temperature_k=_numbers(parts, "temp"),
+        vcm_v=_numbers(parts, "vcm"),
+        process=_texts(parts, "process"),
+    )
+
+
+def offset_tables(parts: Sequence[Part]) -> dict[str, OffsetTable | OffsetStatistics]:
+    """Return the single instances and the ready-made statistics, where there are any."""
+    tables: dict[str, OffsetTable | OffsetStatistics] = {}
+    if instances := _in_form(parts, "instances"):
+        tables["offset"] = OffsetTable(
+            conditions=conditions_of(instances),
+            instance=_texts(instances, "instance"),
+            offset_v=_numbers(instances, "offset"),
+            offset_low_v=_numbers(instances, "offset_low"),
+            offset_high_v=_numbers(instances, "offset_high"),
+            sources=_sources(instances),
+        )
+    if statistics := _in_form(parts, "statistics"):
+        tables["offset_statistics"] = OffsetStatistics(
+            conditions=conditions_of(statistics),
+            mean_v=_numbers(statistics, "mean"),
+            sigma_v=_numbers(statistics, "sigma"),
+            instances=_integers(statistics, "instances"),
+            sources=_sources(statistics),
+        )
+    return tables
+
+
+def noise_tables(parts: Sequence[Part]) -> dict[str, NoiseTable]:
+    """Return S-curves, single bits already counted, and ready-made sigmas."""
+    curves = _in_form(parts, "counts", "bits")
+    sigmas = _in_form(parts, "sigma")
+    return {
+        "noise": NoiseTable(
+            conditions=conditions_of(curves),
+            instance=_texts(curves, "instance"),
+            vdiff_v=_numbers(curves, "vdiff"),
+            trials=_integers(curves, "trials"),
+            ones=_integers(curves, "ones"),
+            sigma_conditions=conditions_of(sigmas),
+            sigma_v=_numbers(sigmas, "sigma"),
+            sigma_error_v=_numbers(sigmas, "sigma_error"),
+            sources=_sources(parts),
+        )
+    }
+
+
+def delay_tables(parts: Sequence[Part]) -> dict[str, DelayTable]:
+    """Return delays; overdrive is input less trip point where the table gives these instead."""
+    offset_v = _numbers(parts, "offset")
+    overdrive_v = _numbers(parts, "overdrive")
+    from_input = np.isnan(overdrive_v)
+    if from_input.any():
+        vdiff_v = _numbers(parts, "vdiff")[from_input]
+        overdrive_v = np.array(overdrive_v)
+        overdrive_v[from_input] = vdiff_v - np.nan_to_num(offset_v[from_input])
+    decision = _numbers(parts, "decision")
+    return {
+        "delay": DelayTable(
+            conditions=conditions_of(parts),
+            overdrive_v=overdrive_v,
+            delay_s=_numbers(parts, "delay"),
+            observed_for_s=_numbers(parts, "observed_for"),
+            offset_v=offset_v,
+            decision=np.where(np.isnan(decision), -1, np.nan_to_num(decision)).astype(np.int64),
+            measured=_measured(parts),
+            sources=_sources(parts),
+        )
+    }
+
+
+def window_tables(parts: Sequence[Part]) -> dict[str, WindowTable]:
+    """Return windows; counted ones become widths with the binomial standard error.
+
+    Where every trial was unresolved the window is wider than the span swept.
+    """
+    searched = _in_form(parts, "searched")
+    counted = _in_form(parts, "counted")
+    trials = _numbers(counted, "trials")
+    share = _numbers(counted, "unresolved") / trials
+    span_v = _numbers(counted, "span")
+    with np.errstate(divide="ignore"):
+        counted_error = np.sqrt((1.0 - share) / (trials * share))
+    return {
+        "window": WindowTable(
+            conditions=conditions_of([*searched, *counted]),
+            resolve_time_s=_numbers([*searched, *counted], "resolve_time"),
+            window_v=np.concatenate(
+                [_numbers(searched, "window"), np.where(share < 1.0, span_v * share, np.nan)]
+            ),
+            window_relative_error=np.concatenate(
+                [np.zeros(_rows(searched)), np.where(share < 1.0, counted_error, 0.0)]
+            ),
+            searched_span_v=np.concatenate([_numbers(searched, "searched_span"), span_v]),
+            measured=_measured(parts),
+            sources=_sources([*searched, *counted]),
+        )
+    }
+
+
+def reset_tables(parts: Sequence[Part]) -> dict[str, ResetTable]:
+    """Return reset delays."""
+    return {
+        "reset": ResetTable(
+            conditions=conditions_of(parts),
+            reset_delay_s=_numbers(parts, "reset_delay"),
+            sources=_sources(parts),
+        )
+    }
+
+
+ASSEMBLERS: Mapping[str, Callable[[Sequence[Part]], Mapping[str, object]]] = {
+    "offset": offset_tables,
+    "noise": noise_tables,
+    "delay": delay_tables,
+    "window": window_tables,
+    "reset": reset_tables,
+}
+"""Quantity to the function that turns its rows into fields of a characterisation."""
+
+
+def _in_form(parts: Iterable[Part], *names: str) -> list[Part]:
+    return [part for part in parts if part.form.name in names]
+
+
+def _rows(parts: Iterable[Part]) -> int:
+    return sum(part.frame.height for part in parts)
+
+
+def _sources(parts: Iterable[Part]) -> tuple[object, ...]:
+    return tuple(part.source for part in parts)
+
+
+def _measured(parts: Iterable[Part]) -> str:
+    return next((part.source.measured for part in parts if part.source.measured), "")
+
+
+def _numbers(parts: Sequence[Part], name: str) -> Floats:
+    """Return a column of all parts, NaN where a part has none or a cell is empty."""
+    arrays = [
+        part.frame[name].to_numpy()
+        if name in part.frame.columns
+        else np.broadcast_to(np.float64(part.fixed.get(name, np.nan)), part.frame.height)
+        for part in parts
+    ]
+    if len(arrays) == 1:
+        return arrays[0]
+    return np.concatenate([np.empty(0), *arrays])
+
+
+def _integers(parts: Sequence[Part], name: str) -> Integers:
+    return _numbers(parts, name).astype(np.int64)
+
+
+def _texts(parts: Sequence[Part], name: str) -> Texts:
+    arrays = [
+        _text_array(part.frame[name])
+        if name in part.frame.columns
+        else np.broadcast_to(np.str_(part.fixed.get(name, "")), part.frame.height)
+        for part in parts
+    ]
+    if len(arrays) == 1:
+        return arrays[0]
+    return np.concatenate([np.empty(0, dtype=np.str_), *arrays])
+
+
+def _text_array(column: pl.Series) -> Texts:
+    """Return texts as a numpy array by way of their few distinct values."""
+    distinct = column.unique(maintain_order=True)
+    codes = column.replace_strict(distinct, pl.int_range(distinct.len(), eager=True))
+    return np.array(distinct.to_list(), dtype=np.str_)[codes.to_numpy()]

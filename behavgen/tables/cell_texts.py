@@ -1,0 +1,139 @@
+"""Cells that are no plain numbers: failed runs, SI prefixes, empty cells, faults."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+
+import polars as pl
+
+from behavgen.tables.faults import TableFaults
+from behavgen.tables.headers import BoundColumn, Layout
+from behavgen.tables.limits import breaks_limits, breaks_order
+from behavgen.tables.readers import LINE
+from behavgen.units import CELL_PATTERN, UnitError, cell_suffixes, parse_si
+
+__all__ = ["read_texts", "without_failed"]
+
+
+def read_texts(
+    texts: pl.DataFrame,
+    layout: Layout,
+    rules: Iterable[tuple[str, str]],
+    shown: str,
+    faults: TableFaults,
+) -> pl.DataFrame:
+    """Turn rows of texts into our columns in SI, noting every cell that breaks a rule.
+
+    Parameters
+    ----------
+    texts : polars.DataFrame
+        `LINE` and our columns as stripped texts, null where empty.
+    layout : Layout
+        What the columns are.
+    rules : iterable of (str, str)
+        Columns of which the first may not exceed the second.
+    shown : str
+        The file's name for messages.
+    faults : TableFaults
+        Takes what is wrong.
+    """
+    read = _read(texts, layout.columns, shown, faults)
+    _check_limits(read, texts, layout.columns, shown, faults)
+    _check_order(read, rules, layout, shown, faults)
+    return read
+
+
+def without_failed(texts: pl.DataFrame, tokens: Iterable[str]) -> tuple[pl.DataFrame, int]:
+    """Drop rows in which any cell marks a failed run."""
+    cells = pl.exclude(LINE).str.to_lowercase().is_in([*tokens]).fill_null(value=False)
+    kept = texts.filter(~pl.any_horizontal(cells))
+    return kept, texts.height - kept.height
+
+
+def _read(
+    texts: pl.DataFrame, columns: Iterable[BoundColumn], shown: str, faults: TableFaults
+) -> pl.DataFrame:
+    """Turn texts into our columns, noting each that says nothing usable."""
+    read = texts.select(
+        LINE,
+        *(
+            pl.col(bound.column.name) if bound.column.is_text else _parsed(bound)
+            for bound in columns
+        ),
+    )
+    for bound in columns:
+        name, column = bound.column.name, bound.column
+        bad = texts[name].is_not_null() & read[name].is_null()
+        lines = texts.filter(bad).select(LINE, name)
+        what = ((line, _reason(text, bound)) for line, text in lines.iter_rows())
+        faults.add_rows(shown, bound.header, what, lines.height, column.allowed)
+        if not column.may_be_empty:
+            empty = texts.filter(texts[name].is_null())[LINE]
+            what = ((line, "empty cell") for line in empty)
+            faults.add_rows(shown, bound.header, what, empty.len(), column.allowed)
+    return read
+
+
+def _parsed(bound: BoundColumn) -> pl.Expr:
+    """Return a text such as ``12.5p`` as a number in SI, null where it is none."""
+    name = bound.column.name
+    parts = pl.col(name).str.extract_groups(CELL_PATTERN).struct
+    suffixes = cell_suffixes(bound.column.unit, bound.unit)
+    power = _looked_up(parts.field("3"), {text: unit.power for text, unit in suffixes.items()})
+    shift = _looked_up(parts.field("3"), {text: unit.shift for text, unit in suffixes.items()})
+    exponent = parts.field("2").cast(pl.Int64).fill_null(0) + power
+    number = pl.concat_str(parts.field("1"), pl.lit("e"), exponent.cast(pl.String))
+    value = number.cast(pl.Float64, strict=False) + shift
+    return pl.when(value.is_finite()).then(value).alias(name)
+
+
+def _looked_up(text: pl.Expr, meaning: Mapping[str, int] | Mapping[str, float]) -> pl.Expr:
+    kind = pl.Int64 if all(isinstance(value, int) for value in meaning.values()) else pl.Float64
+    return text.replace_strict([*meaning], [*meaning.values()], default=None, return_dtype=kind)
+
+
+def _reason(text: str, bound: BoundColumn) -> str:
+    try:
+        parse_si(text, bound.column.unit, bound.unit)
+    except UnitError as error:
+        return str(error).partition("; ")[0]
+    return f"'{text}' is not a number"
+
+
+def _check_limits(
+    read: pl.DataFrame,
+    texts: pl.DataFrame,
+    columns: Iterable[BoundColumn],
+    shown: str,
+    faults: TableFaults,
+) -> None:
+    for bound in columns:
+        if bound.column.is_text:
+            continue
+        name = bound.column.name
+        broken = read.select(breaks_limits(bound.column, pl.col(name)).fill_null(value=False))
+        lines = texts.filter(broken.to_series()).select(LINE, name)
+        what = ((line, f"'{text}'") for line, text in lines.iter_rows())
+        faults.add_rows(shown, bound.header, what, lines.height, bound.column.allowed)
+
+
+def _check_order(
+    read: pl.DataFrame,
+    rules: Iterable[tuple[str, str]],
+    layout: Layout,
+    shown: str,
+    faults: TableFaults,
+) -> None:
+    headers = {bound.column.name: bound.header for bound in layout.columns}
+    operands = {name: pl.col(name) for name in headers}
+    for pair in rules:
+        lesser, greater = (headers.get(name, name) for name in pair)
+        values = [operands[n] if n in operands else pl.lit(layout.fixed[n]) for n in pair]
+        broken = read.filter(breaks_order(pair, operands, layout.fixed)).select(
+            pl.col(LINE), values[0].alias("lesser"), values[1].alias("greater")
+        )
+        what = (
+            (line, f"{low:g} is above {high:g} in {greater}")
+            for line, low, high in broken.iter_rows()
+        )
+        faults.add_rows(shown, lesser, what, broken.height, f"at most {greater} of the same row")

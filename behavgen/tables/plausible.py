@@ -1,0 +1,65 @@
+"""Values that are possible but unlikely: worth a look, no fault."""
+
+from __future__ import annotations
+
+import dataclasses
+
+import polars as pl
+
+from behavgen.quantities import Column, columns_of
+from behavgen.tables.parts import Part
+from behavgen.units import format_celsius, format_si
+
+__all__ = ["plausible_notices", "zero_overdrive_dropped"]
+
+_RESOLUTION = 1e-15  # relative; a difference this small is rounding of the file's numbers
+
+
+def plausible_notices(part: Part) -> list[str]:
+    """Return a word on every column with numbers of an unusual size: is the unit right?"""
+    notices = []
+    known = columns_of(part.source.quantity)
+    for name in part.frame.columns:
+        column = known.get(name)
+        if column is None or column.is_text or column.usual == (0.0, float("inf")):
+            continue
+        low, high = column.usual
+        size = part.frame[name].abs()
+        odd = size.filter((size > high) | ((size < low) & (size > 0.0)))
+        if not odd.is_empty():
+            header = part.headers.get(name, name)
+            notices.append(
+                f"{part.source.file} column '{header}': {odd.len()} values from "
+                f"{_shown(odd.min(), column)} to {_shown(odd.max(), column)}; is the unit right?"
+            )
+    return notices
+
+
+def zero_overdrive_dropped(part: Part, notices: list[str]) -> Part:
+    """Leave out delays at no overdrive: noise alone sets them, so they follow no law."""
+    if part.source.quantity != "delay":
+        return part
+    fixed = {name: pl.lit(value) for name, value in part.fixed.items()}
+    columns = {name: pl.col(name) for name in part.frame.columns} | fixed
+    if "overdrive" in columns:
+        zero = columns["overdrive"] == 0.0
+    else:
+        offset = columns.get("offset", pl.lit(0.0))
+        level = columns["vdiff"]
+        zero = (level - offset).abs() <= _RESOLUTION * level.abs()
+    resolved_by_chance = zero & columns["delay"].is_not_null()
+    kept = part.frame.filter(~resolved_by_chance)
+    dropped = part.frame.height - kept.height
+    if not dropped:
+        return part
+    notices.append(
+        f"{part.source.file}: {dropped} delays at zero overdrive are not used; "
+        "noise alone decides there"
+    )
+    source = dataclasses.replace(part.source, rows=kept.height)
+    return dataclasses.replace(part, frame=kept, source=source)
+
+
+def _shown(value: object, column: Column) -> str:
+    number = float(str(value))
+    return format_celsius(number) if column.unit == "K" else format_si(number, column.unit)
