@@ -229,19 +229,23 @@ def check_given_file(
     """
     from behavgen.check.check import check  # noqa: PLC0415  cocotb
 
-    try:
-        text = file.read_bytes().decode("utf-8")
-    except (OSError, UnicodeDecodeError) as error:
-        fault = Fault(
-            file=str(file), what=f"cannot be read: {error}", allowed="a SystemVerilog file in UTF-8"
-        )
-        raise ProjectError(fault) from error
     place = fitted.place
     folder = place.folder / "check-of-given-file"
-    given = EmittedFile(path=file.name, text=text)
+    given = EmittedFile(path=file.name, text=_read_given(file))
     report = check(fitted.model, given, folder=folder, jobs=jobs, progress=progress)
     write_whole(folder / "check.json", dump_check_report(report))
     return CheckedCell(place=place, report=report, folder=folder, made=True)
+
+
+def _read_given(file: Path) -> str:
+    try:
+        return file.read_bytes().decode("utf-8")
+    except OSError as error:
+        reason = error.strerror or "unreadable"
+    except UnicodeDecodeError:
+        reason = "not UTF-8 text"
+    fault = Fault(file=str(file), what=f"cannot be read: {reason}", allowed="a SystemVerilog file")
+    raise ProjectError(fault)
 
 
 def report_cell(emitted: EmittedCell, checked: CheckReport | None) -> ReportedCell:

@@ -6,7 +6,7 @@ names how many decisions it must have; a short one fails the check.
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,21 +14,22 @@ import numpy.typing as npt
 
 from behavgen.check.agreement import Agreement
 from behavgen.check.runs import MODES, Run
-from behavgen.check.stimulus import BALANCED, LEAST_SWEPT_V, Stimulus
+from behavgen.check.stimulus import BALANCED, LEAST_SWEPT_V, NOISY, Stimulus
 from behavgen.check.verdict import Stratum
 from behavgen.check.waveform import Expectation
 from behavgen.model import ComparatorModel, Range
+from behavgen.reference import VOLTAGE_STEPS_PER_V
 from behavgen.units import ZERO_CELSIUS_K, format_si
 
-__all__ = ["FEWEST_DECISIONS", "PlayedRun", "count_strata"]
+__all__ = ["PlayedRun", "count_strata"]
 
+Floats = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
-Slice = tuple[str, str, int, Mask]
-"""Group, name, required decisions, and which of a run's decisions lie in it."""
 
-FEWEST_DECISIONS = 20_000
+ALL_DECISIONS = 20_000
 _SMALL_V = 1e-5
 _BALANCED_V = 1e-6
+_CLOSE_TICKS = 60
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -41,6 +42,16 @@ class PlayedRun:
     agreement: Agreement
 
 
+@dataclass(frozen=True, slots=True)
+class _Slice:
+    """A stratum before counting; `select` may return one bool for a whole run."""
+
+    group: str
+    name: str
+    required: int
+    select: Callable[[PlayedRun], Mask | bool]
+
+
 def count_strata(model: ComparatorModel, played: Iterable[PlayedRun]) -> tuple[Stratum, ...]:
     """Count compared decisions and disagreements in every stratum.
 
@@ -49,19 +60,152 @@ def count_strata(model: ComparatorModel, played: Iterable[PlayedRun]) -> tuple[S
     model : ComparatorModel
     played : iterable of PlayedRun
     """
-    required: dict[tuple[str, str], int] = {
-        (group, name): least for group, name, least in _all_slices(model)
-    }
-    decisions = dict.fromkeys(required, 0)
-    wrong = dict.fromkeys(required, 0)
-    for one in played:
-        compared, faulty = one.agreement.compared, one.agreement.fault != 0
-        for key, mask in _masks(model, one).items():
-            if key in required:
-                decisions[key] += int((mask & compared).sum())
-                wrong[key] += int((mask & faulty).sum())
-    return tuple(
-        Stratum(group=key[0], name=key[1], decisions=decisions[key], required=least,
-                disagreements=wrong[key])
-        for key, least in required.items()
+    runs = tuple(played)
+    return tuple(_counted(one, runs) for one in _slices(model))
+
+
+def _counted(one: _Slice, runs: tuple[PlayedRun, ...]) -> Stratum:
+    decisions = disagreements = 0
+    for played in runs:
+        mask = played.agreement.compared & one.select(played)
+        decisions += int(mask.sum())
+        disagreements += int((mask & (played.agreement.fault != 0)).sum())
+    return Stratum(
+        group=one.group, name=one.name, required=one.required,
+        decisions=decisions, disagreements=disagreements,
     )  # fmt: skip
+
+
+def _slices(model: ComparatorModel) -> Iterator[_Slice]:
+    yield _Slice("all", "decisions", ALL_DECISIONS, lambda _: True)
+    for process in model.processes:
+        yield _Slice("process", process.name, 8000 // len(model.processes),
+                     lambda p, name=process.name: p.run.meant.process == name)  # fmt: skip
+    yield from _overdrive_slices(model)
+    yield from _noise_slices(model)
+    yield from _condition_slices(model)
+    yield from _phase_slices(model)
+    yield from _switch_slices()
+
+
+def _overdrive_slices(model: ComparatorModel) -> Iterator[_Slice]:
+    def between(low: float, high: float) -> Callable[[PlayedRun], Mask]:
+        return lambda p: p.agreement.timed & (_magnitude(p) >= low) & (_magnitude(p) < high)
+
+    largest = 0.5 if model.box.overdrive_v is None else model.box.overdrive_v.high
+    low = max(LEAST_SWEPT_V, 0.0 if model.delay is None else model.delay.floor_v)
+    while low < largest:
+        high = 10.0 * low if 30.0 * low <= largest else largest
+        name = f"{format_si(low, 'V')} to {format_si(high, 'V')}"
+        yield _Slice("overdrive with visible delay", name, 100, between(low, high))
+        low = high
+    yield _Slice("overdrive with visible delay", f"above {format_si(largest, 'V')}", 20,
+                 between(largest, np.inf))  # fmt: skip
+    yield _Slice("overdrive", "exactly zero", 100, lambda p: _magnitude(p) == 0.0)
+    yield _Slice("overdrive", f"below {format_si(_SMALL_V, 'V')}, noise off", 4000,
+                 lambda p: _noiseless(model, p) & (_magnitude(p) < _SMALL_V))  # fmt: skip
+
+
+def _noise_slices(model: ComparatorModel) -> Iterator[_Slice]:
+    if model.noise is None:
+        return
+    yield _Slice("noise on", "within 10 sigma", 3000,
+                 lambda p: np.isin(p.stimulus.aim, (NOISY, BALANCED)))  # fmt: skip
+    yield _Slice("noise on", f"taken back to below {format_si(_BALANCED_V, 'V')}", 1500,
+                 lambda p: (p.stimulus.aim == BALANCED) & (_magnitude(p) < _BALANCED_V))  # fmt: skip
+    yield _Slice("noise on", "draws beyond 6.7 sigma", 4, lambda p: _first(p) & p.run.balanced)
+
+
+def _condition_slices(model: ComparatorModel) -> Iterator[_Slice]:
+    box, off = model.box, model.cell.supply_off_v
+    if box.temperature_k is not None:
+        yield from _range_slices("temperature", box.temperature_k, 1e-3, 400, _temperature)
+    if box.vdd_v is not None and model.cell.pins.vdd is not None:
+        for one in _range_slices("supply", box.vdd_v, 0.0, 100, lambda p: p.stimulus.vdd_v):
+            if one.name != "below" or off is None or off < box.vdd_v.low:
+                yield one
+    if box.vcm_v is not None:
+        step = 1.0 / VOLTAGE_STEPS_PER_V
+        yield from _range_slices("common mode", box.vcm_v, step, 100, lambda p: p.stimulus.vcm_v)
+
+
+def _range_slices(
+    group: str, span: Range, step: float, required: int, value: Callable[[PlayedRun], Floats]
+) -> Iterator[_Slice]:
+    """Return slices of one condition; within `step` of an end it is at the end."""
+    low, high = span.low, span.high
+    yield _Slice(group, "below", required, lambda p: value(p) < low - step)
+    yield _Slice(group, "at its low end", required, lambda p: np.abs(value(p) - low) <= step)
+    if low < high:
+        yield _Slice(group, "between", required,
+                     lambda p: (value(p) > low + step) & (value(p) < high - step))  # fmt: skip
+        yield _Slice(group, "at its high end", required, lambda p: np.abs(value(p) - high) <= step)
+    yield _Slice(group, "above", required, lambda p: value(p) > high + step)
+
+
+def _phase_slices(model: ComparatorModel) -> Iterator[_Slice]:
+    yield _Slice("decision phase", "resolved", 10_000, lambda p: p.expected.resolved)
+    if model.delay is not None:
+        yield _Slice("decision phase", "too short", 2000, _too_short)
+        yield _Slice("decision phase", "ends close to the ready", 200, _close)
+        for mode, name in enumerate(MODES):
+            yield _Slice("unresolved", name, 300,
+                         lambda p, mode=mode: _unresolved(p, mode))  # fmt: skip
+    yield _Slice("unresolved", "forced", 300, _forced)
+    yield _Slice("reset", "returns", 10_000, lambda p: p.expected.returns)
+    if model.reset is not None:
+        yield _Slice("reset", "cut off by the next edge", 500, lambda p: ~p.expected.returns)
+    yield _Slice("reset", "power-up", 10, _first)
+
+
+def _switch_slices() -> Iterator[_Slice]:
+    switches: tuple[tuple[str, Callable[[PlayedRun], bool]], ...] = (
+        ("NOISE_ON = 0", lambda p: not p.run.meant.noise_on),
+        ("MISMATCH_ON = 1", lambda p: p.run.meant.mismatch_on),
+        ("DELAY_ON = 0", lambda p: not p.run.meant.delay_on),
+        ("OFFSET_SHIFT_V", lambda p: p.run.meant.offset_shift_v != 0.0),
+        ("FORCE_UNRESOLVED_EVERY", lambda p: p.run.meant.force_unresolved_every > 0),
+        ("SEED = 0", lambda p: p.run.meant.seed == 0),
+        ("plusargs", lambda p: p.run.meant != p.run.given),
+    )
+    for name, select in switches:
+        yield _Slice("switch", name, 400, select)
+
+
+def _magnitude(played: PlayedRun) -> Floats:
+    return np.abs(played.stimulus.trace.overdrive_v)
+
+
+def _temperature(played: PlayedRun) -> Floats:
+    kelvin = played.run.meant.temperature_c + ZERO_CELSIUS_K
+    return np.full(len(played.stimulus.edge), kelvin)
+
+
+def _noiseless(model: ComparatorModel, played: PlayedRun) -> bool:
+    return model.noise is None or not played.run.meant.noise_on
+
+
+def _first(played: PlayedRun) -> Mask:
+    return np.arange(len(played.stimulus.edge)) == 0
+
+
+def _phase(played: PlayedRun) -> npt.NDArray[np.int64]:
+    return played.stimulus.end - played.stimulus.edge
+
+
+def _too_short(played: PlayedRun) -> Mask:
+    short: Mask = _phase(played) < played.stimulus.trace.delay_ticks
+    return short & played.run.meant.delay_on
+
+
+def _close(played: PlayedRun) -> Mask:
+    close: Mask = np.abs(_phase(played) - played.stimulus.trace.delay_ticks) <= _CLOSE_TICKS
+    return close & played.run.meant.delay_on
+
+
+def _unresolved(played: PlayedRun, mode: int) -> Mask:
+    return ~played.expected.resolved & (played.run.meant.unresolved_mode == mode)
+
+
+def _forced(played: PlayedRun) -> Mask:
+    return ~played.expected.resolved & (played.run.meant.force_unresolved_every > 0)

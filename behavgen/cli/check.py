@@ -121,8 +121,8 @@ def _covered(strata: Sequence[Stratum]) -> Iterator[str]:
         listed = list(members)
         least = min(listed, key=lambda stratum: stratum.decisions)
         yield (
-            f"{group}: {len(listed)} parts, fewest decisions {least.decisions} in {least.name} "
-            f"({least.required} needed)"
+            f"{group}: {number_of(len(listed), 'part')}, fewest decisions {least.decisions} "
+            f"in {least.name} ({least.required} needed)"
         )
 
 

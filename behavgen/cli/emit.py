@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from behavgen.cli.cells import CellResult, add_cells_argument, command_line, each_cell
 from behavgen.cli.parser import Options, Parser
-from behavgen.cli.terminal import Terminal
+from behavgen.cli.terminal import Terminal, aligned
 from behavgen.cli.verdict import Outcome
-from behavgen.cli.wording import labelled, shown_path, state_text
+from behavgen.cli.wording import shown_path, state_text
 from behavgen.pipeline import CellPlace, EmittedCell, emit_cell, fit_cell
 
 ABOUT = """\
@@ -35,13 +35,9 @@ def _emit(place: CellPlace) -> CellResult:
 
 def emit_result(emitted: EmittedCell) -> CellResult:
     """Return what there is to say of an emitted cell."""
-    paths = [shown_path(path) for path in emitted.paths]
-    labels = [_LANGUAGES.get(path.suffix, path.suffix) for path in emitted.paths]
+    state = state_text(made=emitted.made)
+    rows = [(shown_path(path), _LANGUAGES[path.suffix] + state) for path in emitted.paths]
     return CellResult(
-        lines=[
-            line
-            for label, path in zip(labels, paths, strict=True)
-            for line in labelled(label, path + state_text(made=emitted.made))
-        ],
-        data={"files": paths, "made": emitted.made},
+        lines=aligned(rows),
+        data={"files": [shown for shown, _ in rows], "made": emitted.made},
     )

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import asdict
+from itertools import groupby
 from statistics import median
 
 from behavgen.cli.cells import CellResult, add_cells_argument, command_line, each_cell
@@ -19,7 +20,7 @@ from behavgen.cli.wording import (
     shown_path,
     state_text,
 )
-from behavgen.model import ComparatorModel, Condition, ConditionFit, Surface
+from behavgen.model import ComparatorModel, Condition, ConditionFit, Parameter, Surface
 from behavgen.pipeline import CellPlace, FittedCell, fit_cell
 from behavgen.units import format_celsius, format_si
 
@@ -57,10 +58,13 @@ def fit_result(fitted: FittedCell) -> CellResult:
             *labelled("model", file + state_text(made=fitted.made)),
             *labelled("range", _box_text(model)),
             *(line for label, text in _effects(model) for line in labelled(label, text)),
-            *_parameter_lines(model),
+            *_parameter_lines(_ends_of_each_name(model.parameters)),
             *(line for notice in model.notices for line in labelled("look at", notice)),
         ],
-        more=aligned([_condition_row(fit) for fit in model.fits], indent=4),
+        more=[
+            *_parameter_lines(model.parameters),
+            *aligned([_condition_row(fit) for fit in model.fits]),
+        ],
         data={
             "model": file,
             "made": fitted.made,
@@ -145,7 +149,16 @@ def _quality_text(fits: Sequence[ConditionFit]) -> str:
     return "; ".join(parts)
 
 
-def _parameter_lines(model: ComparatorModel) -> list[str]:
+def _ends_of_each_name(parameters: Sequence[Parameter]) -> list[Parameter]:
+    """Return the first and the last of the parameters of one name, as of delays along a curve."""
+    shown: list[Parameter] = []
+    for _, group in groupby(parameters, key=lambda parameter: parameter.name):
+        first, *others = group
+        shown += [first, *others[-1:]]
+    return shown
+
+
+def _parameter_lines(parameters: Sequence[Parameter]) -> list[str]:
     return aligned(
         [
             (
@@ -154,7 +167,7 @@ def _parameter_lines(model: ComparatorModel) -> list[str]:
                 interval_text(parameter.estimate, parameter.unit),
                 parameter.description,
             )
-            for parameter in model.parameters
+            for parameter in parameters
         ]
     )
 

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from behavgen.cli.caution import CAUTION
 from behavgen.cli.parser import Options
 from behavgen.cli.terminal import Terminal
+from behavgen.cli.wording import wrapped
 from behavgen.errors import BehavgenError, Fault, FitError, TableError, ToolError
 
 __all__ = ["JSON_FORMAT", "Outcome", "finish"]
@@ -79,7 +80,8 @@ def finish(outcome: Outcome, options: Options, terminal: Terminal) -> int:
     """Print diagnostics and verdict, and return the exit code."""
     exit_code = outcome.exit_code(strict=options.strict)
     if outcome.shows_results:
-        terminal.say(terminal.paint(CAUTION, "quiet"))
+        for line in wrapped(CAUTION):
+            terminal.say(terminal.paint(line, "quiet"))
     for fault in outcome.faults:
         terminal.complain(str(fault))
     if options.strict:

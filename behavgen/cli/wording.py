@@ -17,6 +17,7 @@ __all__ = [
     "range_text",
     "shown_path",
     "state_text",
+    "wrapped",
 ]
 
 _LABEL_WIDTH = 11
@@ -30,11 +31,17 @@ def labelled(label: str, text: str) -> list[str]:
     ['  noise      5 conditions']
     """
     head = f"  {label:<{_LABEL_WIDTH}}"
-    lines = textwrap.wrap(
-        text, _LINE_WIDTH - len(head), break_long_words=False, break_on_hyphens=False
-    )
-    pad = " " * len(head)
-    return [(head if index == 0 else pad) + line for index, line in enumerate(lines or [""])]
+    lines = wrapped(text, indent=len(head)) or [head.rstrip()]
+    return [head + lines[0][len(head) :], *lines[1:]]
+
+
+def wrapped(text: str, *, indent: int = 0) -> list[str]:
+    """Return the lines of a text, none wider than a terminal usually is; paths stay whole."""
+    pad = " " * indent
+    return textwrap.wrap(
+        text, _LINE_WIDTH, initial_indent=pad, subsequent_indent=pad,
+        break_long_words=False, break_on_hyphens=False,
+    )  # fmt: skip
 
 
 def range_text(span: Range | None, unit: str) -> str:

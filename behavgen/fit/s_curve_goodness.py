@@ -10,7 +10,7 @@ import numpy.typing as npt
 from scipy.special import chdtrc
 
 from behavgen.fit.s_curve_likelihood import Rows, counts_loglik
-from behavgen.formulas.gaussian import GaussianTails, gaussian_tails
+from behavgen.formulas.gaussian import GaussianTails, gaussian_tails, normal_pdf
 
 __all__ = ["MISFIT_P", "Fitted", "Goodness", "judge_goodness", "tail_z"]
 
@@ -22,6 +22,9 @@ MISFIT_P = 1e-3
 
 _LEAST_EVIDENCE = 0.05
 """Expected goodness statistic, in squared residuals, below which there is nothing to test."""
+
+_CELL_VARIANCE = 5.0
+"""Levels are pooled until so many wrong decisions are expected (common practice: 5)."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -76,46 +79,83 @@ class Goodness(NamedTuple):
 
 
 def judge_goodness(at: Fitted) -> Goodness:
-    """Compare squared residuals with their expectation.
-
-    Pearson's statistic lets one improbable decision far out on the curve cry wolf,
-    and its chi-square law fails for single decisions. The test therefore damps
-    each term, ``r^2 / (v + 1)`` with the binomial variance `v`, and refers the sum
-    to the scaled chi-square variable with its mean and variance, which follow from
-    the fourth binomial moment ``v + 3 v^2 (1 - 2/n)`` and the rows' leverages
-    (derived; for `v` well above 1 it is Pearson's test).
-    """
+    """Compare counts with the fitted curves; see `_statistic` for the test."""
     rows, total = at.rows, at.rows.total
     below, above = np.exp(at.tails.log_below), np.exp(at.tails.log_above)
     variance = at.trials * below * above
-    residual2 = np.square(rows.ones - at.trials * below)
-    free = 1.0 - at.weight * _leverage(at)
-    damped = 1.0 / (variance + 1.0)
-    statistic = total(residual2 * damped)
-    mean = total(variance * free * damped)
-    kurtosis = variance * (1.0 - 6.0 * below * above)
-    spread = total((2.0 * variance**2 * free + kurtosis * free**2) * damped**2)
+    residual = rows.ones - at.trials * below
+    statistic, mean, spread = _statistic(at, residual, variance, below * above)
     degrees_of_freedom = np.bincount(rows.curve[at.trials > 0], minlength=rows.curves) - 2
     testable = (degrees_of_freedom > 0) & (mean > _LEAST_EVIDENCE)
     p = np.full(rows.curves, np.nan)
     scale = 2.0 * mean[testable] / spread[testable]
     p[testable] = chdtrc(scale * mean[testable], scale * statistic[testable])
     overdispersion = np.ones(rows.curves)
-    misfit = testable & (np.nan_to_num(p, nan=1.0) < MISFIT_P)
+    misfit = np.nan_to_num(p, nan=1.0) < MISFIT_P
     overdispersion[misfit] = np.maximum(statistic[misfit] / mean[misfit], 1.0)
     return Goodness(
         deviance=2.0 * (total(counts_loglik(rows.ones, rows.zeros)) - at.loglik),
-        pearson=total(residual2 / np.maximum(variance, np.finfo(float).tiny)),
+        pearson=total(residual**2 / np.maximum(variance, np.finfo(float).tiny)),
         degrees_of_freedom=degrees_of_freedom,
         p=p,
         overdispersion=overdispersion,
     )
 
 
-def _leverage(at: Fitted) -> Floats:
-    """Return the variance of each row's fitted z."""
-    c, curve = at.covariance, at.rows.curve
-    return c[curve, 0, 0] + at.z * (2.0 * c[curve, 0, 1] + at.z * c[curve, 1, 1])
+def _statistic(
+    at: Fitted, residual: Floats, variance: Floats, spread: Floats
+) -> tuple[Floats, Floats, Floats]:
+    """Return a sum of squared residuals with its mean and variance if the law holds.
+
+    Pearson's statistic lets one improbable decision far out on the curve cry wolf,
+    and says nothing of single decisions. Here neighbouring levels are first pooled
+    into cells, then each cell's term is damped, ``r^2 / (v + 1)`` with its binomial
+    variance `v`. Referred to the scaled chi-square variable of the same mean and
+    variance this is Pearson's test where `v` is large. The moments follow from the
+    fourth binomial moment ``3 v^2 + v (1 - 6 p q)`` and each cell's leverage, the
+    part of its variance that the two fitted parameters take (derived).
+
+    Parameters
+    ----------
+    at : Fitted
+    residual, variance, spread : ndarray, shape (N,)
+        Ones less expected ones, binomial variance, and ``p q``, of each row.
+    """
+    cell, curve = _cells(at, variance)
+    r, v = np.bincount(cell, residual), np.bincount(cell, variance)
+    excess = np.bincount(cell, variance * (1.0 - 6.0 * spread))
+    slope = at.trials * normal_pdf(at.z)
+    shift, stretch = np.bincount(cell, slope), np.bincount(cell, slope * at.z)
+    c = at.covariance[curve]
+    taken = shift * shift * c[:, 0, 0] + stretch * (2 * shift * c[:, 0, 1] + stretch * c[:, 1, 1])
+    free = 1.0 - taken / np.maximum(v, np.finfo(float).tiny)
+    damped = 1.0 / (v + 1.0)
+
+    def total(per_cell: Floats) -> Floats:
+        return np.bincount(curve, per_cell, minlength=at.rows.curves)
+
+    return (
+        total(r * r * damped),
+        total(v * free * damped),
+        total((2.0 * v * v * free + excess * free * free) * damped * damped),
+    )
+
+
+def _cells(at: Fitted, variance: Floats) -> tuple[Integers, Integers]:
+    """Pool neighbouring levels of a curve; return each row's cell and each cell's curve.
+
+    A cell spans `_CELL_VARIANCE`; levels that carry more stand alone.
+    """
+    order = np.lexsort((at.z, at.rows.curve))
+    curve, own = at.rows.curve[order], variance[order]
+    first = np.ones(curve.size, dtype=bool)
+    first[1:] = np.diff(curve) > 0
+    so_far = np.cumsum(own) - 0.5 * own
+    step = np.floor((so_far - so_far[first][np.cumsum(first) - 1]) / _CELL_VARIANCE)
+    first[1:] |= np.diff(step) > 0
+    cell = np.empty(curve.size, dtype=np.int64)
+    cell[order] = np.cumsum(first) - 1
+    return cell, curve[first]
 
 
 def tail_z(at: Fitted) -> Floats:

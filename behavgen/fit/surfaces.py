@@ -201,10 +201,12 @@ def choose_by_left_out(
 ) -> SurfaceFit:
     """Choose shape, order and prior by leaving one condition out at a time.
 
-    The left-out errors have a closed form, residual / (1 - leverage), and so
-    have those with two conditions left out; selection is therefore repeated
-    inside every fold and the errors reported are of surfaces that never saw
-    their condition, not even to be chosen.
+    The fitted errors count too, so that of surfaces that foresee equally well
+    the one that goes through its own points is taken. Left-out errors have a
+    closed form, residual / (1 - leverage), and so have those with two
+    conditions left out; selection is therefore repeated inside every fold and
+    the errors reported are of surfaces that never saw their condition, not
+    even to be chosen.
 
     Parameters
     ----------
@@ -228,7 +230,8 @@ def choose_by_left_out(
         metric = np.broadcast_to(np.eye(targets.shape[1]), (len(values), *(targets.shape[1],) * 2))
     single = residual / _slack(smoother)[..., None]
     terms = _terms(candidates)
-    best = _simplest(_cost(single, metric).mean(axis=-1), terms)
+    fitted = _cost(residual, metric).mean(axis=-1)
+    best = _simplest(_cost(single, metric).mean(axis=-1) + fitted, terms)
     left_out = _nested(smoother, residual, single, metric, terms) if nested else single[best]
     if len(values) == 1:
         left_out = np.full_like(targets, np.nan)
@@ -275,7 +278,8 @@ def _nested(
         across = smoother[:, :, i]
         determinant = np.maximum(slack * slack[:, i : i + 1] - across * smoother[:, i, :], 1e-12)
         pair = slack[:, i, None, None] * residual + across[..., None] * residual[:, i : i + 1]
-        cost = _cost(pair / determinant[..., None], metric)
+        fitted = residual + across[..., None] * single[:, i : i + 1]
+        cost = _cost(pair / determinant[..., None], metric) + _cost(fitted, metric)
         cost[:, i] = 0.0
         left_out[i] = single[_simplest(cost.sum(axis=-1), terms), i]
     return left_out

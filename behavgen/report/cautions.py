@@ -81,7 +81,7 @@ def _delay_tail(model: ComparatorModel) -> str:
     floor = model.delay.floor_v
     decades = math.log10(span.low / floor)
     return (
-        f"Delays were tabulated for overdrives of {range_text(span, 'V')}. Below, down to the floor "
+        f"The tables reach overdrives of {range_text(span, 'V')}. Below, down to the floor "
         f"of {si_text(floor, 'V')} ({decades:.0f} decades), delays and the rates of unresolved "
         f"decisions {law}."
     )

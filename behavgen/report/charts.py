@@ -26,11 +26,11 @@ MARKERS = {
     "square": (-2.5, -2.5, "h5v5h-5z"),
     "triangle": (0.0, -3.5, "l3 6h-6z"),
     "diamond": (0.0, -3.5, "l3.5 3.5-3.5 3.5-3.5-3.5z"),
-    "cross": (-2.5, -2.5, "l5 5m0-5l-5 5"),
-    "plus": (-3.0, 0.0, "h6m-3-3v6"),
+    "cross": (-2.5, -2.5, "l5 5m0-5l-5 5m0-5"),
+    "plus": (-3.0, 0.0, "h6m-3-3v6m-3-3"),
     "speck": (0.0, 0.0, "h0"),
 }
-"""Name to where the stroke starts, seen from the point, and how it goes on."""
+"""Name to where the stroke starts, seen from the point, and how it goes on and back there."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -213,10 +213,15 @@ def _draw_dots(panel: Panel, dots: Dots, width: float, height: float) -> str:
 
 
 def _marks(marker: str, x: Iterable[float], y: Iterable[float]) -> str:
+    """Draw markers one after the other, each by its step from the last in tenths of a unit."""
     across, along, stroke = MARKERS[marker]
-    return "".join(
-        f"M{_n(a + across)} {_n(b + along)}{stroke}" for a, b in zip(x, y, strict=True)
-    )
+    starts = [(round(10 * (a + across)), round(10 * (b + along))) for a, b in zip(x, y, strict=True)]
+    text, last = "", (0, 0)
+    for start in starts:
+        step = _n(0.1 * (start[0] - last[0])), _n(0.1 * (start[1] - last[1]))
+        text += f"m{step[0]}{'' if step[1].startswith('-') else ' '}{step[1]}{stroke}"
+        last = start
+    return text
 
 
 def _marker_class(marker: str) -> str:
@@ -262,4 +267,5 @@ def _path(style: str, d: str, title: str = "") -> str:
 def _n(value: float) -> str:
     """Write a place with a tenth of a unit."""
     text = f"{value:.1f}"
-    return text[:-2] if text.endswith(".0") else text
+    text = text[:-2] if text.endswith(".0") else text
+    return "0" if text == "-0" else text

@@ -32,6 +32,10 @@ class Curve:
         The emitted model at the table's x.
     line_x, line_y : ndarray, shape (M,)
         The emitted model as a line.
+    error : ndarray, shape (N,)
+        Relative error of the model, NaN where it has none: for a delay of the
+        delay; for a window of the time at which the model's window is as wide,
+        since window and delay are one curve; for shares of ones the difference.
     trials : ndarray of int, shape (N,) or (0,)
     """
 
@@ -41,46 +45,58 @@ class Curve:
     model_y: Floats
     line_x: Floats
     line_y: Floats
+    error: Floats
     trials: npt.NDArray[np.int64]
-
-    @property
-    def residual(self) -> Floats:
-        """Relative error of the model, shape (N,); NaN where one side is not finite or zero."""
-        usable = np.isfinite(self.model_y) & (self.y != 0.0)
-        return np.where(usable, self.model_y, np.nan) / np.where(usable, self.y, 1.0) - 1.0
 
 
 def curves(model: ComparatorModel, reference: Reference, quantity: str) -> tuple[Curve, ...]:
     """Return one curve for each condition of ``"delay"``, ``"window"`` or ``"noise"``."""
-    law = {"delay": reference.delay, "window": reference.window, "noise": reference.probability}
     found = (p for p in model.points if p.quantity == quantity and len(p.x) > 0)
-    return tuple(_curve(points, law[quantity]) for points in found)
+    return tuple(_curve(points, reference) for points in found)
 
 
 def worst(members: Sequence[Curve]) -> float:
-    """Return the largest magnitude of the residuals; NaN without any."""
-    values = _residuals(members)
+    """Return the largest magnitude of the errors; NaN without any."""
+    values = _errors(members)
     return float(np.abs(values).max()) if len(values) else float("nan")
 
 
 def rms(members: Sequence[Curve]) -> float:
-    """Return the root mean square of the residuals; NaN without any."""
-    values = _residuals(members)
+    """Return the root mean square of the errors; NaN without any."""
+    values = _errors(members)
     return float(np.sqrt(np.mean(values**2))) if len(values) else float("nan")
 
 
-def _residuals(members: Sequence[Curve]) -> Floats:
-    values = np.concatenate([c.residual for c in members]) if members else np.empty(0)
+def _errors(members: Sequence[Curve]) -> Floats:
+    values = np.concatenate([c.error for c in members]) if members else np.empty(0)
     return values[np.isfinite(values)]
 
 
-def _curve(points: CurvePoints, law: Callable[..., Floats]) -> Curve:
+def _curve(points: CurvePoints, reference: Reference) -> Curve:
     x, y = np.array(points.x), np.array(points.y)
     keywords = reference_keywords(points.condition)
+    law = _law(points.quantity, reference)
     line_x = _line_places(x, logarithmic=points.quantity == "delay")
-    return Curve(condition=points.condition, x=x, y=y, model_y=law(x, **keywords), line_x=line_x,
+    model_y = law(x, **keywords)
+    if points.quantity == "window":
+        error = _relative(reference.delay(0.5 * y, **keywords), x)
+    else:
+        error = _relative(model_y, y) if points.quantity == "delay" else model_y - y
+    return Curve(condition=points.condition, x=x, y=y, model_y=model_y, error=error, line_x=line_x,
                  line_y=law(line_x, **keywords),
                  trials=np.array(points.trials, dtype=np.int64))  # fmt: skip
+
+
+def _law(quantity: str, reference: Reference) -> Callable[..., Floats]:
+    laws: dict[str, Callable[..., Floats]] = {
+        "delay": reference.delay, "window": reference.window, "noise": reference.probability,
+    }  # fmt: skip
+    return laws[quantity]
+
+
+def _relative(model: Floats, table: Floats) -> Floats:
+    usable = np.isfinite(model) & (table != 0.0)
+    return np.where(usable, model, np.nan) / np.where(usable, table, 1.0) - 1.0
 
 
 def _line_places(x: Floats, *, logarithmic: bool) -> Floats:

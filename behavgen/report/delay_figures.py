@@ -41,7 +41,7 @@ _Panels = dict[tuple[object, ...], list[Curve]]
 
 
 def delay_overview(members: Sequence[Curve], middle: Condition) -> Figure:
-    """Return the chart of all conditions with the residuals under it."""
+    """Return the chart of all conditions with the model's errors under it."""
     drawn = drawn_curves(members)
     chosen = spotlights(drawn, middle, [float(c.model_y.max()) for c in drawn])
     x = _overdrive_axis(drawn, most_ticks=7)
@@ -52,7 +52,7 @@ def delay_overview(members: Sequence[Curve], middle: Condition) -> Figure:
         title="Delay over overdrive",
         description=f"{len(drawn)} conditions: markers are table rows, lines the emitted model; "
         f"below, the model's error in per cent, at most {percent_text(worst(drawn))}.",
-        panels=overlay_panels(drawn, chosen, x, y),
+        panels=overlay_panels(drawn, chosen, x, y, "Model against table"),
     )
     return Figure(svg=draw_chart(chart), caption=_overview_caption(members, drawn),
                   legend=overlay_legend(drawn, chosen))  # fmt: skip
@@ -81,6 +81,7 @@ def delay_multiples(members: Sequence[Curve]) -> Multiples | None:
     shown = _worst_panels(panels)
     levels = _levels(conditions, series)[:_MOST_SERIES]
     axes = _small_axes(shown)
+    alike = len({y.high for _, y in axes}) == 1
     figures = tuple(
         _small_figure(i, group, series, levels, axes[i]) for i, group in enumerate(shown)
     )
@@ -88,7 +89,7 @@ def delay_multiples(members: Sequence[Curve]) -> Multiples | None:
         series_legend(i, f"{FIELD_TITLES[series]} {field_text(c, series)}")
         for i, c in enumerate(_samples(conditions, series, levels))
     )
-    return Multiples(figures=figures, legend=legend, note=_note(len(panels), len(shown)))
+    return Multiples(figures=figures, legend=legend, note=_note(len(panels), len(shown), alike=alike))
 
 
 def _series_field(conditions: Sequence[Condition], names: Sequence[str]) -> str:
@@ -128,8 +129,9 @@ def _worst_panels(panels: _Panels) -> list[list[Curve]]:
     return [group for group in panels.values() if id(group) in kept]
 
 
-def _note(panels: int, shown: int) -> str:
-    note = "Each small chart holds one combination of the remaining conditions."
+def _note(panels: int, shown: int, *, alike: bool) -> str:
+    note = "Each small chart holds one combination of the remaining conditions"
+    note += ", all on the same axes." if alike else "; mind that their delay axes differ."
     if shown < panels:
         note += f" Of {panels} combinations the {shown} that fit worst are drawn."
     return note
@@ -169,7 +171,8 @@ def _small_figure(
         panels=(Panel(x=axes[0], y=axes[1], layers=tuple(layers), height=130.0),),
         width=240.0, left=42.0,
     )  # fmt: skip
-    return Figure(svg=draw_chart(chart), caption=f"{words}: worst {percent_text(worst(group))}")
+    detail = f"worst {percent_text(worst(group))}"
+    return Figure(svg=draw_chart(chart), caption=words, detail=detail)
 
 
 def _overdrive_axis(members: Sequence[Curve], most_ticks: int) -> PlotAxis:

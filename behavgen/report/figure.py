@@ -28,10 +28,11 @@ class LegendEntry:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Figure:
-    """One drawing (SVG) and the words under it."""
+    """One drawing (SVG) and its words; `detail` is a second, quieter line of a small figure."""
 
     svg: str
     caption: str
+    detail: str = ""
     legend: tuple[LegendEntry, ...] = ()
 
 

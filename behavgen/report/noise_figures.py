@@ -150,8 +150,8 @@ def _small_figure(number: int, s: _SCurve) -> Figure:
         panels=(Panel(x=x, y=_share_axis(), layers=layers, height=130.0),),
         width=240.0, left=42.0,
     )  # fmt: skip
-    caption = f"{words}: σ {si_text(s.sigma_v, 'V')}, trip point {si_text(s.trip_v, 'V')}"
-    return Figure(svg=draw_chart(chart), caption=caption)
+    detail = f"σ {si_text(s.sigma_v, 'V')}, trip point {si_text(s.trip_v, 'V')}"
+    return Figure(svg=draw_chart(chart), caption=words, detail=detail)
 
 
 def _s_curves(members: Sequence[Curve], reference: Reference) -> list[_SCurve]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -47,15 +48,23 @@ def offset_multiples(model: ComparatorModel) -> Multiples | None:
         return None
     shown = sorted(found, key=lambda p: -len(p.y))[:_MOST_PANELS]
     figures = tuple(_quantile_figure(i, model, points) for i, points in enumerate(shown))
-    note = "" if len(shown) == len(found) else (
-        f"Of {len(found)} conditions the {len(shown)} with most instances are drawn."
-    )  # fmt: skip
+    note = _note(len(found), [len(p.y) for p in shown])
     legend = (
         LegendEntry(sample=swatch("s0", "dot", line=False), text="instances in order"),
         LegendEntry(sample=swatch("ink"), text="mean of the instances and emitted sigma"),
         LegendEntry(sample=swatch("band-sample"), text="where 95 % of such order statistics fall"),
     )
     return Multiples(figures=figures, legend=legend, note=note)
+
+
+def _note(found: int, instances: Sequence[int]) -> str:
+    parts = []
+    if len(set(instances)) > 1:
+        parts.append("Fewer instances are a subset whose mean and spread differ by chance; the "
+                     "model relates conditions instance by instance.")  # fmt: skip
+    if len(instances) < found:
+        parts.append(f"Of {found} conditions the {len(instances)} with most instances are drawn.")
+    return " ".join(parts)
 
 
 def _quantile_figure(number: int, model: ComparatorModel, points: CurvePoints) -> Figure:
@@ -72,10 +81,10 @@ def _quantile_figure(number: int, model: ComparatorModel, points: CurvePoints) -
         description=f"{len(offsets)} instances, standard deviation {si_text(spread, 'V')}.",
         panels=(Panel(x=x, y=y, layers=layers, height=150.0),), width=240.0, left=42.0,
     )  # fmt: skip
-    caption = f"{words}: {len(offsets)} instances, standard deviation {si_text(spread, 'V')}"
+    detail = f"{len(offsets)} instances, σ {si_text(spread, 'V')}"
     if sigma is not None:
-        caption += f", emitted {si_text(sigma, 'V')}"
-    return Figure(svg=draw_chart(chart), caption=caption)
+        detail += f", emitted {si_text(sigma, 'V')}"
+    return Figure(svg=draw_chart(chart), caption=words, detail=detail)
 
 
 def _quantile_layers(offsets: Floats, sigma: float | None) -> tuple[Layer, ...]:

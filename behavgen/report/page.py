@@ -24,7 +24,6 @@ from behavgen.report.noise_figures import (
     s_curve_multiples,
     standardised_s_curves,
 )
-from behavgen.report.numbers import si_text
 from behavgen.report.offset_figures import offset_multiples
 from behavgen.report.summary import (
     Effect,
@@ -70,7 +69,6 @@ class _Content:
     key_numbers: tuple[KeyNumber, ...]
     middle_numbers: tuple[KeyNumber, ...]
     middle: str
-    supply_off: str
     drawings: _Drawings
     fit_tables: tuple[Table, ...]
     parameters: Table | None
@@ -113,7 +111,6 @@ def _content(model: ComparatorModel, check: CheckReport | None) -> _Content:
         key_numbers=key_numbers(model.parameters),
         middle_numbers=middle_numbers(model, reference, middle),
         middle=condition_words(middle),
-        supply_off=si_text(model.cell.supply_off_v or 0.0, "V"),
         drawings=_drawings(model, reference),
         fit_tables=fit_tables(model),
         parameters=parameter_table(model.parameters),

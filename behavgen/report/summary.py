@@ -57,7 +57,7 @@ def _fit_sentence(quantity: str, fits: Sequence[ConditionFit]) -> str:
     text += _error_clause(fits) + _held_out_clause(fits)
     p_values = [fit.goodness for fit in fits if fit.goodness is not None]
     if p_values:
-        text += f"; the smallest p-value of the goodness of fit is {probability_text(min(p_values))}"
+        text += f"; the smallest p\N{NON-BREAKING HYPHEN}value of the goodness of fit is {probability_text(min(p_values))}"
     return text + "."
 
 
@@ -125,7 +125,7 @@ def middle_numbers(
     if model.reset is not None:
         numbers.append(("reset delay", float(reference.reset_delay()), "s"))
     return tuple(
-        KeyNumber(name=name, value=si_text(value, unit, 4), interval="", meaning="")
+        KeyNumber(name=name, value=si_text(value, unit), interval="", meaning="")
         for name, value, unit in numbers
     )
 
@@ -164,6 +164,7 @@ def effects(model: ComparatorModel) -> tuple[Effect, ...]:
          "every decision resolves"),
         ("reset delay", model.reset is not None, "from the reset edge to the reset state",
          "the reset state returns with the edge"),
+        ("supply failure", _has_off_level(model), _off_words(model), "the cell is always on"),
     )  # fmt: skip
     known = tuple(
         Effect(name=name, modelled=there, words=what if there else f"not characterised: {absent}")
@@ -171,6 +172,14 @@ def effects(model: ComparatorModel) -> tuple[Effect, ...]:
     )
     never = tuple(Effect(name=name, modelled=False, words="not modelled") for name in NOT_CARRIED)
     return known + never
+
+
+def _has_off_level(model: ComparatorModel) -> bool:
+    return model.cell.supply_off_v is not None and model.cell.pins.vdd is not None
+
+
+def _off_words(model: ComparatorModel) -> str:
+    return f"off below {si_text(model.cell.supply_off_v or 0.0, 'V')} of supply; outputs go X"
 
 
 def _offset_words(model: ComparatorModel) -> str:

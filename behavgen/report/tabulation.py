@@ -13,7 +13,6 @@ from behavgen.report.numbers import (
     interval_text,
     percent_text,
     probability_text,
-    si_text,
 )
 
 __all__ = ["Column", "Row", "Table", "fit_tables", "parameter_table", "source_table"]
@@ -29,10 +28,20 @@ class Column:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Row:
-    """Cells of one row, the first heads the row; `mark` is ``""``, ``"worst"`` or ``"bad"``."""
+    """Cells of one row, the first heads the row.
+
+    Parameters
+    ----------
+    cells : tuple of str
+    mark : str
+        How the row looks: ``""``, ``"notable"`` or ``"bad"``.
+    flag : str
+        Why it is marked, in a word or two.
+    """
 
     cells: tuple[str, ...]
     mark: str = ""
+    flag: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -45,11 +54,11 @@ class Table:
 
 
 def parameter_table(parameters: Sequence[Parameter]) -> Table | None:
-    """Return all parameters with intervals, bounds and sources; None without any."""
+    """Return all parameters with intervals and sources; None without any."""
     if not parameters:
         return None
     titles = (("parameter", False), ("value", True), ("interval", True), ("confidence", True),
-              ("bounds", True), ("meaning", False), ("source", False))  # fmt: skip
+              ("meaning", False), ("source", False))  # fmt: skip
     return Table(
         caption="Parameters",
         columns=tuple(Column(title=t, numeric=n) for t, n in titles),
@@ -65,21 +74,9 @@ def _parameter_cells(parameter: Parameter) -> tuple[str, ...]:
         estimate_text(estimate, unit),
         interval_text(estimate, unit) if known else "–",
         percent_text(estimate.level) if known else "–",
-        _bounds_text(parameter),
         parameter.description or "–",
         parameter.source or "–",
     )
-
-
-def _bounds_text(parameter: Parameter) -> str:
-    low, high, unit = parameter.low, parameter.high, parameter.unit
-    if low is None and high is None:
-        return "–"
-    if high is None:
-        return f"≥ {si_text(low or 0.0, unit)}"
-    if low is None:
-        return f"≤ {si_text(high, unit)}"
-    return f"{si_text(low, unit)} … {si_text(high, unit)}"
 
 
 def source_table(sources: Sequence[Source]) -> Table | None:
@@ -108,7 +105,7 @@ def _fit_table(quantity: str, fits: Sequence[ConditionFit]) -> Table:
     names = varying_fields([fit.condition for fit in fits])
     measures = [m for m in _MEASURES if any(m[1](fit) for fit in fits)]
     estimates = list(dict.fromkeys(p.name for fit in fits for p in fit.parameters))
-    worst = _worst_fit(fits)
+    worst, flag = _worst_fit(fits)
     columns = (
         *(Column(title=FIELD_TITLES[name], numeric=name != "process") for name in names),
         Column(title="rows", numeric=True),
@@ -123,7 +120,8 @@ def _fit_table(quantity: str, fits: Sequence[ConditionFit]) -> Table:
                 *(text(fit) or "–" for _, text in measures),
                 *(_estimate_cell(fit, name) for name in estimates),
             ),
-            mark="worst" if fit is worst else "",
+            mark="notable" if fit is worst else "",
+            flag=flag if fit is worst else "",
         )
         for fit in fits
     )
@@ -145,7 +143,7 @@ _MEASURES: tuple[_Measure, ...] = (
     ("rms", lambda fit: _percent(fit.rms_relative)),
     ("worst", lambda fit: _percent(fit.worst_relative)),
     ("rms, left out", lambda fit: _percent(fit.held_out_rms_relative)),
-    ("p-value", lambda fit: "" if fit.goodness is None else probability_text(fit.goodness)),
+    ("p\N{NON-BREAKING HYPHEN}value", lambda fit: "" if fit.goodness is None else probability_text(fit.goodness)),
 )
 """Column title and its text for a fit; empty where it is not known."""
 
@@ -160,12 +158,12 @@ def _estimate_cell(fit: ConditionFit, name: str) -> str:
     return f"{estimate_text(estimate, unit)} ({interval_text(estimate, unit)})"
 
 
-def _worst_fit(fits: Sequence[ConditionFit]) -> ConditionFit | None:
-    """Return the fit with the largest error, else the smallest p-value; None of a single one."""
-    if len(fits) < 2:
-        return None
+def _worst_fit(fits: Sequence[ConditionFit]) -> tuple[ConditionFit | None, str]:
+    """Return the fit with the largest error, else with the smallest p-value, and which it is."""
     erring = [fit for fit in fits if fit.worst_relative is not None]
-    if erring:
-        return max(erring, key=lambda fit: fit.worst_relative or 0.0)
+    if len(erring) > 1:
+        return max(erring, key=lambda fit: fit.worst_relative or 0.0), "worst"
     tested = [fit for fit in fits if fit.goodness is not None]
-    return min(tested, key=lambda fit: fit.goodness or 0.0) if tested else None
+    if len(tested) > 1:
+        return min(tested, key=lambda fit: fit.goodness or 0.0), "lowest p"
+    return None, ""

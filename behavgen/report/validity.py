@@ -3,20 +3,16 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from behavgen.model import Box, ComparatorModel, Range, Surface, Variant
-from behavgen.report.numbers import range_text
+from behavgen.report.numbers import range_text, volts_range_text
 
 __all__ = ["ValidityCell", "ValidityRow", "validity_rows"]
 
-CONDITIONS = (
-    ("vdd_v", "supply", "V"),
-    ("temperature_k", "temperature", "K"),
-    ("vcm_v", "common mode", "V"),
-    ("overdrive_v", "overdrive", "V"),
-)
+CONDITIONS = ("vdd_v", "temperature_k", "vcm_v", "overdrive_v")
+"""Columns of the table, as fields of `Box`."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -41,13 +37,12 @@ def validity_rows(model: ComparatorModel) -> tuple[ValidityRow, ...]:
     boxes = [("cell", "", model.box)]
     for quantity, surface in _surfaces(model):
         boxes += [(quantity, names, box) for box, names in _shared_boxes(surface)]
-    ends = {name: _union(getattr(box, name) for *_, box in boxes) for name, *_ in CONDITIONS}
+    ends = {name: _union(getattr(box, name) for *_, box in boxes) for name in CONDITIONS}
     return tuple(
         ValidityRow(
             quantity=quantity, processes=names,
             cells=tuple(
-                _cell(getattr(box, name), ends[name], unit, quantity)
-                for name, _, unit in CONDITIONS
+                _cell(getattr(box, name), ends[name], name, quantity) for name in CONDITIONS
             ),
         )
         for quantity, names, box in boxes
@@ -71,18 +66,21 @@ def _surfaces(model: ComparatorModel) -> list[tuple[str, Surface]]:
 
 def _shared_boxes(surface: Surface) -> list[tuple[Box, str]]:
     """Return distinct boxes with the processes that have them."""
-    names: dict[Box, list[str]] = {}
+    found: dict[Box, list[Variant]] = {}
     for variant in surface.variants:
-        names.setdefault(variant.box, []).append(_variant_words(variant))
-    if len(names) == 1 and len(surface.variants) == 1 and not surface.variants[0].scaled_from:
-        return [(box, "") for box in names]
-    return [(box, ", ".join(words)) for box, words in names.items()]
+        found.setdefault(variant.box, []).append(variant)
+    if len(surface.variants) == 1:
+        return [(box, "") for box in found]
+    return [(box, _process_words(variants)) for box, variants in found.items()]
 
 
-def _variant_words(variant: Variant) -> str:
-    if not variant.scaled_from:
-        return variant.process
-    return f"{variant.process} (scaled from {variant.scaled_from})"
+def _process_words(variants: Sequence[Variant]) -> str:
+    """Name the processes, those scaled from another one after those with a fit of their own."""
+    by_origin: dict[str, list[str]] = {}
+    for variant in variants:
+        by_origin.setdefault(variant.scaled_from, []).append(variant.process)
+    own = [", ".join(by_origin.pop(""))] if "" in by_origin else []
+    return "; ".join(own + [f"{', '.join(n)} scaled from {o}" for o, n in by_origin.items()])
 
 
 def _union(spans: Iterable[Range | None]) -> Range | None:
@@ -92,11 +90,17 @@ def _union(spans: Iterable[Range | None]) -> Range | None:
     return Range(low=min(s.low for s in known), high=max(s.high for s in known))
 
 
-def _cell(span: Range | None, ends: Range | None, unit: str, quantity: str) -> ValidityCell:
+def _cell(span: Range | None, ends: Range | None, name: str, quantity: str) -> ValidityCell:
     if span is None:
-        nothing = unit and quantity not in ("cell", "delay") and ends is not None
-        return ValidityCell(text="no influence" if nothing else "–", bar="")
-    return ValidityCell(text=range_text(span, unit), bar=_bar(span, ends or span))
+        known = ends is not None and name != "overdrive_v" and quantity != "cell"
+        return ValidityCell(text="no influence" if known else "–", bar="")
+    return ValidityCell(text=_words(span, name), bar=_bar(span, ends or span))
+
+
+def _words(span: Range, name: str) -> str:
+    if name in ("vdd_v", "vcm_v"):
+        return volts_range_text(span)
+    return range_text(span, "K" if name == "temperature_k" else "V")
 
 
 def _bar(span: Range, ends: Range) -> str:

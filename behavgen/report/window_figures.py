@@ -25,7 +25,7 @@ __all__ = ["window_figure", "window_from_delay"]
 
 
 def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
-    """Return table and model over the resolve time, with the residuals under them."""
+    """Return table and model over the resolve time, with the errors in time under them."""
     drawn = drawn_curves(members)
     chosen = spotlights(drawn, middle, [float(c.x.max()) for c in drawn])
     x = _time_axis(*(c.x for c in drawn))
@@ -33,13 +33,13 @@ def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
     chart = Chart(
         name="window", title="Unresolved window over resolve time",
         description=f"{len(drawn)} conditions: markers are table rows, lines the emitted model.",
-        panels=overlay_panels(drawn, chosen, x, y),
+        panels=overlay_panels(drawn, chosen, x, y, "Model against table, in time"),
     )  # fmt: skip
     caption = (
         "Width of the input interval that is still unresolved at a time after the decision edge: "
         "table rows and twice the overdrive whose delay in the emitted model is that time. "
-        f"Model against table: {percent_text(rms(members))} rms, "
-        f"{percent_text(worst(members))} at worst."
+        "Below: by how much the model reaches each window too late; "
+        f"{percent_text(rms(members))} rms, {percent_text(worst(members))} at worst."
     )
     shared = shared_words([c.condition for c in members])
     caption += f" All at {shared}." if shared else ""
