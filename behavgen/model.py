@@ -251,7 +251,8 @@ class Surface:
     variants : tuple of Variant
         One a process, in the model's order of processes.
     covariance : Matrix
-        Of the first variant's coefficients, shape (terms, terms); empty when unknown.
+        Of the first variant's coefficients, shape (terms, terms); empty when unknown
+        or, for delays, carried by `DelayEffect`.
     """
 
     unit: str
@@ -321,8 +322,21 @@ class DelayEffect:
         Name of the law that gave the nodes their values at each condition.
     measured : str
         Reference levels of the delay in the user's words.
-    node_correlation : Matrix
-        Correlation between tau and the nodes, shape (K+1, K+1); empty when unknown.
+    scatter : Matrix
+        Covariance of ln tau and the nodes' ln delays at one tabulated condition from
+        the scatter of its rows, shape (K+1, K+1); empty when unknown.
+    scatter_freedom : int
+        Degrees of freedom of `scatter`.
+    lack_of_fit : Matrix
+        Covariance of the same between tabulated conditions beyond what scatter
+        explains, shape (K+1, K+1); empty with a single condition.
+    leverage : Matrix
+        Covariance of the surfaces' coefficients for unit scatter, shape (terms, terms).
+
+    Notes
+    -----
+    With `a` the surfaces' terms at a condition, the logarithms of tau and of the
+    node delays there have the covariance ``(a @ leverage @ a) * scatter + lack_of_fit``.
     """
 
     tau: Surface
@@ -331,7 +345,10 @@ class DelayEffect:
     floor_v: float = 1e-15
     law: str = ""
     measured: str = ""
-    node_correlation: Matrix = ()
+    scatter: Matrix = ()
+    scatter_freedom: int = 0
+    lack_of_fit: Matrix = ()
+    leverage: Matrix = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

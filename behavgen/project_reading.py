@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
@@ -41,6 +42,14 @@ __all__ = ["read_project"]
 _TOP = ("project", "defaults", "cells", "corners")
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Shared:
+    """What the tables of all cells draw on."""
+
+    defaults: DefaultsPart
+    corners: tuple[Corner, ...]
+
+
 def read_project(file: Path, text: str, content: Mapping[str, Any]) -> Project:
     """Build the project from its parsed file.
 
@@ -66,7 +75,8 @@ def read_project(file: Path, text: str, content: Mapping[str, Any]) -> Project:
     if defaults is not None:
         check_defaults(defaults, ("defaults",), faults)
     corners = _corners(_table(content, ("corners",), faults), faults)
-    cells = _cells(content, defaults or DefaultsPart(), corners, faults)
+    shared = _Shared(defaults=defaults or DefaultsPart(), corners=corners)
+    cells = _cells(content, shared, faults)
     if faults.found or project is None:
         raise ProjectError(*sorted(faults.found, key=lambda fault: fault.row or 0))
     return Project(file=file, out=file.parent / project.out, cells=cells, corners=corners)
@@ -74,8 +84,7 @@ def read_project(file: Path, text: str, content: Mapping[str, Any]) -> Project:
 
 def _cells(
     content: Mapping[str, Any],
-    defaults: DefaultsPart,
-    corners: tuple[Corner, ...],
+    shared: _Shared,
     faults: ProjectFaults,
 ) -> tuple[CellSettings, ...]:
     described = _table(content, ("cells",), faults)
@@ -83,7 +92,7 @@ def _cells(
         faults.add(("cells",), "no cell", "describe at least one under [cells.NAME]")
     check_cell_names(described, faults)
     built = (
-        _cell(name, _table(described, ("cells", name), faults), defaults, corners, faults)
+        _cell(name, _table(described, ("cells", name), faults), shared, faults)
         for name in described
     )
     return tuple(cell for cell in built if cell is not None)
@@ -92,14 +101,13 @@ def _cells(
 def _cell(
     name: str,
     content: Mapping[str, Any],
-    defaults: DefaultsPart,
-    corners: tuple[Corner, ...],
+    shared: _Shared,
     faults: ProjectFaults,
 ) -> CellSettings | None:
     path = ("cells", name)
     part = _part(CellPart, content, path, faults)
     processes = part.processes if part else {}
-    tables = _tables(content, path, defaults, processes, corners, faults)
+    tables = _tables(content, path, shared, processes, faults)
     if not content.get("tables"):
         faults.add(
             path, f"cell '{name}' has no tables", f"add at least one [[cells.{name}.tables]]"
@@ -107,7 +115,8 @@ def _cell(
     if part is None:
         return None
     check_process_codes(processes, (*path, "processes"), faults)
-    check_measured(tables, (*path, "tables"), faults)
+    if len(tables) == len(part.tables):
+        check_measured(tables, (*path, "tables"), faults)
     return CellSettings(
         name=name,
         description=part.description,
@@ -126,9 +135,8 @@ def _cell(
 def _tables(
     content: Mapping[str, Any],
     path: KeyPath,
-    defaults: DefaultsPart,
+    shared: _Shared,
     processes: Iterable[str],
-    corners: tuple[Corner, ...],
     faults: ProjectFaults,
 ) -> tuple[TableSettings, ...]:
     entries = content.get("tables")
@@ -141,11 +149,11 @@ def _tables(
         if part is not None and check_table(
             part,
             processes=processes,
-            corners=[corner.name for corner in corners],
+            corners=[corner.name for corner in shared.corners],
             path=here,
             faults=faults,
         ):
-            tables.append(_merged(part, defaults, line_of(here, faults.lines) or 0))
+            tables.append(_merged(part, shared.defaults, line_of(here, faults.lines) or 0))
     return tuple(tables)
 
 

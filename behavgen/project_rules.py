@@ -79,7 +79,7 @@ def dotted(path: KeyPath) -> str:
 
 
 def check_cell_names(names: Iterable[str], faults: ProjectFaults) -> None:
-    """A cell's name becomes a module and a folder."""
+    """Judge names that become a module and a folder."""
     seen: dict[str, str] = {}
     for name in names:
         if reason := identifier_fault(name):
@@ -94,7 +94,7 @@ def check_cell_names(names: Iterable[str], faults: ProjectFaults) -> None:
 
 
 def check_process_codes(codes: Mapping[str, int], path: KeyPath, faults: ProjectFaults) -> None:
-    """Process codes are distinct and fit into 32 bits."""
+    """See that process codes are distinct and fit into 32 bits."""
     owner: dict[int, str] = {}
     for name, code in codes.items():
         if not name.strip():
@@ -145,7 +145,7 @@ def _check_pins_differ(
 
 
 def check_defaults(part: DefaultsPart, path: KeyPath, faults: ProjectFaults) -> None:
-    """Shared settings may name any column of any quantity."""
+    """Judge shared settings, which may name any column of any quantity."""
     for kind, names in (("columns", part.columns), ("units", part.units), ("at", part.at)):
         for name in names:
             if column_named(name) is None:
@@ -167,7 +167,7 @@ def check_table(
     path: KeyPath,
     faults: ProjectFaults,
 ) -> bool:
-    """A table's settings fit its quantity, its cell and the project's corners.
+    """Judge a table's settings by its quantity, its cell and the project's corners.
 
     Returns whether the quantity is known, so that the table can be built at all.
     """
@@ -196,7 +196,7 @@ def check_table(
 
 
 def check_measured(tables: Iterable[TableSettings], path: KeyPath, faults: ProjectFaults) -> None:
-    """Delays and windows are one curve read two ways: their reference levels must agree."""
+    """See that delays and windows, one curve read two ways, are measured alike."""
     first: TableSettings | None = None
     for index, table in enumerate(tables):
         if table.quantity not in ("delay", "window") or not table.measured:

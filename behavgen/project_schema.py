@@ -5,7 +5,8 @@ Imported only when a project file is read, since pydantic is slow to load.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Mapping
+import re
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from typing import Annotated, Any, Literal, TypeVar
 
 from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, ValidationError
@@ -143,34 +144,34 @@ def checked(
 
 def _in_words(details: Mapping[str, Any], known: Iterable[str]) -> tuple[str, str]:
     """Return a validation error as (what was found, what is allowed)."""
-    kind, found = details["type"], details["input"]
-    context = details.get("ctx", {})
-    if kind == "extra_forbidden":
-        keys = sorted(known)
-        name = str(details["loc"][-1])
-        return f"unknown key '{name}'{did_you_mean(name, keys)}", f"known: {', '.join(keys)}"
-    if kind == "missing":
-        return "missing", "this key is required"
-    if kind == "literal_error":
-        hint = did_you_mean(str(found), [*_quoted_words(context["expected"])])
-        return f"'{found}'{hint}", f"one of {context['expected'].replace(' or ', ', ')}"
-    if kind == "value_error":
-        return f"{found!r}: {context['error']}", ""
-    if kind in _LIMITS:
-        return f"{found!r}", f"{_LIMITS[kind]} {next(iter(context.values())):g}"
-    if kind == "string_too_short":
-        return "empty text", "a name is needed here"
+    kind, found, context = details["type"], details["input"], details.get("ctx", {})
+    words: dict[str, Callable[[], tuple[str, str]]] = {
+        "extra_forbidden": lambda: _unknown_key(str(details["loc"][-1]), sorted(known)),
+        "missing": lambda: ("missing", "this key is required"),
+        "literal_error": lambda: _unknown_word(str(found), context["expected"]),
+        "value_error": lambda: (f"{found!r}: {context['error']}", ""),
+        "string_too_short": lambda: ("empty text", "a name is needed here"),
+        "greater_than": lambda: (f"{found!r}", f"above {context['gt']:g}"),
+        "greater_than_equal": lambda: (f"{found!r}", f"at least {context['ge']:g}"),
+    }
+    if kind in words:
+        return words[kind]()
     return f"{found!r}", _NEEDED.get(kind, details["msg"])
 
 
-_LIMITS = {"greater_than": "above", "greater_than_equal": "at least"}
+def _unknown_key(name: str, known: Sequence[str]) -> tuple[str, str]:
+    return f"unknown key '{name}'{did_you_mean(name, known)}", f"known: {', '.join(known)}"
+
+
+def _unknown_word(found: str, expected: str) -> tuple[str, str]:
+    """Judge a word by pydantic's list of the expected ones, which reads ``'a', 'b' or 'c'``."""
+    words = re.findall(r"'([^']*)'", expected)
+    return f"'{found}'{did_you_mean(found, words)}", f"one of {', '.join(words)}"
+
+
 _NEEDED = {
     "string_type": "a text in quotes is needed",
     "dict_type": "a table is needed, as in { name = ... } or under a [heading] of its own",
     "list_type": "a list is needed, as in [ ... ]",
     "int_type": "a whole number is needed",
 }
-
-
-def _quoted_words(text: str) -> Iterable[str]:
-    return (word.strip("',") for word in text.split() if word.startswith("'"))

@@ -68,6 +68,8 @@ class Column:
         """What a cell may hold, for messages."""
         if self.is_text:
             return "a name"
+        if self.unit == "K":
+            return "a temperature above absolute zero"
         if self.whole and (self.at_least, self.at_most) == (0, 1):
             return "0 or 1"
         kind = "a whole number" if self.whole else "a number"

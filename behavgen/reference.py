@@ -14,20 +14,12 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.formulas import random_stream
-from behavgen.formulas.exact_math import exact_exp
 from behavgen.formulas.node_law import node_law_delay
-from behavgen.formulas.polynomial import (
-    axis_coordinate,
-    dense_coefficients,
-    nested_horner,
-    quantise,
-)
-from behavgen.model import Box, ComparatorModel, DelayEffect, Range, Surface
+from behavgen.model import ComparatorModel, DelayEffect
+from behavgen.operating_point import OperatingPoint, evaluate, operating_point
 
 __all__ = [
     "CERTAIN_SIGMAS",
-    "TEMPERATURE_STEPS_PER_K",
-    "VOLTAGE_STEPS_PER_V",
     "Decisions",
     "Reference",
     "Trace",
@@ -36,11 +28,8 @@ __all__ = [
 Floats = npt.NDArray[np.float64]
 Integers = npt.NDArray[np.int64]
 
-VOLTAGE_STEPS_PER_V = 2.0**20
-TEMPERATURE_STEPS_PER_K = 2.0**10
 CERTAIN_SIGMAS = 8.3
 """No draw reaches this many sigmas, so that beyond it noise cannot change a bit."""
-_ZERO_CELSIUS_K = 273.15
 
 
 class Decisions(NamedTuple):
@@ -85,17 +74,6 @@ class Trace:
     unresolved: npt.NDArray[np.bool_]
     bits: Integers
     reset_ticks: Integers
-
-
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class _Point:
-    """Broadcast and quantised operating conditions, shape (N,) each, and the result's shape."""
-
-    vdd_v: Floats
-    temperature_k: Floats
-    vcm_v: Floats
-    process: npt.NDArray[np.str_]
-    shape: tuple[int, ...]
 
 
 class Reference:
@@ -149,19 +127,19 @@ class Reference:
 
     def offset(self, **condition: npt.ArrayLike) -> Floats:
         """Nominal trip point in V, without mismatch and OFFSET_SHIFT_V."""
-        point = self._point((), condition)
+        point = self.point((), condition)
         effect = self.model.offset
-        value = _evaluate(effect.surface, point) if effect else np.zeros(len(point.vdd_v))
+        value = evaluate(effect.surface, point) if effect else np.zeros(len(point.vdd_v))
         return value.reshape(point.shape)
 
     def mismatch_v(self, **condition: npt.ArrayLike) -> Floats:
         """Offset of the instance beyond the nominal trip point in V; 0 when switched off."""
-        point = self._point((), condition)
+        point = self.point((), condition)
         return self._mismatch(point).reshape(point.shape)
 
     def noise_sigma(self, **condition: npt.ArrayLike) -> Floats:
         """Input-referred noise of one decision in V; 0 where not characterised."""
-        point = self._point((), condition)
+        point = self.point((), condition)
         return self._sigma(point).reshape(point.shape)
 
     def delay(self, overdrive_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Floats:
@@ -173,7 +151,7 @@ class Reference:
 
     def reset_delay(self, **condition: npt.ArrayLike) -> Floats:
         """Time in s from the reset edge to the outputs' reset state; 0 where not characterised."""
-        point = self._point((), condition)
+        point = self.point((), condition)
         return self._reset_s(point).reshape(point.shape)
 
     def window(self, resolve_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Floats:
@@ -260,7 +238,15 @@ class Reference:
             reset_ticks=self._reset_ticks(point),
         )
 
-    def _effective_overdrive(self, vdiff: Floats, number: Integers, point: _Point) -> Floats:
+    def law(self, point: OperatingPoint) -> tuple[Floats, Floats]:
+        """Return ln of the node overdrives (K,) and tau with the node delays, (N, K + 1), s."""
+        assert self.model.delay is not None
+        log_node, tau, nodes = _law(self.model.delay, point)
+        return log_node, np.column_stack([tau, nodes])
+
+    def _effective_overdrive(
+        self, vdiff: Floats, number: Integers, point: OperatingPoint
+    ) -> Floats:
         e = self._distance(vdiff, point)
         if not self.noise:
             return e
@@ -270,12 +256,12 @@ class Reference:
         e[uncertain] += sigma[uncertain] * random_stream.standard_normal(bits)
         return e
 
-    def _distance(self, vdiff: Floats, point: _Point) -> Floats:
+    def _distance(self, vdiff: Floats, point: OperatingPoint) -> Floats:
         effect = self.model.offset
-        offset = _evaluate(effect.surface, point) if effect else 0.0
+        offset = evaluate(effect.surface, point) if effect else 0.0
         return (vdiff - (offset + self.offset_shift_v)) - self._mismatch(point)
 
-    def _mismatch(self, point: _Point) -> Floats:
+    def _mismatch(self, point: OperatingPoint) -> Floats:
         total = np.zeros(len(point.vdd_v))
         if not self.mismatch or self.model.mismatch is None:
             return total
@@ -284,25 +270,25 @@ class Reference:
             self._keys[random_stream.MISMATCH], np.arange(len(components))
         )
         for component, z in zip(components, random_stream.standard_normal(bits), strict=True):
-            total = total + _evaluate(component, point) * z
+            total = total + evaluate(component, point) * z
         return total
 
-    def _sigma(self, point: _Point) -> Floats:
+    def _sigma(self, point: OperatingPoint) -> Floats:
         effect = self.model.noise
-        return _evaluate(effect.surface, point) if effect else np.zeros(len(point.vdd_v))
+        return evaluate(effect.surface, point) if effect else np.zeros(len(point.vdd_v))
 
-    def _delay_ticks(self, magnitude: Floats, point: _Point) -> Integers:
+    def _delay_ticks(self, magnitude: Floats, point: OperatingPoint) -> Integers:
         if not self.delay_on or self.model.delay is None:
             return np.ones(len(magnitude), dtype=np.int64)
         ticks = self.model.cell.ticks_per_second
         delay = _delay_s(self.model.delay, magnitude, point)
         return np.maximum(np.floor(delay * ticks + 0.5).astype(np.int64), 1)
 
-    def _reset_s(self, point: _Point) -> Floats:
+    def _reset_s(self, point: OperatingPoint) -> Floats:
         effect = self.model.reset
-        return _evaluate(effect.surface, point) if effect else np.zeros(len(point.vdd_v))
+        return evaluate(effect.surface, point) if effect else np.zeros(len(point.vdd_v))
 
-    def _reset_ticks(self, point: _Point) -> Integers:
+    def _reset_ticks(self, point: OperatingPoint) -> Integers:
         if not self.delay_on:
             return np.zeros(len(point.vdd_v), dtype=np.int64)
         reset = self._reset_s(point) * self.model.cell.ticks_per_second
@@ -316,81 +302,30 @@ class Reference:
 
     def _with(
         self, value: npt.ArrayLike, condition: dict[str, npt.ArrayLike]
-    ) -> tuple[_Point, Floats]:
+    ) -> tuple[OperatingPoint, Floats]:
         array = np.asarray(value, dtype=float)
-        point = self._point(array.shape, condition)
+        point = self.point(array.shape, condition)
         return point, np.broadcast_to(array, point.shape).astype(float).ravel()
 
-    def _point(self, shape: tuple[int, ...], condition: dict[str, npt.ArrayLike]) -> _Point:
-        unknown = set(condition) - {"vdd", "temp_c", "vcm", "process"}
-        if unknown:
-            raise TypeError(f"unknown condition {sorted(unknown)}; use vdd, temp_c, vcm, process")
-        box = self.model.box
-        raw = np.broadcast_arrays(
-            np.empty(shape),
-            np.asarray(condition.get("vdd", _middle(box.vdd_v)), dtype=float),
-            np.asarray(
-                condition.get("temp_c", _middle(box.temperature_k, 300.0) - _ZERO_CELSIUS_K),
-                dtype=float,
-            ),
-            np.asarray(condition.get("vcm", _middle(box.vcm_v)), dtype=float),
-            np.asarray(condition.get("process", self.model.processes[0].name), dtype=str),
-        )
-        vdd, temp_c, vcm = (np.asarray(a, dtype=float).ravel() for a in raw[1:4])
-        known = {process.name for process in self.model.processes}
-        process = np.asarray(raw[4], dtype=str).ravel()
-        if not set(process.tolist()) <= known:
-            raise ValueError(f"unknown process; this model knows {sorted(known)}")
-        return _Point(
-            vdd_v=quantise(vdd, VOLTAGE_STEPS_PER_V),
-            temperature_k=quantise(temp_c + _ZERO_CELSIUS_K, TEMPERATURE_STEPS_PER_K),
-            vcm_v=quantise(vcm, VOLTAGE_STEPS_PER_V),
-            process=process,
-            shape=raw[0].shape,
-        )
+    def point(self, shape: tuple[int, ...], condition: dict[str, npt.ArrayLike]) -> OperatingPoint:
+        """Return an operating condition given by keyword, broadcast against a shape."""
+        return operating_point(self.model, shape, condition)
 
 
-def _middle(span: Range | None, otherwise: float = 0.0) -> float:
-    return otherwise if span is None else span.middle
-
-
-def _evaluate(surface: Surface, point: _Point) -> Floats:
-    """Evaluate a surface, shape (N,): clamp, normalise, fold slow conditions first."""
-    result = np.empty(len(point.vdd_v))
-    for name in np.unique(point.process):
-        rows = point.process == name
-        variant = surface.variant(str(name))
-        dense = dense_coefficients(surface.exponents, variant.coefficients)
-        coordinates = tuple(
-            axis_coordinate(
-                _clamped(getattr(point, axis.condition)[rows], variant.box, axis.condition),
-                axis.shape, axis.centre, axis.half_range,
-            )
-            for axis in surface.axes
-        )  # fmt: skip
-        result[rows] = nested_horner(dense, coordinates)
-    return exact_exp(result) if surface.transform == "log" else result
-
-
-def _clamped(value: Floats, box: Box, condition: str) -> Floats:
-    span: Range = getattr(box, condition)
-    return np.minimum(np.maximum(value, span.low), span.high)
-
-
-def _law(effect: DelayEffect, point: _Point) -> tuple[Floats, Floats, Floats]:
+def _law(effect: DelayEffect, point: OperatingPoint) -> tuple[Floats, Floats, Floats]:
     """Return ln of the node overdrives (K,), tau (N,) and node delays (N, K)."""
     log_node = np.log(np.array(effect.node_overdrive_v))
-    nodes = np.stack([_evaluate(node, point) for node in effect.nodes], axis=-1)
-    return log_node, _evaluate(effect.tau, point), nodes
+    nodes = np.stack([evaluate(node, point) for node in effect.nodes], axis=-1)
+    return log_node, evaluate(effect.tau, point), nodes
 
 
-def _delay_s(effect: DelayEffect, magnitude: Floats, point: _Point) -> Floats:
+def _delay_s(effect: DelayEffect, magnitude: Floats, point: OperatingPoint) -> Floats:
     log_node, tau, nodes = _law(effect, point)
     overdrive = np.maximum(np.abs(magnitude), effect.floor_v)
     return node_law_delay(overdrive, log_node, tau, nodes)
 
 
-def _overdrive_at(effect: DelayEffect, delay_s: Floats, point: _Point) -> Floats:
+def _overdrive_at(effect: DelayEffect, delay_s: Floats, point: OperatingPoint) -> Floats:
     """Invert the delay law: closed form on the regenerative tail, bisection above."""
     log_node, tau, nodes = _law(effect, point)
     tail = log_node[0] - (delay_s - nodes[:, 0]) / tau

@@ -24,6 +24,7 @@ __all__ = [
     "ZERO_CELSIUS_K",
     "Unit",
     "UnitError",
+    "as_number",
     "cell_suffixes",
     "default_unit",
     "find_unit",
@@ -210,6 +211,14 @@ def parse_si(text: str, dimension: str, unit: Unit | None = None) -> float:
     if not math.isfinite(value):
         raise UnitError(f"'{text.strip()}' is too large a number")
     return value
+
+
+def as_number(value: str | float) -> float | None:
+    """Return a plain number, or None where the value is none."""
+    try:
+        return float(value)
+    except ValueError:
+        return None
 
 
 def cell_suffixes(dimension: str, plain: Unit) -> dict[str, Unit]:

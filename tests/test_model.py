@@ -5,10 +5,10 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
-from tests.example_models import full_model, minimal_model, renamed_pins_model
 
 from behavgen.errors import ModelFileError
 from behavgen.model import dump_model, load_model, significant
+from tests.example_models import full_model, minimal_model, renamed_pins_model
 
 
 @pytest.mark.parametrize("model", [full_model(), minimal_model(), renamed_pins_model()])

@@ -3,9 +3,9 @@
 import numpy as np
 import pytest
 from scipy.special import ndtr
-from tests.example_models import full_model, minimal_model
 
 from behavgen.reference import Reference
+from tests.example_models import full_model, minimal_model
 
 TAU_S = np.exp(-25.328436)
 NODE_S = np.exp(-24.412145)

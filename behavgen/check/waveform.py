@@ -36,7 +36,7 @@ UNKNOWN, HIGH_IMPEDANCE = 2, 3
 KEEP, ANY = -1, -2
 """Expected: as before; not stated, so anything will do."""
 
-_LINE = 25
+_LINE = 24
 """Characters of a record's line, without the line end."""
 
 

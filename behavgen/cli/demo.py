@@ -137,7 +137,7 @@ def _fit_text(model: ComparatorModel) -> str:
     if model.delay is None or not errors:
         return model.cell.name
     return (
-        f"{model.cell.name}: delay law {model.delay.law}, rms error {percent_text(median(errors))} "
+        f"{model.cell.name}: {model.delay.law}, delay rms error {percent_text(median(errors))} "
         f"median and {percent_text(max(errors))} worst over {number_of(len(errors), 'condition')}"
     )
 

@@ -92,8 +92,8 @@ def _box_text(model: ComparatorModel) -> str:
 def _effects(model: ComparatorModel) -> Iterator[tuple[str, str]]:
     """Yield a label and a text for each effect that the model has."""
     if model.delay is not None:
-        law = f"law {model.delay.law}" if model.delay.law else "law given by its nodes"
-        yield "delay", f"{law}, {_surface_text(model.delay.tau)}"
+        law = f"{model.delay.law}, " if model.delay.law else ""
+        yield "delay", law + _surface_text(model.delay.tau)
         yield from _quality(model, "delay", "window")
     if model.noise is not None:
         yield "noise", _surface_text(model.noise.surface)

@@ -98,7 +98,8 @@ def _verdict_line(outcome: Outcome, options: Options, terminal: Terminal, *, pas
     mark = terminal.paint("OK", "good") if passed else terminal.paint("NOT OK", "bad")
     said = outcome.said
     if options.strict and outcome.warnings:
-        said += f"; {len(outcome.warnings)} warnings fail under --strict"
+        count = len(outcome.warnings)
+        said += f"; {count} warning{' fails' if count == 1 else 's fail'} under --strict"
     following = f"  Next: {outcome.next_step}" if outcome.next_step else ""
     return f"{mark}  {said}.{following}"
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import textwrap
+from math import floor, log10
 from pathlib import Path
 
 from behavgen.model import Estimate, Range
@@ -66,8 +67,16 @@ def percent_text(ratio: float) -> str:
 
 
 def estimate_text(estimate: Estimate, unit: str) -> str:
-    """Write an estimate without its interval."""
-    return _number(estimate.value, unit, 4)
+    """Write an estimate without its interval, but not finer than a thousandth of it.
+
+    >>> estimate_text(Estimate(value=-2e-20, low=-3e-5, high=3e-5), "V")
+    '0 V'
+    """
+    value = estimate.value
+    if estimate.low is not None and estimate.high is not None and estimate.high > estimate.low:
+        digit = floor(log10(estimate.high - estimate.low)) - 3
+        value = round(value, -digit) + 0.0
+    return _number(value, unit, 4)
 
 
 def interval_text(estimate: Estimate, unit: str) -> str:

@@ -1,0 +1,1 @@
+"""Characterisation -> ComparatorModel: one file a quantity, surfaces, diagnosis."""

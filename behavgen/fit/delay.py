@@ -164,9 +164,10 @@ def fit_delay(
     law = fit_law(_padded(rows, sites))
     span = Range(low=float(rows.overdrive_v.min()), high=float(rows.overdrive_v.max()))
     family = exact_family(sites, np.log(law.parameters), processes, law.metric, span)
+    freedom = max(len(rows.delay_s) - law.parameters.size, 1)
     measured = delay.measured if delay is not None else window.measured if window else ""
     return DelayFit(
-        effect=_effect(law, family, measured),
+        effect=_effect(law, family, measured, freedom),
         rows=rows,
         sites=sites,
         law=law,
@@ -245,34 +246,36 @@ def _padded(rows: ResolvedRows, sites: Sites) -> DelayRows:
     )
 
 
-def _effect(law: LawFit, family: SurfaceFamily, measured: str) -> DelayEffect:
-    errors = family.left_out[np.isfinite(family.left_out).all(axis=-1)]
-    if len(errors):
-        variances = np.mean(errors**2, axis=0)
-    else:
-        own = np.diagonal(law.covariance, axis1=-2, axis2=-1) / law.parameters**2
-        variances = own.mean(axis=0)
-    surfaces = [
-        family.surface(k, "s", "log", float(variances[k])) for k in range(law.parameters.shape[-1])
-    ]
+def _effect(law: LawFit, family: SurfaceFamily, measured: str, freedom: int) -> DelayEffect:
+    surfaces = [family.surface(k, "s", "log") for k in range(law.parameters.shape[-1])]
+    relative = law.covariance / (law.parameters[:, :, None] * law.parameters[:, None, :])
+    scatter = relative.mean(axis=0)
     return DelayEffect(
         tau=surfaces[0],
         node_overdrive_v=tuple(significant(float(v)) for v in np.exp(law.log_node)),
         nodes=tuple(surfaces[1:]),
         law=law.chosen.name,
         measured=measured,
-        node_correlation=_correlation(errors),
+        scatter=_rounded(scatter),
+        scatter_freedom=freedom,
+        lack_of_fit=_rounded(_lack_of_fit(family, scatter)),
+        leverage=_rounded(family.fit.leverage),
     )
 
 
-def _correlation(errors: Floats) -> tuple[tuple[float, ...], ...]:
-    if len(errors) < 3:
-        return ()
-    covariance = errors.T @ errors + 1e-30 * np.eye(errors.shape[-1])
-    scale = np.sqrt(np.diag(covariance))
-    return tuple(
-        tuple(significant(float(v), 4) for v in row) for row in covariance / np.outer(scale, scale)
-    )
+def _lack_of_fit(family: SurfaceFamily, scatter: Floats) -> Floats:
+    """Return the covariance of left-out errors beyond what scatter explains; (0, 0) if unknown."""
+    errors = family.left_out[np.isfinite(family.left_out).all(axis=-1)]
+    if len(errors) == 0:
+        return np.empty((0, 0))
+    excess = errors.T @ errors / len(errors) - family.fit.inflation * scatter
+    values, vectors = np.linalg.eigh(excess)
+    covariance: Floats = (vectors * np.maximum(values, 0.0)) @ vectors.T
+    return covariance
+
+
+def _rounded(matrix: Floats) -> tuple[tuple[float, ...], ...]:
+    return tuple(tuple(significant(float(v), 6) for v in row) for row in matrix)
 
 
 def _measured_alike(delay: DelayTable | None, window: WindowTable | None) -> list[str]:

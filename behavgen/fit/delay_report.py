@@ -103,7 +103,7 @@ def _tau(delay: DelayFit, c: int, condition: Condition) -> Parameter:
 
 def delay_notices(delay: DelayFit, tables: Characterisation) -> tuple[str, ...]:
     """Return what the delay fit wants its reader to know."""
-    return (*_poor_conditions(delay), *_tau_gaps(delay), *_unresolved(delay, tables))
+    return (*_poor_conditions(delay), *_tau_gaps(delay), *_unresolved(tables))
 
 
 def _poor_conditions(delay: DelayFit) -> list[str]:
@@ -152,7 +152,7 @@ def _slope(delay: DelayFit, rows: npt.NDArray[np.bool_]) -> tuple[float, float] 
     return -slope, float(np.sqrt(residual @ residual / (len(x) - 2) / spread))
 
 
-def _unresolved(delay: DelayFit, tables: Characterisation) -> list[str]:
+def _unresolved(tables: Characterisation) -> list[str]:
     table = tables.delay
     if table is None:
         return []

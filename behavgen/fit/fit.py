@@ -120,7 +120,7 @@ def _cell(settings: CellSettings, box: Box) -> Cell:
         when_unresolved=settings.when_unresolved,
         time_precision=settings.time_precision,
         supply_off_v=off,
-        pins=Pins(**dict(settings.pins)),
+        pins=Pins(**dict(settings.pins)),  # type: ignore[arg-type]
     )
 
 

@@ -3,17 +3,19 @@
 from __future__ import annotations
 
 import numpy as np
+import numpy.typing as npt
 
 from behavgen.fit.conditions import CONDITION_NAMES
-from behavgen.fit.intervals import normal_quantile
+from behavgen.fit.intervals import normal_quantile, student_quantile
 from behavgen.fit.mismatch import MismatchFit
 from behavgen.fit.noise import NoiseFit
-from behavgen.fit.surfaces import Form, design
+from behavgen.fit.surface_forms import Form, design
 from behavgen.fit.wording import condition_words
 from behavgen.model import (
     Box,
     ComparatorModel,
     Condition,
+    DelayEffect,
     Estimate,
     Parameter,
     Surface,
@@ -21,6 +23,8 @@ from behavgen.model import (
 )
 
 __all__ = ["headline_parameters"]
+
+Floats = npt.NDArray[np.float64]
 
 _LEVEL = 0.95
 
@@ -36,18 +40,34 @@ def headline_parameters(
     if mismatch is not None and mismatch.statistics is not None:
         found.append(_mismatch(mismatch))
     if model.noise is not None and noise is not None:
-        found.append(_of_surface("noise_sigma_v", "input-referred noise of one decision",
-                                 model.noise.surface, "surface through the noise table"))  # fmt: skip
+        what, source = "input-referred noise of one decision", "surface through the noise table"
+        found.append(_of_surface("noise_sigma_v", what, model.noise.surface, source))
     if model.delay is not None:
-        found.append(_of_surface("tau_s", "regeneration time constant", model.delay.tau,
-                                 "surface through the delay and window tables"))  # fmt: skip
-        for volts, node in zip(model.delay.node_overdrive_v, model.delay.nodes, strict=True):
-            found.append(_of_surface("delay_s", f"delay at {volts * 1e3:.4g} mV overdrive", node,
-                                     "surface through the delay and window tables"))  # fmt: skip
+        found += _delays(model.delay)
     if model.reset is not None:
         found.append(_of_surface("reset_delay_s", "reset edge to reset state",
                                  model.reset.surface, "reset table or project file"))  # fmt: skip
     return tuple(found)
+
+
+def _delays(effect: DelayEffect) -> list[Parameter]:
+    source = "surface through the delay and window tables"
+    what = ["regeneration time constant"]
+    what += [f"delay at {volts * 1e3:.4g} mV overdrive" for volts in effect.node_overdrive_v]
+    return [
+        _of_surface("delay_s" if k else "tau_s", words, surface, source, _law_half_width(effect, k))
+        for k, (words, surface) in enumerate(zip(what, (effect.tau, *effect.nodes), strict=True))
+    ]
+
+
+def _law_half_width(effect: DelayEffect, k: int) -> float:
+    """Return the interval's half width of ln(parameter k) at the middle of the box."""
+    row, _ = _middle(effect.tau, effect.tau.variants[0].box)
+    scatter = effect.scatter[k][k] if effect.scatter else 0.0
+    lack_of_fit = effect.lack_of_fit[k][k] if effect.lack_of_fit else 0.0
+    scatter *= float(row @ np.array(effect.leverage) @ row)
+    student = float(student_quantile(_LEVEL, max(effect.scatter_freedom, 1)))
+    return float(np.hypot(student * scatter**0.5, normal_quantile(_LEVEL) * lack_of_fit**0.5))
 
 
 def _mismatch(mismatch: MismatchFit) -> Parameter:
@@ -68,23 +88,24 @@ def _mismatch(mismatch: MismatchFit) -> Parameter:
     )
 
 
-def _of_surface(name: str, what: str, surface: Surface, source: str) -> Parameter:
+def _of_surface(
+    name: str, what: str, surface: Surface, source: str, half: float | None = None
+) -> Parameter:
     variant = surface.variants[0]
     row, words = _middle(surface, variant.box)
     value = float(row @ np.array(variant.coefficients))
-    low = high = None
-    if surface.covariance:
-        half = normal_quantile(_LEVEL) * float(np.sqrt(row @ np.array(surface.covariance) @ row))
-        low, high = value - half, value + half
+    if half is None and surface.covariance:
+        variance = float(row @ np.array(surface.covariance) @ row)
+        half = normal_quantile(_LEVEL) * float(np.sqrt(variance))
+    ends = [value] if half is None else [value, value - half, value + half]
     if surface.transform == "log":
-        value, low, high = (None if v is None else float(np.exp(v)) for v in (value, low, high))
-    assert value is not None
+        ends = [float(np.exp(end)) for end in ends]
     return Parameter(
         name=name,
         estimate=Estimate(
-            value=significant(value),
-            low=None if low is None else significant(low, 6),
-            high=None if high is None else significant(high, 6),
+            value=significant(ends[0]),
+            low=None if half is None else significant(ends[1], 6),
+            high=None if half is None else significant(ends[2], 6),
             level=_LEVEL,
         ),
         unit=surface.unit,
@@ -94,7 +115,7 @@ def _of_surface(name: str, what: str, surface: Surface, source: str) -> Paramete
     )
 
 
-def _middle(surface: Surface, box: Box) -> tuple[np.ndarray, str]:  # type: ignore[type-arg]
+def _middle(surface: Surface, box: Box) -> tuple[Floats, str]:
     """Return the terms at the middle of a box, and the condition in words."""
     spans = {name: getattr(box, name) for name in CONDITION_NAMES}
     values = {name: None if span is None else span.middle for name, span in spans.items()}

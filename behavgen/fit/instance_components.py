@@ -111,8 +111,9 @@ def instance_components(
     shift_v, low_v, high_v = _shifts(offset_v - offset_v[:, [reference]], compared, level)
     mean_v[compared] = mean_v[reference] + shift_v[compared]
     noise_v2 = np.broadcast_to(np.asarray(measurement_variance_v2, dtype=float), compared.shape)
-    between_v2 = _covariance(offset_v[np.ix_(seen[:, compared].any(axis=1), compared)]) - np.diag(noise_v2[compared])
-    factors, share = _factors(between_v2)
+    measured = seen[:, compared].any(axis=1)
+    seen_v2 = _covariance(offset_v[np.ix_(measured, compared)])
+    factors, share = _factors(seen_v2 - np.diag(noise_v2[compared]))
     loadings_v = np.full((compared.size, share.size), np.nan)
     loadings_v[compared] = factors
     return InstanceComponents(
@@ -163,7 +164,7 @@ def _covariance(offset_v: Floats) -> Floats:
     mean = _means(offset_v)
     covariance = np.diag(_means(np.square(offset_v - mean)))
     for _ in range(_MAX_SWEEPS):
-        ridge = np.diag(_RIDGE * covariance.diagonal())
+        ridge = np.diag(_RIDGE * covariance.diagonal() + np.finfo(float).tiny)
         # The inverse of what each pattern shows, zero where it has gaps.
         inverse = np.where(both, np.linalg.inv(both * (covariance + ridge) + gaps), 0.0)
         slopes = inverse @ covariance

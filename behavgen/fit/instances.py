@@ -90,7 +90,7 @@ def instance_statistics(
     shifted_v = offset_v - offset_v[0]
     mean_v = float(offset_v[0] + shifted_v.mean())
     total_v = float(shifted_v.std(ddof=1))
-    noise_v2 = float(np.mean(measurement_variance_v2))
+    noise_v2 = float(np.mean(np.asarray(measurement_variance_v2, dtype=float)))
     mean_low_v, mean_high_v = mean_interval(mean_v, total_v, count, level)
     sigma_low_v, sigma_high_v = sigma_interval(total_v, count, level)
     return InstanceStatistics(

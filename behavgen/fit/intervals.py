@@ -50,7 +50,7 @@ def wilson_interval(ones: npt.ArrayLike, trials: npt.ArrayLike, level: float = 0
     k, n = np.asarray(ones, dtype=float), np.asarray(trials, dtype=float)
     z2 = normal_quantile(level) ** 2
     centre = (k + 0.5 * z2) / (n + z2)
-    half = np.sqrt(z2 * (k * (n - k) / n + 0.25 * z2)) / (n + z2)
+    half = np.sqrt(z2 * (k * (n - k) / np.maximum(n, 1.0) + 0.25 * z2)) / (n + z2)
     return np.where(k == 0, 0.0, centre - half), np.where(k == n, 1.0, centre + half)
 
 

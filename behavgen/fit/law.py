@@ -165,12 +165,13 @@ def _candidates(rows: DelayRows) -> list[Floats]:
     lowest, highest = rows.overdrive_v[used].min(), rows.overdrive_v[used].max()
     distinct = [len(np.unique(v[u])) for v, u in zip(rows.overdrive_v, used, strict=True)]
     most = max(int(np.median(distinct)) // 2, 1)
-    found = [np.log([highest])]
-    for count in _NODE_COUNTS:
-        for share in _FIRST_NODE_SHARES:
-            if count <= most and highest * share > 1.5 * lowest:
-                found.append(np.linspace(np.log(highest * share), np.log(highest), count))
-    return found
+    spaced = [
+        np.linspace(np.log(highest * share), np.log(highest), count)
+        for count in _NODE_COUNTS
+        for share in _FIRST_NODE_SHARES
+        if count <= most and highest * share > 1.5 * lowest
+    ]
+    return [np.log([highest]), *spaced]
 
 
 def _solve(rows: DelayRows, log_node: Floats) -> _Solution:

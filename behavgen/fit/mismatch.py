@@ -17,7 +17,7 @@ from behavgen.tables.characterisation import OffsetStatistics, OffsetTable
 
 __all__ = ["MismatchFit", "fit_mismatch"]
 
-Floats = npt.NDArray[np.float64]
+Booleans = npt.NDArray[np.bool_]
 
 _LEAST_SHARE = 1e-3
 """Components below this share of the variance are not carried."""
@@ -87,7 +87,7 @@ def _from_instances(table: OffsetTable, processes: tuple[str, ...]) -> MismatchF
     matrix[row.ravel(), sites.of_row] = table.offset_v
     variance = _measurement_variance(table)
     found = instance_components(matrix, variance)
-    compared = np.isfinite(found.loadings_v).all(axis=-1)
+    compared = np.asarray(np.isfinite(found.loadings_v).all(axis=-1), dtype=bool)
     kept = max(int((found.share > _LEAST_SHARE).sum()), 1)
     family = exact_family(_subset(sites, compared), found.loadings_v[compared, :kept], processes)
     most = found.reference
@@ -106,7 +106,7 @@ def _from_instances(table: OffsetTable, processes: tuple[str, ...]) -> MismatchF
     )
 
 
-def _subset(sites: Sites, keep: npt.NDArray[np.bool_]) -> Sites:
+def _subset(sites: Sites, keep: Booleans) -> Sites:
     rows = np.flatnonzero(keep)
     return Sites(
         values=sites.values[rows],
@@ -126,7 +126,7 @@ def _notices(
     statistics: InstanceStatistics,
     names: npt.NDArray[np.str_],
     where: str,
-    compared: npt.NDArray[np.bool_],
+    compared: Booleans,
 ) -> list[str]:
     notices = []
     if statistics.outliers:

@@ -177,19 +177,29 @@ def _parameters(
 ) -> tuple[Parameter, ...]:
     origin = f"maximum likelihood, profile interval; {source}"
     place = condition_words(condition)
+
+    def estimate(value: float, low: float, high: float) -> Estimate:
+        return Estimate(
+            value=significant(float(value)), low=_finite(low), high=_finite(high), level=fits.level
+        )
+
     return (
         Parameter(
-            name="offset_v", unit="V", description=f"trip point at {place}", source=origin,
-            estimate=Estimate(value=significant(float(fits.offset_v[c])), level=fits.level,
-                              low=_finite(fits.offset_low_v[c]), high=_finite(fits.offset_high_v[c])),
+            name="offset_v",
+            estimate=estimate(fits.offset_v[c], fits.offset_low_v[c], fits.offset_high_v[c]),
+            unit="V",
+            description=f"trip point at {place}",
+            source=origin,
         ),
         Parameter(
-            name="noise_sigma_v", unit="V", description=f"noise sigma at {place}", source=origin,
+            name="noise_sigma_v",
+            estimate=estimate(fits.sigma_v[c], fits.sigma_low_v[c], fits.sigma_high_v[c]),
+            unit="V",
             low=0.0,
-            estimate=Estimate(value=significant(float(fits.sigma_v[c])), level=fits.level,
-                              low=_finite(fits.sigma_low_v[c]), high=_finite(fits.sigma_high_v[c])),
+            description=f"noise sigma at {place}",
+            source=origin,
         ),
-    )  # fmt: skip
+    )
 
 
 def _finite(value: float) -> float | None:

@@ -52,7 +52,9 @@ class SurfaceFamily:
     scaled: dict[str, str]
     left_out: Floats
 
-    def surface(self, position: int, unit: str, transform: str, variance: float) -> Surface:
+    def surface(
+        self, position: int, unit: str, transform: str, variance: float | None = None
+    ) -> Surface:
         """Return one surface of the family as the model carries it.
 
         Parameters
@@ -60,11 +62,11 @@ class SurfaceFamily:
         position : int
             Which of the L surfaces.
         unit, transform : str
-        variance : float
-            Of the residual whose unit `SurfaceFit.covariance` is.
+        variance : float, optional
+            Of the targets; None: the coefficients' covariance is carried elsewhere.
         """
         form = self.fit.form
-        covariance = self.fit.covariance * variance
+        covariance = [] if variance is None else (self.fit.covariance * variance).tolist()
         return Surface(
             unit=unit,
             transform=transform,
@@ -79,7 +81,7 @@ class SurfaceFamily:
                 )
                 for process, values in self.coefficients.items()
             ),
-            covariance=tuple(tuple(significant(float(v), 6) for v in row) for row in covariance),
+            covariance=tuple(tuple(significant(v, 6) for v in row) for row in covariance),
         )
 
 

@@ -144,19 +144,24 @@ def fit_s_curves(
 
 
 def misfit_notice(fits: SCurveFits, curve: int) -> str:
-    """Return what a curve that does not follow the law did to its intervals; "" if it follows."""
-    if not fits.goodness_p[curve] < MISFIT_P:
-        return ""
-    tails = ""
-    if abs(fits.tail_z[curve]) > normal_quantile(1.0 - MISFIT_P):
-        tails = f", tails {'heavier' if fits.tail_z[curve] < 0 else 'lighter'} than Gaussian"
-    return (
-        f"the S-curve is not Gaussian within its counts: deviance {fits.deviance[curve]:.3g} on "
-        f"{fits.degrees_of_freedom[curve]} degrees of freedom (p = {fits.goodness_p[curve]:.1g})"
-        f"{tails}; variances of offset and sigma are multiplied by "
-        f"{fits.overdispersion[curve]:.3g}; look for drift, memory between decisions or mixed "
-        "conditions"
-    )
+    """Return how a curve departs from the law and what that did to it; "" if it does not.
+
+    Each of the two tests behind it speaks up by chance once in a thousand curves.
+    """
+    p, z = fits.goodness_p[curve], fits.tail_z[curve]
+    found = []
+    if p < MISFIT_P:
+        found.append(
+            f"the counts scatter more than binomial ones around a Gaussian S-curve (p = {p:.1g}): "
+            f"variances of offset and sigma are multiplied by {fits.overdispersion[curve]:.3g}; "
+            "look for drift, memory between decisions or mixed conditions"
+        )
+    if abs(z) > normal_quantile(1.0 - MISFIT_P):
+        found.append(
+            f"the noise has {'heavier' if z < 0 else 'lighter'} tails than Gaussian "
+            f"({abs(z):.1f} standard errors): error rates far out are no predictions"
+        )
+    return "; ".join(found)
 
 
 class _Columns(NamedTuple):

@@ -132,7 +132,8 @@ def _statistic(
     damped = 1.0 / (v + 1.0)
 
     def total(per_cell: Floats) -> Floats:
-        return np.bincount(curve, per_cell, minlength=at.rows.curves)
+        sums = np.bincount(curve, weights=per_cell, minlength=at.rows.curves)
+        return np.asarray(sums, dtype=float)
 
     return (
         total(r * r * damped),

@@ -22,6 +22,7 @@ from behavgen.fit.s_curve_likelihood import (
     flat_loglik,
     profile_end,
 )
+from behavgen.units import format_si
 
 __all__ = ["Identification", "Reason", "identify"]
 
@@ -170,7 +171,7 @@ def _sigma_bound(rows: Rows, highest_zero_v: Floats, lowest_one_v: Floats, level
 
 
 def _volts(x: float) -> str:
-    return f"{x * 1e3:.4g} mV"
+    return format_si(x, "V", digits=4)
 
 
 def _too_few(found: Identification, c: int) -> tuple[str, str]:

@@ -56,7 +56,8 @@ class Rows:
 
     def total(self, per_row: Floats) -> Floats:
         """Sum over the rows of each curve, shape (C,)."""
-        return np.bincount(self.curve, per_row, minlength=self.curves)
+        sums = np.bincount(self.curve, weights=per_row, minlength=self.curves)
+        return np.asarray(sums, dtype=float)
 
     def of(self, wanted: Booleans) -> Rows:
         """Return the rows of the wanted curves, renumbered; `wanted` of shape (C,)."""
@@ -118,6 +119,19 @@ def counts_loglik(ones: Floats, zeros: Floats) -> Floats:
 def flat_loglik(rows: Rows) -> Floats:
     """Return the log likelihood of each curve as sigma grows without bound, shape (C,)."""
     return counts_loglik(rows.total(rows.ones), rows.total(rows.zeros))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Settled:
+    """Where a walk over the likelihood ended, shape (C,) each."""
+
+    offset_v: Floats
+    sigma_v: Floats
+    converged: Booleans
+
+
+Step = tuple[Floats, Floats]
+"""``z -> z + shift + stretch z``: shift and stretch, shape (C,) each."""
 
 
 def maximise(rows: Rows) -> Settled:
@@ -198,19 +212,6 @@ def profile_end(
         climb=False,
     )
     return np.where(end.converged, (end.offset_v, end.sigma_v)[parameter], np.nan)
-
-
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class Settled:
-    """Where a walk over the likelihood ended, shape (C,) each."""
-
-    offset_v: Floats
-    sigma_v: Floats
-    converged: Booleans
-
-
-Step = tuple[Floats, Floats]
-"""``z -> z + shift + stretch z``: shift and stretch, shape (C,) each."""
 
 
 def _walk(

@@ -13,42 +13,21 @@ from simulation), `choose_by_likelihood` for values with known random errors
 
 from __future__ import annotations
 
-import itertools
 from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
-from behavgen.fit.conditions import CONDITION_NAMES
-from behavgen.formulas.polynomial import AXIS_SHAPES, axis_coordinate
-from behavgen.model import Axis, significant
+from behavgen.fit.surface_forms import CONSTANT_SPREAD, Candidates, Form, candidates, design
 
-__all__ = [
-    "Form",
-    "SurfaceFit",
-    "axis_powers",
-    "choose_by_left_out",
-    "choose_by_likelihood",
-    "design",
-    "difference_by_left_out",
-]
+__all__ = ["SurfaceFit", "choose_by_left_out", "choose_by_likelihood", "difference_by_left_out"]
 
 Floats = npt.NDArray[np.float64]
 
-_CONSTANT_SPREAD = 1e4
-"""Prior spread of the constant term: wide enough to be free."""
 _AS_GOOD = 1.05
 """Fewer terms are preferred while the left-out error rises by no more than this factor."""
 _AS_LIKELY = 2.0
 """The same for twice the log likelihood."""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Form:
-    """How a surface is written: its axes and terms."""
-
-    axes: tuple[Axis, ...]
-    exponents: tuple[tuple[int, ...], ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -60,7 +39,11 @@ class SurfaceFit:
     form : Form
     coefficients : ndarray, shape (terms, L)
     covariance : ndarray, shape (terms, terms)
-        Of the coefficients, for targets whose weighted residuals have unit variance.
+        Of the coefficients given the prior, for targets of unit variance.
+    leverage : ndarray, shape (terms, terms)
+        Of the coefficients from random errors of the targets alone, unit variance.
+    inflation : float
+        Mean variance of a left-out error for independent target errors of unit variance.
     left_out : ndarray, shape (C, L)
         Error at each condition of the surface chosen and fitted without it.
     """
@@ -68,6 +51,8 @@ class SurfaceFit:
     form: Form
     coefficients: Floats
     covariance: Floats
+    leverage: Floats
+    inflation: float
     left_out: Floats
 
     def predict(self, values: Floats) -> Floats:
@@ -85,115 +70,14 @@ class SurfaceFit:
         return next(k for k, term in enumerate(self.form.exponents) if not any(term))
 
 
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class _Candidates:
-    """All ways to write a surface: shapes of axes times priors, as one batch.
-
-    Parameters
-    ----------
-    axes : tuple of tuple of Axis, length S
-    exponents : tuple
-        The complete set of M terms.
-    spread : ndarray, shape (P, M)
-        Prior spread of each coefficient; 0 leaves the term out.
-    """
-
-    axes: tuple[tuple[Axis, ...], ...]
-    exponents: tuple[tuple[int, ...], ...]
-    spread: Floats
-
-
-def axis_powers(values: Floats) -> dict[str, int]:
-    """Return the highest power each condition can carry, from its distinct levels.
-
-    Two levels carry a straight line, three or four a parabola, five a cubic;
-    one level or none gives no axis.
-
-    Parameters
-    ----------
-    values : ndarray, shape (C, 3)
-    """
-    powers = {}
-    for name, column in zip(CONDITION_NAMES, values.T, strict=True):
-        levels = 1 if np.isnan(column).any() else len(np.unique(column))
-        if levels > 1:
-            powers[name] = 1 if levels == 2 else 2 if levels < 5 else 3
-    return powers
-
-
-def _axes(values: Floats, shapes: dict[str, str]) -> tuple[Axis, ...]:
-    axes = []
-    for name, shape in shapes.items():
-        column = values[:, CONDITION_NAMES.index(name)]
-        ends = axis_coordinate(np.array([column.min(), column.max()]), shape, 0.0, 1.0)
-        centre, half = 0.5 * float(ends[0] + ends[1]), 0.5 * abs(float(ends[1] - ends[0]))
-        axes.append(
-            Axis(condition=name, shape=shape, centre=significant(centre, 6),
-                 half_range=significant(half, 6))
-        )  # fmt: skip
-    return tuple(axes)
-
-
-def _candidates(
-    values: Floats, decays: tuple[float, ...], ratios: tuple[float, ...]
-) -> _Candidates:
-    """Return all candidates; `ratios` are prior spreads of a linear term over the residual's."""
-    powers = axis_powers(values)
-    positive = {n: bool((values[:, CONDITION_NAMES.index(n)] > 0.0).all()) for n in powers}
-    shapes = [
-        AXIS_SHAPES if power > 1 and positive[name] else AXIS_SHAPES[:1]
-        for name, power in powers.items()
-    ]
-    exponents = _visible(values, powers)
-    order = np.array([sum(term) for term in exponents])
-    spread = [
-        np.where(order == 0, _CONSTANT_SPREAD, ratio * decay ** (order - 1.0)) * (order <= highest)
-        for highest in range(max(order) + 1)
-        for decay in decays
-        for ratio in ratios
-    ]
-    return _Candidates(
-        axes=tuple(
-            _axes(values, dict(zip(powers, chosen, strict=True)))
-            for chosen in itertools.product(*shapes)
-        ),
-        exponents=exponents,
-        spread=np.array(spread),
-    )
-
-
-def _visible(values: Floats, powers: dict[str, int]) -> tuple[tuple[int, ...], ...]:
-    """Return the terms, lowest total power first, that these conditions can tell apart."""
-    every = itertools.product(*(range(power + 1) for power in powers.values()))
-    axes = _axes(values, dict.fromkeys(powers, "plain"))
-    kept: list[tuple[int, ...]] = []
-    for term in sorted(every, key=lambda powers: (sum(powers), powers)):
-        columns = design(Form(axes=axes, exponents=(*kept, term)), values)
-        if np.linalg.matrix_rank(columns, tol=1e-6 * np.sqrt(len(values))) > len(kept):
-            kept.append(term)
-    return tuple(kept)
-
-
-def design(form: Form, values: Floats) -> Floats:
-    """Return the design matrix, shape (C, terms), at conditions of shape (C, 3)."""
-    matrix = np.ones((len(values), len(form.exponents)))
-    for position, axis in enumerate(form.axes):
-        column = values[:, CONDITION_NAMES.index(axis.condition)]
-        coordinate = axis_coordinate(column, axis.shape, axis.centre, axis.half_range)
-        matrix *= coordinate[:, None] ** np.array([term[position] for term in form.exponents])
-    return matrix
-
-
-def _scaled_designs(candidates: _Candidates, values: Floats, weights: Floats) -> Floats:
+def _scaled_designs(ways: Candidates, values: Floats, weights: Floats) -> Floats:
     """Return sqrt(weight) * design * prior spread, shape (S * P, C, M)."""
     plain = np.stack(
-        [
-            design(Form(axes=axes, exponents=candidates.exponents), values)
-            for axes in candidates.axes
-        ]
+        [design(Form(axes=axes, exponents=ways.exponents), values) for axes in ways.axes]
     )
-    scaled = plain[:, None] * candidates.spread[None, :, None, :] * np.sqrt(weights)[:, None]
-    return scaled.reshape(-1, *plain.shape[1:])
+    scaled = plain[:, None] * ways.spread[None, :, None, :] * np.sqrt(weights)[:, None]
+    batch: Floats = scaled.reshape(-1, *plain.shape[1:])
+    return batch
 
 
 def choose_by_left_out(
@@ -222,25 +106,26 @@ def choose_by_left_out(
     -------
     SurfaceFit
     """
-    candidates = _candidates(values, decays=(0.3,), ratios=(30.0, 100.0, 300.0))
+    ways = candidates(values, decays=(0.3,), ratios=(30.0, 100.0, 300.0))
     weights = np.ones(len(values))
-    scaled = _scaled_designs(candidates, values, weights)
+    scaled = _scaled_designs(ways, values, weights)
     smoother, residual = _smoothers(scaled, targets)
     if metric is None:
         metric = np.broadcast_to(np.eye(targets.shape[1]), (len(values), *(targets.shape[1],) * 2))
     single = residual / _slack(smoother)[..., None]
-    terms = _terms(candidates)
+    terms = _terms(ways)
     fitted = _cost(residual, metric).mean(axis=-1)
     best = _simplest(_cost(single, metric).mean(axis=-1) + fitted, terms)
     left_out = _nested(smoother, residual, single, metric, terms) if nested else single[best]
     if len(values) == 1:
         left_out = np.full_like(targets, np.nan)
-    return _finished(candidates, best, values, targets, weights, left_out)
+    return _finished(ways, best, values, targets, weights, left_out)
 
 
-def _terms(candidates: _Candidates) -> npt.NDArray[np.intp]:
+def _terms(ways: Candidates) -> npt.NDArray[np.intp]:
     """Return how many terms each candidate of the batch has, shape (S * P,)."""
-    return np.tile((candidates.spread > 0.0).sum(axis=-1), len(candidates.axes))
+    counts: npt.NDArray[np.intp] = np.tile((ways.spread > 0.0).sum(axis=-1), len(ways.axes))
+    return counts
 
 
 def _simplest(cost: Floats, terms: npt.NDArray[np.intp]) -> int:
@@ -254,17 +139,20 @@ def _smoothers(scaled: Floats, targets: Floats) -> tuple[Floats, Floats]:
     """Return smoother matrices (B, C, C) and residuals fit - target (B, C, L)."""
     normal = scaled.transpose(0, 2, 1) @ scaled + np.eye(scaled.shape[-1])
     smoother = scaled @ np.linalg.solve(normal, scaled.transpose(0, 2, 1))
-    return smoother, smoother @ targets - targets
+    residual: Floats = smoother @ targets - targets
+    return smoother, residual
 
 
 def _slack(smoother: Floats) -> Floats:
-    return np.maximum(1.0 - np.diagonal(smoother, axis1=-2, axis2=-1), 1e-12)
+    slack: Floats = np.maximum(1.0 - np.diagonal(smoother, axis1=-2, axis2=-1), 1e-12)
+    return slack
 
 
 def _cost(error: Floats, metric: Floats) -> Floats:
     """Return each condition's cost, shape (..., C); the root keeps one bad corner from ruling."""
     squared = np.einsum("...cl,clm,...cm->...c", error, metric, error, optimize=True)
-    return np.sqrt(np.maximum(squared, 0.0))
+    cost: Floats = np.sqrt(np.maximum(squared, 0.0))
+    return cost
 
 
 def _nested(
@@ -302,19 +190,19 @@ def choose_by_likelihood(values: Floats, target: Floats, variance: Floats) -> Su
     """
     scale = float(np.mean(variance))
     weights = scale / variance
-    candidates = _candidates(values, decays=(0.3,), ratios=(0.1, 0.5, 2.0, 10.0, 100.0))
-    scaled = _scaled_designs(candidates, values, weights)
+    ways = candidates(values, decays=(0.3,), ratios=(0.1, 0.5, 2.0, 10.0, 100.0))
+    scaled = _scaled_designs(ways, values, weights)
     whitened = target * np.sqrt(weights) / np.sqrt(scale)
     spread = np.eye(len(target)) + scaled @ scaled.transpose(0, 2, 1)
     _, log_determinant = np.linalg.slogdet(spread)
     fit = np.linalg.solve(spread, np.broadcast_to(whitened, (len(spread), len(target)))[..., None])
     surprise = log_determinant + np.einsum("c,bc->b", whitened, fit[..., 0])
     likely = surprise <= surprise.min() + _AS_LIKELY
-    terms = _terms(candidates)
+    terms = _terms(ways)
     best = int(np.argmin(np.where(likely & (terms == terms[likely].min()), surprise, np.inf)))
     smoother, residual = _smoothers(scaled[best : best + 1], whitened[:, None])
     left_out = residual[0] / _slack(smoother)[0][:, None] * np.sqrt(scale / weights)[:, None]
-    return _finished(candidates, best, values, target[:, None], weights, left_out)
+    return _finished(ways, best, values, target[:, None], weights, left_out)
 
 
 def difference_by_left_out(fit: SurfaceFit, values: Floats, targets: Floats) -> Floats:
@@ -338,7 +226,7 @@ def difference_by_left_out(fit: SurfaceFit, values: Floats, targets: Floats) -> 
     order = np.array([sum(term) for term in fit.form.exponents])
     plain = design(fit.form, values)
     spread = [
-        np.where(order == 0, _CONSTANT_SPREAD, 1e2 * 0.3 ** (order - 1.0)) * (order <= highest)
+        np.where(order == 0, CONSTANT_SPREAD, 1e2 * 0.3 ** (order - 1.0)) * (order <= highest)
         for highest in (range(max(order) + 1) if len(values) > 2 else (0,))
     ]
     scaled = plain * np.array(spread)[:, None, :]
@@ -351,16 +239,31 @@ def difference_by_left_out(fit: SurfaceFit, values: Floats, targets: Floats) -> 
 
 
 def _finished(
-    candidates: _Candidates, best: int, values: Floats, targets: Floats, weights: Floats,
+    ways: Candidates, best: int, values: Floats, targets: Floats, weights: Floats,
     left_out: Floats,
 ) -> SurfaceFit:  # fmt: skip
-    shape, prior = divmod(best, len(candidates.spread))
-    spread = candidates.spread[prior]
+    shape, prior = divmod(best, len(ways.spread))
+    spread = ways.spread[prior]
     kept = np.flatnonzero(spread > 0.0)
-    form = Form(axes=candidates.axes[shape], exponents=tuple(candidates.exponents[k] for k in kept))
+    form = Form(axes=ways.axes[shape], exponents=tuple(ways.exponents[k] for k in kept))
     root = np.sqrt(weights)[:, None]
     scaled = root * design(form, values) * spread[kept]
     normal = scaled.T @ scaled + np.eye(len(kept))
     inverse = np.linalg.inv(normal) * np.outer(spread[kept], spread[kept])
-    coefficients = inverse @ ((root * design(form, values)).T @ (root * targets))
-    return SurfaceFit(form=form, coefficients=coefficients, covariance=inverse, left_out=left_out)
+    plain = root * design(form, values)
+    coefficients = inverse @ (plain.T @ (root * targets))
+    return SurfaceFit(
+        form=form,
+        coefficients=coefficients,
+        covariance=inverse,
+        leverage=inverse @ plain.T @ plain @ inverse,
+        inflation=_inflation(plain @ inverse @ plain.T),
+        left_out=left_out,
+    )
+
+
+def _inflation(smoother: Floats) -> float:
+    """Return the mean of (sum over the others of S_ij^2 + (1 - S_ii)^2) / (1 - S_ii)^2."""
+    slack = _slack(smoother)
+    others = (smoother**2).sum(axis=-1) - np.diag(smoother) ** 2
+    return float(np.mean(1.0 + others / slack**2))

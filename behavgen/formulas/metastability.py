@@ -8,6 +8,8 @@ exact as the overdrive goes to zero and fails at large overdrive.
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 import numpy.typing as npt
 from scipy.special import erf
@@ -28,18 +30,22 @@ __all__ = [
 
 Floats = npt.NDArray[np.float64]
 
-MEAN_LOG_DELAY_AT_BALANCE = 0.5 * (np.euler_gamma + np.log(2.0))
+MEAN_LOG_DELAY_AT_BALANCE = 0.5 * (np.euler_gamma + math.log(2.0))
 """``E[-ln|z|]`` of a standard normal `z`: mean delay, in tau, that a balanced input
 with noise sigma takes beyond that of an overdrive of one sigma (derived:
 ``ln z^2`` of a chi-square variable has mean ``psi(1/2) + ln 2``)."""
 
-VARIANCE_LOG_DELAY_AT_BALANCE = np.pi**2 / 8.0
+VARIANCE_LOG_DELAY_AT_BALANCE = math.pi**2 / 8.0
 """Variance of ``-ln|z|``, in tau^2 (derived: a quarter of ``psi'(1/2)``)."""
+
+
+def _floats(x: npt.ArrayLike) -> Floats:
+    return np.asarray(x, dtype=float)
 
 
 def regeneration_tau(capacitance_f: npt.ArrayLike, transconductance_s: npt.ArrayLike) -> Floats:
     """Return ``tau = C / gm`` in s (Veendrick 1980); `transconductance_s` in siemens."""
-    return np.asarray(capacitance_f, dtype=float) / np.asarray(transconductance_s, dtype=float)
+    return _floats(capacitance_f) / _floats(transconductance_s)
 
 
 def regeneration_delay(
@@ -58,9 +64,7 @@ def regeneration_delay(
     logic_v : array_like
         Imbalance that counts as decided, V.
     """
-    ratio = np.asarray(logic_v, dtype=float) / np.asarray(initial_v, dtype=float)
-    delay_s: Floats = tau_s * np.log(np.maximum(ratio, 1.0))
-    return delay_s
+    return _floats(tau_s) * np.log(np.maximum(_floats(logic_v) / _floats(initial_v), 1.0))
 
 
 def saturating_latch_delay(
@@ -82,16 +86,14 @@ def saturating_latch_delay(
     saturation_v : array_like
         ``Vs``, V.
     """
-    start = np.asarray(initial_v, dtype=float) / saturation_v
-    end = np.maximum(np.asarray(logic_v, dtype=float) / saturation_v, start)
-    delay_s: Floats = tau_s * (_log_sinh(end) - _log_sinh(start))
-    return delay_s
+    start = _floats(initial_v) / _floats(saturation_v)
+    end = np.maximum(_floats(logic_v) / _floats(saturation_v), start)
+    return _floats(tau_s) * (_log_sinh(end) - _log_sinh(start))
 
 
 def _log_sinh(x: Floats) -> Floats:
     """Return ``ln(2 sinh x)`` without overflow."""
-    log: Floats = x + np.log(-np.expm1(-2.0 * x))
-    return log
+    return x + np.log(-np.expm1(-2.0 * x))
 
 
 def metastable_window(
@@ -101,9 +103,7 @@ def metastable_window(
 
     ``W = W0 exp(-t / tau)``: Veendrick's law read the other way.
     """
-    decay = np.exp(-np.asarray(resolve_time_s, dtype=float) / tau_s)
-    window_v: Floats = window_at_edge_v * decay
-    return window_v
+    return _floats(window_at_edge_v) * np.exp(-_floats(resolve_time_s) / _floats(tau_s))
 
 
 def unresolved_probability_uniform(window_v: npt.ArrayLike, span_v: npt.ArrayLike) -> Floats:
@@ -111,7 +111,7 @@ def unresolved_probability_uniform(window_v: npt.ArrayLike, span_v: npt.ArrayLik
 
     ``W / S`` (Veendrick 1980), at most 1; widths in V.
     """
-    return np.minimum(np.asarray(window_v, dtype=float) / np.asarray(span_v, dtype=float), 1.0)
+    return np.minimum(_floats(window_v) / _floats(span_v), 1.0)
 
 
 def unresolved_probability_at_balance(window_v: npt.ArrayLike, sigma_v: npt.ArrayLike) -> Floats:
@@ -119,7 +119,7 @@ def unresolved_probability_at_balance(window_v: npt.ArrayLike, sigma_v: npt.Arra
 
     ``erf(W / (2 sqrt(2) sigma))``: a normal variable within ``W/2`` of its mean (derived).
     """
-    share: Floats = erf(np.asarray(window_v, dtype=float) / (2.0 * np.sqrt(2.0) * sigma_v))
+    share: Floats = erf(_floats(window_v) / (2.0 * np.sqrt(2.0) * _floats(sigma_v)))
     return share
 
 
@@ -146,8 +146,8 @@ def mean_time_between_failures(
     clock_hz, data_hz : array_like
         Rates of decisions and of input changes, Hz.
     """
-    failure_hz = np.asarray(window_s, dtype=float) * clock_hz * data_hz
-    exponent = np.asarray(resolve_time_s, dtype=float) / tau_s - np.log(failure_hz)
+    failure_hz = _floats(window_s) * _floats(clock_hz) * _floats(data_hz)
+    exponent = _floats(resolve_time_s) / _floats(tau_s) - np.log(failure_hz)
     with np.errstate(over="ignore"):
         mtbf_s: Floats = np.exp(exponent)
     return mtbf_s
@@ -160,8 +160,8 @@ def sar_regeneration(bits: npt.ArrayLike) -> Floats:
     peak) as logic level, noise off. Derived: at decision `i` the distance to the
     threshold is uniform up to ``full scale / 2^i``, which costs ``i ln2 + 1``.
     """
-    b = np.asarray(bits, dtype=float)
-    return np.log(2.0) * b * (b + 1.0) / 2.0 + b
+    b = _floats(bits)
+    return math.log(2.0) * b * (b + 1.0) / 2.0 + b
 
 
 def sar_easy_regeneration(bits: npt.ArrayLike) -> Floats:
@@ -171,5 +171,5 @@ def sar_easy_regeneration(bits: npt.ArrayLike) -> Floats:
     uniform up to half a step away and costs ``(B+1) ln2 + 1`` (the two end codes,
     with one threshold only, are neglected).
     """
-    b = np.asarray(bits, dtype=float)
-    return np.log(2.0) * (b + 1.0) * (b - 2.0) / 2.0 + b - 1.0
+    b = _floats(bits)
+    return math.log(2.0) * (b + 1.0) * (b - 2.0) / 2.0 + b - 1.0

@@ -75,8 +75,8 @@ def spanning(
 
 def symmetric(*values: npt.ArrayLike) -> tuple[float, float]:
     """Return ends of an axis around zero, for residuals."""
-    low, high = spanning(*values, padding=0.12)
-    reach = max(abs(low), abs(high))
+    low, high = spanning(*values, padding=0.0)
+    reach = 1.15 * max(abs(low), abs(high))
     return -reach, reach
 
 

@@ -26,8 +26,8 @@ FIELDS = ("process", "vdd_v", "temperature_k", "vcm_v")
 FIELD_TITLES = {
     "process": "process",
     "vdd_v": "supply",
-    "temperature_k": "temperature",
-    "vcm_v": "common mode",
+    "temperature_k": "temp",
+    "vcm_v": "vcm",
 }
 
 

@@ -8,11 +8,11 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from behavgen.model import ComparatorModel, Condition, CurvePoints
+from behavgen.model import ComparatorModel, Condition, CurvePoints, Range
 from behavgen.reference import Reference
 from behavgen.report.conditions import reference_keywords
 
-__all__ = ["Curve", "curves", "rms", "worst"]
+__all__ = ["Curve", "curves", "drawn_overdrives", "rms", "worst"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -53,6 +53,12 @@ def curves(model: ComparatorModel, reference: Reference, quantity: str) -> tuple
     """Return one curve for each condition of ``"delay"``, ``"window"`` or ``"noise"``."""
     found = (p for p in model.points if p.quantity == quantity and len(p.x) > 0)
     return tuple(_curve(points, reference) for points in found)
+
+
+def drawn_overdrives(model: ComparatorModel) -> Floats:
+    """Return overdrives in V at which to draw a model that carries no table points."""
+    span = model.box.overdrive_v or Range(low=1e-6, high=0.1)
+    return np.geomspace(span.low, span.high, _LINE_POINTS)
 
 
 def worst(members: Sequence[Curve]) -> float:

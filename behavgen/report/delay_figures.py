@@ -6,7 +6,8 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from behavgen.model import Condition
+from behavgen.model import ComparatorModel, Condition
+from behavgen.reference import Reference
 from behavgen.report.axes import PlotAxis, spanning
 from behavgen.report.charts import Chart, Dots, Layer, Line, Panel, draw_chart
 from behavgen.report.conditions import (
@@ -17,7 +18,7 @@ from behavgen.report.conditions import (
     shared_words,
     varying_fields,
 )
-from behavgen.report.curves import Curve, rms, worst
+from behavgen.report.curves import Curve, drawn_overdrives, rms, worst
 from behavgen.report.figure import (
     Figure,
     Multiples,
@@ -25,7 +26,7 @@ from behavgen.report.figure import (
     series_marker,
     series_style,
 )
-from behavgen.report.numbers import percent_text
+from behavgen.report.numbers import percent_text, si_text
 from behavgen.report.overlay import (
     drawn_curves,
     overlay_legend,
@@ -33,7 +34,7 @@ from behavgen.report.overlay import (
     spotlights,
 )
 
-__all__ = ["delay_multiples", "delay_overview"]
+__all__ = ["delay_alone", "delay_multiples", "delay_overview"]
 
 _MOST_PANELS = 12
 _MOST_SERIES = 6
@@ -44,7 +45,7 @@ def delay_overview(members: Sequence[Curve], middle: Condition) -> Figure:
     """Return the chart of all conditions with the model's errors under it."""
     drawn = drawn_curves(members)
     chosen = spotlights(drawn, middle, [float(c.model_y.max()) for c in drawn])
-    x = _overdrive_axis(drawn, most_ticks=7)
+    x = _overdrive_axis(*_overdrive_span(drawn), most_ticks=7)
     low, high = spanning([0.0], *(c.y for c in drawn), *(c.line_y for c in drawn))
     y = PlotAxis(label="Delay", unit="s", low=max(low, 0.0), high=high)
     chart = Chart(
@@ -68,6 +69,24 @@ def _overview_caption(members: Sequence[Curve], drawn: Sequence[Curve]) -> str:
         text += f" Of {len(members)} conditions the {len(drawn)} that fit worst are drawn."
     shared = shared_words([c.condition for c in members])
     return f"{text} All at {shared}." if shared else text
+
+
+def delay_alone(model: ComparatorModel, reference: Reference, middle: Condition) -> Figure:
+    """Return the emitted delay at the middle of the range, for a model without table points."""
+    overdrive_v = drawn_overdrives(model)
+    delay_s = reference.delay(overdrive_v)
+    low, high = spanning(overdrive_v, logarithmic=True)
+    x = _overdrive_axis(low, high, most_ticks=7)
+    y = PlotAxis(label="Delay", unit="s", low=0.0, high=spanning(delay_s)[1])
+    chart = Chart(
+        name="delay", title="Delay over overdrive of the emitted model",
+        description=f"From {si_text(float(delay_s[0]), 's')} at {si_text(float(overdrive_v[0]), 'V')}"
+        f" to {si_text(float(delay_s[-1]), 's')} at {si_text(float(overdrive_v[-1]), 'V')}.",
+        panels=(Panel(x=x, y=y, layers=(Line(x=overdrive_v, y=delay_s),), height=250.0),),
+    )  # fmt: skip
+    where = condition_words(middle)
+    caption = "The model file carries no table rows to compare with. The line is the emitted model"
+    return Figure(svg=draw_chart(chart), caption=f"{caption}, at {where}." if where else caption + ".")
 
 
 def delay_multiples(members: Sequence[Curve]) -> Multiples | None:
@@ -141,7 +160,7 @@ def _small_axes(groups: Sequence[Sequence[Curve]]) -> list[tuple[PlotAxis, PlotA
     """Return one pair of axes a chart; all alike unless that would flatten the fast ones."""
     tops = [max(float(max(c.y.max(), c.line_y.max())) for c in group) for group in groups]
     common = max(tops) < 3.0 * min(tops)
-    x = _overdrive_axis([c for group in groups for c in group], most_ticks=3)
+    x = _overdrive_axis(*_overdrive_span([c for g in groups for c in g]), most_ticks=3)
     return [
         (x, PlotAxis(label="Delay", unit="s", low=0.0,
                      high=1.06 * (max(tops) if common else top), most_ticks=4))
@@ -175,7 +194,10 @@ def _small_figure(
     return Figure(svg=draw_chart(chart), caption=words, detail=detail)
 
 
-def _overdrive_axis(members: Sequence[Curve], most_ticks: int) -> PlotAxis:
-    low, high = spanning(*(c.x for c in members), logarithmic=True)
+def _overdrive_span(members: Sequence[Curve]) -> tuple[float, float]:
+    return spanning(*(c.x for c in members), logarithmic=True)
+
+
+def _overdrive_axis(low: float, high: float, most_ticks: int) -> PlotAxis:
     return PlotAxis(label="Overdrive", unit="V", low=low, high=high, logarithmic=True,
                     most_ticks=most_ticks)  # fmt: skip

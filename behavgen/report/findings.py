@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-import hashlib
 from collections.abc import Sequence
 from dataclasses import dataclass
 
 from behavgen.check.verdict import CheckReport, Disagreement, Stratum
+from behavgen.files import sha256_of_text
 from behavgen.model import ComparatorModel, dump_model
 from behavgen.report.numbers import count_text, si_text
 from behavgen.report.tabulation import Column, Row, Table
@@ -48,7 +48,7 @@ def findings(model: ComparatorModel, check: CheckReport | None) -> Findings:
         )  # fmt: skip
     tables = _tables(check)
     hashes = (("model file", check.model_sha256), ("emitted text", check.emitted_sha256))
-    if check.model_sha256 != hashlib.sha256(dump_model(model).encode()).hexdigest():
+    if check.model_sha256 != sha256_of_text(dump_model(model)):
         return Findings(
             status="stale", headline="Check is out of date", tables=tables,
             hashes=hashes,

@@ -150,7 +150,7 @@ def _small_figure(number: int, s: _SCurve) -> Figure:
         panels=(Panel(x=x, y=_share_axis(), layers=layers, height=130.0),),
         width=240.0, left=42.0,
     )  # fmt: skip
-    detail = f"σ {si_text(s.sigma_v, 'V')}, trip point {si_text(s.trip_v, 'V')}"
+    detail = f"σ\N{NO-BREAK SPACE}{si_text(s.sigma_v, 'V')}, trip point {si_text(s.trip_v, 'V')}"
     return Figure(svg=draw_chart(chart), caption=words, detail=detail)
 
 

@@ -81,7 +81,7 @@ def _quantile_figure(number: int, model: ComparatorModel, points: CurvePoints) -
         description=f"{len(offsets)} instances, standard deviation {si_text(spread, 'V')}.",
         panels=(Panel(x=x, y=y, layers=layers, height=150.0),), width=240.0, left=42.0,
     )  # fmt: skip
-    detail = f"{len(offsets)} instances, σ {si_text(spread, 'V')}"
+    detail = f"{len(offsets)} instances, σ\N{NO-BREAK SPACE}{si_text(spread, 'V')}"
     if sigma is not None:
         detail += f", emitted {si_text(sigma, 'V')}"
     return Figure(svg=draw_chart(chart), caption=words, detail=detail)

@@ -108,7 +108,7 @@ def _legend_text(spotlight: Spotlight, names: tuple[str, ...]) -> str:
     parts = [
         f"{spotlight.role}:" if spotlight.role and words else spotlight.role,
         words or ("" if spotlight.role else "table and model"),
-        f"(worst {percent_text(error)})" if np.isfinite(error) else "",
+        f"(up to {percent_text(error)} off)" if np.isfinite(error) else "",
     ]
     return " ".join(part for part in parts if part)
 

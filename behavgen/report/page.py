@@ -15,8 +15,8 @@ from behavgen.model import ComparatorModel
 from behavgen.reference import Reference
 from behavgen.report.cautions import cautions, is_invented
 from behavgen.report.conditions import condition_words, middle_condition
-from behavgen.report.curves import curves
-from behavgen.report.delay_figures import delay_multiples, delay_overview
+from behavgen.report.curves import Curve, curves
+from behavgen.report.delay_figures import delay_alone, delay_multiples, delay_overview
 from behavgen.report.figure import Figure, Multiples
 from behavgen.report.findings import Findings, findings
 from behavgen.report.noise_figures import (
@@ -25,6 +25,7 @@ from behavgen.report.noise_figures import (
     standardised_s_curves,
 )
 from behavgen.report.offset_figures import offset_multiples
+from behavgen.report.reset_words import reset_sentence
 from behavgen.report.summary import (
     Effect,
     KeyNumber,
@@ -70,6 +71,7 @@ class _Content:
     middle_numbers: tuple[KeyNumber, ...]
     middle: str
     drawings: _Drawings
+    reset: str
     fit_tables: tuple[Table, ...]
     parameters: Table | None
     validity: tuple[ValidityRow, ...]
@@ -112,6 +114,7 @@ def _content(model: ComparatorModel, check: CheckReport | None) -> _Content:
         middle_numbers=middle_numbers(model, reference, middle),
         middle=condition_words(middle),
         drawings=_drawings(model, reference),
+        reset=reset_sentence(model, reference),
         fit_tables=fit_tables(model),
         parameters=parameter_table(model.parameters),
         validity=validity_rows(model),
@@ -128,13 +131,22 @@ def _drawings(model: ComparatorModel, reference: Reference) -> _Drawings:
         symbol=draw_symbol(model.cell),
         timing=draw_timing(model.cell),
         timing_words=timing_words(model.cell),
-        delay=delay_overview(delays, middle_condition(model)) if delays else None,
+        delay=_delay(model, reference, delays),
         delay_small=delay_multiples(delays) if delays else None,
         window=_window(model, reference),
         noise=standardised_s_curves(noise, reference),
         noise_small=s_curve_multiples(noise, reference),
         offset=offset_multiples(model),
     )
+
+
+def _delay(
+    model: ComparatorModel, reference: Reference, delays: tuple[Curve, ...]
+) -> Figure | None:
+    if model.delay is None:
+        return None
+    middle = middle_condition(model)
+    return delay_overview(delays, middle) if delays else delay_alone(model, reference, middle)
 
 
 def _window(model: ComparatorModel, reference: Reference) -> Figure | None:

@@ -10,8 +10,8 @@ __all__ = ["draw_symbol"]
 
 _WIDTH, _HEIGHT = 300.0, 190.0
 _LEFT, _RIGHT, _TOP, _BOTTOM = 96.0, 204.0, 32.0, 158.0
-_CLOCK_Y, _ENABLE_Y = 134.0, 146.0
-_LONGEST = 12
+_CLOCK_Y, _ENABLE_Y = 129.0, 148.0
+_LONGEST = 9
 """Longer pin names are squeezed."""
 
 
@@ -42,7 +42,7 @@ def _inputs(cell: Cell) -> str:
     text = _left_pin(pins.inp, 64.0) + _left_pin(pins.inn, 104.0)
     text += '<text class="sign" x="109" y="68">+</text><text class="sign" x="109" y="108">−</text>'
     text += _clock(cell)
-    return text + (_left_pin(pins.enable, 150.0) if pins.enable else "")
+    return text + (_left_pin(pins.enable, _ENABLE_Y) if pins.enable else "")
 
 
 def _clock(cell: Cell) -> str:
@@ -81,5 +81,5 @@ def _right_pin(name: str, y: float) -> str:
 
 
 def _name(name: str, x: float, y: float, anchor: str) -> str:
-    squeeze = f' textLength="{66}" lengthAdjust="spacingAndGlyphs"' if len(name) > _LONGEST - 3 else ""
+    squeeze = ' textLength="66" lengthAdjust="spacingAndGlyphs"' if len(name) > _LONGEST else ""
     return f'<text class="pin {anchor}" x="{x:g}" y="{y:g}"{squeeze}>{escape(name)}</text>'

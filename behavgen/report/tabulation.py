@@ -60,7 +60,7 @@ def parameter_table(parameters: Sequence[Parameter]) -> Table | None:
     titles = (("parameter", False), ("value", True), ("interval", True), ("confidence", True),
               ("meaning", False), ("source", False))  # fmt: skip
     return Table(
-        caption="Parameters",
+        caption="All parameters",
         columns=tuple(Column(title=t, numeric=n) for t, n in titles),
         rows=tuple(Row(cells=_parameter_cells(p)) for p in parameters),
     )
@@ -108,16 +108,16 @@ def _fit_table(quantity: str, fits: Sequence[ConditionFit]) -> Table:
     worst, flag = _worst_fit(fits)
     columns = (
         *(Column(title=FIELD_TITLES[name], numeric=name != "process") for name in names),
-        Column(title="rows", numeric=True),
         *(Column(title=title, numeric=True) for title, _ in measures),
+        Column(title="rows", numeric=True),
         *(Column(title=name, numeric=True) for name in estimates),
     )
     rows = tuple(
         Row(
             cells=(
                 *(field_text(fit.condition, name) for name in names),
-                count_text(fit.rows),
                 *(text(fit) or "–" for _, text in measures),
+                count_text(fit.rows),
                 *(_estimate_cell(fit, name) for name in estimates),
             ),
             mark="notable" if fit is worst else "",
@@ -130,8 +130,10 @@ def _fit_table(quantity: str, fits: Sequence[ConditionFit]) -> Table:
 
 def _fit_caption(quantity: str, fits: Sequence[ConditionFit]) -> str:
     shared = shared_words([fit.condition for fit in fits])
-    number = "1 condition" if len(fits) == 1 else f"{len(fits)} conditions"
-    return f"{quantity.capitalize()}, {number}" + (f", all at {shared}" if shared else "")
+    if len(fits) == 1:
+        return f"{quantity.capitalize()} at {shared or 'all conditions'}"
+    all_at = f", all at {shared}" if shared else ""
+    return f"{quantity.capitalize()}, {len(fits)} conditions{all_at}"
 
 
 def _percent(value: float | None) -> str:
@@ -142,7 +144,7 @@ _Measure = tuple[str, Callable[[ConditionFit], str]]
 _MEASURES: tuple[_Measure, ...] = (
     ("rms", lambda fit: _percent(fit.rms_relative)),
     ("worst", lambda fit: _percent(fit.worst_relative)),
-    ("rms, left out", lambda fit: _percent(fit.held_out_rms_relative)),
+    ("left out", lambda fit: _percent(fit.held_out_rms_relative)),
     ("p\N{NON-BREAKING HYPHEN}value", lambda fit: "" if fit.goodness is None else probability_text(fit.goodness)),
 )
 """Column title and its text for a fit; empty where it is not known."""

@@ -11,8 +11,10 @@ __all__ = ["Wave", "draw_timing", "timing_words", "waves"]
 
 _EDGES = ((40.0, 120.0), (180.0, 260.0), (320.0, 390.0))
 """Decision and reset edge of each decision."""
-_DELAY, _RESET, _END = 36.0, 14.0, 410.0
-_LEFT, _ROW, _SWING = 74.0, 36.0, 20.0
+_PHASES = ("decides 1", "unresolved", "decides 0")
+_DELAY, _RESET, _END = 36.0, 20.0, 420.0
+_LEFT, _ROW, _SWING = 74.0, 40.0, 20.0
+_TOP = 34.0
 _SLANT = 3.0
 
 _LEVEL = {"high": "1", "low": "0", "mid": "m"}
@@ -45,31 +47,43 @@ def waves(cell: Cell) -> tuple[Wave, ...]:
 def timing_words(cell: Cell) -> str:
     """Say in words what the drawing shows."""
     pins = cell.pins
-    both = f"{pins.outp} and {pins.outn}" if pins.outn else pins.outp
-    one = f"{pins.outp} goes" if not pins.outn else "the outputs go"
+    subject = f"{pins.outp} and {pins.outn}" if pins.outn else pins.outp
     rests = {
-        "high": f"{both} rest high", "low": f"{both} rest low",
-        "mid": f"{both} rest at mid level (X on logic pins)",
-        "hold": f"{both} hold the last decision",
-    }[cell.in_reset]  # fmt: skip
+        "high": _agreeing(subject, pins.outn, "rest high"),
+        "low": _agreeing(subject, pins.outn, "rest low"),
+        "mid": _agreeing(subject, pins.outn, "rest at mid level (X on logic pins)"),
+        "hold": _agreeing(subject, pins.outn, "hold the last decision"),
+    }[cell.in_reset]
     ends = {
-        "x": f"{one} X", "coin": f"{one} to the result of a coin", "hold": f"{both} stay as they are"
-    }[cell.when_unresolved]  # fmt: skip
+        "x": _agreeing(subject, pins.outn, "go X"),
+        "coin": _agreeing(subject, pins.outn, "show the result of a coin"),
+        "hold": _agreeing(subject, pins.outn, "keep their value"),
+    }[cell.when_unresolved]
     until = "until the next ready" if cell.in_reset == "hold" else "until the reset state returns"
+    flag = f", and {pins.unresolved} rises until the next ready" if pins.unresolved else ""
     return (
         f"Each {cell.decides_on} edge of {pins.clk} decides. In reset {rests}. A decision that is "
-        f"not ready by the end of its phase is unresolved: there {ends} {until}. Not to scale."
+        f"not ready by the end of its phase is unresolved: then {ends} {until}{flag}. Not to scale."
     )
+
+
+def _agreeing(subject: str, other: str | None, words: str) -> str:
+    """Join a subject and a verb phrase in the plural, or in the singular for a lone output."""
+    if other:
+        return f"{subject} {words}"
+    verb, _, rest = words.partition(" ")
+    verb += "es" if verb == "go" else "s"
+    return f"{subject} {verb} {rest.replace('their', 'its')}"
 
 
 def draw_timing(cell: Cell) -> str:
     """Return the timing sketch as one ``<svg>`` element."""
     rows = waves(cell)
-    height = 34.0 + _ROW * len(rows) + 8.0
-    bottom = height - 8.0
-    drawn = "".join(_draw_wave(wave, 34.0 + _ROW * i) for i, wave in enumerate(rows))
+    height = _TOP + _ROW * len(rows)
+    bottom = height - 10.0
+    drawn = "".join(_draw_wave(wave, _TOP + _ROW * i) for i, wave in enumerate(rows))
     return (
-        f'<svg class="sketch" viewBox="0 0 490 {height:g}" role="img" '
+        f'<svg class="sketch" viewBox="0 0 500 {height:g}" role="img" '
         'aria-labelledby="timing-t timing-d"><title id="timing-t">Decisions in time</title>'
         f'<desc id="timing-d">{escape(timing_words(cell))}</desc>'
         f"{_guides(bottom)}{drawn}</svg>"
@@ -107,14 +121,14 @@ def _guides(bottom: float) -> str:
     """Draw decision edges, the phases' names and the two delays."""
     lines = "".join(f"M{_LEFT + decide:g} 26V{bottom:g}" for decide, _ in _EDGES)
     names = "".join(
-        f'<text class="note" x="{_LEFT + 0.5 * (decide + reset):g}" y="10">decision</text>'
+        f'<text class="note" x="{_LEFT + 0.5 * (decide + reset):g}" y="10">{name}</text>'
         f'<path class="thin" d="M{_LEFT + decide:g} 15H{_LEFT + reset:g}"/>'
-        for decide, reset in _EDGES
+        for name, (decide, reset) in zip(_PHASES, _EDGES, strict=True)
     )
     start = _LEFT + _EDGES[0][0]
-    delay = f'<path class="measure" d="M{start:g} 66h{_DELAY:g}m-4-3l4 3-4 3"/>'
+    delay = f'<path class="measure" d="M{start:g} 71h{_DELAY:g}m-4-3l4 3-4 3"/>'
     return f'<path class="guide" d="{lines}"/>{names}{delay}' + (
-        f'<text class="note" x="{start + 0.5 * _DELAY:g}" y="62">delay</text>'
+        f'<text class="note" x="{start + 0.5 * _DELAY:g}" y="67">delay</text>'
     )
 
 

@@ -36,17 +36,20 @@ def validity_rows(model: ComparatorModel) -> tuple[ValidityRow, ...]:
     """Return one row for the cell, then one for each quantity and distinct range."""
     boxes = [("cell", "", model.box)]
     for quantity, surface in _surfaces(model):
-        boxes += [(quantity, names, box) for box, names in _shared_boxes(surface)]
+        overdrive_v = model.box.overdrive_v if quantity == "delay" else None
+        for box, names in _shared_boxes(surface):
+            boxes.append((quantity, names, replace(box, overdrive_v=overdrive_v)))
     ends = {name: _union(getattr(box, name) for *_, box in boxes) for name in CONDITIONS}
     return tuple(
         ValidityRow(
-            quantity=quantity, processes=names,
+            quantity=quantity,
+            processes=names,
             cells=tuple(
                 _cell(getattr(box, name), ends[name], name, quantity) for name in CONDITIONS
             ),
         )
         for quantity, names, box in boxes
-    )  # fmt: skip
+    )
 
 
 def _surfaces(model: ComparatorModel) -> list[tuple[str, Surface]]:
@@ -69,7 +72,7 @@ def _shared_boxes(surface: Surface) -> list[tuple[Box, str]]:
     found: dict[Box, list[Variant]] = {}
     for variant in surface.variants:
         found.setdefault(variant.box, []).append(variant)
-    if len(surface.variants) == 1:
+    if len(found) == 1 and not any(variant.scaled_from for variant in surface.variants):
         return [(box, "") for box in found]
     return [(box, _process_words(variants)) for box, variants in found.items()]
 
@@ -91,10 +94,11 @@ def _union(spans: Iterable[Range | None]) -> Range | None:
 
 
 def _cell(span: Range | None, ends: Range | None, name: str, quantity: str) -> ValidityCell:
-    if span is None:
-        known = ends is not None and name != "overdrive_v" and quantity != "cell"
-        return ValidityCell(text="no influence" if known else "–", bar="")
-    return ValidityCell(text=_words(span, name), bar=_bar(span, ends or span))
+    if span is not None:
+        return ValidityCell(text=_words(span, name), bar=_bar(span, ends or span))
+    if name == "overdrive_v" and quantity != "cell":
+        return ValidityCell(text="–", bar="")
+    return ValidityCell(text="not characterised" if quantity == "cell" else "no influence", bar="")
 
 
 def _words(span: Range, name: str) -> str:

@@ -11,7 +11,7 @@ from behavgen.reference import Reference
 from behavgen.report.axes import PlotAxis, spanning
 from behavgen.report.charts import Chart, Line, Panel, draw_chart
 from behavgen.report.conditions import condition_words, shared_words
-from behavgen.report.curves import Curve, rms, worst
+from behavgen.report.curves import Curve, drawn_overdrives, rms, worst
 from behavgen.report.figure import Figure
 from behavgen.report.numbers import percent_text
 from behavgen.report.overlay import (
@@ -29,7 +29,7 @@ def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
     drawn = drawn_curves(members)
     chosen = spotlights(drawn, middle, [float(c.x.max()) for c in drawn])
     x = _time_axis(*(c.x for c in drawn))
-    y = _window_axis(*(c.y for c in drawn))
+    y = _window_axis(*(c.y for c in drawn), *(c.line_y for c in drawn))
     chart = Chart(
         name="window", title="Unresolved window over resolve time",
         description=f"{len(drawn)} conditions: markers are table rows, lines the emitted model.",
@@ -50,10 +50,7 @@ def window_from_delay(
     model: ComparatorModel, reference: Reference, middle: Condition
 ) -> Figure:
     """Return the window that the delay alone implies, at the middle of the range."""
-    span = model.box.overdrive_v
-    largest = span.high if span else 0.1
-    smallest = span.low if span else 1e-6
-    overdrive = np.geomspace(smallest, largest, 41)[::-1]
+    overdrive = drawn_overdrives(model)[::-1]
     time_s = reference.delay(overdrive)
     x, y = _time_axis(time_s), _window_axis(2.0 * overdrive)
     where = condition_words(middle)

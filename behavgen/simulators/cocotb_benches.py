@@ -136,7 +136,7 @@ def read_outcomes(results: Path) -> tuple[BenchOutcome, ...]:
 
 
 def _message(case: ElementTree.Element) -> str:
-    for tag in ("failure", "error", "skipped"):
+    for tag in ("failure", "error"):
         found = case.find(tag)
         if found is not None:
             return found.get("message") or found.text or tag

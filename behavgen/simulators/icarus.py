@@ -94,9 +94,9 @@ def find_icarus() -> Icarus:
         missing = "iverilog" if iverilog is None else "vvp"
         raise ToolError(Fault(what=f"{missing} is not on the PATH", allowed=HOW_TO_GET))
     stated = first_line([iverilog, "-V"])
-    found = re.search(r"version (\d+)(\S*)(.*?)\(?\)?$", stated)
+    found = re.search(r"version (\d+)\.", stated)
     if found is None or int(found[1]) < OLDEST_MAJOR:
         what = f"{iverilog} states the version {stated!r}"
         raise ToolError(Fault(what=what, allowed=HOW_TO_GET))
-    version = " ".join(f"Icarus Verilog {found[1]}{found[2]}{found[3]}".split())
+    version = stated.replace("version ", "").removesuffix("()").strip()
     return Icarus(iverilog=Path(iverilog), vvp=Path(vvp), version=version)

@@ -7,6 +7,7 @@ never in memory twice.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
+from typing import Any
 
 import numpy as np
 import polars as pl
@@ -20,6 +21,7 @@ from behavgen.tables.characterisation import (
     OffsetStatistics,
     OffsetTable,
     ResetTable,
+    TableSource,
     Texts,
     WindowTable,
 )
@@ -144,7 +146,7 @@ def reset_tables(parts: Sequence[Part]) -> dict[str, ResetTable]:
     }
 
 
-ASSEMBLERS: Mapping[str, Callable[[Sequence[Part]], Mapping[str, object]]] = {
+ASSEMBLERS: Mapping[str, Callable[[Sequence[Part]], Mapping[str, Any]]] = {
     "offset": offset_tables,
     "noise": noise_tables,
     "delay": delay_tables,
@@ -162,7 +164,7 @@ def _rows(parts: Iterable[Part]) -> int:
     return sum(part.frame.height for part in parts)
 
 
-def _sources(parts: Iterable[Part]) -> tuple[object, ...]:
+def _sources(parts: Iterable[Part]) -> tuple[TableSource, ...]:
     return tuple(part.source for part in parts)
 
 
@@ -203,4 +205,6 @@ def _text_array(column: pl.Series) -> Texts:
     """Return texts as a numpy array by way of their few distinct values."""
     distinct = column.unique(maintain_order=True)
     codes = column.replace_strict(distinct, pl.int_range(distinct.len(), eager=True))
-    return np.array(distinct.to_list(), dtype=np.str_)[codes.to_numpy()]
+    names: Texts = np.array(distinct.to_list(), dtype=np.str_)
+    texts: Texts = names[codes.to_numpy()]
+    return texts

@@ -6,11 +6,12 @@ from collections.abc import Iterable, Mapping
 
 import polars as pl
 
+from behavgen.quantities import Column
 from behavgen.tables.faults import TableFaults
 from behavgen.tables.headers import BoundColumn, Layout
 from behavgen.tables.limits import breaks_limits, breaks_order
 from behavgen.tables.readers import LINE
-from behavgen.units import CELL_PATTERN, UnitError, cell_suffixes, parse_si
+from behavgen.units import CELL_PATTERN, UnitError, as_number, cell_suffixes, format_si, parse_si
 
 __all__ = ["read_texts", "without_failed"]
 
@@ -44,9 +45,12 @@ def read_texts(
 
 
 def without_failed(texts: pl.DataFrame, tokens: Iterable[str]) -> tuple[pl.DataFrame, int]:
-    """Drop rows in which any cell marks a failed run."""
-    cells = pl.exclude(LINE).str.to_lowercase().is_in([*tokens]).fill_null(value=False)
-    kept = texts.filter(~pl.any_horizontal(cells))
+    """Drop rows in which any cell marks a failed run, as text or as the same number."""
+    cell = pl.exclude(LINE)
+    marks = cell.str.to_lowercase().is_in([*tokens])
+    if numbers := [number for token in tokens if (number := as_number(token)) is not None]:
+        marks |= cell.cast(pl.Float64, strict=False).is_in(numbers)
+    kept = texts.filter(~pl.any_horizontal(marks.fill_null(value=False)))
     return kept, texts.height - kept.height
 
 
@@ -66,7 +70,7 @@ def _read(
         bad = texts[name].is_not_null() & read[name].is_null()
         lines = texts.filter(bad).select(LINE, name)
         what = ((line, _reason(text, bound)) for line, text in lines.iter_rows())
-        faults.add_rows(shown, bound.header, what, lines.height, column.allowed)
+        faults.add_rows(shown, bound.header, what, lines.height, _allowed(lines[name], column))
         if not column.may_be_empty:
             empty = texts.filter(texts[name].is_null())[LINE]
             what = ((line, "empty cell") for line in empty)
@@ -90,6 +94,14 @@ def _parsed(bound: BoundColumn) -> pl.Expr:
 def _looked_up(text: pl.Expr, meaning: Mapping[str, int] | Mapping[str, float]) -> pl.Expr:
     kind = pl.Int64 if all(isinstance(value, int) for value in meaning.values()) else pl.Float64
     return text.replace_strict([*meaning], [*meaning.values()], default=None, return_dtype=kind)
+
+
+def _allowed(texts: pl.Series, column: Column) -> str:
+    """Return what a cell may hold; words in place of numbers may stand for failed runs."""
+    words = texts.len() > 0 and not any(character.isdigit() for character in texts[0])
+    return (
+        f"{column.allowed}; list it in `failed` if it marks failed runs" * words or column.allowed
+    )
 
 
 def _reason(text: str, bound: BoundColumn) -> str:
@@ -125,6 +137,7 @@ def _check_order(
     faults: TableFaults,
 ) -> None:
     headers = {bound.column.name: bound.header for bound in layout.columns}
+    units = {bound.column.name: bound.column.unit for bound in layout.columns}
     operands = {name: pl.col(name) for name in headers}
     for pair in rules:
         lesser, greater = (headers.get(name, name) for name in pair)
@@ -132,8 +145,13 @@ def _check_order(
         broken = read.filter(breaks_order(pair, operands, layout.fixed)).select(
             pl.col(LINE), values[0].alias("lesser"), values[1].alias("greater")
         )
+        unit = next(units[name] for name in pair if name in units)
         what = (
-            (line, f"{low:g} is above {high:g} in {greater}")
+            (line, f"{_shown(low, unit)} is above the {_shown(high, unit)} in {greater}")
             for line, low, high in broken.iter_rows()
         )
         faults.add_rows(shown, lesser, what, broken.height, f"at most {greater} of the same row")
+
+
+def _shown(value: float, unit: str) -> str:
+    return f"{value:g}" if unit == "1" else format_si(value, unit)

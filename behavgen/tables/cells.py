@@ -20,6 +20,7 @@ from behavgen.tables.faults import TableFaults
 from behavgen.tables.headers import BoundColumn, Layout
 from behavgen.tables.limits import breaks_limits, breaks_order
 from behavgen.tables.readers import LINE, RawTable, collect
+from behavgen.units import as_number
 
 __all__ = ["Cells", "read_cells", "values_present"]
 
@@ -75,55 +76,100 @@ def read_cells(
     Cells or None
         None when the file cannot be read at all.
     """
-    if _has_odd_types(table, layout, faults):
-        return None
     rules = _rules_that_apply(ordered, layout)
     tokens = frozenset(token.strip().lower() for token in failed)
-    last = str(len(table.headers) - 1)
-
-    def plan(raw: pl.LazyFrame) -> list[pl.LazyFrame]:
-        kept = raw.filter(_kept(layout.filters))
-        plain = _is_plain(layout, rules, tokens)
-        return [
-            kept.filter(plain).select(LINE, *(_value(bound) for bound in layout.columns)),
-            kept.filter(~plain).select(LINE, *(_text(bound) for bound in layout.columns)),
-            raw.filter(pl.col(last).is_null()).select(LINE),
-            raw.select(all=pl.len(), kept=_kept(layout.filters).sum()),
-        ]
-
-    collected = collect(table, plan, faults)
-    if collected is None:
+    scanned = _scan_plain(table, layout, rules, tokens, faults)
+    if scanned is None:
         return None
-    good, rest, open_ended, counts = collected
-    odd = _odd_lines(table, open_ended[LINE], faults)
-    rest = rest.filter(~pl.col(LINE).is_in([*odd.blank, *odd.wrong]))
-    texts, failed_rows = without_failed(rest, tokens)
+    odd = scanned.judged or _odd_lines(table, scanned.open_ended, faults)
+    other = scanned.other.filter(~scanned.other.is_in([*odd.blank, *odd.wrong]))
+    texts = _texts_of(table, layout, other, faults, ragged=scanned.judged is not None)
+    texts, failed_rows = without_failed(texts, tokens)
     read = read_texts(texts, layout, rules, table.shown, faults)
-    frame = good if read.is_empty() else pl.concat([good, read]).sort(LINE)
     return Cells(
-        frame=frame,
+        frame=scanned.plain if read.is_empty() else pl.concat([scanned.plain, read]).sort(LINE),
         failed_rows=failed_rows,
-        rows=counts["all"].item() - len(odd.blank),
-        filtered_rows=counts["all"].item() - counts["kept"].item(),
+        rows=scanned.rows - len(odd.blank),
+        filtered_rows=scanned.rows - scanned.plain.height - scanned.other.len(),
     )
 
 
 def values_present(table: RawTable, index: int, faults: TableFaults) -> list[str]:
     """Return the distinct cells of a column, for the message on a filter that matches nothing."""
-    cell = pl.col(str(index)).cast(pl.String).str.strip_chars()
+    cell = pl.col(str(index)).str.strip_chars()
     found = collect(table, lambda raw: [raw.select(cell.unique().sort())], faults)
-    return [text for text in found[0].to_series().to_list() if text] if found else []
+    return [text for text in found.frames[0].to_series().to_list() if text] if found else []
 
 
-def _has_odd_types(table: RawTable, layout: Layout, faults: TableFaults) -> bool:
-    """Note columns of a typed file that hold neither numbers nor text, such as dates."""
-    before = len(faults)
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Scanned:
+    """What one pass over a file gives: plain rows, and the lines of others and of open ends."""
+
+    plain: pl.DataFrame
+    other: pl.Series
+    open_ended: pl.Series
+    rows: int
+    judged: OddLines | None
+
+
+def _scan_plain(
+    table: RawTable,
+    layout: Layout,
+    rules: Sequence[tuple[str, str]],
+    tokens: frozenset[str],
+    faults: TableFaults,
+) -> _Scanned | None:
+    """Read the rows that need no second look, in SI."""
+    numbers = {bound.index for bound in layout.columns if not bound.column.is_text}
+    names = [bound.column.name for bound in layout.columns]
+    last = pl.col(str(len(table.headers) - 1))
+
+    def plan(raw: pl.LazyFrame) -> list[pl.LazyFrame]:
+        kept = raw.filter(_kept(layout.filters)) if layout.filters else raw
+        judged = kept.with_columns(_in_si(bound) for bound in layout.columns).with_columns(
+            _is_plain(layout, rules, tokens).alias(_PLAIN)
+        )
+        return [
+            judged.filter(_PLAIN).select(LINE, *names),
+            judged.filter(~pl.col(_PLAIN)).select(LINE),
+            judged.filter(last.is_null()).select(LINE),
+            *([raw.select(pl.len())] if layout.filters else []),
+        ]
+
+    collected = collect(table, plan, faults, numbers=numbers - layout.filters.keys())
+    if collected is None:
+        return None
+    plain, other, open_ended, *counted = collected.frames
+    rows = counted[0].item() if counted else plain.height + other.height
+    return _Scanned(
+        plain=plain,
+        other=other[LINE],
+        open_ended=open_ended[LINE],
+        rows=rows,
+        judged=collected.judged,
+    )
+
+
+_PLAIN = "@plain"
+
+
+def _texts_of(
+    table: RawTable, layout: Layout, lines: pl.Series, faults: TableFaults, *, ragged: bool
+) -> pl.DataFrame:
+    """Return the cells of some lines as stripped texts, null where empty."""
+    names = [bound.column.name for bound in layout.columns]
+    nothing = pl.DataFrame(schema={LINE: lines.dtype} | dict.fromkeys(names, pl.String))
+    if lines.is_empty():
+        return nothing
+    cells = []
     for bound in layout.columns:
-        kind = table.frame.collect_schema()[str(bound.index)]
-        if not (kind.is_numeric() or kind in (pl.String, pl.Boolean, pl.Null, pl.Categorical)):
-            what, allowed = f"a column of type {kind}", bound.column.allowed
-            faults.add(table.shown, what, allowed, column=bound.header)
-    return len(faults) > before
+        text = pl.col(str(bound.index)).str.strip_chars()
+        cells.append(pl.when(text != "").then(text).alias(bound.column.name))
+    wanted = pl.col(LINE).is_in(lines.implode())
+    found = collect(
+        table, lambda raw: [raw.filter(wanted).select(LINE, *cells)], faults, ragged=ragged
+    )
+    return found.frames[0] if found else nothing
 
 
 def _rules_that_apply(ordered: Sequence[tuple[str, str]], layout: Layout) -> list[tuple[str, str]]:
@@ -135,55 +181,40 @@ def _odd_lines(table: RawTable, lines: pl.Series, faults: TableFaults) -> OddLin
     """Look at the lines whose last cell is missing: they may be empty or too short."""
     if table.csv_header is None or lines.is_empty():
         return OddLines(blank=(), wrong=())
-    return judge_lines(table.path, table.shown, table.csv_header, faults, only=lines.to_list())
+    return judge_lines(table.path, table.shown, table.csv_header, faults, only=lines)
 
 
 def _kept(filters: Mapping[int, tuple[str | float, ...]]) -> pl.Expr:
     """Keep the rows whose cells equal a wanted value, as text or as a number."""
-    tests = [pl.lit(value=True)]
+    tests = []
     for index, values in filters.items():
-        cell = pl.col(str(index)).cast(pl.String).str.strip_chars()
+        cell = pl.col(str(index)).str.strip_chars()
         test = cell.is_in([str(value).strip() for value in values])
-        if numbers := [number for value in values if (number := _as_number(value)) is not None]:
+        if numbers := [number for value in values if (number := as_number(value)) is not None]:
             test |= cell.cast(pl.Float64, strict=False).is_in(numbers)
         tests.append(test.fill_null(value=False))
     return functools.reduce(operator.and_, tests)
 
 
-def _as_number(value: str | float) -> float | None:
-    try:
-        return float(value)
-    except ValueError:
-        return None
-
-
-def _value(bound: BoundColumn) -> pl.Expr:
+def _in_si(bound: BoundColumn) -> pl.Expr:
     """Return the cell as a number in SI, null where it is no plain number; or as a name."""
     cell = pl.col(str(bound.index))
     if bound.column.is_text:
-        return cell.cast(pl.String).str.strip_chars().alias(bound.column.name)
+        return cell.str.strip_chars().alias(bound.column.name)
     return bound.unit.to_si(cell.cast(pl.Float64, strict=False)).alias(bound.column.name)
 
 
-def _text(bound: BoundColumn) -> pl.Expr:
-    """Return the cell as stripped text, null where it is empty."""
-    text = pl.col(str(bound.index)).cast(pl.String).str.strip_chars()
-    return pl.when(text != "").then(text).alias(bound.column.name)
-
-
 def _is_plain(layout: Layout, rules: Iterable[tuple[str, str]], tokens: Iterable[str]) -> pl.Expr:
-    """Tell whether a row needs no second look."""
+    """Tell whether a row needs no second look, from its columns in SI."""
     tests = []
-    sentinels = [number for token in tokens if (number := _as_number(token)) is not None]
+    sentinels = [number for token in tokens if (number := as_number(token)) is not None]
     for bound in layout.columns:
-        cell, value = pl.col(str(bound.index)), _value(bound)
+        value = pl.col(bound.column.name)
         if bound.column.is_text:
-            tests.append((value != "").fill_null(value=False))
+            tests.append(value != "")
             continue
-        test = value.is_finite() & ~breaks_limits(bound.column, value)
-        for sentinel in sentinels:
-            test &= cell.cast(pl.Float64, strict=False) != sentinel
-        tests.append(test.fill_null(cell.is_null() if bound.column.may_be_empty else False))
-    operands = {bound.column.name: _value(bound) for bound in layout.columns}
-    tests += [(~breaks_order(pair, operands, layout.fixed)).fill_null(value=True) for pair in rules]
-    return functools.reduce(operator.and_, tests)
+        tests += [value.is_finite(), ~breaks_limits(bound.column, value)]
+        tests += [value != bound.unit.to_si(sentinel) for sentinel in sentinels]
+    operands = {bound.column.name: pl.col(bound.column.name) for bound in layout.columns}
+    tests += [~breaks_order(pair, operands, layout.fixed) for pair in rules]
+    return pl.all_horizontal(test.fill_null(value=False) for test in tests)

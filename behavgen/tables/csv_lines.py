@@ -8,7 +8,6 @@ when there is reason to look.
 from __future__ import annotations
 
 import csv
-from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -16,7 +15,10 @@ import polars as pl
 
 from behavgen.tables.faults import TableFaults
 
-__all__ = ["CsvHeader", "OddLines", "check_encoding", "judge_lines", "read_csv_header"]
+__all__ = ["LINE", "CsvHeader", "OddLines", "check_encoding", "judge_lines", "read_csv_header"]
+
+LINE = "line\n"
+"""Name of a raw frame's column of line numbers; no header can read like this."""
 
 _FIRST_BYTES = 1 << 20
 _SEPARATORS = {";": "semicolons", "\t": "tabs", "|": "bars"}
@@ -93,7 +95,7 @@ def judge_lines(
     shown: str,
     header: CsvHeader,
     faults: TableFaults,
-    only: Sequence[int] | None = None,
+    only: pl.Series | None = None,
 ) -> OddLines:
     """Find empty lines, and note every row that has more or fewer fields than the header.
 
@@ -103,12 +105,12 @@ def judge_lines(
     ----------
     path, shown, header, faults
         The file, its name for messages, its header, and where faults go.
-    only : sequence of int, optional
+    only : polars.Series of int, optional
         Lines to look at instead of all.
     """
     raw = _raw_lines(path, header)
     if only is not None:
-        raw = raw.filter(pl.col("line").is_in(pl.Series(only, dtype=pl.UInt32).implode()))
+        raw = raw.filter(pl.col(LINE).is_in(only.implode()))
     expected = len(header.names)
     separators = pl.col("raw").str.count_matches(",", literal=True)
     quoted = pl.col("raw").str.contains('"', literal=True)
@@ -117,12 +119,12 @@ def judge_lines(
     suspects = odd.collect()
     wrong = [
         (line, what)
-        for line, text in suspects.filter(~pl.col("blank")).select("line", "raw").iter_rows()
+        for line, text in suspects.filter(~pl.col("blank")).select(LINE, "raw").iter_rows()
         if (what := _length_fault(text, expected))
     ]
     allowed = f"as many as the header on line {header.line} has"
     faults.add_rows(shown, "", wrong, len(wrong), allowed)
-    blank = suspects.filter("blank")["line"].to_list()
+    blank = suspects.filter("blank")[LINE].to_list()
     return OddLines(blank=tuple(blank), wrong=tuple(line for line, _ in wrong))
 
 
@@ -151,10 +153,10 @@ def _raw_lines(path: Path, header: CsvHeader) -> pl.LazyFrame:
         infer_schema=False,
         truncate_ragged_lines=True,
         encoding="utf8-lossy",
-        row_index_name="line",
+        row_index_name=LINE,
         row_index_offset=header.line + 1,
     )
-    (name,) = (name for name in lines.collect_schema().names() if name != "line")
+    (name,) = (name for name in lines.collect_schema().names() if name != LINE)
     return lines.rename({name: "raw"})
 
 

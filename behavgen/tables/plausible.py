@@ -16,7 +16,7 @@ _RESOLUTION = 1e-15  # relative; a difference this small is rounding of the file
 
 
 def plausible_notices(part: Part) -> list[str]:
-    """Return a word on every column with numbers of an unusual size: is the unit right?"""
+    """Return a word on every column with numbers of an unusual size."""
     notices = []
     known = columns_of(part.source.quantity)
     for name in part.frame.columns:
@@ -29,8 +29,8 @@ def plausible_notices(part: Part) -> list[str]:
         if not odd.is_empty():
             header = part.headers.get(name, name)
             notices.append(
-                f"{part.source.file} column '{header}': {odd.len()} values from "
-                f"{_shown(odd.min(), column)} to {_shown(odd.max(), column)}; is the unit right?"
+                f"{part.source.file} column '{header}' of unusual size in {odd.len()} of "
+                f"{size.len()} rows, {_range(odd, column)}; is the unit right?"
             )
     return notices
 
@@ -53,11 +53,15 @@ def zero_overdrive_dropped(part: Part, notices: list[str]) -> Part:
     if not dropped:
         return part
     notices.append(
-        f"{part.source.file}: {dropped} delays at zero overdrive are not used; "
-        "noise alone decides there"
+        f"{part.source.file} rows at zero overdrive not used: {dropped}; noise alone decides there"
     )
     source = dataclasses.replace(part.source, rows=kept.height)
     return dataclasses.replace(part, frame=kept, source=source)
+
+
+def _range(values: pl.Series, column: Column) -> str:
+    ends = dict.fromkeys((_shown(values.min(), column), _shown(values.max(), column)))
+    return "..".join(ends)
 
 
 def _shown(value: object, column: Column) -> str:

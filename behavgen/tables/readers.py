@@ -8,23 +8,47 @@ from __future__ import annotations
 
 import glob
 import hashlib
-from collections.abc import Callable, Sequence
+import warnings
+from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from types import MappingProxyType
+from typing import Protocol
 
 import polars as pl
 from python_calamine import CalamineError, load_workbook
 
 from behavgen.nearest import did_you_mean
-from behavgen.tables.csv_lines import CsvHeader, check_encoding, judge_lines, read_csv_header
+from behavgen.tables.csv_lines import (
+    LINE,
+    CsvHeader,
+    OddLines,
+    check_encoding,
+    judge_lines,
+    read_csv_header,
+)
 from behavgen.tables.faults import TableFaults
 
-__all__ = ["LINE", "RawTable", "collect", "find_files", "open_table", "sha256_of"]
-
-LINE = "@line"
-"""Name of the raw frame's column of line numbers; no header reads like this."""
+__all__ = ["LINE", "Collected", "RawTable", "collect", "find_files", "open_table", "sha256_of"]
 
 _KINDS = (".csv", ".parquet", ".xlsx")
+
+
+class Scan(Protocol):
+    """Opens a file anew, lazily."""
+
+    def __call__(self, *, numbers: Collection[int] = (), ragged: bool = False) -> pl.LazyFrame:
+        """Return column ``"0"``, ``"1"``, ... for each header, and `LINE`.
+
+        Parameters
+        ----------
+        numbers : collection of int
+            Columns to read as Float64, null where a cell is no plain number;
+            all others come as text.
+        ragged : bool
+            Accept rows longer than the header, and cut them.
+        """
+        ...
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -39,8 +63,8 @@ class RawTable:
         Its name relative to the project, for messages.
     headers : tuple of str
         Column headers in the order of the file.
-    frame : polars.LazyFrame
-        Column ``"0"``, ``"1"``, ... for each header, and `LINE`.
+    scan : callable
+        Gives its cells as a lazy frame.
     csv_header : CsvHeader or None
         Set for CSV files, whose rows may be too short or too long.
     """
@@ -48,7 +72,7 @@ class RawTable:
     path: Path
     shown: str
     headers: tuple[str, ...]
-    frame: pl.LazyFrame
+    scan: Scan
     csv_header: CsvHeader | None = None
 
 
@@ -123,11 +147,22 @@ def _headers_differ(table: RawTable, faults: TableFaults) -> bool:
     return not twice
 
 
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Collected:
+    """Results of queries, and what was found if every line of the file had to be judged."""
+
+    frames: list[pl.DataFrame]
+    judged: OddLines | None = None
+
+
 def collect(
     table: RawTable,
     plan: Callable[[pl.LazyFrame], Sequence[pl.LazyFrame]],
     faults: TableFaults,
-) -> list[pl.DataFrame] | None:
+    *,
+    numbers: Collection[int] = (),
+    ragged: bool = False,
+) -> Collected | None:
     """Run queries on a raw table in one pass over the file.
 
     Parameters
@@ -138,57 +173,105 @@ def collect(
         Takes the raw frame, returns the queries.
     faults : TableFaults
         Takes what is wrong with the file as a whole, such as rows of a wrong length.
+    numbers : collection of int
+        Columns to read as numbers.
+    ragged : bool
+        Set when an earlier pass has judged the lines already.
 
     Returns
     -------
-    list of polars.DataFrame or None
+    Collected or None
         One result for each query; None when the file cannot be read.
     """
     try:
-        return pl.collect_all(plan(table.frame), engine="streaming")
+        return Collected(frames=_run(plan(table.scan(numbers=numbers, ragged=ragged))))
     except pl.exceptions.PolarsError as error:
         reason = str(error).splitlines()[0]
-    header = table.csv_header
-    if header is None or not check_encoding(table.path, table.shown, faults):
-        if header is None:
-            faults.add(table.shown, f"cannot be read: {reason}")
+    if table.csv_header is None:
+        faults.add(table.shown, f"cannot be read: {reason}")
         return None
-    judge_lines(table.path, table.shown, header, faults)
+    if not check_encoding(table.path, table.shown, faults):
+        return None
+    judged = judge_lines(table.path, table.shown, table.csv_header, faults)
     try:
-        return pl.collect_all(plan(_scan_csv(table.path, header, ragged=True)), engine="streaming")
+        frames = _run(plan(table.scan(numbers=numbers, ragged=True)))
     except pl.exceptions.PolarsError:
-        faults.add(table.shown, f"cannot be read as CSV: {reason}")
+        if not judged.wrong:
+            faults.add(table.shown, f"cannot be read as CSV: {reason}")
         return None
+    return Collected(frames=frames, judged=judged)
+
+
+def _run(queries: Sequence[pl.LazyFrame]) -> list[pl.DataFrame]:
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")  # about malformed lines, which become faults with a place
+        return pl.collect_all(queries, engine="streaming")
 
 
 def _open_csv(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
     header = read_csv_header(path, shown, faults)
     if header is None:
         return None
-    frame = _scan_csv(path, header)
-    return RawTable(path=path, shown=shown, headers=header.names, frame=frame, csv_header=header)
+    names = _scan_csv(path, header).collect_schema().names()
+    if len(names) != len(header.names) + 1:
+        faults.add(shown, "the header cannot be split into columns", "plain names and commas")
+        return None
+
+    def scan(*, numbers: Collection[int] = (), ragged: bool = False) -> pl.LazyFrame:
+        kinds = {names[index + 1]: pl.Float64 for index in numbers}
+        return _numbered(_scan_csv(path, header, kinds=kinds, ragged=ragged))
+
+    return RawTable(path=path, shown=shown, headers=header.names, scan=scan, csv_header=header)
 
 
-def _scan_csv(path: Path, header: CsvHeader, *, ragged: bool = False) -> pl.LazyFrame:
-    scanned = pl.scan_csv(
+def _scan_csv(
+    path: Path,
+    header: CsvHeader,
+    *,
+    kinds: Mapping[str, type[pl.DataType]] = MappingProxyType({}),
+    ragged: bool = False,
+) -> pl.LazyFrame:
+    return pl.scan_csv(
         path,
         skip_lines=header.line - 1,
         infer_schema=False,
+        schema_overrides=kinds,
+        ignore_errors=bool(kinds),
         truncate_ragged_lines=ragged,
         row_index_name=LINE,
         row_index_offset=header.line + 1,
     )
-    return _numbered(scanned)
 
 
 def _open_parquet(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
     try:
-        scanned = pl.scan_parquet(path, row_index_name=LINE, row_index_offset=2)
-        headers = tuple(name for name in scanned.collect_schema().names() if name != LINE)
+        whole = pl.scan_parquet(path, row_index_name=LINE, row_index_offset=2)
+        schema = whole.collect_schema()
     except pl.exceptions.PolarsError as error:
         faults.add(shown, f"cannot be read as Parquet: {str(error).splitlines()[0]}")
         return None
-    return RawTable(path=path, shown=shown, headers=headers, frame=_numbered(scanned))
+    headers = tuple(name for name in schema if name != LINE)
+    for name in headers:
+        if not _holds_cells(schema[name]):
+            faults.add(shown, f"column of type {schema[name]}", "numbers or text", column=name)
+    return RawTable(path=path, shown=shown, headers=headers, scan=_typed(_numbered(whole)))
+
+
+def _holds_cells(kind: pl.DataType) -> bool:
+    return kind.is_numeric() or kind in (pl.String, pl.Boolean, pl.Null, pl.Categorical, pl.Enum)
+
+
+def _typed(frame: pl.LazyFrame) -> Scan:
+    """Return the scan of a frame whose cells already have types."""
+    names = [name for name in frame.collect_schema().names() if name != LINE]
+
+    def scan(*, numbers: Collection[int] = (), ragged: bool = False) -> pl.LazyFrame:  # noqa: ARG001
+        return frame.with_columns(
+            pl.col(name).cast(pl.Float64 if int(name) in numbers else pl.String, strict=False)
+            for name in names
+        )
+
+    return scan
 
 
 def _numbered(scanned: pl.LazyFrame) -> pl.LazyFrame:
@@ -215,8 +298,8 @@ def _open_excel(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
         for index in range(len(headers))
     }
     frame = pl.LazyFrame(cells).with_row_index(LINE, offset=first + 2)
-    frame = frame.filter(~pl.all_horizontal(pl.exclude(LINE).is_null()))
-    return RawTable(path=path, shown=shown, headers=headers, frame=frame)
+    kept = frame.filter(~pl.all_horizontal(pl.exclude(LINE).is_null()))
+    return RawTable(path=path, shown=shown, headers=headers, scan=_typed(kept))
 
 
 def _cell_text(cell: object) -> str | None:

@@ -4,9 +4,10 @@
 //   <index>.clock    pairs    ticks at the reset level, ticks at the deciding level
 //   <index>.inputs   fours    ticks to wait, then inp, inn and vdd as IEEE 754 doubles
 // and records every instant at which an output changed, after it has settled, as a line of
-// 25 characters: time in ticks (20), outp, outn, unresolved (0 1 x z), x_cause.
+// 24 characters: time in ticks (20), outp, outn, unresolved (0 1 x z), x_cause.
 //
-// `start` begins a run, `done` ends it. A bench may instead drive the inputs of an idle unit.
+// `start` begins a run, `done` ends it. A bench may instead drive the inputs of an idle unit;
+// without benches, +play=<index> plays one run and finishes.
 // Macros: CELL names the module, PIN_* its pins (a pin without macro is left out), DECIDING the
 // clock's deciding level, TICK the unit of all times; READS_X_CAUSE says that x_cause is there.
 
@@ -18,6 +19,7 @@ module block_harness #(
   parameter real OFFSET_SHIFT_V = 0.0,
   parameter int NOISE_ON = 1,
   parameter int MISMATCH_ON = 0,
+  parameter int MEMORY_ON = 1,
   parameter int DELAY_ON = 1,
   parameter bit [63:0] SEED = 64'd0,
   parameter real TEMPERATURE_C = 27.0,
@@ -44,6 +46,7 @@ module block_harness #(
     .OFFSET_SHIFT_V(OFFSET_SHIFT_V),
     .NOISE_ON(NOISE_ON),
     .MISMATCH_ON(MISMATCH_ON),
+    .MEMORY_ON(MEMORY_ON),
     .DELAY_ON(DELAY_ON),
     .SEED(SEED),
     .TEMPERATURE_C(TEMPERATURE_C),
@@ -77,9 +80,10 @@ module block_harness #(
 `endif
 
   string folder;
-  string file_name;
+  string record_name;
   int record;
   time recorded_at;
+  int played_alone;
 
   // The clock stays X until a run starts or a bench drives it; the supply stays off.
   initial begin
@@ -91,11 +95,16 @@ module block_harness #(
     inn = 0.0;
     vdd = 0.0;
     if (!$value$plusargs("block_folder=%s", folder)) folder = ".";
+    if ($value$plusargs("play=%d", played_alone) && played_alone == INDEX) begin
+      #1 start = 1'b1;
+      wait (done === 1'b1);
+      #1 $finish;
+    end
   end
 
   always @(posedge start) begin : open_record
-    $sformat(file_name, "%0s/%0d.events", folder, INDEX);
-    record = $fopen(file_name, "w");
+    $sformat(record_name, "%0s/%0d.events", folder, INDEX);
+    record = $fopen(record_name, "w");
     recorded_at = $time;
     $fstrobe(record, "%20d%b%b%b%h", $time, outp, outn, unresolved, x_cause);
   end

@@ -106,7 +106,7 @@ def test_the_truth_is_recovered() -> None:
         offset_v[20:, 1:] = np.nan
         one = instance_components(offset_v)
         found.append(one.covariance_v2)
-        covered.append((one.shift_low_v[1:] < [1.0, -2.0]) & ([1.0, -2.0] < one.shift_high_v[1:]))
+        covered.append((one.shift_low_v[1:] < [1.0, -2.0]) & (one.shift_high_v[1:] > [1.0, -2.0]))
     mean, error = np.mean(found, axis=0), np.std(found, axis=0) / 20.0
     # The subset's residual variance is divided by 19, not by its 18 degrees of freedom.
     residual = np.diag(truth) - truth[0] ** 2 / truth[0, 0]
@@ -153,6 +153,15 @@ def test_a_condition_that_shares_no_instances_keeps_its_own_mean() -> None:
     assert np.isnan(found.shift_v[2])
     assert np.all(np.isnan(found.covariance_v2[2]))
     assert np.all(np.isfinite(found.covariance_v2[:2, :2]))
+
+
+def test_instances_without_any_mismatch() -> None:
+    offset_v = np.column_stack([np.full(10, 1e-3), np.random.default_rng(4).normal(size=10)])
+    offset_v[7:, 1] = np.nan
+    found = instance_components(offset_v)
+    assert found.mean_v[0] == pytest.approx(1e-3)
+    np.testing.assert_allclose(found.covariance_v2[0], 0.0, atol=1e-12)
+    assert instance_components(np.zeros((5, 2))).share.tolist() == [0.0, 0.0]
 
 
 def test_measurement_error_is_not_mismatch() -> None:

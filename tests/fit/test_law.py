@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 from scipy.integrate import solve_ivp
+from scipy.special import stdtrit
 
 from behavgen.fit.law import DelayRows, fit_law
 from behavgen.formulas.node_law import node_law_delay
@@ -115,8 +116,6 @@ def test_intervals_of_tau_cover():
     exact = saturating_latch(10e-12)
     noisy = exact * (1.0 + 0.002 * rng.normal(size=(4000, len(exact))))
     fit = fit_law(rows_of(*noisy))
-    from scipy.special import stdtrit
-
     error = np.sqrt(fit.covariance[:, 0, 0])
     freedom = len(exact) - fit.parameters.shape[1]
     covered = np.abs(fit.parameters[:, 0] - 10e-12) < stdtrit(freedom, 0.975) * error

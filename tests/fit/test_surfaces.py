@@ -5,11 +5,10 @@ import itertools
 import numpy as np
 import pytest
 
+from behavgen.fit.surface_forms import axis_powers, design
 from behavgen.fit.surfaces import (
-    axis_powers,
     choose_by_left_out,
     choose_by_likelihood,
-    design,
     difference_by_left_out,
 )
 

@@ -7,6 +7,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from scipy.integrate import quad
 
 from behavgen.formulas.metastability import (
     MEAN_LOG_DELAY_AT_BALANCE,
@@ -48,8 +49,6 @@ def test_saturating_latch(initial_v: float, delay_s: float) -> None:
 
 
 def test_saturating_latch_solves_its_differential_equation() -> None:
-    from scipy.integrate import quad
-
     for initial_v in (1e-3, 0.03, 0.2):
         time_in_tau, _ = quad(
             lambda v: 1.0 / (0.2 * np.tanh(v / 0.2)), initial_v, 0.5, epsabs=1e-12
@@ -104,8 +103,6 @@ def test_mean_time_between_failures() -> None:
 
 def test_mean_extra_delay_at_balance() -> None:
     # 0.63518 and pi^2/8: moments of -ln|z| by quadrature
-    from scipy.integrate import quad
-
     def moment(power: int, centre: float = 0.0) -> float:
         def integrand(z: float) -> float:
             return (-np.log(z) - centre) ** power * np.exp(-0.5 * z * z) * np.sqrt(2.0 / np.pi)

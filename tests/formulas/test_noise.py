@@ -7,6 +7,8 @@ from pathlib import Path
 
 import numpy as np
 import pytest
+from scipy.constants import Boltzmann
+from scipy.special import ndtr
 
 from behavgen.formulas.noise import (
     BOLTZMANN_J_PER_K,
@@ -35,9 +37,7 @@ def test_sampled_noise_at_300_k(capacitance_f: float, noise_v: float) -> None:
 
 
 def test_boltzmann_constant_is_the_si_definition() -> None:
-    from scipy.constants import Boltzmann
-
-    assert BOLTZMANN_J_PER_K == Boltzmann
+    assert Boltzmann == BOLTZMANN_J_PER_K
 
 
 @pytest.mark.parametrize(("rate", "z"), [(1e-12, 7.03448), (1e-15, 7.94135)])
@@ -68,8 +68,6 @@ def test_information_at_the_trip_point_is_two_over_pi() -> None:
 
 def test_information_is_the_mean_square_score() -> None:
     # E[(d ln P / d theta)^2] over both outcomes, by finite differences of the law itself.
-    from scipy.special import ndtr
-
     h = 1e-5
     for z in (-2.0, -0.3, 0.0, 1.1, 2.7):
 
@@ -87,8 +85,8 @@ def test_information_is_the_mean_square_score() -> None:
 
 def test_best_levels() -> None:
     assert Z_BEST_FOR_OFFSET == 0.0
-    assert Z_BEST_FOR_SIGMA == pytest.approx(FISHER["z_sigma"], abs=1e-9)
-    assert Z_BEST_FOR_BOTH == pytest.approx(FISHER["z_D"], abs=1e-9)
+    assert pytest.approx(FISHER["z_sigma"], abs=1e-9) == Z_BEST_FOR_SIGMA
+    assert pytest.approx(FISHER["z_D"], abs=1e-9) == Z_BEST_FOR_BOTH
     z = np.linspace(0.0, 4.0, 40001)
     information = decision_information(z)
     on_offset, on_sigma = information[:, 0, 0], information[:, 1, 1]

@@ -1,0 +1,177 @@
+"""Intervals of what users decide with, through the model's covariances.
+
+Every quantity is a smooth function of fitted numbers whose joint covariance
+the model carries; its interval follows from the first-order propagation of
+that covariance (the delta method). Far below the smallest tabulated overdrive
+the uncertainty of tau takes over, so that extrapolated windows widen by
+themselves. Intervals cover sampling error and lack of fit, nothing else.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+from scipy.special import ndtr, ndtri, stdtrit
+
+from behavgen.formulas.node_law import node_law_delay
+from behavgen.model import ComparatorModel, DelayEffect, Surface
+from behavgen.operating_point import surface_terms
+from behavgen.reference import Reference
+
+__all__ = ["Band", "Bands"]
+
+Floats = npt.NDArray[np.float64]
+
+_STEP = 1e-4
+"""Relative step of the numerical derivatives; the law is linear in its parameters."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Band:
+    """Values with their interval, one shape."""
+
+    value: Floats
+    low: Floats
+    high: Floats
+
+
+class Bands:
+    """Intervals around a model's nominal instance.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+    level : float
+        Confidence, 0..1.
+
+    Notes
+    -----
+    All methods take the operating condition as `Reference` does.
+    """
+
+    def __init__(self, model: ComparatorModel, level: float = 0.95) -> None:
+        self.model = model
+        self.level = level
+        self._reference = Reference(model)
+        self._normal = float(ndtri(0.5 + 0.5 * level))
+
+    def offset(self, **condition: npt.ArrayLike) -> Band:
+        """Nominal trip point in V."""
+        value = self._reference.offset(**condition)
+        half = self._normal * np.sqrt(self._offset_variance(condition))
+        return Band(value=value, low=value - half, high=value + half)
+
+    def noise_sigma(self, **condition: npt.ArrayLike) -> Band:
+        """Noise sigma in V."""
+        value = self._reference.noise_sigma(**condition)
+        return _logarithmic(value, self._normal * np.sqrt(self._sigma_variance(condition)))
+
+    def probability(self, vdiff_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
+        """Probability of a one over noise; narrowest where the data were."""
+        reference, normal = self._reference, self._normal
+        sigma = reference.noise_sigma(**condition)
+        if not np.all(sigma > 0.0):
+            value = reference.probability(vdiff_v, **condition)
+            return Band(value=value, low=value, high=value)
+        z = (np.asarray(vdiff_v, dtype=float) - reference.offset(**condition)) / sigma
+        variance = self._offset_variance(condition) / sigma**2
+        half = normal * np.sqrt(variance + z * z * self._sigma_variance(condition))
+        return Band(value=ndtr(z), low=ndtr(z - half), high=ndtr(z + half))
+
+    def delay(self, overdrive_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
+        """Delay in s at the magnitude of an overdrive in V."""
+        value = self._reference.delay(overdrive_v, **condition)
+        if self.model.delay is None:
+            return Band(value=value, low=value, high=value)
+        relative, _ = self._delay_error(overdrive_v, condition)
+        return _logarithmic(value, relative)
+
+    def window(self, resolve_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
+        """Width in V of the input interval still unresolved at a time after the edge."""
+        value = self._reference.window(resolve_time_s, **condition)
+        if self.model.delay is None:
+            return Band(value=value, low=value, high=value)
+        known = np.isfinite(value)
+        half_width = np.where(known, 0.5 * value, self.model.delay.node_overdrive_v[-1])
+        relative, local_tau = self._delay_error(half_width, condition)
+        delay = self._reference.delay(half_width, **condition)
+        band = _logarithmic(value, relative * delay / local_tau)
+        return Band(
+            value=value,
+            low=np.where(known, band.low, value),
+            high=np.where(known, band.high, value),
+        )
+
+    def _offset_variance(self, condition: dict[str, npt.ArrayLike]) -> Floats:
+        effect = self.model.offset
+        return self._variance(effect.surface if effect else None, condition)
+
+    def _sigma_variance(self, condition: dict[str, npt.ArrayLike]) -> Floats:
+        effect = self.model.noise
+        return self._variance(effect.surface if effect else None, condition)
+
+    def _variance(self, surface: Surface | None, condition: dict[str, npt.ArrayLike]) -> Floats:
+        point = self._reference.point((), condition)
+        if surface is None or not surface.covariance:
+            return np.zeros(point.shape)
+        terms = surface_terms(surface, point)
+        covariance = np.array(surface.covariance)
+        variance = np.einsum("nt,tu,nu->n", terms, covariance, terms)
+        return np.maximum(variance, 0.0).reshape(point.shape)
+
+    def _delay_error(
+        self, overdrive_v: npt.ArrayLike, condition: dict[str, npt.ArrayLike]
+    ) -> tuple[Floats, Floats]:
+        """Return the half width of ln(delay) and the local slope -d(delay)/d(ln overdrive)."""
+        effect = self.model.delay
+        assert effect is not None
+        overdrive = np.asarray(overdrive_v, dtype=float)
+        point = self._reference.point(overdrive.shape, condition)
+        magnitude = np.maximum(
+            np.abs(np.broadcast_to(overdrive, point.shape)).ravel(), effect.floor_v
+        )
+        log_node, parameters = self._reference.law(point)
+        gradient, local_tau = _gradient(magnitude, log_node, parameters)
+        terms = surface_terms(effect.tau, point)
+        scatter = _propagated(gradient, effect.scatter)
+        if effect.leverage:
+            leverage = np.array(effect.leverage)
+            scatter = scatter * np.einsum("nt,tu,nu->n", terms, leverage, terms)
+        lack_of_fit = _propagated(gradient, effect.lack_of_fit)
+        half = np.sqrt(self._quantile(effect) ** 2 * scatter + self._normal**2 * lack_of_fit)
+        return half.reshape(point.shape), local_tau.reshape(point.shape)
+
+    def _quantile(self, effect: DelayEffect) -> float:
+        freedom = max(effect.scatter_freedom, 1)
+        return float(stdtrit(freedom, 0.5 + 0.5 * self.level))
+
+
+def _logarithmic(value: Floats, half: Floats) -> Band:
+    return Band(value=value, low=value * np.exp(-half), high=value * np.exp(half))
+
+
+def _gradient(magnitude: Floats, log_node: Floats, parameters: Floats) -> tuple[Floats, Floats]:
+    """Return d ln(delay) / d ln(parameters), shape (N, K + 1), and the local slope (N,)."""
+
+    def delay(at: Floats, overdrive: Floats) -> Floats:
+        return node_law_delay(overdrive, log_node, at[:, 0], at[:, 1:])
+
+    centre = delay(parameters, magnitude)
+    columns = []
+    for k in range(parameters.shape[-1]):
+        up, down = parameters.copy(), parameters.copy()
+        up[:, k] *= 1.0 + _STEP
+        down[:, k] *= 1.0 - _STEP
+        columns.append((delay(up, magnitude) - delay(down, magnitude)) / (2.0 * _STEP * centre))
+    lower, upper = magnitude * (1.0 - _STEP), magnitude * (1.0 + _STEP)
+    slope = (delay(parameters, lower) - delay(parameters, upper)) / (2.0 * _STEP)
+    return np.stack(columns, axis=-1), np.maximum(slope, 1e-6 * parameters[:, 0])
+
+
+def _propagated(gradient: Floats, covariance: tuple[tuple[float, ...], ...]) -> Floats:
+    if not covariance:
+        return np.zeros(len(gradient))
+    variance = np.einsum("nk,kl,nl->n", gradient, np.array(covariance), gradient)
+    return np.maximum(variance, 0.0)

@@ -1,0 +1,114 @@
+"""What passes between a check and the benches that it runs inside the simulator.
+
+    session.json            which runs a session plays and which benches drive
+    <index>.expected.npz    what a run must show
+    <index>.events          what it showed, written by the harness
+    <index>.agreement.npz   the bench's comparison of the two
+"""
+
+from __future__ import annotations
+
+import json
+import os
+from collections.abc import Iterable
+from dataclasses import asdict, dataclass, fields
+from pathlib import Path
+
+import numpy as np
+
+from behavgen.check.agreement import Agreement, compare
+from behavgen.check.runs import Run, Settings
+from behavgen.check.waveform import Expectation, read_record
+
+__all__ = [
+    "SESSION_VARIABLE",
+    "BenchSession",
+    "compare_run",
+    "open_session",
+    "read_agreement",
+    "write_expectation",
+    "write_session",
+]
+
+SESSION_VARIABLE = "BEHAVGEN_CHECK_SESSION"
+"""Environment variable through which a bench finds its session file."""
+MODEL_NAME = "model.json"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class BenchSession:
+    """What a bench knows of its session.
+
+    Parameters
+    ----------
+    folder : Path
+        Where the files of all runs are.
+    runs : tuple of Run
+    """
+
+    folder: Path
+    runs: tuple[Run, ...]
+
+    @property
+    def model_path(self) -> Path:
+        """The model that the benches hold the module against."""
+        return self.folder / MODEL_NAME
+
+    @property
+    def played(self) -> tuple[Run, ...]:
+        """Runs to which a block is played."""
+        return tuple(run for run in self.runs if run.decisions > 0)
+
+    def driven(self, name: str) -> Run:
+        """Return the run that a bench of this name drives."""
+        return next(run for run in self.runs if run.decisions == 0 and run.name == name)
+
+
+def write_session(path: Path, runs: Iterable[Run]) -> None:
+    """Write a session file beside the files of its runs."""
+    path.write_text(json.dumps([asdict(run) for run in runs]), encoding="utf-8")
+
+
+def open_session() -> BenchSession:
+    """Return the session that the running simulation belongs to."""
+    path = Path(os.environ[SESSION_VARIABLE])
+    runs = tuple(_run(raw) for raw in json.loads(path.read_text(encoding="utf-8")))
+    return BenchSession(folder=path.parent, runs=runs)
+
+
+def _run(raw: dict[str, object]) -> Run:
+    given, meant = (Settings(**raw.pop(name)) for name in ("given", "meant"))  # type: ignore[arg-type]
+    return Run(given=given, meant=meant, **raw)  # type: ignore[arg-type]
+
+
+def write_expectation(folder: Path, index: int, expected: Expectation) -> None:
+    """Write what a run must show."""
+    _save(folder / f"{index}.expected.npz", expected)
+
+
+def compare_run(folder: Path, index: int) -> Agreement:
+    """Compare a run's record with its expectation and write the outcome.
+
+    Raises
+    ------
+    OSError, ValueError
+        When the record is missing or torn.
+    """
+    with np.load(folder / f"{index}.expected.npz") as stored:
+        expected = Expectation(**{f.name: stored[f.name] for f in fields(Expectation)})
+    agreement = compare(expected, read_record(folder / f"{index}.events"))
+    _save(folder / f"{index}.agreement.npz", agreement)
+    return agreement
+
+
+def read_agreement(folder: Path, index: int) -> Agreement | None:
+    """Return a run's outcome; None when its bench did not get so far."""
+    path = folder / f"{index}.agreement.npz"
+    if not path.is_file():
+        return None
+    with np.load(path) as stored:
+        return Agreement(**{f.name: stored[f.name] for f in fields(Agreement)})
+
+
+def _save(path: Path, data: Expectation | Agreement) -> None:
+    np.savez(path, **{field.name: getattr(data, field.name) for field in fields(data)})

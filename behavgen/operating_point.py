@@ -1,0 +1,135 @@
+"""A model's surfaces at operating conditions."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.formulas.exact_math import exact_exp
+from behavgen.formulas.polynomial import (
+    axis_coordinate,
+    dense_coefficients,
+    nested_horner,
+    quantise,
+)
+from behavgen.model import ComparatorModel, Range, Surface, Variant
+
+__all__ = [
+    "TEMPERATURE_STEPS_PER_K",
+    "VOLTAGE_STEPS_PER_V",
+    "OperatingPoint",
+    "evaluate",
+    "operating_point",
+    "surface_terms",
+]
+
+Floats = npt.NDArray[np.float64]
+
+VOLTAGE_STEPS_PER_V = 2.0**20
+TEMPERATURE_STEPS_PER_K = 2.0**10
+_ZERO_CELSIUS_K = 273.15
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class OperatingPoint:
+    """Quantised operating conditions, flattened.
+
+    Parameters
+    ----------
+    vdd_v, temperature_k, vcm_v : ndarray, shape (N,)
+    process : ndarray of str, shape (N,)
+    shape : tuple of int
+        Shape that the conditions had when broadcast.
+    """
+
+    vdd_v: Floats
+    temperature_k: Floats
+    vcm_v: Floats
+    process: npt.NDArray[np.str_]
+    shape: tuple[int, ...]
+
+
+def operating_point(
+    model: ComparatorModel, shape: tuple[int, ...], condition: dict[str, npt.ArrayLike]
+) -> OperatingPoint:
+    """Broadcast conditions given by keyword and quantise them.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+        Whose box gives the defaults.
+    shape : tuple of int
+        Shape of whatever is asked at these conditions.
+    condition : dict
+        Any of ``vdd`` (V), ``temp_c`` (degrees Celsius), ``vcm`` (V), ``process`` (name).
+
+    Raises
+    ------
+    TypeError
+        For a condition of another name.
+    ValueError
+        For a process that the model does not know.
+    """
+    unknown = set(condition) - {"vdd", "temp_c", "vcm", "process"}
+    if unknown:
+        raise TypeError(f"unknown condition {sorted(unknown)}; use vdd, temp_c, vcm, process")
+    middle_c = _middle(model.box.temperature_k, 300.0) - _ZERO_CELSIUS_K
+    vdd, temp_c, vcm, process, _ = np.broadcast_arrays(
+        np.asarray(condition.get("vdd", _middle(model.box.vdd_v)), dtype=float),
+        np.asarray(condition.get("temp_c", middle_c), dtype=float),
+        np.asarray(condition.get("vcm", _middle(model.box.vcm_v)), dtype=float),
+        np.asarray(condition.get("process", model.processes[0].name), dtype=str),
+        np.empty(shape),
+    )
+    known = {process.name for process in model.processes}
+    if not set(process.ravel().tolist()) <= known:
+        raise ValueError(f"unknown process; this model knows {sorted(known)}")
+    temperature_k = temp_c.ravel() + _ZERO_CELSIUS_K
+    return OperatingPoint(
+        vdd_v=quantise(vdd.ravel(), VOLTAGE_STEPS_PER_V),
+        temperature_k=quantise(temperature_k, TEMPERATURE_STEPS_PER_K),
+        vcm_v=quantise(vcm.ravel(), VOLTAGE_STEPS_PER_V),
+        process=process.ravel(),
+        shape=vdd.shape,
+    )
+
+
+def _middle(span: Range | None, otherwise: float = 0.0) -> float:
+    return otherwise if span is None else span.middle
+
+
+def evaluate(surface: Surface, point: OperatingPoint) -> Floats:
+    """Evaluate a surface, shape (N,): clamp, normalise, fold slow conditions first."""
+    result = np.empty(len(point.vdd_v))
+    for name in np.unique(point.process):
+        rows = point.process == name
+        variant = surface.variant(str(name))
+        dense = dense_coefficients(surface.exponents, variant.coefficients)
+        result[rows] = nested_horner(dense, _coordinates(surface, variant, point, rows))
+    return exact_exp(result) if surface.transform == "log" else result
+
+
+def surface_terms(surface: Surface, point: OperatingPoint) -> Floats:
+    """Return the value of each term of a surface's polynomial, shape (N, terms)."""
+    terms = np.ones((len(point.vdd_v), len(surface.exponents)))
+    powers = np.array(surface.exponents, dtype=float).reshape(len(surface.exponents), -1)
+    for name in np.unique(point.process):
+        rows = point.process == name
+        variant = surface.variant(str(name))
+        for k, coordinate in enumerate(_coordinates(surface, variant, point, rows)):
+            terms[rows] *= coordinate[:, None] ** powers[:, k]
+    return terms
+
+
+def _coordinates(
+    surface: Surface, variant: Variant, point: OperatingPoint, rows: npt.NDArray[np.bool_]
+) -> tuple[Floats, ...]:
+    coordinates = []
+    for axis in surface.axes:
+        span: Range = getattr(variant.box, axis.condition)
+        value = getattr(point, axis.condition)[rows]
+        clamped = np.minimum(np.maximum(value, span.low), span.high)
+        coordinates.append(axis_coordinate(clamped, axis.shape, axis.centre, axis.half_range))
+    return tuple(coordinates)
