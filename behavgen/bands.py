@@ -83,10 +83,12 @@ class Bands:
     def delay(self, overdrive_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
         """Delay in s at the magnitude of an overdrive in V."""
         value = self._reference.delay(overdrive_v, **condition)
-        if self.model.delay is None:
+        effect = self.model.delay
+        if effect is None:
             return Band(value=value, low=value, high=value)
-        relative, _ = self._delay_error(overdrive_v, condition)
-        return _logarithmic(value, relative)
+        magnitude = np.maximum(np.abs(overdrive_v), effect.floor_v)
+        half_s, _ = self._delay_error(magnitude, condition)
+        return _logarithmic(value, half_s / value)
 
     def window(self, resolve_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
         """Width in V of the input interval still unresolved at a time after the edge."""
@@ -95,14 +97,10 @@ class Bands:
             return Band(value=value, low=value, high=value)
         known = np.isfinite(value)
         half_width = np.where(known, 0.5 * value, self.model.delay.node_overdrive_v[-1])
-        relative, local_tau = self._delay_error(half_width, condition)
-        delay = self._reference.delay(half_width, **condition)
-        band = _logarithmic(value, relative * delay / local_tau)
-        return Band(
-            value=value,
-            low=np.where(known, band.low, value),
-            high=np.where(known, band.high, value),
-        )
+        half_s, local_tau_s = self._delay_error(np.maximum(half_width, 1e-300), condition)
+        band = _logarithmic(np.where(known, value, 0.0), half_s / local_tau_s)
+        low, high = np.where(known, band.low, value), np.where(known, band.high, value)
+        return Band(value=value, low=low, high=high)
 
     def _offset_variance(self, condition: dict[str, npt.ArrayLike]) -> Floats:
         effect = self.model.offset
@@ -122,26 +120,24 @@ class Bands:
         return np.maximum(variance, 0.0).reshape(point.shape)
 
     def _delay_error(
-        self, overdrive_v: npt.ArrayLike, condition: dict[str, npt.ArrayLike]
+        self, magnitude_v: npt.ArrayLike, condition: dict[str, npt.ArrayLike]
     ) -> tuple[Floats, Floats]:
-        """Return the half width of ln(delay) and the local slope -d(delay)/d(ln overdrive)."""
+        """Return the delay's half width and the local slope -d(delay)/d(ln overdrive), s."""
         effect = self.model.delay
         assert effect is not None
-        overdrive = np.asarray(overdrive_v, dtype=float)
-        point = self._reference.point(overdrive.shape, condition)
-        magnitude = np.maximum(
-            np.abs(np.broadcast_to(overdrive, point.shape)).ravel(), effect.floor_v
-        )
+        magnitude = np.asarray(magnitude_v, dtype=float)
+        point = self._reference.point(magnitude.shape, condition)
+        magnitude = np.broadcast_to(magnitude, point.shape).ravel()
         log_node, parameters = self._reference.law(point)
-        gradient, local_tau = _gradient(magnitude, log_node, parameters)
-        terms = surface_terms(effect.tau, point)
+        gradient, local_tau_s = _gradient(magnitude, log_node, parameters)
         scatter = _propagated(gradient, effect.scatter)
         if effect.leverage:
+            terms = surface_terms(effect.tau, point)
             leverage = np.array(effect.leverage)
             scatter = scatter * np.einsum("nt,tu,nu->n", terms, leverage, terms)
         lack_of_fit = _propagated(gradient, effect.lack_of_fit)
-        half = np.sqrt(self._quantile(effect) ** 2 * scatter + self._normal**2 * lack_of_fit)
-        return half.reshape(point.shape), local_tau.reshape(point.shape)
+        half_s = np.sqrt(self._quantile(effect) ** 2 * scatter + self._normal**2 * lack_of_fit)
+        return half_s.reshape(point.shape), local_tau_s.reshape(point.shape)
 
     def _quantile(self, effect: DelayEffect) -> float:
         freedom = max(effect.scatter_freedom, 1)
@@ -153,18 +149,17 @@ def _logarithmic(value: Floats, half: Floats) -> Band:
 
 
 def _gradient(magnitude: Floats, log_node: Floats, parameters: Floats) -> tuple[Floats, Floats]:
-    """Return d ln(delay) / d ln(parameters), shape (N, K + 1), and the local slope (N,)."""
+    """Return d(delay) / d ln(parameters), shape (N, K + 1), and the local slope (N,), s."""
 
     def delay(at: Floats, overdrive: Floats) -> Floats:
         return node_law_delay(overdrive, log_node, at[:, 0], at[:, 1:])
 
-    centre = delay(parameters, magnitude)
     columns = []
     for k in range(parameters.shape[-1]):
         up, down = parameters.copy(), parameters.copy()
         up[:, k] *= 1.0 + _STEP
         down[:, k] *= 1.0 - _STEP
-        columns.append((delay(up, magnitude) - delay(down, magnitude)) / (2.0 * _STEP * centre))
+        columns.append((delay(up, magnitude) - delay(down, magnitude)) / (2.0 * _STEP))
     lower, upper = magnitude * (1.0 - _STEP), magnitude * (1.0 + _STEP)
     slope = (delay(parameters, lower) - delay(parameters, upper)) / (2.0 * _STEP)
     return np.stack(columns, axis=-1), np.maximum(slope, 1e-6 * parameters[:, 0])

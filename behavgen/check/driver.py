@@ -139,12 +139,25 @@ class Driver:
         if self.has_threshold:
             self.supply(float(np.nextafter(self.cell.supply_off_v or 0.0, 0.0)))
         else:
-            self.unit.enable.value = 0
+            self.enable("0")
 
     def switch_on(self) -> None:
         """Switch on again."""
         self.supply(self.vdd_v)
-        self.unit.enable.value = 1
+        self.enable("1")
+
+    def enable(self, level: str) -> None:
+        """Apply a level to the enable."""
+        self.unit.enable.value = Logic(level)
+
+    def leave_the_box(self) -> None:
+        """Apply a condition outside the characterised range, where one can be applied."""
+        box = self.model.box
+        if box.vcm_v is not None:
+            beyond = box.vcm_v.high + 0.1
+            self.unit.inp.value, self.unit.inn.value = beyond + self.large_v, beyond - self.large_v
+        elif box.vdd_v is not None and self.pins.vdd is not None:
+            self.supply(box.vdd_v.high + 0.1)
 
     def clock(self, level: int | str) -> None:
         """Apply a clock level, also ``"X"`` and ``"Z"``."""
@@ -169,8 +182,12 @@ class Driver:
         """Play one whole decision, long enough to resolve and reset unless told otherwise."""
         self.apply(overdrive_v)
         await self.wait(5)
+        await self.cycle(phase or self.delay(overdrive_v) + 20)
+
+    async def cycle(self, phase: int) -> None:
+        """Play one clock cycle from the decision edge to after the reset."""
         self.edge()
-        await self.wait(phase or self.delay(overdrive_v) + 20)
+        await self.wait(phase)
         self.release()
         await self.wait(self.reset_ticks + 20)
 

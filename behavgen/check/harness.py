@@ -38,10 +38,13 @@ def harness_macros(model: ComparatorModel, text: str) -> dict[str, str]:
 
 
 def top_text(model: ComparatorModel, runs: Iterable[Run]) -> str:
-    """Return the module that holds one harness for each run."""
+    """Return the module that holds one harness for each run, and one module as it is declared."""
     precision = model.cell.time_precision
     instances = "".join(_instance(model, run) for run in runs)
-    return f"`timescale {precision}/{precision}\n\nmodule {TOP};\n{instances}endmodule\n"
+    return (
+        f"`timescale {precision}/{precision}\n\nmodule {TOP};\n{instances}"
+        f"  // to read the parameters' defaults\n  {model.cell.name} as_declared ();\nendmodule\n"
+    )
 
 
 def _instance(model: ComparatorModel, run: Run) -> str:

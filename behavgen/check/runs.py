@@ -117,11 +117,14 @@ class Session:
     plusargs : tuple of str
         Without the leading plus sign.
     runs : tuple of Run
+    benches : tuple of str
+        Names of the bench modules that look at them.
     """
 
     name: str
     plusargs: tuple[str, ...]
     runs: tuple[Run, ...]
+    benches: tuple[str, ...] = ("test_agreement",)
 
 
 def reference_of(model: ComparatorModel, run: Run) -> Reference:

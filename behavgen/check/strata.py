@@ -18,7 +18,7 @@ from behavgen.check.stimulus import BALANCED, LEAST_SWEPT_V, NOISY, Stimulus
 from behavgen.check.verdict import Stratum
 from behavgen.check.waveform import Expectation
 from behavgen.model import ComparatorModel, Range
-from behavgen.reference import VOLTAGE_STEPS_PER_V
+from behavgen.operating_point import VOLTAGE_STEPS_PER_V
 from behavgen.units import ZERO_CELSIUS_K, format_si
 
 __all__ = ["PlayedRun", "count_strata"]

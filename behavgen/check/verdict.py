@@ -2,9 +2,24 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+import json
+from dataclasses import asdict, dataclass, field
+from pathlib import Path
 
-__all__ = ["BenchResult", "CheckReport", "Disagreement", "Stratum"]
+from behavgen.errors import Fault, ModelFileError
+
+__all__ = [
+    "FORMAT",
+    "BenchResult",
+    "CheckReport",
+    "Disagreement",
+    "Stratum",
+    "dump_report",
+    "load_report",
+]
+
+FORMAT = 1
+"""Version of the report file; raised when an old reader would misread a new file."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -26,6 +41,11 @@ class Stratum:
     decisions: int
     required: int
     disagreements: int = 0
+
+    @property
+    def short(self) -> bool:
+        """Whether too few decisions fell into it."""
+        return self.decisions < self.required
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -92,6 +112,10 @@ class CheckReport:
     disagreement_count : int
     worst_delay_ticks : int
         Largest delay difference seen, in units of the time precision.
+    excluded : int
+        Decisions left out because a tick decides them.
+    format : int
+        Version of the file format.
     """
 
     cell: str
@@ -105,3 +129,45 @@ class CheckReport:
     disagreements: tuple[Disagreement, ...] = ()
     disagreement_count: int = 0
     worst_delay_ticks: int = 0
+    excluded: int = 0
+    format: int = field(default=FORMAT)
+
+
+def dump_report(report: CheckReport) -> str:
+    """Return the report as JSON text; the same report gives the same bytes."""
+    return json.dumps(asdict(report), indent=2, sort_keys=True, allow_nan=False) + "\n"
+
+
+def load_report(path: Path) -> CheckReport:
+    """Read a report file.
+
+    Raises
+    ------
+    ModelFileError
+        When the file cannot be read, has another format version, or is not a
+        report; names every fault with its place in the file.
+    """
+    try:
+        text = path.read_text(encoding="utf-8")
+        raw = json.loads(text)
+    except (OSError, ValueError) as error:
+        raise _unreadable(path, f"cannot be read as a check report: {error}") from None
+    found = raw.get("format") if isinstance(raw, dict) else None
+    if found != FORMAT:
+        raise _unreadable(path, f"check report format {found!r}, this version reads {FORMAT}")
+    from pydantic import TypeAdapter, ValidationError  # noqa: PLC0415  heavy, and only here
+
+    try:
+        return TypeAdapter(CheckReport).validate_json(text)
+    except ValidationError as error:
+        raise ModelFileError(
+            *(_fault(path, f["msg"], ".".join(map(str, f["loc"]))) for f in error.errors())
+        ) from None
+
+
+def _unreadable(path: Path, what: str) -> ModelFileError:
+    return ModelFileError(_fault(path, what))
+
+
+def _fault(path: Path, what: str, place: str = "") -> Fault:
+    return Fault(file=str(path), column=place, what=what, allowed="make it anew: behavgen check")

@@ -78,7 +78,7 @@ def _check_all(
         except ToolError as error:
             _tell(terminal, "check", ["left out: no simulator"])
             return [_Walked(emitted=cell, check=None) for cell in emitted], (error,)
-        _tell(terminal, "check", [_check_text(report)])
+        _tell(terminal, "" if walked else "check", [_check_text(report)])
         walked.append(_Walked(emitted=cell, check=report))
     return walked, ()
 
@@ -124,8 +124,8 @@ def _tables_text(model: ComparatorModel) -> str:
     rows: dict[str, int] = {}
     for source in model.sources:
         rows[source.quantity] = rows.get(source.quantity, 0) + source.rows
-    listed = ", ".join(f"{quantity} {count} rows" for quantity, count in rows.items())
-    return f"{model.cell.name}: {listed}"
+    listed = ", ".join(f"{quantity} {count}" for quantity, count in rows.items())
+    return f"{model.cell.name}: rows {listed}"
 
 
 def _fit_text(model: ComparatorModel) -> str:
@@ -137,8 +137,8 @@ def _fit_text(model: ComparatorModel) -> str:
     if model.delay is None or not errors:
         return model.cell.name
     return (
-        f"{model.cell.name}: {model.delay.law}, delay rms error {percent_text(median(errors))} "
-        f"median and {percent_text(max(errors))} worst over {number_of(len(errors), 'condition')}"
+        f"{model.cell.name}: {model.delay.law}; error rms {percent_text(median(errors))} median, "
+        f"{percent_text(max(errors))} worst of {number_of(len(errors), 'condition')}"
     )
 
 

@@ -80,6 +80,7 @@ def finish(outcome: Outcome, options: Options, terminal: Terminal) -> int:
     """Print diagnostics and verdict, and return the exit code."""
     exit_code = outcome.exit_code(strict=options.strict)
     if outcome.shows_results:
+        terminal.say()
         for line in wrapped(CAUTION):
             terminal.say(terminal.paint(line, "quiet"))
     for fault in outcome.faults:

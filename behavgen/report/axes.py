@@ -8,13 +8,13 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from behavgen.report.numbers import PREFIX, si_text, typographic
+from behavgen.report.numbers import PREFIX, SIGMA, si_text, typographic
 
 __all__ = ["PlotAxis", "Tick", "axis_title", "spanning", "symmetric", "ticks"]
 
 Floats = npt.NDArray[np.float64]
 
-_UNPREFIXED = ("", "1", "%", "σ")
+_UNPREFIXED = ("", "1", "%", SIGMA)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -25,7 +25,7 @@ class PlotAxis:
     ----------
     label : str
     unit : str
-        SI unit, or ``"1"``, ``"%"``, ``"σ"``, which take no prefix.
+        SI unit, or ``"1"``, ``"%"``, sigma, which take no prefix.
     low, high : float
         Ends of the axis; positive where it is logarithmic.
     logarithmic : bool
@@ -44,9 +44,12 @@ class PlotAxis:
         """Return places along the axis, 0 at its low end and 1 at its high end."""
         array = np.asarray(values, dtype=float)
         if self.logarithmic:
+            array = np.log(np.maximum(array, 1e-300))
             low, high = math.log(self.low), math.log(self.high)
-            return (np.log(np.maximum(array, 1e-300)) - low) / (high - low)
-        return (array - self.low) / (self.high - self.low)
+        else:
+            low, high = self.low, self.high
+        place: Floats = (array - low) / (high - low)
+        return place
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -66,7 +66,10 @@ def _extrapolation(model: ComparatorModel, observed_sigmas: float | None) -> tup
 def _noise_tail(observed: float | None) -> str:
     used = f"the model uses the Gaussian law to {CERTAIN_SIGMAS:g} sigmas"
     if observed is None:
-        return f"No decision was counted for the noise here; {used}. Rates so rare are a law, not a count."
+        return (
+            f"No decision was counted for the noise here; {used}. Rates so rare are a law, not a "
+            "count."
+        )
     return (
         f"Errors were counted to {observed:.1f} sigmas from the trip point; {used}. Error rates "
         "far below what was counted rest on that law."

@@ -165,9 +165,9 @@ def _labelled_places(axis: PlotAxis) -> Iterable[float]:
 def _y_labels(panel: Panel, left: float, top: float) -> str:
     def text(tick: Tick) -> str:
         y = top + panel.height * (1.0 - float(panel.y.place(tick.value)))
-        return f'<text class="tick" x="{_n(left - 7)}" y="{_n(y + 4)}">{escape(tick.label)}</text>'
+        return _text("tick", left - 7, y + 4, tick.label)
 
-    title = f'<text class="axis" x="{_n(left)}" y="{_n(top - 9)}">{escape(axis_title(panel.y))}</text>'
+    title = _text("axis", left, top - 9, axis_title(panel.y))
     return '<g class="y">' + title + "".join(text(t) for t in ticks(panel.y) if t.label) + "</g>"
 
 
@@ -177,11 +177,14 @@ def _x_labels(panel: Panel, left: float, width: float, base: float) -> str:
         x = left + width * float(panel.x.place(tick.value))
         marks.append(f"M{_n(x)} {_n(base)}v{5 if tick.label else 3}")
         if tick.label:
-            texts.append(f'<text class="tick" x="{_n(x)}" y="{_n(base + 18)}">{escape(tick.label)}</text>')
-    title = (f'<text class="axis" x="{_n(left + 0.5 * width)}" y="{_n(base + 37)}">'
-             f"{escape(axis_title(panel.x))}</text>")  # fmt: skip
+            texts.append(_text("tick", x, base + 18, tick.label))
+    title = _text("axis", left + 0.5 * width, base + 37, axis_title(panel.x))
     axis = f'<path class="base" d="M{_n(left)} {_n(base)}h{_n(width)}{"".join(marks)}"/>'
     return f'<g class="x">{axis}{"".join(texts)}{title}</g>'
+
+
+def _text(style: str, x: float, y: float, words: str) -> str:
+    return f'<text class="{style}" x="{_n(x)}" y="{_n(y)}">{escape(words)}</text>'
 
 
 def _draw_layer(panel: Panel, layer: Layer, width: float, height: float) -> str:
@@ -215,13 +218,13 @@ def _draw_dots(panel: Panel, dots: Dots, width: float, height: float) -> str:
 def _marks(marker: str, x: Iterable[float], y: Iterable[float]) -> str:
     """Draw markers one after the other, each by its step from the last in tenths of a unit."""
     across, along, stroke = MARKERS[marker]
-    starts = [(round(10 * (a + across)), round(10 * (b + along))) for a, b in zip(x, y, strict=True)]
-    text, last = "", (0, 0)
-    for start in starts:
-        step = _n(0.1 * (start[0] - last[0])), _n(0.1 * (start[1] - last[1]))
-        text += f"m{step[0]}{'' if step[1].startswith('-') else ' '}{step[1]}{stroke}"
+    steps, last = [], (0, 0)
+    for a, b in zip(x, y, strict=True):
+        start = round(10 * (a + across)), round(10 * (b + along))
+        dx, dy = _n(0.1 * (start[0] - last[0])), _n(0.1 * (start[1] - last[1]))
+        steps.append(f"m{dx}{'' if dy.startswith('-') else ' '}{dy}{stroke}")
         last = start
-    return text
+    return "".join(steps)
 
 
 def _marker_class(marker: str) -> str:

@@ -6,7 +6,7 @@ from collections.abc import Iterable, Sequence
 from typing import Any
 
 from behavgen.model import ComparatorModel, Condition, Range
-from behavgen.report.numbers import temperature_text, volts_text
+from behavgen.report.numbers import ABSENT, temperature_text, volts_text
 from behavgen.units import ZERO_CELSIUS_K
 
 __all__ = [
@@ -35,7 +35,7 @@ def field_text(condition: Condition, name: str) -> str:
     """Write one part of a condition; a dash where the table does not say."""
     value = getattr(condition, name)
     if value is None or value == "":
-        return "–"
+        return ABSENT
     if name == "process":
         return str(value)
     return temperature_text(value) if name == "temperature_k" else volts_text(value)

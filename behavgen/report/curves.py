@@ -58,7 +58,8 @@ def curves(model: ComparatorModel, reference: Reference, quantity: str) -> tuple
 def drawn_overdrives(model: ComparatorModel) -> Floats:
     """Return overdrives in V at which to draw a model that carries no table points."""
     span = model.box.overdrive_v or Range(low=1e-6, high=0.1)
-    return np.geomspace(span.low, span.high, _LINE_POINTS)
+    places: Floats = np.geomspace(span.low, span.high, _LINE_POINTS)
+    return places
 
 
 def worst(members: Sequence[Curve]) -> float:

@@ -80,13 +80,13 @@ def delay_alone(model: ComparatorModel, reference: Reference, middle: Condition)
     y = PlotAxis(label="Delay", unit="s", low=0.0, high=spanning(delay_s)[1])
     chart = Chart(
         name="delay", title="Delay over overdrive of the emitted model",
-        description=f"From {si_text(float(delay_s[0]), 's')} at {si_text(float(overdrive_v[0]), 'V')}"
-        f" to {si_text(float(delay_s[-1]), 's')} at {si_text(float(overdrive_v[-1]), 'V')}.",
+        description=f"At most {si_text(float(delay_s[0]), 's')}, at least "
+        f"{si_text(float(delay_s[-1]), 's')}.",
         panels=(Panel(x=x, y=y, layers=(Line(x=overdrive_v, y=delay_s),), height=250.0),),
     )  # fmt: skip
     where = condition_words(middle)
     caption = "The model file carries no table rows to compare with. The line is the emitted model"
-    return Figure(svg=draw_chart(chart), caption=f"{caption}, at {where}." if where else caption + ".")
+    return Figure(svg=draw_chart(chart), caption=f"{caption}{', at ' + where if where else ''}.")
 
 
 def delay_multiples(members: Sequence[Curve]) -> Multiples | None:
@@ -108,7 +108,8 @@ def delay_multiples(members: Sequence[Curve]) -> Multiples | None:
         series_legend(i, f"{FIELD_TITLES[series]} {field_text(c, series)}")
         for i, c in enumerate(_samples(conditions, series, levels))
     )
-    return Multiples(figures=figures, legend=legend, note=_note(len(panels), len(shown), alike=alike))
+    note = _note(len(panels), len(shown), alike=alike)
+    return Multiples(figures=figures, legend=legend, note=note)
 
 
 def _series_field(conditions: Sequence[Condition], names: Sequence[str]) -> str:

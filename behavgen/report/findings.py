@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from behavgen.check.verdict import CheckReport, Disagreement, Stratum
 from behavgen.files import sha256_of_text
 from behavgen.model import ComparatorModel, dump_model
-from behavgen.report.numbers import count_text, si_text
+from behavgen.report.numbers import ABSENT, count_text, si_text
 from behavgen.report.tabulation import Column, Row, Table
 
 __all__ = ["Findings", "findings"]
@@ -105,7 +105,7 @@ def _bench_table(check: CheckReport) -> Table | None:
         return None
     rows = tuple(
         Row(
-            cells=(bench.name, "✓ passed" if bench.passed else "✗ failed", bench.message or "–"),
+            cells=(bench.name, "✓ passed" if bench.passed else "✗ failed", bench.message or ABSENT),
             mark="" if bench.passed else "bad",
         )
         for bench in check.benches

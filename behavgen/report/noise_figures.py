@@ -10,9 +10,10 @@ import numpy as np
 import numpy.typing as npt
 from scipy.special import ndtr
 
+from behavgen.bands import Bands
 from behavgen.reference import Reference
 from behavgen.report.axes import PlotAxis, spanning, symmetric
-from behavgen.report.charts import Chart, Dots, Layer, Line, Panel, draw_chart, swatch
+from behavgen.report.charts import Band, Chart, Dots, Layer, Line, Panel, draw_chart, swatch
 from behavgen.report.conditions import condition_words, reference_keywords
 from behavgen.report.curves import Curve
 from behavgen.report.figure import (
@@ -23,9 +24,14 @@ from behavgen.report.figure import (
     series_marker,
     series_style,
 )
-from behavgen.report.numbers import si_text
+from behavgen.report.numbers import SIGMA, si_text
 
-__all__ = ["observed_sigmas", "s_curve_multiples", "standardised_s_curves"]
+__all__ = [
+    "observed_sigmas",
+    "s_curve_multiples",
+    "score_interval",
+    "standardised_s_curves",
+]
 
 Floats = npt.NDArray[np.float64]
 
@@ -63,12 +69,14 @@ def standardised_s_curves(members: Sequence[Curve], reference: Reference) -> Fig
     if len(found) < 2:
         return None
     low, high = spanning(*(s.z for s in found))
-    x = PlotAxis(label="Input from the trip point, in sigmas of the model", unit="1", low=low, high=high)
+    label = "Input from the trip point, in sigmas of the model"
+    x = PlotAxis(label=label, unit="1", low=low, high=high)
     z = np.linspace(low, high, 61)
     line = Line(x=z, y=np.asarray(ndtr(z)), style="ink", title="normal distribution")
     share, deviation = _standardised_layers(found)
     bottom, top = symmetric([-3.0, 3.0], *(s.deviation for s in found))
-    error = PlotAxis(label="Deviation in standard errors", unit="1", low=bottom, high=top, most_ticks=5)
+    label = "Deviation in standard errors"
+    error = PlotAxis(label=label, unit="1", low=bottom, high=top, most_ticks=5)
     chart = Chart(
         name="noise", title="S-curves in units of sigma",
         description=f"Shares of ones at {len(found)} conditions against the normal distribution; "
@@ -91,8 +99,10 @@ _CAPTION = (
 def _standardised_layers(found: Sequence[_SCurve]) -> tuple[tuple[Layer, ...], tuple[Layer, ...]]:
     if len(found) > _MOST_SERIES:
         z = np.concatenate([s.z for s in found])
-        share = Dots(x=z, y=np.concatenate([s.curve.y for s in found]), marker="speck", style="s0")
-        error = Dots(x=z, y=np.concatenate([s.deviation for s in found]), marker="speck", style="s0")
+        share, error = (
+            Dots(x=z, y=np.concatenate(values), marker="speck", style="s0")
+            for values in ([s.curve.y for s in found], [s.deviation for s in found])
+        )
         return (share,), (error,)
     shares, errors = [], []
     for i, s in enumerate(found):
@@ -118,7 +128,9 @@ def _standardised_legend(found: Sequence[_SCurve]) -> tuple[LegendEntry, ...]:
     )
 
 
-def s_curve_multiples(members: Sequence[Curve], reference: Reference) -> Multiples | None:
+def s_curve_multiples(
+    members: Sequence[Curve], reference: Reference, bands: Bands
+) -> Multiples | None:
     """Return one small S-curve in volts for each condition; of many those that deviate most."""
     found = _s_curves(members, reference)
     if not found:
@@ -129,28 +141,33 @@ def s_curve_multiples(members: Sequence[Curve], reference: Reference) -> Multipl
     note = ""
     if len(shown) < len(found):
         note = f"Of {len(found)} conditions the {len(shown)} that deviate most are drawn."
-    figures = tuple(_small_figure(i, s) for i, s in enumerate(shown))
-    legend = (series_legend(0, "share of ones with its 95 % interval; line: the emitted model"),)
+    figures = tuple(_small_figure(i, s, bands) for i, s in enumerate(shown))
+    legend = (
+        series_legend(0, "share of ones with its 95 % interval; line: the emitted model"),
+        LegendEntry(sample=swatch("band-sample"), text="where the model's curve may lie, 95 %"),
+    )
     return Multiples(figures=figures, legend=legend, note=note)
 
 
-def _small_figure(number: int, s: _SCurve) -> Figure:
+def _small_figure(number: int, s: _SCurve, bands: Bands) -> Figure:
     curve = s.curve
     low, high = spanning(curve.x, padding=0.08)
     x = PlotAxis(label="Differential input", unit="V", low=low, high=high, most_ticks=4)
     words = condition_words(curve.condition) or "all conditions"
+    trip, sigma = si_text(s.trip_v, "V"), si_text(s.sigma_v, "V")
+    band = bands.probability(curve.line_x, **reference_keywords(curve.condition))
     layers = (
+        Band(x=curve.line_x, low=band.low, high=band.high),
         Line(x=curve.line_x, y=curve.line_y, style="s0"),
         Dots(x=curve.x, y=curve.y, low=s.low, high=s.high, marker="dot", style="s0"),
     )
     chart = Chart(
         name=f"noise-{number}", title=f"S-curve, {words}",
-        description=f"{len(curve.x)} levels; emitted trip point {si_text(s.trip_v, 'V')}, "
-        f"sigma {si_text(s.sigma_v, 'V')}.",
+        description=f"{len(curve.x)} levels; emitted trip point {trip}, sigma {sigma}.",
         panels=(Panel(x=x, y=_share_axis(), layers=layers, height=130.0),),
         width=240.0, left=42.0,
     )  # fmt: skip
-    detail = f"σ\N{NO-BREAK SPACE}{si_text(s.sigma_v, 'V')}, trip point {si_text(s.trip_v, 'V')}"
+    detail = f"{SIGMA}\N{NO-BREAK SPACE}{sigma}, trip point {trip}"
     return Figure(svg=draw_chart(chart), caption=words, detail=detail)
 
 
@@ -165,15 +182,22 @@ def _s_curve(curve: Curve, reference: Reference) -> _SCurve | None:
     trip, sigma = float(reference.offset(**keywords)), float(reference.noise_sigma(**keywords))
     if sigma <= 0.0:
         return None
-    low, high = _score_interval(curve.y, curve.trials.astype(float))
+    low, high = score_interval(curve.y, curve.trials.astype(float))
     expected = np.clip(curve.model_y, 1e-12, 1.0 - 1e-12)
     error = np.sqrt(expected * (1.0 - expected) / curve.trials)
     return _SCurve(curve=curve, trip_v=trip, sigma_v=sigma, z=(curve.x - trip) / sigma, low=low,
                    high=high, deviation=(curve.y - curve.model_y) / error)  # fmt: skip
 
 
-def _score_interval(share: Floats, trials: Floats, level: float = 0.95) -> tuple[Floats, Floats]:
-    """Return the score interval of a proportion (E. B. Wilson, J. Am. Stat. Assoc. 22, 1927)."""
+def score_interval(share: Floats, trials: Floats, level: float = 0.95) -> tuple[Floats, Floats]:
+    """Return the score interval of a proportion (E. B. Wilson, J. Am. Stat. Assoc. 22, 1927).
+
+    Parameters
+    ----------
+    share, trials : ndarray, shape (N,)
+    level : float
+        Confidence, reached on average.
+    """
     z2 = NormalDist().inv_cdf(0.5 + 0.5 * level) ** 2
     centre = share + 0.5 * z2 / trials
     half = np.sqrt(z2 * (share * (1.0 - share) / trials + 0.25 * z2 / trials**2))

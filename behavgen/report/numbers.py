@@ -8,7 +8,9 @@ from behavgen.model import Estimate, Range
 from behavgen.units import SI_PREFIXES, format_celsius, format_si
 
 __all__ = [
+    "ABSENT",
     "PREFIX",
+    "SIGMA",
     "count_text",
     "estimate_text",
     "interval_text",
@@ -22,16 +24,18 @@ __all__ = [
     "volts_text",
 ]
 
+ABSENT = "\N{EN DASH}"
+"""Stands where a table has nothing to say."""
+SIGMA = "\N{GREEK SMALL LETTER SIGMA}"
 PREFIX = {power: text for text, power in SI_PREFIXES.items() if text.isascii()} | {0: "", -6: "µ"}
 """Power of ten to the prefix in print."""
-
 
 _SMALLEST_SHOWN = 1e-24
 """Below the smallest SI prefix in use a number is a zero that was computed."""
 
 
 def typographic(text: str) -> str:
-    """Turn the ASCII of `behavgen.units` into print: minus, micro, degree, no break before units."""
+    """Turn the ASCII of `behavgen.units` into print: minus, micro, degree, unbroken units."""
     number, _, unit = text.partition(" ")
     unit = unit.replace("degC", "°C").replace("ohm", "Ω")
     if unit.startswith("u"):
@@ -40,10 +44,10 @@ def typographic(text: str) -> str:
 
 
 def si_text(value: float, unit: str, digits: int = 3) -> str:
-    """Write a number with an engineering prefix; `unit` "1" is a pure number.
+    r"""Write a number with an engineering prefix; `unit` "1" is a pure number.
 
     >>> si_text(1.51e-9, "s"), si_text(-2e-5, "V"), si_text(0.25, "1")
-    ('1.51\\xa0ns', '−20\\xa0µV', '0.25')
+    ('1.51\xa0ns', '−20\xa0µV', '0.25')
     """
     if unit == "K":
         return temperature_text(value)
@@ -60,10 +64,10 @@ def temperature_text(temperature_k: float) -> str:
 
 
 def volts_text(volts: float) -> str:
-    """Write a supply or common mode: in V as people say them, unless they are tiny.
+    r"""Write a supply or common mode: in V as people say them, unless they are tiny.
 
     >>> volts_text(0.95), volts_text(1.8), volts_text(0.02)
-    ('0.95\\xa0V', '1.8\\xa0V', '20\\xa0mV')
+    ('0.95\xa0V', '1.8\xa0V', '20\xa0mV')
     """
     if abs(volts) < 0.1:
         return si_text(volts, "V", 4)
@@ -71,10 +75,10 @@ def volts_text(volts: float) -> str:
 
 
 def percent_text(ratio: float, digits: int = 2) -> str:
-    """Write a ratio in per cent with significant digits.
+    r"""Write a ratio in per cent with significant digits.
 
     >>> percent_text(0.00912), percent_text(0.123), percent_text(-0.00004)
-    ('0.91\\xa0%', '12\\xa0%', '−0.0040\\xa0%')
+    ('0.91\xa0%', '12\xa0%', '−0.0040\xa0%')
     """
     if not math.isfinite(ratio):
         return "not finite"
@@ -100,10 +104,10 @@ def estimate_text(estimate: Estimate, unit: str) -> str:
 
 
 def interval_text(estimate: Estimate, unit: str) -> str:
-    """Write the interval of an estimate; says so where there is none.
+    r"""Write the interval of an estimate; says so where there is none.
 
     >>> interval_text(Estimate(value=20e-12, low=19.8e-12, high=20.3e-12), "s")
-    '19.80 … 20.30\\xa0ps'
+    '19.80 … 20.30\xa0ps'
     """
     if estimate.low is None or estimate.high is None:
         return "no interval"
@@ -113,10 +117,10 @@ def interval_text(estimate: Estimate, unit: str) -> str:
 
 
 def range_text(span: Range | None, unit: str) -> str:
-    """Write a range, the unit once where both ends share it.
+    r"""Write a range, the unit once where both ends share it.
 
     >>> range_text(Range(low=1.62, high=1.98), "V"), range_text(Range(low=1e-6, high=0.3), "V")
-    ('1.62 … 1.98\\xa0V', '1\\xa0µV … 300\\xa0mV')
+    ('1.62 … 1.98\xa0V', '1\xa0µV … 300\xa0mV')
     """
     if span is None:
         return "not characterised"

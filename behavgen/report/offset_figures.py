@@ -3,19 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 
 import numpy as np
 import numpy.typing as npt
 from scipy.special import betaincinv, ndtri
 
-from behavgen.model import ComparatorModel, Condition, CurvePoints, OffsetEffect
-from behavgen.reference import Reference
+from behavgen.model import ComparatorModel, Condition, CurvePoints
+from behavgen.operating_point import evaluate, operating_point
 from behavgen.report.axes import PlotAxis, spanning
 from behavgen.report.charts import Band, Chart, Dots, Layer, Line, Panel, draw_chart, swatch
 from behavgen.report.conditions import condition_words, reference_keywords
 from behavgen.report.figure import Figure, LegendEntry, Multiples
-from behavgen.report.numbers import si_text
+from behavgen.report.numbers import SIGMA, si_text
 
 __all__ = ["mismatch_sigma", "offset_multiples"]
 
@@ -26,19 +25,12 @@ _FEWEST_INSTANCES = 3
 
 
 def mismatch_sigma(model: ComparatorModel, condition: Condition) -> float | None:
-    """Return the emitted standard deviation of the offset between instances in V.
-
-    A mismatch component is a surface in V like the offset: the reference
-    evaluates it in the offset's place.
-    """
+    """Return the emitted standard deviation of the offset between instances in V."""
     if model.mismatch is None:
         return None
-    keywords = reference_keywords(condition)
-    parts = [
-        float(Reference(replace(model, offset=OffsetEffect(surface=c))).offset(**keywords))
-        for c in model.mismatch.components
-    ]
-    return float(np.hypot.reduce(parts))
+    point = operating_point(model, (), reference_keywords(condition))
+    parts = [evaluate(component, point) for component in model.mismatch.components]
+    return float(np.sqrt(np.sum(np.square(parts))))
 
 
 def offset_multiples(model: ComparatorModel) -> Multiples | None:
@@ -81,7 +73,7 @@ def _quantile_figure(number: int, model: ComparatorModel, points: CurvePoints) -
         description=f"{len(offsets)} instances, standard deviation {si_text(spread, 'V')}.",
         panels=(Panel(x=x, y=y, layers=layers, height=150.0),), width=240.0, left=42.0,
     )  # fmt: skip
-    detail = f"{len(offsets)} instances, σ\N{NO-BREAK SPACE}{si_text(spread, 'V')}"
+    detail = f"{len(offsets)} instances, {SIGMA}\N{NO-BREAK SPACE}{si_text(spread, 'V')}"
     if sigma is not None:
         detail += f", emitted {si_text(sigma, 'V')}"
     return Figure(svg=draw_chart(chart), caption=words, detail=detail)

@@ -11,6 +11,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
+import numpy.typing as npt
 
 from behavgen.model import Condition
 from behavgen.report.axes import PlotAxis, symmetric
@@ -20,7 +21,16 @@ from behavgen.report.curves import Curve, worst
 from behavgen.report.figure import LegendEntry, series_legend, series_marker, series_style
 from behavgen.report.numbers import percent_text
 
-__all__ = ["MOST_DRAWN", "Spotlight", "drawn_curves", "overlay_legend", "overlay_panels", "spotlights"]
+__all__ = [
+    "MOST_DRAWN",
+    "Spotlight",
+    "drawn_curves",
+    "overlay_legend",
+    "overlay_panels",
+    "spotlights",
+]
+
+Floats = npt.NDArray[np.float64]
 
 MOST_DRAWN = 48
 """More conditions than this in one chart are neither legible nor small."""
@@ -130,13 +140,13 @@ def _curve_layers(back: Sequence[Curve], chosen: Sequence[Spotlight]) -> tuple[L
 def _residual_layers(back: Sequence[Curve], chosen: Sequence[Spotlight]) -> tuple[Layer, ...]:
     layers: list[Layer] = list(_background_dots(back, [100.0 * c.error for c in back]))
     for i, spotlight in enumerate(chosen):
-        curve = spotlight.curve
+        curve, title = spotlight.curve, condition_words(spotlight.curve.condition)
         layers.append(Dots(x=curve.x, y=100.0 * curve.error, marker=series_marker(i),
-                           style=series_style(i), title=condition_words(curve.condition)))  # fmt: skip
+                           style=series_style(i), title=title))  # fmt: skip
     return tuple(layers)
 
 
-def _background_dots(back: Sequence[Curve], values: Sequence[np.ndarray]) -> tuple[Dots, ...]:
+def _background_dots(back: Sequence[Curve], values: Sequence[Floats]) -> tuple[Dots, ...]:
     if not back:
         return ()
     x, y = np.concatenate([c.x for c in back]), np.concatenate(values)

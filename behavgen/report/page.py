@@ -10,6 +10,7 @@ from functools import cache
 from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from markupsafe import Markup
 
+from behavgen.bands import Bands
 from behavgen.check.verdict import CheckReport
 from behavgen.model import ComparatorModel
 from behavgen.reference import Reference
@@ -19,6 +20,7 @@ from behavgen.report.curves import Curve, curves
 from behavgen.report.delay_figures import delay_alone, delay_multiples, delay_overview
 from behavgen.report.figure import Figure, Multiples
 from behavgen.report.findings import Findings, findings
+from behavgen.report.key_numbers import KeyNumber, key_numbers, middle_numbers
 from behavgen.report.noise_figures import (
     observed_sigmas,
     s_curve_multiples,
@@ -26,14 +28,8 @@ from behavgen.report.noise_figures import (
 )
 from behavgen.report.offset_figures import offset_multiples
 from behavgen.report.reset_words import reset_sentence
-from behavgen.report.summary import (
-    Effect,
-    KeyNumber,
-    effects,
-    fit_sentences,
-    key_numbers,
-    middle_numbers,
-)
+from behavgen.report.scope import Effect, effects
+from behavgen.report.summary import fit_sentences
 from behavgen.report.symbol import draw_symbol
 from behavgen.report.tabulation import Table, fit_tables, parameter_table, source_table
 from behavgen.report.timing import draw_timing, timing_words
@@ -111,7 +107,7 @@ def _content(model: ComparatorModel, check: CheckReport | None) -> _Content:
         findings=findings(model, check),
         fit_sentences=fit_sentences(model),
         key_numbers=key_numbers(model.parameters),
-        middle_numbers=middle_numbers(model, reference, middle),
+        middle_numbers=middle_numbers(model, Bands(model), middle),
         middle=condition_words(middle),
         drawings=_drawings(model, reference),
         reset=reset_sentence(model, reference),
@@ -135,7 +131,7 @@ def _drawings(model: ComparatorModel, reference: Reference) -> _Drawings:
         delay_small=delay_multiples(delays) if delays else None,
         window=_window(model, reference),
         noise=standardised_s_curves(noise, reference),
-        noise_small=s_curve_multiples(noise, reference),
+        noise_small=s_curve_multiples(noise, reference, Bands(model)),
         offset=offset_multiples(model),
     )
 
@@ -154,7 +150,9 @@ def _window(model: ComparatorModel, reference: Reference) -> Figure | None:
         return None
     middle = middle_condition(model)
     windows = curves(model, reference, "window")
-    return window_figure(windows, middle) if windows else window_from_delay(model, reference, middle)
+    if windows:
+        return window_figure(windows, middle)
+    return window_from_delay(model, reference, middle)
 
 
 def _style_sheet() -> str:

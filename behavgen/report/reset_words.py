@@ -19,7 +19,7 @@ def reset_sentence(model: ComparatorModel, reference: Reference) -> str:
     found = [p for p in model.points if p.quantity == "reset" and len(p.y) > 0]
     if not found:
         value = si_text(float(reference.reset_delay()), "s")
-        return f"The reset state returns {value} after the reset edge; no table rows to compare with."
+        return f"The reset state returns {value} after the reset edge; no table rows tell more."
     table = np.concatenate([p.y for p in found])
     emitted = [float(reference.reset_delay(**reference_keywords(p.condition))) for p in found]
     model_s = np.repeat(emitted, [len(p.y) for p in found])

@@ -40,7 +40,8 @@ def _body() -> str:
 def _inputs(cell: Cell) -> str:
     pins = cell.pins
     text = _left_pin(pins.inp, 64.0) + _left_pin(pins.inn, 104.0)
-    text += '<text class="sign" x="109" y="68">+</text><text class="sign" x="109" y="108">−</text>'
+    text += '<text class="sign" x="109" y="68">+</text>'
+    text += '<text class="sign" x="109" y="108">&#8722;</text>'
     text += _clock(cell)
     return text + (_left_pin(pins.enable, _ENABLE_Y) if pins.enable else "")
 
@@ -66,7 +67,8 @@ def _outputs(cell: Cell) -> str:
 def _supplies(cell: Cell) -> str:
     pins, text = cell.pins, ""
     if pins.vdd:
-        text += f'<path class="wire" d="M150 {_TOP:g}V16"/>' + _name(pins.vdd, 150.0, 11.0, "middle")
+        text += f'<path class="wire" d="M150 {_TOP:g}V16"/>'
+        text += _name(pins.vdd, 150.0, 11.0, "middle")
     return text + (
         f'<path class="wire" d="M150 {_BOTTOM:g}v14"/>' + _name(pins.vss, 150.0, 184.0, "middle")
     )

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from behavgen.model import ComparatorModel, ConditionFit, Parameter, Source
 from behavgen.report.conditions import FIELD_TITLES, field_text, shared_words, varying_fields
 from behavgen.report.numbers import (
+    ABSENT,
     count_text,
     estimate_text,
     interval_text,
@@ -72,10 +73,10 @@ def _parameter_cells(parameter: Parameter) -> tuple[str, ...]:
     return (
         parameter.name,
         estimate_text(estimate, unit),
-        interval_text(estimate, unit) if known else "–",
-        percent_text(estimate.level) if known else "–",
-        parameter.description or "–",
-        parameter.source or "–",
+        interval_text(estimate, unit) if known else ABSENT,
+        percent_text(estimate.level) if known else ABSENT,
+        parameter.description or ABSENT,
+        parameter.source or ABSENT,
     )
 
 
@@ -116,7 +117,7 @@ def _fit_table(quantity: str, fits: Sequence[ConditionFit]) -> Table:
         Row(
             cells=(
                 *(field_text(fit.condition, name) for name in names),
-                *(text(fit) or "–" for _, text in measures),
+                *(text(fit) or ABSENT for _, text in measures),
                 count_text(fit.rows),
                 *(_estimate_cell(fit, name) for name in estimates),
             ),
@@ -140,12 +141,16 @@ def _percent(value: float | None) -> str:
     return "" if value is None else percent_text(value)
 
 
+def _p_value(value: float | None) -> str:
+    return "" if value is None else probability_text(value)
+
+
 _Measure = tuple[str, Callable[[ConditionFit], str]]
 _MEASURES: tuple[_Measure, ...] = (
     ("rms", lambda fit: _percent(fit.rms_relative)),
     ("worst", lambda fit: _percent(fit.worst_relative)),
     ("left out", lambda fit: _percent(fit.held_out_rms_relative)),
-    ("p\N{NON-BREAKING HYPHEN}value", lambda fit: "" if fit.goodness is None else probability_text(fit.goodness)),
+    ("p\N{NON-BREAKING HYPHEN}value", lambda fit: _p_value(fit.goodness)),
 )
 """Column title and its text for a fit; empty where it is not known."""
 
@@ -153,7 +158,7 @@ _MEASURES: tuple[_Measure, ...] = (
 def _estimate_cell(fit: ConditionFit, name: str) -> str:
     found = [p for p in fit.parameters if p.name == name]
     if not found:
-        return "–"
+        return ABSENT
     estimate, unit = found[0].estimate, found[0].unit
     if estimate.low is None or estimate.high is None:
         return estimate_text(estimate, unit)

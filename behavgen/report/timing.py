@@ -35,7 +35,10 @@ class Wave:
 def waves(cell: Cell) -> tuple[Wave, ...]:
     """Return the signals that the cell has, in the order of the drawing."""
     pins = cell.pins
-    found = [Wave(name=pins.clk, steps=_clock(cell)), Wave(name=pins.outp, steps=_output(cell, "1"))]
+    found = [
+        Wave(name=pins.clk, steps=_clock(cell)),
+        Wave(name=pins.outp, steps=_output(cell, "1")),
+    ]
     if pins.outn:
         found.append(Wave(name=pins.outn, steps=_output(cell, "0")))
     if pins.unresolved:

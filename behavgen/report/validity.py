@@ -7,7 +7,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from behavgen.model import Box, ComparatorModel, Range, Surface, Variant
-from behavgen.report.numbers import range_text, volts_range_text
+from behavgen.report.numbers import ABSENT, range_text, volts_range_text
 
 __all__ = ["ValidityCell", "ValidityRow", "validity_rows"]
 
@@ -97,7 +97,7 @@ def _cell(span: Range | None, ends: Range | None, name: str, quantity: str) -> V
     if span is not None:
         return ValidityCell(text=_words(span, name), bar=_bar(span, ends or span))
     if name == "overdrive_v" and quantity != "cell":
-        return ValidityCell(text="–", bar="")
+        return ValidityCell(text=ABSENT, bar="")
     return ValidityCell(text="not characterised" if quantity == "cell" else "no influence", bar="")
 
 
@@ -110,9 +110,7 @@ def _words(span: Range, name: str) -> str:
 def _bar(span: Range, ends: Range) -> str:
     """Draw a range inside the ends; overdrives, which span decades, by their logarithm."""
     if ends.low > 0.0 and ends.high / ends.low > 100.0:
-        span, ends = (
-            replace(r, low=math.log(r.low), high=math.log(r.high)) for r in (span, ends)
-        )
+        span, ends = (replace(r, low=math.log(r.low), high=math.log(r.high)) for r in (span, ends))
     width = ends.high - ends.low
     start = 100.0 * (span.low - ends.low) / width if width > 0.0 else 0.0
     length = 100.0 * (span.high - span.low) / width if width > 0.0 else 100.0

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 import numpy as np
+import numpy.typing as npt
 
 from behavgen.model import ComparatorModel, Condition
 from behavgen.reference import Reference
@@ -20,6 +21,8 @@ from behavgen.report.overlay import (
     overlay_panels,
     spotlights,
 )
+
+Floats = npt.NDArray[np.float64]
 
 __all__ = ["window_figure", "window_from_delay"]
 
@@ -46,9 +49,7 @@ def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
     return Figure(svg=draw_chart(chart), caption=caption, legend=overlay_legend(drawn, chosen))
 
 
-def window_from_delay(
-    model: ComparatorModel, reference: Reference, middle: Condition
-) -> Figure:
+def window_from_delay(model: ComparatorModel, reference: Reference, middle: Condition) -> Figure:
     """Return the window that the delay alone implies, at the middle of the range."""
     overdrive = drawn_overdrives(model)[::-1]
     time_s = reference.delay(overdrive)
@@ -60,14 +61,14 @@ def window_from_delay(
         panels=(Panel(x=x, y=y, layers=(Line(x=time_s, y=2.0 * overdrive),), height=250.0),),
     )  # fmt: skip
     caption = "No window table was given. The line is the emitted delay read the other way"
-    return Figure(svg=draw_chart(chart), caption=f"{caption}, at {where}." if where else caption + ".")
+    return Figure(svg=draw_chart(chart), caption=f"{caption}{', at ' + where if where else ''}.")
 
 
-def _time_axis(*times_s: np.ndarray) -> PlotAxis:
+def _time_axis(*times_s: Floats) -> PlotAxis:
     low, high = spanning(*times_s)
     return PlotAxis(label="Time after the decision edge", unit="s", low=low, high=high)
 
 
-def _window_axis(*windows_v: np.ndarray) -> PlotAxis:
+def _window_axis(*windows_v: Floats) -> PlotAxis:
     low, high = spanning(*windows_v, logarithmic=True)
     return PlotAxis(label="Unresolved window", unit="V", low=low, high=high, logarithmic=True)

@@ -56,10 +56,8 @@ class Vacask:
         """
         source = folder / "deck.sim"
         source.write_text(deck, encoding="utf-8")
-        command: list[str | Path] = [self.program, "--quiet-progress", "--skip-postprocess", source.name]
-        finished = run_logged(
-            command, log=folder / "deck.log", folder=folder, timeout_s=timeout_s
-        )
+        command: list[str | Path] = [self.program, "-qp", "-sp", source.name]
+        finished = run_logged(command, log=folder / "deck.log", folder=folder, timeout_s=timeout_s)
         if finished.code != 0:
             why = f"not done after {timeout_s:g} s" if finished.code is None else "failed"
             raise ToolError(Fault(file=str(source), what=f"VACASK {why}\n{finished.tail()}"))

@@ -6,7 +6,6 @@ from collections.abc import Iterable, Mapping
 
 import polars as pl
 
-from behavgen.quantities import Column
 from behavgen.tables.faults import TableFaults
 from behavgen.tables.headers import BoundColumn, Layout
 from behavgen.tables.limits import breaks_limits, breaks_order
@@ -69,8 +68,13 @@ def _read(
         name, column = bound.column.name, bound.column
         bad = texts[name].is_not_null() & read[name].is_null()
         lines = texts.filter(bad).select(LINE, name)
-        what = ((line, _reason(text, bound)) for line, text in lines.iter_rows())
-        faults.add_rows(shown, bound.header, what, lines.height, _allowed(lines[name], column))
+        has_digit = pl.col(name).str.contains("[0-9]")
+        for kind, hint in (
+            (lines.filter(has_digit), ""),
+            (lines.filter(~has_digit), "; list it in `failed` if it marks failed runs"),
+        ):
+            what = ((line, _reason(text, bound)) for line, text in kind.iter_rows())
+            faults.add_rows(shown, bound.header, what, kind.height, column.allowed + hint)
         if not column.may_be_empty:
             empty = texts.filter(texts[name].is_null())[LINE]
             what = ((line, "empty cell") for line in empty)
@@ -94,14 +98,6 @@ def _parsed(bound: BoundColumn) -> pl.Expr:
 def _looked_up(text: pl.Expr, meaning: Mapping[str, int] | Mapping[str, float]) -> pl.Expr:
     kind = pl.Int64 if all(isinstance(value, int) for value in meaning.values()) else pl.Float64
     return text.replace_strict([*meaning], [*meaning.values()], default=None, return_dtype=kind)
-
-
-def _allowed(texts: pl.Series, column: Column) -> str:
-    """Return what a cell may hold; words in place of numbers may stand for failed runs."""
-    words = texts.len() > 0 and not any(character.isdigit() for character in texts[0])
-    return (
-        f"{column.allowed}; list it in `failed` if it marks failed runs" * words or column.allowed
-    )
 
 
 def _reason(text: str, bound: BoundColumn) -> str:

@@ -117,15 +117,17 @@ def judge_lines(
     is_blank = pl.col("raw").str.strip_chars(" \t\r,").fill_null("") == ""
     odd = raw.filter(is_blank | (separators != expected - 1) | quoted).with_columns(blank=is_blank)
     suspects = odd.collect()
-    wrong = [
-        (line, what)
-        for line, text in suspects.filter(~pl.col("blank")).select(LINE, "raw").iter_rows()
-        if (what := _length_fault(text, expected))
-    ]
+    rows = suspects.filter(~pl.col("blank")).select(LINE, "raw").rows()
+    unclosed = [(line, "an unclosed quote") for line, text in rows if text.count('"') % 2]
+    closed = ((line, text) for line, text in rows if text.count('"') % 2 == 0)
+    wrong = [(line, what) for line, text in closed if (what := _length_fault(text, expected))]
+    faults.add_rows(shown, "", unclosed, len(unclosed), "quotes in pairs on each line")
     allowed = f"as many as the header on line {header.line} has"
     faults.add_rows(shown, "", wrong, len(wrong), allowed)
-    blank = suspects.filter("blank")[LINE].to_list()
-    return OddLines(blank=tuple(blank), wrong=tuple(line for line, _ in wrong))
+    return OddLines(
+        blank=tuple(suspects.filter("blank")[LINE].to_list()),
+        wrong=tuple(line for line, _ in (*unclosed, *wrong)),
+    )
 
 
 def check_encoding(path: Path, shown: str, faults: TableFaults) -> bool:
@@ -164,8 +166,6 @@ def _length_fault(line: str, expected: int) -> str:
     fields = next(csv.reader([line]))
     while len(fields) > expected and not fields[-1].strip():
         fields.pop()
-    if line.count('"') % 2:
-        return "a quote is opened and not closed on this line"
     if len(fields) == expected:
         return ""
     return f"{len(fields)} field{'s' if len(fields) != 1 else ''} instead of {expected}"

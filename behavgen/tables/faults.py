@@ -25,8 +25,10 @@ class TableFaults:
     def add(
         self, file: str, what: str, allowed: str = "", *, row: int | None = None, column: str = ""
     ) -> None:
-        """Note one fault."""
-        self._found.append(Fault(file=file, row=row, column=column, what=what, allowed=allowed))
+        """Note one fault, once."""
+        fault = Fault(file=file, row=row, column=column, what=what, allowed=allowed)
+        if fault not in self._found:
+            self._found.append(fault)
 
     def add_rows(
         self, file: str, column: str, rows: Iterable[tuple[int, str]], total: int, allowed: str = ""

@@ -10,6 +10,7 @@ from behavgen.project import TableSettings
 from behavgen.project_rules import condition_value
 from behavgen.quantities import CONDITIONS, CORNER, QUANTITIES, Column, Form, columns_of
 from behavgen.tables.faults import TableFaults
+from behavgen.tables.guess import guess_column
 from behavgen.units import Unit, UnitError, default_unit, find_unit, header_stem, unit_of_header
 
 __all__ = ["BoundColumn", "Layout", "lay_out"]
@@ -187,14 +188,13 @@ def _form_of(
     nearest = max(forms, key=lambda form: len(available.intersection(form.required)))
     missing = [name for name in nearest.required if name not in available]
     needed = "; or ".join(", ".join(form.required) for form in forms)
-    hint = "".join(
-        did_you_mean(missing[0], {header_stem(h): h for h in headers}) if missing else ""
-    )
+    likely = guess_column(columns_of(settings.quantity)[missing[0]], headers)
+    hint = f", is it '{likely}'?" if likely else ""
     faults.add(
         shown,
         f"no column for {', '.join(missing)}{hint}",
         f"{settings.quantity} needs {needed}; {_headers_found(headers)}; "
-        f'name them as in columns = {{ {missing[0]} = "header" }}',
+        f'name it as in columns = {{ {missing[0]} = "{likely or "header"}" }}',
     )
     return None
 
@@ -234,9 +234,9 @@ def _unused_notices(
     conditions = {column.name for column in (*CONDITIONS, CORNER)}
     missing = conditions - found.keys() - settings.at.keys()
     for index, header in enumerate(headers):
-        stem = header_stem(header).lower()
-        if index not in found.values() and stem in missing:
-            notices.append(f"{shown} column '{header}' is not used: is it {stem}?")
+        likely = [c.name for c in CONDITIONS if c.name in missing and guess_column(c, [header])]
+        if likely and index not in found.values():
+            notices.append(f"{shown} column '{header}' is not used; is it {likely[0]}?")
     return tuple(notices)
 
 

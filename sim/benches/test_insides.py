@@ -5,6 +5,7 @@ from __future__ import annotations
 import cocotb
 
 from behavgen.check.driver import Driver
+from behavgen.check.runs import MODES
 
 READABLE = ("x_cause", "decision_count", "overdrive_v", "delay_s")
 
@@ -29,3 +30,21 @@ async def the_insides_can_be_read(top) -> None:
         assert abs(ticks - expected.delay_ticks[0]) <= 1.0, (
             f"delay_s must be {expected.delay_ticks[0]} ticks, is {ticks}"
         )
+
+
+@cocotb.test()
+async def the_parameters_are_those_of_the_interface(top) -> None:
+    cell = Driver(top, "the insides can be read").cell
+    declared = top.as_declared
+    mode = MODES.index(cell.when_unresolved)
+    defaults = {
+        "OFFSET_SHIFT_V": 0.0, "NOISE_ON": 1, "MISMATCH_ON": 0, "MEMORY_ON": 1, "DELAY_ON": 1,
+        "SEED": 0, "TEMPERATURE_C": None, "PROCESS": None, "UNRESOLVED_MODE": mode,
+        "FORCE_UNRESOLVED_EVERY": 0, "WARNINGS": None,
+    }  # fmt: skip
+    missing = [name for name in defaults if not hasattr(declared, name)]
+    assert not missing, f"the module has no parameter {', '.join(missing)}"
+    for name, default in defaults.items():
+        value = getattr(declared, name).value
+        number = value if isinstance(value, float) else int(value)
+        assert default in (None, number), f"{name} must default to {default}, is {number}"

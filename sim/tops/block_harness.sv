@@ -1,6 +1,6 @@
 // One comparator under check with everything that plays stimulus to it and records what it shows.
 //
-// A run plays two files of big-endian 64-bit words side by side:
+// A run plays two files of the working folder side by side, in big-endian words of 64 bits:
 //   <index>.clock    pairs    ticks at the reset level, ticks at the deciding level
 //   <index>.inputs   fours    ticks to wait, then inp, inn and vdd as IEEE 754 doubles
 // and records every instant at which an output changed, after it has settled, as a line of
@@ -79,7 +79,6 @@ module block_harness #(
   wire [3:0] x_cause = 4'bxxxx;
 `endif
 
-  string folder;
   string record_name;
   int record;
   time recorded_at;
@@ -94,7 +93,6 @@ module block_harness #(
     inp = 0.0;
     inn = 0.0;
     vdd = 0.0;
-    if (!$value$plusargs("block_folder=%s", folder)) folder = ".";
     if ($value$plusargs("play=%d", played_alone) && played_alone == INDEX) begin
       #1 start = 1'b1;
       wait (done === 1'b1);
@@ -103,7 +101,7 @@ module block_harness #(
   end
 
   always @(posedge start) begin : open_record
-    $sformat(record_name, "%0s/%0d.events", folder, INDEX);
+    $sformat(record_name, "%0d.events", INDEX);
     record = $fopen(record_name, "w");
     recorded_at = $time;
     $fstrobe(record, "%20d%b%b%b%h", $time, outp, outn, unresolved, x_cause);
@@ -122,7 +120,7 @@ module block_harness #(
 
   always @(posedge start) begin : play_clock
     clk = ~`DECIDING;
-    $sformat(clock_name, "%0s/%0d.clock", folder, INDEX);
+    $sformat(clock_name, "%0d.clock", INDEX);
     clock_file = $fopen(clock_name, "rb");
     while ($fread(phases, clock_file) == 16) begin
       #(phases[127:64]) clk = `DECIDING;
@@ -137,7 +135,7 @@ module block_harness #(
   logic [255:0] levels;
 
   always @(posedge start) begin : play_inputs
-    $sformat(inputs_name, "%0s/%0d.inputs", folder, INDEX);
+    $sformat(inputs_name, "%0d.inputs", INDEX);
     inputs_file = $fopen(inputs_name, "rb");
     while ($fread(levels, inputs_file) == 32) begin
       #(levels[255:192]);

@@ -59,6 +59,8 @@ def test_drift_between_levels_is_seen_and_covered() -> None:
     assert np.mean(found.overdispersion > 1.0) > 0.99
     offset = (found.offset_low_v < 0.0) & (found.offset_high_v > 0.0)
     assert np.mean(offset) > 0.92
+    # So must the errors that other fits take as weights: binomial ones are a twenty-eighth of it.
+    assert np.mean(found.offset_error_v**2) == pytest.approx(found.offset_v.var(), rel=0.3)
     plain_error = found.offset_error_v / np.sqrt(found.overdispersion)
     assert np.mean(np.abs(found.offset_v) < 1.96 * plain_error) < 0.6
 

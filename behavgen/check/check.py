@@ -1,0 +1,206 @@
+"""Hold an emitted SystemVerilog text against the reference: the whole check of one cell."""
+
+from __future__ import annotations
+
+import hashlib
+import os
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, replace
+from itertools import chain
+from pathlib import Path
+from tempfile import TemporaryDirectory
+
+from behavgen.check.bench_files import MODEL_NAME, read_agreement, write_expectation
+from behavgen.check.bench_results import Suite, bench_results, summarise
+from behavgen.check.directed import BENCH_MODULES, directed_runs
+from behavgen.check.disagreements import describe_disagreements
+from behavgen.check.fatal import fatal_results, fatal_run, fatal_stimulus
+from behavgen.check.harness import harness_macros, top_text, write_stimulus
+from behavgen.check.results_file import results_xml
+from behavgen.check.runs import Run, Session, plan_sessions
+from behavgen.check.simulation import CompiledCheck, share_out, simulate_sessions
+from behavgen.check.stimulus import Stimulus, make_stimulus
+from behavgen.check.strata import PlayedRun, count_strata
+from behavgen.check.verdict import BenchResult, CheckReport, Disagreement, dump_report
+from behavgen.check.waveform import Expectation, expect
+from behavgen.emit.emitted_file import EmittedFile
+from behavgen.model import ComparatorModel, dump_model
+from behavgen.simulators.icarus import find_icarus
+
+__all__ = ["check"]
+
+
+def check(
+    model: ComparatorModel,
+    systemverilog: EmittedFile,
+    *,
+    folder: Path,
+    seed: int = 1,
+    jobs: int = 2,
+    progress: Callable[[str], None] | None = None,
+) -> CheckReport:
+    """Simulate an emitted text and compare it with the reference, decision by decision.
+
+    Writes ``check.json``, ``results.xml`` and the simulations' logs to the
+    folder ``check`` under `folder`.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+    systemverilog : EmittedFile
+        Its text declares the cell's module; it need not be an emitted one.
+    folder : Path
+        The cell's output folder.
+    seed : int
+        Varies the stimulus; the same seed gives the same check.
+    jobs : int
+        Simulations that run at the same time.
+    progress : callable or None
+        Is told in words what happens now.
+
+    Returns
+    -------
+    CheckReport
+        A disagreement is a verdict in it, not an exception.
+
+    Raises
+    ------
+    ToolError
+        When the simulator is missing or too old.
+    """
+    icarus = find_icarus()
+    tell = progress or (lambda _: None)
+    logs = (folder / "check").absolute()
+    logs.mkdir(parents=True, exist_ok=True)
+    with TemporaryDirectory(prefix="behavgen-check-") as work:
+        simulation = CompiledCheck(icarus=icarus, work=Path(work).resolve(), logs=logs)
+        found = _simulated(model, systemverilog.text, simulation, seed, jobs, tell)
+    report = _report(model, systemverilog.text, icarus.version, found)
+    _write_whole(logs / "results.xml", results_xml(model.cell.name, found.suites))
+    _write_whole(logs / "check.json", dump_report(report))
+    return report
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Plan:
+    """Everything that is simulated."""
+
+    sessions: tuple[Session, ...]
+    fatal: Run
+
+    @property
+    def runs(self) -> tuple[Run, ...]:
+        return (*(run for session in self.sessions for run in session.runs), self.fatal)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class _Found:
+    """Everything that came of it."""
+
+    suites: tuple[Suite, ...]
+    played: tuple[PlayedRun, ...] = ()
+    disagreements: tuple[Disagreement, ...] = ()
+
+
+def _planned(model: ComparatorModel, seed: int, jobs: int) -> _Plan:
+    """Give the directed benches to the shortest session."""
+    blocks, *others, last = plan_sessions(model, seed=seed)
+    used = len(blocks.runs) + len(others) + 1
+    directed = directed_runs(model, first_index=used)
+    last = replace(last, runs=last.runs + directed, benches=last.benches + BENCH_MODULES)
+    return _Plan(
+        sessions=(*share_out(blocks, jobs), *others, last),
+        fatal=fatal_run(model, index=used + len(directed)),
+    )
+
+
+def _simulated(
+    model: ComparatorModel,
+    text: str,
+    simulation: CompiledCheck,
+    seed: int,
+    jobs: int,
+    tell: Callable[[str], None],
+) -> _Found:
+    plan = _planned(model, seed, jobs)
+    tell("compiling")
+    top, macros = top_text(model, plan.runs), harness_macros(model, text)
+    compiled = simulation.compile(model.cell.name, text, top, macros)
+    if compiled.code != 0:
+        name, message = "the text compiles", f"compile.log ends with:\n{compiled.tail()}"
+        return _Found(suites=(("compile", BenchResult(name=name, passed=False, message=message)),))
+    blocks = {
+        run.index: make_stimulus(model, run, seed=seed)
+        for run in plan.runs
+        if run.decisions and run is not plan.fatal
+    }
+    tell(f"simulating {sum(len(block.edge) for block in blocks.values())} decisions")
+    expected = _write_blocks(model, plan, blocks, simulation.work)
+    outcomes = simulate_sessions(simulation, plan.sessions, jobs=jobs)
+    suites = [*bench_results(model, outcomes)]
+    suites += [("fatal", one) for one in fatal_results(simulation, model, plan.fatal)]
+    tell("comparing")
+    played = tuple(_played(plan, blocks, expected, simulation.work))
+    described = [describe_disagreements(model, one, simulation.work) for one in played]
+    return _Found(suites=tuple(suites), played=played, disagreements=tuple(chain(*described)))
+
+
+def _write_blocks(
+    model: ComparatorModel, plan: _Plan, blocks: dict[int, Stimulus], work: Path
+) -> dict[int, Expectation]:
+    """Write what the simulations read; return what each run must show."""
+    expected = {}
+    for run in plan.runs:
+        if run.index in blocks:
+            write_stimulus(work, run, blocks[run.index])
+            expected[run.index] = expect(model, run, blocks[run.index])
+            write_expectation(work, run.index, expected[run.index])
+    write_stimulus(work, plan.fatal, fatal_stimulus(model, plan.fatal))
+    (work / MODEL_NAME).write_text(dump_model(model), encoding="utf-8")
+    return expected
+
+
+def _played(
+    plan: _Plan, blocks: dict[int, Stimulus], expected: dict[int, Expectation], work: Path
+) -> Iterator[PlayedRun]:
+    """Return the runs that their benches have compared, in the order of the plan."""
+    for run in sorted(plan.runs, key=lambda run: run.index):
+        agreement = read_agreement(work, run.index)
+        if agreement is not None:
+            yield PlayedRun(
+                run=run, stimulus=blocks[run.index], expected=expected[run.index],
+                agreement=agreement,
+            )  # fmt: skip
+
+
+def _report(model: ComparatorModel, text: str, simulator: str, found: _Found) -> CheckReport:
+    strata = count_strata(model, found.played) if found.played else ()
+    benches = summarise(found.suites)
+    agreements = [one.agreement for one in found.played]
+    wrong = sum(int((a.fault != 0).sum()) for a in agreements)
+    sound = all(bench.passed for bench in benches) and not any(s.short for s in strata)
+    return CheckReport(
+        cell=model.cell.name,
+        passed=sound and wrong == 0 and bool(strata),
+        simulator=simulator,
+        model_sha256=_sha256(dump_model(model)),
+        emitted_sha256=_sha256(text),
+        decisions=sum(int(a.compared.sum()) for a in agreements),
+        strata=strata,
+        benches=benches,
+        disagreements=found.disagreements,
+        disagreement_count=wrong,
+        worst_delay_ticks=max((int(abs(a.delay_error).max()) for a in agreements), default=0),
+        excluded=sum(int((~a.compared).sum()) for a in agreements),
+    )
+
+
+def _sha256(text: str) -> str:
+    return hashlib.sha256(text.encode("utf-8")).hexdigest()
+
+
+def _write_whole(path: Path, text: str) -> None:
+    """Write a file whole or not at all."""
+    temporary = path.with_name(f"{path.name}.part")
+    temporary.write_text(text, encoding="utf-8")
+    os.replace(temporary, path)
