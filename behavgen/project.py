@@ -185,11 +185,8 @@ def _syntax_fault(message: str, name: str, text: str) -> Fault:
     place = re.search(r"\(at (?:line (\d+), column \d+|end of document)\)", message)
     row = int(place[1]) if place and place[1] else text.count("\n") + 1 if place else None
     reason = message[: place.start()].strip() if place else message
-    twice = re.fullmatch(r"Cannot (?:declare|mutate|overwrite) ?(?:\((.*)\)|a value)?.*", reason)
-    if twice:
-        parts = re.findall(r"'([^']*)'", twice[1] or "")
-        key = ".".join(parts) if parts else "a key"
-        return Fault(
-            file=name, row=row, what=f"{key} is given twice", allowed="one entry for each name"
-        )
+    if reason.startswith(("Cannot declare", "Cannot overwrite", "Cannot mutate")):
+        key = text.splitlines()[row - 1].partition("=")[0].strip("[] \t") if row else "a key"
+        allowed = "one entry for each name"
+        return Fault(file=name, row=row, column=key, what="given twice", allowed=allowed)
     return Fault(file=name, row=row, what=f"not valid TOML: {reason}")

@@ -88,7 +88,7 @@ def _cells(
     faults: ProjectFaults,
 ) -> tuple[CellSettings, ...]:
     described = _table(content, ("cells",), faults)
-    if not described:
+    if not content.get("cells"):
         faults.add(("cells",), "no cell", "describe at least one under [cells.NAME]")
     check_cell_names(described, faults)
     built = (

@@ -5,7 +5,7 @@ Every rule adds to the faults found so far instead of stopping at the first.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Collection, Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
@@ -127,21 +127,23 @@ def named_pins(
             pins[pin] = name
             if reason := pin_fault(name):
                 faults.add(where, reason)
-    _check_pins_differ(pins, path, faults)
+    _check_pins_differ(pins, wanted, path, faults)
     return pins
 
 
 def _check_pins_differ(
-    pins: Mapping[str, str | None], path: KeyPath, faults: ProjectFaults
+    pins: Mapping[str, str | None],
+    wanted: Collection[str],
+    path: KeyPath,
+    faults: ProjectFaults,
 ) -> None:
+    """See that no two pins are alike, and blame one that the user has named."""
     owner: dict[str, str] = {}
-    for pin, name in pins.items():
+    for pin in sorted(pins, key=lambda pin: pin in wanted):
+        name = pins[pin]
         if name is not None and owner.setdefault(name, pin) != pin:
-            faults.add(
-                (*path, pin),
-                f"'{name}' names '{owner[name]}' too",
-                "a name of its own for each pin",
-            )
+            allowed = "a name of its own for each pin"
+            faults.add((*path, pin), f"'{name}' names '{owner[name]}' too", allowed)
 
 
 def check_defaults(part: DefaultsPart, path: KeyPath, faults: ProjectFaults) -> None:

@@ -5,6 +5,10 @@ Imported only when a project file is read, since pydantic is slow to load.
 
 from __future__ import annotations
 
+import copy
+import functools
+import json
+import operator
 import re
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from typing import Annotated, Any, Literal, TypeVar
@@ -122,7 +126,10 @@ KeyPath = tuple[str | int, ...]
 def checked(
     part: type[AnyPart], raw: Mapping[str, Any], add: Callable[[KeyPath, str, str], None]
 ) -> AnyPart | None:
-    """Return the part if its shape is right, else report every fault.
+    """Return the part, having reported every fault of its shape.
+
+    Where there are faults the part comes without what is faulty, so that the
+    rules on names and values can judge the rest as well.
 
     Parameters
     ----------
@@ -132,14 +139,35 @@ def checked(
         As tomllib gave it.
     add : callable
         Takes the path inside the part, what was found, and what is allowed.
+
+    Returns
+    -------
+    AnyPart or None
+        None when nothing of it can be used.
     """
     try:
         return part.model_validate(dict(raw))
     except ValidationError as error:
-        for details in error.errors():
-            location = tuple(details["loc"])
-            add(location, *_in_words(details, part.model_fields))
+        faults = error.errors()
+    for details in faults:
+        add(tuple(details["loc"]), *_in_words(details, part.model_fields))
+    try:
+        return part.model_validate(_without(raw, faults))
+    except ValidationError:
         return None
+
+
+def _without(raw: Mapping[str, Any], faults: Iterable[Mapping[str, Any]]) -> dict[str, Any]:
+    """Return a copy that lacks what is faulty, and has a stand-in for what is missing."""
+    pruned = copy.deepcopy(dict(raw))
+    for details in reversed([*faults]):
+        *path, last = details["loc"]
+        holder = functools.reduce(operator.getitem, path, pruned)
+        if details["type"] == "missing":
+            holder[last] = "?"  # every required key holds a text
+        else:
+            del holder[last]
+    return pruned
 
 
 def _in_words(details: Mapping[str, Any], known: Iterable[str]) -> tuple[str, str]:
@@ -149,14 +177,23 @@ def _in_words(details: Mapping[str, Any], known: Iterable[str]) -> tuple[str, st
         "extra_forbidden": lambda: _unknown_key(str(details["loc"][-1]), sorted(known)),
         "missing": lambda: ("missing", "this key is required"),
         "literal_error": lambda: _unknown_word(str(found), context["expected"]),
-        "value_error": lambda: (f"{found!r}: {context['error']}", ""),
+        "value_error": lambda: (_with_value(found, str(context["error"])), ""),
         "string_too_short": lambda: ("empty text", "a name is needed here"),
-        "greater_than": lambda: (f"{found!r}", f"above {context['gt']:g}"),
-        "greater_than_equal": lambda: (f"{found!r}", f"at least {context['ge']:g}"),
+        "greater_than": lambda: (_shown(found), f"above {context['gt']:g}"),
+        "greater_than_equal": lambda: (_shown(found), f"at least {context['ge']:g}"),
     }
     if kind in words:
         return words[kind]()
-    return f"{found!r}", _NEEDED.get(kind, details["msg"])
+    return _shown(found), _NEEDED.get(kind, details["msg"])
+
+
+def _shown(value: object) -> str:
+    """Write a value as it stands in the project file."""
+    return f"'{value}'" if isinstance(value, str) else json.dumps(value, default=str)
+
+
+def _with_value(value: object, reason: str) -> str:
+    return reason if str(value) in reason else f"{_shown(value)}: {reason}"
 
 
 def _unknown_key(name: str, known: Sequence[str]) -> tuple[str, str]:

@@ -66,24 +66,17 @@ class Column:
     @property
     def allowed(self) -> str:
         """What a cell may hold, for messages."""
+        empty = ", or empty" if self.may_be_empty else ""
         if self.is_text:
             return "a name"
         if self.unit == "K":
             return "a temperature above absolute zero"
         if self.whole and (self.at_least, self.at_most) == (0, 1):
-            return "0 or 1"
+            return f"0 or 1{empty}"
         kind = "a whole number" if self.whole else "a number"
         unit = "" if self.unit == "1" else f" in {self.unit}"
-        limits = [
-            text
-            for text, limit in (
-                (f"above {self.above:g}", self.above),
-                (f"at least {self.at_least:g}", self.at_least),
-                (f"at most {self.at_most:g}", self.at_most),
-            )
-            if math.isfinite(limit)
-        ]
-        empty = ", or empty" if self.may_be_empty else ""
+        words = {"above": self.above, "at least": self.at_least, "at most": self.at_most}
+        limits = [f"{word} {limit:g}" for word, limit in words.items() if math.isfinite(limit)]
         return " ".join([kind + unit, " and ".join(limits)]).strip() + empty
 
 

@@ -30,9 +30,9 @@ def key_lines(text: str) -> dict[KeyPath, int]:
             if header[1] == "[[":
                 elements[section] = elements.get(section, -1) + 1
                 section = (*section, elements[section])
-            lines.setdefault(section, number)
+            _note(section, number, lines)
         elif key := _KEY.match(line):
-            lines.setdefault((*section, *_parts(key[1])), number)
+            _note((*section, *_parts(key[1])), number, lines)
     return lines
 
 
@@ -42,6 +42,12 @@ def line_of(path: KeyPath, lines: dict[KeyPath, int]) -> int | None:
         if path[:end] in lines:
             return lines[path[:end]]
     return None
+
+
+def _note(path: KeyPath, number: int, lines: dict[KeyPath, int]) -> None:
+    """Note the line of a path and of all that it brings into being."""
+    for end in range(1, len(path) + 1):
+        lines.setdefault(path[:end], number)
 
 
 def _parts(dotted: str) -> tuple[str, ...]:

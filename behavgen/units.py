@@ -205,7 +205,7 @@ def parse_si(text: str, dimension: str, unit: Unit | None = None) -> float:
     if found is None and suffix in SI_PREFIXES:
         raise UnitError(f"'{text.strip()}' has a prefix of its own beside the unit {plain.text}")
     if found is None:
-        raise UnitError(f"'{text.strip()}' is not a number; {_examples(dimension)}")
+        raise UnitError(f"{_not_a_number(text)}; {_examples(dimension)}")
     # Scaling the text instead of the float gives the float nearest to what was written.
     value = float(f"{mantissa}e{int(exponent or 0) + found.power}") + found.shift
     if not math.isfinite(value):

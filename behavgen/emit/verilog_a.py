@@ -1,23 +1,29 @@
 """ComparatorModel -> the continuous Verilog-A file.
 
 The latch is a differential equation in the logarithm of its imbalance. There
-regeneration is a straight line of slope ``1/tau`` from any overdrive on, so
-that decades of overdrive cost neither accuracy nor time steps, and a balanced
-input rests at the unstable zero. Where the line starts carries the delay law.
+regeneration is a straight line of slope ``1/tau`` whatever the overdrive, so
+that decades of it cost neither accuracy nor time steps, and a balanced input
+rests at the unstable zero. Where the line starts carries the delay law.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import pairwise
 
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.emit.literals import comment_text, real_literal, string_literal
 from behavgen.emit.module_parameters import ModuleParameter, module_parameters
 from behavgen.emit.provenance import HeaderSection, header_lines, header_sections
 from behavgen.emit.templating import render
-from behavgen.emit.verilog_a_surfaces import Statements, declaration, surface_statements
-from behavgen.model import Cell, ComparatorModel, DelayEffect, Surface
+from behavgen.emit.verilog_a_surfaces import (
+    Statements,
+    declaration,
+    surface_statements,
+    wrapped,
+)
+from behavgen.model import Cell, ComparatorModel, Surface
 
 __all__ = ["verilog_a"]
 
@@ -25,8 +31,8 @@ _SHARED_PARAMETERS = {
     "OFFSET_SHIFT_V", "NOISE_ON", "MEMORY_ON", "DELAY_ON", "TEMPERATURE_C", "PROCESS",
 }  # fmt: skip
 _LARGEST_Z = 10.0
-_NO_SUPPLY_V = 1.0
-_FLOOR_V = 1e-15
+_SUPPLY_WHEN_UNKNOWN_V = 1.0
+_FLOOR_WITHOUT_DELAY_V = 1e-15
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -38,7 +44,7 @@ class _Port:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _Parameter:
-    attributes: str
+    attributes: tuple[str, ...]
     declaration: str
 
 
@@ -48,51 +54,216 @@ class _Output:
     level: str
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Node:
-    """Names of what the text says about a node of the delay law, and its overdrive."""
-
-    number: int
-    overdrive_v: str
-
-    @property
-    def delay(self) -> str:
-        return f"delay_{self.number}_s"
-
-    @property
-    def slope(self) -> str:
-        return f"slope_{self.number}_s"
-
-    @property
-    def log(self) -> str:
-        return f"ln(NODE_{self.number}_V)"
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Segment:
-    left: _Node
-    right: _Node
-
-    @property
-    def secant(self) -> str:
-        return f"secant_{self.left.number}_s"
-
-    @property
-    def width(self) -> str:
-        return f"({self.right.log} - {self.left.log})"
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Slope:
-    """The slope at a node: of the parabola, and the secants that limit it."""
-
-    name: str
-    parabola: str
-    left: str
-    right: str
-
-
 def verilog_a(model: ComparatorModel) -> EmittedFile:
     """Return ``<cell>.va``; the same model gives the same bytes."""
-    cell, pins = model.cell, model.cell.pins
-    ...
+    cell = model.cell
+    values = surface_statements(dict(_surfaces(model)), model.processes)
+    numbers = range(1, len(model.delay.nodes) + 1) if model.delay else range(0)
+    text = render(
+        "verilog_a/continuous.va",
+        cell=cell,
+        pins=cell.pins,
+        in_reset=cell.in_reset,
+        description=comment_text(cell.description),
+        header=header_lines(_header(model)),
+        ports=tuple(_ports(cell)),
+        parameters=tuple(map(_parameter, _parameters(model))),
+        declarations=tuple(_declarations(model, values)),
+        supply=f"V({cell.pins.vdd}, {cell.pins.vss})" if cell.pins.vdd else "SUPPLY_V",
+        clock=_clock(cell),
+        on=" * ".join(_on(cell)),
+        conditions=values.conditions,
+        values=values.lines,
+        has_delay=model.delay is not None,
+        has_noise=model.noise is not None,
+        has_reset=model.reset is not None,
+        overdrive=_overdrive(model),
+        floor_v=real_literal(model.delay.floor_v if model.delay else _FLOOR_WITHOUT_DELAY_V),
+        node_overdrives_v=_node_overdrives(model),
+        segments=tuple(pairwise(numbers)),
+        triples=tuple(zip(numbers, numbers[1:], numbers[2:], strict=False)),
+        outputs=tuple(_outputs(cell)),
+    )
+    return EmittedFile(path=f"{cell.name}.va", text=text)
+
+
+def _surfaces(model: ComparatorModel) -> Iterator[tuple[str, Surface]]:
+    """Name the variables that a condition gives values to, in the order of a decision."""
+    if model.offset is not None:
+        yield "offset_v", model.offset.surface
+    if model.mismatch is not None:
+        for k, component in enumerate(model.mismatch.components):
+            yield f"mismatch_{k}_v", component
+    if model.noise is not None:
+        yield "sigma_v", model.noise.surface
+    if model.delay is not None:
+        yield "tau_s", model.delay.tau
+        for number, node in enumerate(model.delay.nodes, start=1):
+            yield f"delay_{number}_s", node
+    if model.reset is not None:
+        yield "reset_s", model.reset.surface
+
+
+def _declarations(model: ComparatorModel, values: Statements) -> Iterator[str]:
+    """Declare the variables, in the order in which they get their values."""
+    on = ["on"] if any(_on(model.cell)) else []
+    conditions = [name for name in ("temperature_k", "vcm_v") if name in values.conditions]
+    yield from declaration(
+        ["supply_v", "supply_scale_v", "clock", *on, "decide", "track", *conditions]
+    )
+    yield from declaration(values.coordinates)
+    yield from declaration(values.variables)
+    nominal = [name for name in ("tau_s", "reset_s") if name not in values.variables]
+    yield from declaration([*nominal, "regeneration_s", *(["filter_s"] if model.noise else [])])
+    yield from declaration(["overdrive_v", "magnitude_v", *_law_variables(model), "start"])
+    yield from declaration(["pending", "state", "growth", "one", "zero", "unresolved", "shown"])
+    yield from declaration(output.level for output in _outputs(model.cell))
+
+
+def _law_variables(model: ComparatorModel) -> list[str]:
+    nodes = len(model.delay.nodes) if model.delay else 0
+    if nodes < 2:
+        return []
+    slopes = [f"slope_{i}_s" for i in range(1, nodes + 1)]
+    return ["log_v", *(["secant_s"] if nodes == 2 else []), *slopes, "delay_s"]
+
+
+def _ports(cell: Cell) -> Iterator[_Port]:
+    pins = cell.pins
+    candidates = (
+        (pins.inp, "input", "input, positive"),
+        (pins.inn, "input", "input, negative"),
+        (pins.clk, "input", f"clock, decides at its {cell.decides_on} edge"),
+        (pins.enable, "input", "off unless above half the supply"),
+        (pins.outp, "output", "decision"),
+        (pins.outn, "output", "its complement"),
+        (pins.vdd, "inout", "supply"),
+        (pins.vss, "inout", "ground that all levels refer to"),
+    )
+    for name, direction, meaning in candidates:
+        if name is not None:
+            yield _Port(name=name, direction=direction, meaning=meaning)
+
+
+def _parameters(model: ComparatorModel) -> Iterator[ModuleParameter]:
+    yield from (p for p in module_parameters(model) if p.name in _SHARED_PARAMETERS)
+    components = model.mismatch.components if model.mismatch else ()
+    for k in range(len(components)):
+        yield ModuleParameter(
+            name=f"MISMATCH_Z{k}", kind="real", default=0.0, low=-_LARGEST_Z, high=_LARGEST_Z,
+            description=f"mismatch component {k} of this instance, in sigmas",
+        )  # fmt: skip
+    if model.cell.pins.vdd is None:
+        span = model.box.vdd_v
+        yield ModuleParameter(
+            name="SUPPLY_V", kind="real", unit="V", low=0.0,
+            default=round(span.middle, 9) if span else _SUPPLY_WHEN_UNKNOWN_V, description="supply",
+        )  # fmt: skip
+    yield ModuleParameter(
+        name="OUTPUT_OHM", kind="real", default=100.0, unit="ohm", low=1e-3,
+        description="resistance of each output",
+    )  # fmt: skip
+
+
+def _parameter(parameter: ModuleParameter) -> _Parameter:
+    """Write a parameter; simulators that tell model from instance take it at either."""
+    note = parameter.note
+    if parameter.name == "TEMPERATURE_C":
+        note = f"{note}; unless given, the circuit's temperature"
+    attributes = [f"desc = {string_literal(note)}", 'type = "instance"']
+    if parameter.unit:
+        attributes.insert(1, f'units = "{parameter.unit}"')
+    kind = "real" if parameter.kind == "real" else "integer"
+    default = real_literal(parameter.default) if kind == "real" else f"{parameter.default:d}"
+    return _Parameter(
+        attributes=wrapped(f"(* {', '.join(attributes)} *)"),
+        declaration=f"parameter {kind} {parameter.name} = {default}{_range(parameter)};",
+    )
+
+
+def _range(parameter: ModuleParameter) -> str:
+    if parameter.codes:
+        codes = sorted(code for code, _ in parameter.codes)
+        gaps = sorted(set(range(codes[0], codes[-1])) - set(codes))
+        return f" from [{codes[0]}:{codes[-1]}]" + "".join(f" exclude {gap}" for gap in gaps)
+    if parameter.low is None:
+        return ""
+    high = "inf)" if parameter.high is None else f"{real_literal(parameter.high)}]"
+    return f" from [{real_literal(parameter.low)}:{high}"
+
+
+def _clock(cell: Cell) -> str:
+    level = f"V({cell.pins.clk}, {cell.pins.vss})"
+    return (
+        f"{level} - 0.5 * supply_v" if cell.decides_on == "rising" else f"0.5 * supply_v - {level}"
+    )
+
+
+def _on(cell: Cell) -> Iterator[str]:
+    """Return the factors that are 1 while the cell works and 0 while it is off."""
+    pins = cell.pins
+    if pins.vdd is not None and cell.supply_off_v is not None:
+        yield f"step(supply_v / {real_literal(cell.supply_off_v)} - 1.0, 0.01)"
+    if pins.enable is not None:
+        yield f"step(V({pins.enable}, {pins.vss}) / supply_scale_v - 0.5, 0.02)"
+
+
+def _node_overdrives(model: ComparatorModel) -> tuple[str, ...]:
+    return tuple(map(real_literal, model.delay.node_overdrive_v)) if model.delay else ()
+
+
+def _overdrive(model: ComparatorModel) -> tuple[str, ...]:
+    pins = model.cell.pins
+    vdiff = "V(sampled)" if model.noise else f"V({pins.inp}, {pins.inn})"
+    trip_point = "(offset_v + OFFSET_SHIFT_V)" if model.offset else "OFFSET_SHIFT_V"
+    components = model.mismatch.components if model.mismatch else ()
+    drawn = "".join(f" - mismatch_{k}_v * MISMATCH_Z{k}" for k in range(len(components)))
+    return wrapped(f"overdrive_v = {vdiff} - {trip_point}{drawn};")
+
+
+def _outputs(cell: Cell) -> Iterator[_Output]:
+    yield _Output(pin=cell.pins.outp, level="level_p")
+    if cell.pins.outn is not None:
+        yield _Output(pin=cell.pins.outn, level="level_n")
+
+
+def _header(model: ComparatorModel) -> Iterator[HeaderSection]:
+    for section in header_sections(model):
+        if section.title == "Caution":
+            unlike = tuple(_unlike(model))
+            yield HeaderSection(title="Unlike the event-driven models", lines=unlike)
+        yield section
+
+
+def _unlike(model: ComparatorModel) -> Iterator[str]:
+    yield (
+        "conditions act at any time, on the start of a decision while the input is followed and "
+        "on tau until it is done; there they are taken at the clock edge"
+    )
+    follows = "tau/20" if model.noise is None else "tau/2, its low-pass for noise, and tau/20"
+    yield f"the latch follows its input with {follows}, and lets go when the clock is at 46 %"
+    if model.noise is not None:
+        yield (
+            "noise acts in noise analysis, where V(sampled) integrates to sigma, and in "
+            "transient analysis with noise; there is no seed"
+        )
+    if model.mismatch is not None:
+        yield "mismatch enters as parameters MISMATCH_Z, independent standard normal numbers"
+    yield (
+        "outputs are voltages behind OUTPUT_OHM that follow the supply, half of it apart after "
+        "the delay; inputs draw no current, and the supply gives none"
+    )
+    yield (
+        "an unresolved output rests at half the supply from the end of the decision phase until "
+        "the reset state returns; there is neither X nor coin"
+    )
+    yield (
+        "a latch not yet reset decides as before: reset for 1.6 reset delays and tau/2, and "
+        "start a simulation in reset"
+    )
+    yield (
+        "delays are no shorter than tau/4, and a hundredth with DELAY_ON = 0; a reset delay that "
+        "was not characterised is tau/4"
+    )
+    if any(_on(model.cell)):
+        yield "a cell switched on in a decision phase decides then"

@@ -6,6 +6,7 @@ coefficients stand in the statements.
 
 from __future__ import annotations
 
+import re
 import textwrap
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
@@ -14,15 +15,17 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.emit.literals import comment_text, real_literal
+from behavgen.emit.surface_text import horner_text
 from behavgen.formulas.polynomial import dense_coefficients
 from behavgen.model import Axis, Process, Range, Surface, Variant
 
-__all__ = ["Statements", "declaration", "surface_statements"]
+__all__ = ["Statements", "declaration", "surface_statements", "wrapped"]
 
-_WIDTH = 96
+_WIDTH = 94
+_TIE = "\0"
 _COORDINATES = {"temperature_k": "x_temperature", "vdd_v": "x_supply", "vcm_v": "x_common"}
 _VARIABLES = {"temperature_k": "temperature_k", "vdd_v": "supply_v", "vcm_v": "vcm_v"}
-_SHAPES = {"plain": "{}", "reciprocal": "1.0/{}", "reciprocal_square": "1.0/pow({}, 2.0)"}
+_SHAPES = {"plain": "{}", "reciprocal": "1.0 / {}", "reciprocal_square": "1.0 / pow({}, 2.0)"}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -50,7 +53,17 @@ class Statements:
 def declaration(names: Iterable[str]) -> tuple[str, ...]:
     """Return lines that declare real variables; none for no names."""
     text = ", ".join(names)
-    return tuple(textwrap.wrap(f"real {text};", _WIDTH, subsequent_indent="  ")) if text else ()
+    return wrapped(f"real {text};") if text else ()
+
+
+def wrapped(statement: str) -> tuple[str, ...]:
+    """Break a statement into lines of at most 94 columns, after commas and before + and -."""
+    tied = re.sub(r" ([*/]) ", rf"{_TIE}\1{_TIE}", statement)
+    tied = re.sub(r"([-+=]) ", rf"\1{_TIE}", tied)
+    lines = textwrap.wrap(
+        tied, _WIDTH, subsequent_indent="  ", break_long_words=False, break_on_hyphens=False
+    )
+    return tuple(line.replace(_TIE, " ") for line in lines)
 
 
 def surface_statements(
@@ -80,13 +93,13 @@ def surface_statements(
 
 
 def _choice(processes: tuple[Process, ...], branches: list[list[str]]) -> Iterator[str]:
-    yield "case (PROCESS)"
+    """Choose by if and else: a compiler in wide use breaks down on some case statements."""
     for process, branch in zip(processes, branches, strict=True):
-        label = "default" if process is processes[-1] else str(process.code)
-        yield f"  {label}: begin  // {comment_text(process.name)}"
-        yield from (f"    {line}" for line in branch)
-        yield "  end"
-    yield "endcase"
+        first, last = process is processes[0], process is processes[-1]
+        test = "" if last else f"if (PROCESS == {process.code}) "
+        yield f"{'' if first else 'end else '}{test}begin  // {comment_text(process.name)}"
+        yield from (f"  {line}" for line in branch)
+    yield "end"
 
 
 def _branch(surfaces: Mapping[str, Surface], process: Process) -> Iterator[str]:
@@ -102,10 +115,7 @@ def _branch(surfaces: Mapping[str, Surface], process: Process) -> Iterator[str]:
             tuple(_COORDINATES[axis.condition] for axis in surface.axes),
         )
         value = f"exp({polynomial})" if surface.transform == "log" else polynomial
-        yield from textwrap.wrap(
-            f"{name} = {value};", _WIDTH - 4, subsequent_indent="  ", break_long_words=False,
-            break_on_hyphens=False,
-        )  # fmt: skip
+        yield from wrapped(f"{name} = {value};")
 
 
 def _coordinate(axis: Axis, variant: Variant) -> str:
@@ -114,25 +124,19 @@ def _coordinate(axis: Axis, variant: Variant) -> str:
     clamped = f"clamp({_VARIABLES[axis.condition]}, {limits})"
     shaped = _SHAPES[axis.shape].format(clamped)
     centre, half_range = real_literal(axis.centre), real_literal(axis.half_range)
-    return f"{_COORDINATES[axis.condition]} = ({shaped} - {centre})/{half_range};"
+    return f"{_COORDINATES[axis.condition]} = ({shaped} - {centre}) / {half_range};"
 
 
 def _polynomial(dense: npt.NDArray[np.float64], coordinates: tuple[str, ...]) -> str:
     """Write a polynomial by Horner's rule, nested with the last coordinate outermost."""
     if not coordinates:
         return real_literal(float(dense))
-    text = ""
-    for power in reversed(range(dense.shape[-1])):
-        term = _polynomial(dense[..., power], coordinates[:-1])
-        if text:
-            factor = f"({text})" if " " in text else text
-            text = f"{factor}*{coordinates[-1]}"
-        if term != "0.0":
-            text = _sum(text, term)
-    return text or "0.0"
-
-
-def _sum(text: str, term: str) -> str:
-    if not text:
-        return term
-    return f"{text} - {term[1:]}" if term.startswith("-") and " " not in term else f"{text} + {term}"
+    inner = {
+        power: _polynomial(dense[..., power], coordinates[:-1])
+        for power in range(dense.shape[-1])
+        if dense[..., power].any()
+    }
+    highest = max(inner, default=0)
+    if highest > 0 and " " in inner[highest]:
+        inner[highest] = f"({inner[highest]})"
+    return horner_text(inner, coordinates[-1])

@@ -13,7 +13,8 @@ import numpy.typing as npt
 
 from behavgen.errors import Fault, FitError
 from behavgen.fit.conditions import Sites, find_sites
-from behavgen.fit.law import DelayRows, LawFit, fit_law
+from behavgen.fit.law import LawFit, fit_law
+from behavgen.fit.law_solution import DelayRows
 from behavgen.fit.process_surfaces import SurfaceFamily, exact_family
 from behavgen.model import DelayEffect, Range, significant
 from behavgen.tables.characterisation import Conditions, DelayTable, WindowTable
@@ -164,7 +165,7 @@ def fit_delay(
     law = fit_law(_padded(rows, sites))
     span = Range(low=float(rows.overdrive_v.min()), high=float(rows.overdrive_v.max()))
     family = exact_family(sites, np.log(law.parameters), processes, law.metric, span)
-    freedom = max(len(rows.delay_s) - law.parameters.size, 1)
+    freedom = max(round(float(law.freedom.sum())), 1)
     measured = delay.measured if delay is not None else window.measured if window else ""
     return DelayFit(
         effect=_effect(law, family, measured, freedom),

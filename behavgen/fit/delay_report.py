@@ -85,8 +85,7 @@ def _relative_errors(delay: DelayFit, rows: npt.NDArray[np.bool_], parameters: F
 def _tau(delay: DelayFit, c: int, condition: Condition) -> Parameter:
     value = float(delay.law.parameters[c, 0])
     error = float(np.sqrt(delay.law.covariance[c, 0, 0]))
-    freedom = max(int((delay.sites.of_row == c).sum()) - delay.law.parameters.shape[-1], 1)
-    half = float(student_quantile(0.95, freedom)) * error
+    half = float(student_quantile(0.95, delay.law.freedom[c])) * error
     return Parameter(
         name="tau_s",
         estimate=Estimate(

@@ -197,11 +197,19 @@ def _kept(filters: Mapping[int, tuple[str | float, ...]]) -> pl.Expr:
 
 
 def _in_si(bound: BoundColumn) -> pl.Expr:
-    """Return the cell as a number in SI, null where it is no plain number; or as a name."""
+    """Return the cell as a number in SI, null where it is no plain number; or as a name.
+
+    Small units are divided by a column instead of a constant: polars multiplies by the
+    inverse of a constant, and 1.8 V and 1800 mV would no longer be the same condition.
+    """
     cell = pl.col(str(bound.index))
     if bound.column.is_text:
         return cell.str.strip_chars().alias(bound.column.name)
-    return bound.unit.to_si(cell.cast(pl.Float64, strict=False)).alias(bound.column.name)
+    number = cell.cast(pl.Float64, strict=False)
+    if bound.unit.power < 0:
+        divisor = pl.when(number.is_not_null()).then(10.0**-bound.unit.power)
+        return (number / divisor + bound.unit.shift).alias(bound.column.name)
+    return bound.unit.to_si(number).alias(bound.column.name)
 
 
 def _is_plain(layout: Layout, rules: Iterable[tuple[str, str]], tokens: Iterable[str]) -> pl.Expr:

@@ -16,7 +16,6 @@ from types import MappingProxyType
 from typing import Protocol
 
 import polars as pl
-from python_calamine import CalamineError, load_workbook
 
 from behavgen.nearest import did_you_mean
 from behavgen.tables.csv_lines import (
@@ -28,6 +27,7 @@ from behavgen.tables.csv_lines import (
     read_csv_header,
 )
 from behavgen.tables.faults import TableFaults
+from behavgen.tables.spreadsheet import read_first_sheet
 
 __all__ = ["LINE", "Collected", "RawTable", "collect", "find_files", "open_table", "sha256_of"]
 
@@ -281,33 +281,14 @@ def _numbered(scanned: pl.LazyFrame) -> pl.LazyFrame:
 
 
 def _open_excel(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
-    try:
-        with load_workbook(path) as book:
-            rows = book.get_sheet_by_index(0).to_python(skip_empty_area=False)
-    except CalamineError as error:
-        faults.add(shown, f"cannot be read as an Excel file: {error}")
+    sheet = read_first_sheet(path, shown, faults)
+    if sheet is None:
         return None
-    texts = [[_cell_text(cell) for cell in row] for row in rows]
-    first = next((number for number, row in enumerate(texts) if any(row)), None)
-    if first is None:
-        faults.add(shown, "empty first sheet", "a header row and one row for each measurement")
-        return None
-    headers = tuple((header or "").strip() for header in texts[first])
+    rows = sheet.rows
     cells = {
-        str(index): pl.Series([row[index] for row in texts[first + 1 :]], dtype=pl.String)
-        for index in range(len(headers))
+        str(index): pl.Series([row[index] for row in rows], dtype=pl.String)
+        for index in range(len(sheet.headers))
     }
-    frame = pl.LazyFrame(cells).with_row_index(LINE, offset=first + 2)
-    kept = frame.filter(~pl.all_horizontal(pl.exclude(LINE).is_null()))
-    return RawTable(path=path, shown=shown, headers=headers, scan=_typed(kept))
-
-
-def _cell_text(cell: object) -> str | None:
-    """Return a spreadsheet cell as text: 27.0 is written 27, an empty cell is None."""
-    if cell is None or cell == "":
-        return None
-    if isinstance(cell, bool):
-        return str(int(cell))
-    if isinstance(cell, float):
-        return str(int(cell)) if cell.is_integer() and abs(cell) < 1e15 else repr(cell)
-    return str(cell)
+    numbered = pl.LazyFrame(cells).with_row_index(LINE, offset=sheet.first_row)
+    kept = numbered.filter(~pl.all_horizontal(pl.exclude(LINE).is_null()))
+    return RawTable(path=path, shown=shown, headers=sheet.headers, scan=_typed(kept))

@@ -5,7 +5,8 @@ import pytest
 from scipy.integrate import solve_ivp
 from scipy.special import stdtrit
 
-from behavgen.fit.law import DelayRows, fit_law
+from behavgen.fit.law import fit_law
+from behavgen.fit.law_solution import DelayRows
 from behavgen.formulas.node_law import node_law_delay
 
 OVERDRIVE_V = np.geomspace(1e-6, 0.3, 25)
@@ -117,8 +118,7 @@ def test_intervals_of_tau_cover():
     noisy = exact * (1.0 + 0.002 * rng.normal(size=(4000, len(exact))))
     fit = fit_law(rows_of(*noisy))
     error = np.sqrt(fit.covariance[:, 0, 0])
-    freedom = len(exact) - fit.parameters.shape[1]
-    covered = np.abs(fit.parameters[:, 0] - 10e-12) < stdtrit(freedom, 0.975) * error
+    covered = np.abs(fit.parameters[:, 0] - 10e-12) < stdtrit(fit.freedom, 0.975) * error
     assert 0.94 <= covered.mean() <= 0.96
 
 

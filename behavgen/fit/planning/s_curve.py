@@ -19,14 +19,15 @@ from behavgen.fit.intervals import normal_quantile
 from behavgen.fit.planning.fewest import MOST, fewest
 from behavgen.formulas.noise import Z_BEST_FOR_SIGMA, decision_information
 
-__all__ = ["KnownSCurve", "PlannedSCurve", "fewest_decisions", "plan_s_curve"]
+__all__ = ["KnownSCurve", "PlannedSCurve", "expected_halves", "fewest_decisions", "plan_s_curve"]
 
 Floats = npt.NDArray[np.float64]
 
-WIDEST_GUESS = 0.5
-"""Standard errors of offset, in sigmas, and of ln sigma, beyond which no levels can be placed."""
+_WIDEST_OFFSET_Z = 0.5
+_WIDEST_SIGMA = 0.35
+"""Standard errors of the offset, in sigmas, and of ln sigma, beyond which levels tell too little."""
 
-_LEAST_TRIALS = 50
+_LEAST_TRIALS = 100
 """At fewer decisions a level the arithmetic of large samples fails."""
 
 _INNER_Z = np.arange(0.1, 1.35, 0.1)
@@ -61,9 +62,10 @@ class KnownSCurve:
     measured: bool = False
 
     @property
-    def can_be_planned(self) -> bool:
-        """Whether levels can be placed without finding the trip point first."""
-        return max(self.offset_error_v / self.sigma_v, self.sigma_error) <= WIDEST_GUESS
+    def can_place_levels(self) -> bool:
+        """Whether levels can be placed without looking for the trip point first."""
+        near = self.offset_error_v <= _WIDEST_OFFSET_Z * self.sigma_v
+        return near and self.sigma_error <= _WIDEST_SIGMA
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -79,9 +81,8 @@ class PlannedSCurve:
     offset_half_v, sigma_half : float
         Half widths of the intervals of the offset, V, and of sigma, relative to
         it, with all rows; means over what is not known now.
-    fewest_decisions : int or None
-        What two levels would need if offset and sigma were known already; None
-        where rows already measured count too.
+    fewest_decisions : int
+        What two levels would need if offset and sigma were known beforehand.
     level : float
         Confidence, 0..1.
     """
@@ -90,7 +91,7 @@ class PlannedSCurve:
     trials: tuple[int, ...]
     offset_half_v: float
     sigma_half: float
-    fewest_decisions: int | None
+    fewest_decisions: int
     level: float
 
     @property
@@ -98,25 +99,22 @@ class PlannedSCurve:
         """In total."""
         return sum(self.trials)
 
-    @property
-    def price(self) -> float | None:
-        """Decisions over the fewest possible."""
-        return self.decisions / self.fewest_decisions if self.fewest_decisions else None
-
 
 def fewest_decisions(
     sigma_v: float,
     *,
     sigma_within: float = inf,
     offset_within_v: float = inf,
+    offset_error_v: float = inf,
+    sigma_error: float = inf,
     level: float = 0.95,
 ) -> int:
     """Return how many decisions no measurement of this precision can do without.
 
     ``N var(sigma) >= 1.6436 sigma^2`` and ``N var(offset) >= (pi/2) sigma^2``: maxima of
     `decision_information` at ``|z| = 1.575`` and ``z = 0``. For both together two levels
-    ``+-z`` between these are best, since information on sigma against information on
-    the offset is a concave curve there (derived).
+    ``+-z`` between these are best, since there information on sigma is a concave
+    function of information on the offset (derived).
 
     Parameters
     ----------
@@ -126,17 +124,20 @@ def fewest_decisions(
         Wanted half width of sigma's interval, relative.
     offset_within_v : float
         Wanted half width of the offset's interval, V.
+    offset_error_v, sigma_error : float
+        Standard errors of the offset, V, and of ln sigma, from rows measured already.
     level : float
         Confidence, 0..1.
     """
-    z = np.linspace(0.0, Z_BEST_FOR_SIGMA, 2001)
-    information = decision_information(z)
+    information = decision_information(np.linspace(0.0, Z_BEST_FOR_SIGMA, 2001))
     quantile = normal_quantile(level)
-    offset_need = (quantile * sigma_v / offset_within_v) ** 2 / information[:, 0, 0]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        sigma_need = (quantile / sigma_within) ** 2 / information[:, 1, 1]
-    needed = np.fmax(offset_need, 0.0 if sigma_within == inf else sigma_need)
-    return max(ceil(float(needed.min())), 1)
+    offset_need = (quantile * sigma_v / offset_within_v) ** 2 - (sigma_v / offset_error_v) ** 2
+    sigma_need = (quantile / sigma_within) ** 2 - sigma_error**-2
+    needed = np.maximum(offset_need, 0.0) / information[:, 0, 0]
+    if sigma_need > 0.0:
+        with np.errstate(divide="ignore"):
+            needed = np.maximum(needed, sigma_need / information[:, 1, 1])
+    return ceil(float(needed.min()))
 
 
 def plan_s_curve(
@@ -151,7 +152,8 @@ def plan_s_curve(
     Parameters
     ----------
     known : KnownSCurve
-        It can be planned: see `KnownSCurve.can_be_planned`.
+        Well enough to place levels, see `KnownSCurve.can_place_levels`; else
+        `find_trip_point` comes first.
     sigma_within : float
         Wanted half width of sigma's interval, relative.
     offset_within_v : float
@@ -165,30 +167,56 @@ def plan_s_curve(
         None when the rows already measured reach both.
     """
     wanted = np.array([offset_within_v, sigma_within])
-    if known.measured and (_halves(_measured(known), known, level) <= wanted).all():
+    measured = _measured(known)
+    if known.measured and (_halves(measured, known, level) <= wanted).all():
         return None
-    z = _placed(known, wanted, level)
     digits = 1 - floor(log10(known.sigma_v))
+    z = _placed(known, wanted, level)
     levels_v = np.round(known.offset_v + np.array(z) * known.sigma_v, digits)
-    per_trial = _information(levels_v[None], known)[0] * len(levels_v)
+    per_trial = len(levels_v) * _information(levels_v[None], known)
 
     def halves(trials: int) -> Floats:
-        return _halves(_measured(known) + trials * per_trial, known, level)
+        return _halves(measured + trials * per_trial, known, level)[0]
 
     least = fewest(lambda n: bool((halves(n) <= wanted).all()), start=_LEAST_TRIALS)
-    trials = _rounded_up(least if least is not None else MOST)
+    trials = _rounded_up(MOST if least is None else least)
     offset_half_v, sigma_half = (float(half) for half in halves(trials))
-    needed = fewest_decisions(
-        known.sigma_v, sigma_within=sigma_within, offset_within_v=offset_within_v, level=level
-    )
     return PlannedSCurve(
         levels_v=tuple(float(v) for v in levels_v),
         trials=(trials,) * len(levels_v),
         offset_half_v=offset_half_v,
         sigma_half=sigma_half,
-        fewest_decisions=None if known.measured else needed,
+        fewest_decisions=fewest_decisions(
+            known.sigma_v,
+            sigma_within=sigma_within,
+            offset_within_v=offset_within_v,
+            offset_error_v=known.offset_error_v if known.measured else inf,
+            sigma_error=known.sigma_error if known.measured else inf,
+            level=level,
+        ),
         level=level,
     )
+
+
+def expected_halves(
+    known: KnownSCurve, levels_v: npt.ArrayLike, trials: int, level: float = 0.95
+) -> tuple[float, float]:
+    """Return the half widths to expect of given levels: of the offset, V, and of sigma, relative.
+
+    Parameters
+    ----------
+    known : KnownSCurve
+    levels_v : array_like, shape (L,)
+        V.
+    trials : int
+        Decisions at each level.
+    level : float
+        Confidence, 0..1.
+    """
+    levels_v = np.asarray(levels_v, dtype=float)
+    information = trials * len(levels_v) * _information(levels_v[None], known)
+    offset_half_v, sigma_half = _halves(_measured(known) + information, known, level)[0]
+    return float(offset_half_v), float(sigma_half)
 
 
 def _placed(known: KnownSCurve, wanted: Floats, level: float) -> tuple[float, ...]:
@@ -199,7 +227,7 @@ def _placed(known: KnownSCurve, wanted: Floats, level: float) -> tuple[float, ..
     z = np.stack([-outer, -inner, inner, outer], axis=-1)
     per_decision = _information(known.offset_v + z * known.sigma_v, known)
     measured = _measured(known)
-    low, high = np.zeros(len(z)), np.full(len(z), 2.0 * np.log(MOST))
+    low, high = np.zeros(len(z)), np.full(len(z), np.log(MOST))
     for _ in range(40):
         middle = 0.5 * (low + high)
         information = measured + np.exp(middle)[:, None, None, None] * per_decision
@@ -234,29 +262,30 @@ def _information(levels_v: Floats, known: KnownSCurve) -> Floats:
     offset_v, sigma_v, _ = _prior(known)
     z = (levels_v[:, None, :] - offset_v[:, None]) / sigma_v[:, None]
     scale = np.stack([known.sigma_v / sigma_v, np.ones_like(sigma_v)], axis=-1)
-    mean = decision_information(z).mean(axis=-3)
+    mean: Floats = decision_information(z).mean(axis=-3)
     return mean * scale[:, :, None] * scale[:, None, :]
 
 
 def _measured(known: KnownSCurve) -> Floats:
-    """Return what the rows already measured tell, shape (2, 2)."""
-    if not known.measured:
-        return np.zeros((2, 2))
-    return np.diag([(known.sigma_v / known.offset_error_v) ** 2, 1.0 / known.sigma_error**2])
+    """Return what the rows already measured tell, alike at every prior value, shape (1, Q, 2, 2)."""
+    told = np.zeros(2)
+    if known.measured:
+        told = np.array([known.sigma_v / known.offset_error_v, 1.0 / known.sigma_error]) ** 2
+    return np.broadcast_to(np.diag(told), (1, _PRIOR_NODES**2, 2, 2))
 
 
 def _halves(information: Floats, known: KnownSCurve, level: float) -> Floats:
-    """Return mean half widths of offset, V, and sigma, relative; shape (..., 2)."""
-    weights = _prior(known)[2] if information.ndim > 2 else np.ones(1)
-    i = information if information.ndim > 2 else information[None]
+    """Return mean half widths of offset, V, and sigma, relative; shape (D, 2)."""
+    i = information
     determinant = i[..., 0, 0] * i[..., 1, 1] - i[..., 0, 1] * i[..., 1, 0]
-    variances = np.stack([i[..., 1, 1], i[..., 0, 0]], axis=-1)
-    variances = variances / np.maximum(determinant, np.finfo(float).tiny)[..., None]
-    reach = normal_quantile(level) * np.einsum("...qk,q->...k", np.sqrt(variances), weights)
-    return reach * np.array([known.sigma_v, 1.0])
+    variances = np.full(i.shape[:-1], np.inf)
+    told = np.stack([i[..., 1, 1], i[..., 0, 0]], axis=-1)
+    np.divide(told, determinant[..., None], out=variances, where=determinant[..., None] > 1e-300)
+    mean: Floats = np.einsum("dqk,q->dk", np.sqrt(variances), _prior(known)[2])
+    return normal_quantile(level) * mean * np.array([known.sigma_v, 1.0])
 
 
 def _rounded_up(count: int) -> int:
     """Round up to three digits, so that a plan reads well."""
-    step = 10 ** max(len(str(count)) - 3, 0)
+    step: int = 10 ** max(len(str(count)) - 3, 0)
     return -(-count // step) * step

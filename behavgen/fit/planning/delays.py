@@ -1,0 +1,288 @@
+"""At which overdrives to measure delays, and at which times windows, for a wanted tau.
+
+Errors count relative to the delay, as in the fit: with relative scatter `s` the rows
+at overdrives `v` leave the law's parameters the covariance ``s^2 (J^T J)^-1``, `J`
+being relative delays per unit of each parameter. Tau is what the tail tells, the
+more decades the better; the rest of the curve is told by rows along it.
+
+Simulation without noise repeats itself, so that its scatter is the law's lack of
+fit: the same arithmetic holds as long as the law stays the same and its misfit
+looks random from row to row, and no row tells anything twice.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from math import ceil, inf, log2, log10
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.fit.intervals import student_quantile
+from behavgen.fit.law_families import solve_families
+from behavgen.fit.law_solution import DelayRows, LawSolution, inverse_of
+from behavgen.fit.planning.sample_deviation import mean_deviation
+from behavgen.formulas.node_law import node_law_basis, node_law_delay
+
+__all__ = [
+    "MOST_ROWS",
+    "DelayHalves",
+    "KnownDelay",
+    "PlannedDelays",
+    "PlannedWindows",
+    "delay_halves",
+    "plan_delays",
+    "plan_windows",
+]
+
+Floats = npt.NDArray[np.float64]
+
+MOST_ROWS = 400
+"""More rows at one condition are no plan: the law has to fit better, or the tail to be longer."""
+
+_FEWEST_TAIL_ROWS = 4
+_FEWEST_ROWS_A_NODE = 2
+_ROUNDS = 12
+_CURVE_POINTS = 60
+_WINDOWS_A_DECADE = 2
+_FEWEST_WINDOWS = 4
+_EDGE_STEPS = ceil(log2(4.0 / 0.01))
+"""Simulations that find one edge of a window to 1 %, known before within a factor of 4."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class KnownDelay:
+    """What is known of the delay at one condition before the measurement.
+
+    Parameters
+    ----------
+    law : str
+        Name of the law, as in `model.DelayEffect`.
+    tau_s : float
+    node_overdrive_v, node_s : tuple of float, length K
+        The law as its nodes carry it; the tail lies below the first.
+    scatter : float
+        Relative standard deviation of a row from the law.
+    overdrive_v : tuple of float
+        Rows there are already: magnitudes, windows with half their width.
+    """
+
+    law: str
+    tau_s: float
+    node_overdrive_v: tuple[float, ...]
+    node_s: tuple[float, ...]
+    scatter: float
+    overdrive_v: tuple[float, ...] = ()
+
+    def delay_s(self, overdrive_v: npt.ArrayLike) -> Floats:
+        """Return the delay at overdrives in V, shape (N,)."""
+        magnitude = np.asarray(overdrive_v, dtype=float)
+        log_node = np.log(self.node_overdrive_v)
+        return node_law_delay(magnitude, log_node, np.array(self.tau_s), np.array(self.node_s))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PlannedDelays:
+    """Overdrives to measure at a condition, and the intervals this promises.
+
+    Parameters
+    ----------
+    tail_v, curve_v : tuple of float
+        Overdrives to add below the law's first node and above it, V, rising.
+    tau_half, delay_half : float
+        Half widths of the intervals of tau and of the delay where it is widest,
+        relative, with all rows.
+    scatter : float
+        Relative standard deviation of a row that this rests on.
+    level : float
+        Confidence, 0..1.
+    """
+
+    tail_v: tuple[float, ...]
+    curve_v: tuple[float, ...]
+    tau_half: float
+    delay_half: float
+    scatter: float
+    level: float
+
+    @property
+    def simulations(self) -> int:
+        """Decisions to simulate at each condition."""
+        return len(self.tail_v) + len(self.curve_v)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PlannedWindows:
+    """Times at which to look for the metastable window.
+
+    Parameters
+    ----------
+    resolve_time_s, window_v : tuple of float
+        Times after the edge and the windows expected then.
+    simulations : int
+        Decisions that find both edges of all of them to 1 %.
+    """
+
+    resolve_time_s: tuple[float, ...]
+    window_v: tuple[float, ...]
+    simulations: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class DelayHalves:
+    """Mean half widths of intervals at one condition, relative.
+
+    Parameters
+    ----------
+    tau, delay : float
+        Of tau, and of the delay at the overdrive where it is widest.
+    widest_v : float
+        That overdrive, V.
+    """
+
+    tau: float
+    delay: float
+    widest_v: float
+
+
+def plan_delays(
+    known: KnownDelay,
+    *,
+    lowest_v: float,
+    tau_within: float = inf,
+    delay_within: float = inf,
+    level: float = 0.95,
+) -> PlannedDelays | None:
+    """Return the overdrives to add so that tau and delay reach the wanted intervals.
+
+    Rows spread evenly over the decades of the tail, and over those of the curve.
+
+    Parameters
+    ----------
+    known : KnownDelay
+    lowest_v : float
+        Smallest overdrive that can be measured, V, below the first node.
+    tau_within, delay_within : float
+        Wanted half widths of the intervals of tau and of the delay anywhere from
+        `lowest_v` to the last node, relative.
+    level : float
+        Confidence, 0..1.
+
+    Returns
+    -------
+    PlannedDelays or None
+        None when the rows there are reach both. When `MOST_ROWS` do not, they
+        are planned and promise what they reach.
+    """
+
+    def enough(found: DelayHalves) -> bool:
+        return found.tau <= tau_within and found.delay <= delay_within
+
+    if known.overdrive_v and enough(delay_halves(known, lowest_v=lowest_v, level=level)):
+        return None
+    first_v = known.node_overdrive_v[0]
+    there = sum(v < first_v for v in known.overdrive_v)
+    counts = np.array([there, len(known.overdrive_v) - there])
+    total = np.maximum(counts, [_FEWEST_TAIL_ROWS, _FEWEST_ROWS_A_NODE * len(known.node_s)])
+    for _ in range(_ROUNDS):
+        tail_v, curve_v = _spread(known, lowest_v, total - counts)
+        added = (*known.overdrive_v, *tail_v, *curve_v)
+        found = delay_halves(replace(known, overdrive_v=added), lowest_v=lowest_v, level=level)
+        if enough(found) or total.sum() >= MOST_ROWS:
+            break
+        in_tail = found.widest_v < first_v
+        tau, delay = found.tau / tau_within, found.delay / delay_within
+        factor = np.array([max(tau, delay * in_tail), delay * (not in_tail)])
+        total = np.ceil(total * np.clip(factor, 1.0, 3.0) ** 2).astype(int)
+        total = np.minimum(total, MOST_ROWS)
+    return PlannedDelays(
+        tail_v=tail_v,
+        curve_v=curve_v,
+        tau_half=found.tau,
+        delay_half=found.delay,
+        scatter=known.scatter,
+        level=level,
+    )
+
+
+def delay_halves(known: KnownDelay, *, lowest_v: float, level: float = 0.95) -> DelayHalves:
+    """Return the intervals to expect of the rows there are.
+
+    Parameters
+    ----------
+    known : KnownDelay
+        With rows enough to tell its law's parameters.
+    lowest_v : float
+        The delay is looked at from this overdrive to the last node, V.
+    level : float
+        Confidence, 0..1.
+    """
+    solution = _solution(known)
+    widest_v = np.geomspace(lowest_v, known.node_overdrive_v[-1], _CURVE_POINTS)
+    along = node_law_basis(widest_v, solution.log_node) / known.delay_s(widest_v)[:, None]
+    inverse = solution.inverse[0]
+    delay = np.sqrt(np.einsum("nk,kl,nl->n", along, inverse, along))
+    tau = float(np.sqrt(inverse[0, 0])) / known.tau_s
+    freedom = float(solution.freedom[0])
+    reach = float(student_quantile(level, freedom)) * known.scatter * mean_deviation(freedom)
+    widest = int(np.argmax(delay))
+    return DelayHalves(
+        tau=reach * tau, delay=reach * float(delay[widest]), widest_v=float(widest_v[widest])
+    )
+
+
+def plan_windows(known: KnownDelay, *, lowest_v: float) -> PlannedWindows:
+    """Return times at which windows tell tau independently of the delays.
+
+    A window is twice the overdrive whose delay is the time: times step evenly down
+    the tail.
+
+    Parameters
+    ----------
+    known : KnownDelay
+    lowest_v : float
+        Smallest overdrive, V, below the first node.
+    """
+    first_v = known.node_overdrive_v[0]
+    count = max(ceil(_WINDOWS_A_DECADE * log10(first_v / lowest_v)), _FEWEST_WINDOWS)
+    half_v = np.geomspace(first_v, lowest_v, count)
+    return PlannedWindows(
+        resolve_time_s=tuple(float(t) for t in known.delay_s(half_v)),
+        window_v=tuple(float(2.0 * v) for v in half_v),
+        simulations=2 * _EDGE_STEPS * count,
+    )
+
+
+def _spread(
+    known: KnownDelay, lowest_v: float, more: npt.NDArray[np.int64]
+) -> tuple[tuple[float, ...], tuple[float, ...]]:
+    """Return overdrives to add in the tail and along the curve, even in their logarithm."""
+    first_v, last_v = known.node_overdrive_v[0], known.node_overdrive_v[-1]
+    tail = np.geomspace(lowest_v, first_v, int(more[0]) + 1)[: int(more[0])]
+    curve = np.geomspace(first_v, last_v, int(more[1]))
+    return tuple(map(_rounded, tail)), tuple(map(_rounded, curve))
+
+
+def _rounded(overdrive_v: float) -> float:
+    return float(f"{overdrive_v:.3g}")
+
+
+def _solution(known: KnownDelay) -> LawSolution:
+    """Return the known law as fitted to rows of unit scatter at its overdrives."""
+    overdrive_v = np.array([known.overdrive_v])
+    delay_s = known.delay_s(overdrive_v[0])[None]
+    rows = DelayRows(overdrive_v=overdrive_v, delay_s=delay_s, weight=np.ones_like(delay_s))
+    for solution in solve_families(rows) if known.law.endswith("law") else ():
+        if solution.name == known.law:
+            return solution
+    log_node = np.log(known.node_overdrive_v)
+    basis = node_law_basis(overdrive_v[0], log_node) / delay_s[0][:, None]
+    return LawSolution.of(
+        name=known.law,
+        rows=rows,
+        log_node=log_node,
+        parameters=np.array([[known.tau_s, *known.node_s]]),
+        inverse=inverse_of(basis.T @ basis)[None],
+        squares=np.zeros(1),
+        spent=np.array([float(basis.shape[1])]),
+    )
