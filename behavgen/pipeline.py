@@ -20,10 +20,10 @@ from itertools import count
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from behavgen.check.verdict import CheckReport, dump_check_report, load_check_report
+from behavgen.check.verdict import CheckReport, load_report
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.errors import Fault, ModelFileError, ProjectError
-from behavgen.files import sha256_of_file, write_whole
+from behavgen.files import sha256_of_file
 from behavgen.freshness import Step, code_version, content_hash
 from behavgen.model import ComparatorModel, dump_model, load_model
 
@@ -49,7 +49,10 @@ __all__ = [
 STEP_NAMES = ("fit", "emit", "check", "report")
 CHECK_FILE = "check/check.json"
 
-Progress = Callable[[int, int], None] | None
+GIVEN_FOLDER = "given-file"
+CHECK_OUTPUTS = (CHECK_FILE, "check/results.xml")
+
+Progress = Callable[[str], None] | None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -126,7 +129,7 @@ class CheckedCell:
 
     place: CellPlace
     report: CheckReport
-    folder: Path
+    logs: Path
     made: bool
 
 
@@ -186,7 +189,7 @@ def check_cell(emitted: EmittedCell, *, jobs: int = 2, progress: Progress = None
     jobs : int
         Simulations at a time.
     progress : callable, optional
-        Told how far the check has come.
+        Told in words what happens now.
 
     Raises
     ------
@@ -194,22 +197,22 @@ def check_cell(emitted: EmittedCell, *, jobs: int = 2, progress: Progress = None
         When no simulator is found.
     """
     place = emitted.place
-    folder = place.check_file.parent
+    logs = place.check_file.parent
     known = current_check(place)
     if known is not None:
-        return CheckedCell(place=place, report=known, folder=folder, made=False)
+        return CheckedCell(place=place, report=known, logs=logs, made=False)
     from behavgen.check.check import check  # noqa: PLC0415  cocotb
 
     report = check(
-        emitted.model, emitted.systemverilog, folder=folder, jobs=jobs, progress=progress
+        emitted.model, emitted.systemverilog, folder=place.folder, jobs=jobs, progress=progress
     )
-    _check_step(place).write({CHECK_FILE: dump_check_report(report)})
-    return CheckedCell(place=place, report=report, folder=folder, made=True)
+    _check_step(place).note(CHECK_OUTPUTS)
+    return CheckedCell(place=place, report=report, logs=logs, made=True)
 
 
 def current_check(place: CellPlace) -> CheckReport | None:
     """Return what the last check said, or None when it was not about the present files."""
-    return load_check_report(place.check_file) if _check_step(place).is_current() else None
+    return load_report(place.check_file) if _check_step(place).is_current() else None
 
 
 def check_given_file(
@@ -230,11 +233,10 @@ def check_given_file(
     from behavgen.check.check import check  # noqa: PLC0415  cocotb
 
     place = fitted.place
-    folder = place.folder / "check-of-given-file"
+    folder = place.folder / GIVEN_FOLDER
     given = EmittedFile(path=file.name, text=_read_given(file))
     report = check(fitted.model, given, folder=folder, jobs=jobs, progress=progress)
-    write_whole(folder / "check.json", dump_check_report(report))
-    return CheckedCell(place=place, report=report, folder=folder, made=True)
+    return CheckedCell(place=place, report=report, logs=folder / "check", made=True)
 
 
 def _read_given(file: Path) -> str:

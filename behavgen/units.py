@@ -16,7 +16,6 @@ import math
 import re
 from dataclasses import dataclass
 from functools import cache
-from typing import TypeVar, cast
 
 __all__ = [
     "CELL_PATTERN",
@@ -74,8 +73,6 @@ _BRACKETED = re.compile(
     r"(?P<stem>.*?)(?P<gap>[\s_]*)(?:\[(?P<square>[^\[\]]*)\]|\((?P<round>[^()]*)\))"
 )
 
-Scalable = TypeVar("Scalable")
-
 
 class UnitError(ValueError):
     """Text that is no number or no unit of the expected dimension."""
@@ -83,7 +80,7 @@ class UnitError(ValueError):
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Unit:
-    """How to turn a number in some unit into SI.
+    """How a number in some unit becomes one in SI.
 
     Parameters
     ----------
@@ -98,17 +95,6 @@ class Unit:
     text: str
     power: int = 0
     shift: float = 0.0
-
-    def to_si(self, number: Scalable) -> Scalable:
-        """Convert a float, an array or a column expression.
-
-        Small units divide by a power of ten, which unlike its inverse is
-        exact in binary, so that 12 ps becomes exactly the float 12e-12.
-        """
-        value = cast("float", number)
-        if self.power:
-            value = value * 10.0**self.power if self.power > 0 else value / 10.0**-self.power
-        return cast("Scalable", value + self.shift if self.shift else value)
 
 
 def default_unit(dimension: str) -> Unit:

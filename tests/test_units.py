@@ -82,9 +82,10 @@ def test_temperatures_are_celsius_unless_they_say_kelvin(text, kelvin):
 
 
 def test_the_letter_c_is_a_temperature_or_a_charge_by_what_is_expected():
-    assert unit_of_header("q_fC", "C").to_si(3.0) == 3e-15
-    assert unit_of_header("q_C", "C").to_si(3.0) == 3.0
-    assert unit_of_header("temp_C", "K").to_si(0.0) == 273.15
+    assert parse_si("3", "C", unit_of_header("q_fC", "C")) == 3e-15
+    assert parse_si("3", "C", unit_of_header("q_C", "C")) == 3.0
+    assert parse_si("0", "K", unit_of_header("temp_C", "K")) == 273.15
+    assert parse_si("300", "K", unit_of_header("temp_K", "K")) == 300.0
 
 
 @pytest.mark.parametrize(
@@ -109,7 +110,7 @@ def test_a_prefix_in_a_cell_and_one_in_the_header_are_a_contradiction():
 
 @pytest.mark.parametrize("header", ["delay_ps", "delay [ps]", "delay (ps)", "delay(ps)", "t_d_ps"])
 def test_headers_carry_their_unit(header):
-    assert unit_of_header(header, "s").to_si(41.0) == 41e-12
+    assert parse_si("41", "s", unit_of_header(header, "s")) == 41e-12
 
 
 @pytest.mark.parametrize("header", ["delay", "V(out)", "weight_after", "level_k", "_ps", "t_rel"])
@@ -131,10 +132,10 @@ def test_the_stem_of_a_header_is_what_remains_without_the_unit():
     assert {header: header_stem(header) for header in stems} == stems
 
 
-def test_a_small_unit_scales_arrays_as_exactly_as_text():
-    assert find_unit("ps", "s").to_si(12.0) == 12e-12
-    assert find_unit("fJ", "J").to_si(97.0) == 97e-15
-    assert default_unit("V").to_si(1.8) == 1.8
+@given(mantissa=MANTISSAS)
+def test_a_number_in_a_small_unit_is_the_float_nearest_to_its_decimal_value(mantissa):
+    assert parse_si(f"{mantissa:f}", "J", find_unit("fJ", "J")) == float(mantissa.scaleb(-15))
+    assert parse_si(f"{mantissa:f}", "V", default_unit("V")) == float(mantissa)
 
 
 def test_celsius_for_people():

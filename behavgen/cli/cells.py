@@ -56,7 +56,9 @@ class CellsDone:
     results: Mapping[str, CellResult]
     errors: tuple[BehavgenError, ...]
 
-    def outcome(self, options: Options, *, done: str, then: str) -> Outcome:
+    def outcome(
+        self, options: Options, *, done: str, then: str, shows_results: bool = True
+    ) -> Outcome:
         """Return how the command ends.
 
         Parameters
@@ -66,6 +68,8 @@ class CellsDone:
             What happened to the cells, as in ``"2 cells fitted"``.
         then : str
             The next step when nothing went wrong.
+        shows_results : bool
+            Whether what was printed calls for the caution.
         """
         total = len(self.results) + len(self.errors)
         share = f"{len(self.results)} of {number_of(total, 'cell')}"
@@ -79,7 +83,7 @@ class CellsDone:
             warnings=tuple(
                 f"{name}: {text}" for name, r in self.results.items() for text in r.warnings
             ),
-            shows_results=bool(self.results),
+            shows_results=shows_results and bool(self.results),
         )
 
 

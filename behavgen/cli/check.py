@@ -62,10 +62,10 @@ def check_one(
             checked = check_given_file(fitted, given, jobs=options.jobs, progress=progress)
         else:
             checked = check_cell(emit_cell(fitted), jobs=options.jobs, progress=progress)
-    return check_result(checked.report, checked.folder, made=checked.made)
+    return check_result(checked.report, checked.logs, made=checked.made)
 
 
-def check_result(report: CheckReport, folder: Path, *, made: bool) -> CellResult:
+def check_result(report: CheckReport, logs: Path, *, made: bool) -> CellResult:
     """Return what there is to say of a check."""
     failed = [bench for bench in report.benches if not bench.passed]
     short = [stratum for stratum in report.strata if stratum.decisions < stratum.required]
@@ -79,10 +79,10 @@ def check_result(report: CheckReport, folder: Path, *, made: bool) -> CellResult
             *labelled("benches", f"{passed} of {len(report.benches)} passed"),
             *(line for b in failed for line in labelled("failed", f"{b.name}: {b.message}")),
             *(line for d in report.disagreements[:1] for line in labelled("first", first_text(d))),
-            *labelled("logs", shown_path(folder)),
+            *labelled("logs", shown_path(logs)),
         ],
         more=[line for s in report.strata for line in labelled("", _stratum_text(s))],
-        data={**asdict(report), "made": made, "folder": shown_path(folder)},
+        data={**asdict(report), "made": made, "logs": shown_path(logs)},
         agrees=report.passed,
     )
 

@@ -65,24 +65,22 @@ class Terminal:
         return f"\033[{_STYLES[style]}m{text}\033[0m" if self._coloured else text
 
     @contextmanager
-    def progress(self, what: str) -> Iterator[Callable[[int, int], None] | None]:
-        """Show how far something has come; only where somebody is watching.
+    def progress(self, what: str) -> Iterator[Callable[[str], None] | None]:
+        """Show that something is going on; only where somebody is watching.
 
         Yields
         ------
         callable or None
-            Takes the number of parts done and the number of all parts.
+            Takes what happens now, in words.
         """
         if self._quiet or not self._stderr.isatty():
             yield None
             return
         from rich.console import Console  # noqa: PLC0415  only on a terminal
-        from rich.progress import Progress  # noqa: PLC0415
 
         console = Console(file=self._stderr, no_color=not self._coloured)
-        with Progress(console=console, transient=True) as bar:
-            task = bar.add_task(what, total=None)
-            yield lambda done, total: bar.update(task, completed=done, total=total)
+        with console.status(what, spinner="line") as status:
+            yield lambda now: status.update(f"{what}: {now}")
 
     def flush(self) -> None:
         """Hand over what was printed."""

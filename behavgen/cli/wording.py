@@ -32,7 +32,8 @@ def labelled(label: str, text: str) -> list[str]:
     ['  noise      5 conditions']
     """
     head = f"  {label:<{_LABEL_WIDTH}}"
-    lines = wrapped(text, indent=len(head)) or [head.rstrip()]
+    parts = text.splitlines()
+    lines = [line for part in parts for line in wrapped(part, indent=len(head))] or [head.rstrip()]
     return [head + lines[0][len(head) :], *lines[1:]]
 
 

@@ -13,10 +13,10 @@ from dataclasses import dataclass
 from itertools import pairwise
 
 from behavgen.emit.emitted_file import EmittedFile
-from behavgen.emit.literals import comment_text, real_literal, string_literal
-from behavgen.emit.module_parameters import ModuleParameter, module_parameters
+from behavgen.emit.literals import comment_text, real_literal
 from behavgen.emit.provenance import HeaderSection, header_lines, header_sections
 from behavgen.emit.templating import render
+from behavgen.emit.verilog_a_parameters import verilog_a_parameters
 from behavgen.emit.verilog_a_surfaces import (
     Statements,
     declaration,
@@ -27,11 +27,6 @@ from behavgen.model import Cell, ComparatorModel, Surface
 
 __all__ = ["verilog_a"]
 
-_SHARED_PARAMETERS = {
-    "OFFSET_SHIFT_V", "NOISE_ON", "MEMORY_ON", "DELAY_ON", "TEMPERATURE_C", "PROCESS",
-}  # fmt: skip
-_LARGEST_Z = 10.0
-_SUPPLY_WHEN_UNKNOWN_V = 1.0
 _FLOOR_WITHOUT_DELAY_V = 1e-15
 
 
@@ -40,12 +35,6 @@ class _Port:
     name: str
     direction: str
     meaning: str
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Parameter:
-    attributes: tuple[str, ...]
-    declaration: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -67,7 +56,7 @@ def verilog_a(model: ComparatorModel) -> EmittedFile:
         description=comment_text(cell.description),
         header=header_lines(_header(model)),
         ports=tuple(_ports(cell)),
-        parameters=tuple(map(_parameter, _parameters(model))),
+        parameters=verilog_a_parameters(model),
         declarations=tuple(_declarations(model, values)),
         supply=f"V({cell.pins.vdd}, {cell.pins.vss})" if cell.pins.vdd else "SUPPLY_V",
         clock=_clock(cell),
@@ -143,53 +132,6 @@ def _ports(cell: Cell) -> Iterator[_Port]:
     for name, direction, meaning in candidates:
         if name is not None:
             yield _Port(name=name, direction=direction, meaning=meaning)
-
-
-def _parameters(model: ComparatorModel) -> Iterator[ModuleParameter]:
-    yield from (p for p in module_parameters(model) if p.name in _SHARED_PARAMETERS)
-    components = model.mismatch.components if model.mismatch else ()
-    for k in range(len(components)):
-        yield ModuleParameter(
-            name=f"MISMATCH_Z{k}", kind="real", default=0.0, low=-_LARGEST_Z, high=_LARGEST_Z,
-            description=f"mismatch component {k} of this instance, in sigmas",
-        )  # fmt: skip
-    if model.cell.pins.vdd is None:
-        span = model.box.vdd_v
-        yield ModuleParameter(
-            name="SUPPLY_V", kind="real", unit="V", low=0.0,
-            default=round(span.middle, 9) if span else _SUPPLY_WHEN_UNKNOWN_V, description="supply",
-        )  # fmt: skip
-    yield ModuleParameter(
-        name="OUTPUT_OHM", kind="real", default=100.0, unit="ohm", low=1e-3,
-        description="resistance of each output",
-    )  # fmt: skip
-
-
-def _parameter(parameter: ModuleParameter) -> _Parameter:
-    """Write a parameter; simulators that tell model from instance take it at either."""
-    note = parameter.note
-    if parameter.name == "TEMPERATURE_C":
-        note = f"{note}; unless given, the circuit's temperature"
-    attributes = [f"desc = {string_literal(note)}", 'type = "instance"']
-    if parameter.unit:
-        attributes.insert(1, f'units = "{parameter.unit}"')
-    kind = "real" if parameter.kind == "real" else "integer"
-    default = real_literal(parameter.default) if kind == "real" else f"{parameter.default:d}"
-    return _Parameter(
-        attributes=wrapped(f"(* {', '.join(attributes)} *)"),
-        declaration=f"parameter {kind} {parameter.name} = {default}{_range(parameter)};",
-    )
-
-
-def _range(parameter: ModuleParameter) -> str:
-    if parameter.codes:
-        codes = sorted(code for code, _ in parameter.codes)
-        gaps = sorted(set(range(codes[0], codes[-1])) - set(codes))
-        return f" from [{codes[0]}:{codes[-1]}]" + "".join(f" exclude {gap}" for gap in gaps)
-    if parameter.low is None:
-        return ""
-    high = "inf)" if parameter.high is None else f"{real_literal(parameter.high)}]"
-    return f" from [{real_literal(parameter.low)}:{high}"
 
 
 def _clock(cell: Cell) -> str:

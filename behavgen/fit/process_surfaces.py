@@ -116,7 +116,7 @@ def exact_family(
             difference = difference_by_left_out(fit, sites.values[own], targets[own])
             coefficients[process] = fit.coefficients + difference
         boxes[process] = range_of(sites.values[own if len(own) else rows], overdrive_v)
-        scaled[process] = "" if process == primary else primary
+        scaled[process] = _scaled_from(sites, process, primary)
     left_out = np.full_like(targets, np.nan)
     left_out[rows] = fit.left_out
     return SurfaceFamily(
@@ -145,7 +145,7 @@ def noisy_family(
             shift = float(np.average(gap, weights=1.0 / variance[own]))
             coefficients[process][fit.constant_term] += shift
         boxes[process] = range_of(sites.values[own if len(own) else rows])
-        scaled[process] = "" if process == primary else primary
+        scaled[process] = _scaled_from(sites, process, primary)
     left_out = np.full((sites.count, 1), np.nan)
     left_out[rows] = fit.left_out
     return SurfaceFamily(
@@ -157,6 +157,12 @@ def noisy_family(
 def _rows(sites: Sites, process: str) -> npt.NDArray[np.intp]:
     """Return the sites measured in a process; those that hold for all count for every one."""
     return np.flatnonzero([name in (process, "") for name in sites.process])
+
+
+def _scaled_from(sites: Sites, process: str, primary: str) -> str:
+    """Return the process whose shape a variant borrows; none where one table holds for all."""
+    holds_for_all = all(name == "" for name in sites.process)
+    return "" if process == primary or holds_for_all else primary
 
 
 def _primary(sites: Sites, processes: tuple[str, ...]) -> str:

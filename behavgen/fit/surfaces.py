@@ -19,6 +19,7 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.fit.surface_forms import CONSTANT_SPREAD, Candidates, Form, candidates, design
+from behavgen.model import Axis
 
 __all__ = ["SurfaceFit", "choose_by_left_out", "choose_by_likelihood", "difference_by_left_out"]
 
@@ -245,7 +246,7 @@ def _finished(
     shape, prior = divmod(best, len(ways.spread))
     spread = ways.spread[prior]
     kept = np.flatnonzero(spread > 0.0)
-    form = Form(axes=ways.axes[shape], exponents=tuple(ways.exponents[k] for k in kept))
+    form = _without_idle_axes(ways.axes[shape], tuple(ways.exponents[k] for k in kept))
     root = np.sqrt(weights)[:, None]
     scaled = root * design(form, values) * spread[kept]
     normal = scaled.T @ scaled + np.eye(len(kept))
@@ -259,6 +260,15 @@ def _finished(
         leverage=inverse @ plain.T @ plain @ inverse,
         inflation=_inflation(plain @ inverse @ plain.T),
         left_out=left_out,
+    )
+
+
+def _without_idle_axes(axes: tuple[Axis, ...], exponents: tuple[tuple[int, ...], ...]) -> Form:
+    """Return the form with only the axes that some term uses."""
+    busy = [k for k in range(len(axes)) if any(term[k] for term in exponents)]
+    return Form(
+        axes=tuple(axes[k] for k in busy),
+        exponents=tuple(tuple(term[k] for k in busy) for term in exponents),
     )
 
 

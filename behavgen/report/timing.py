@@ -111,7 +111,7 @@ def _output(cell: Cell, bit: str) -> tuple[tuple[float, str], ...]:
         steps.append((reset_1 + _RESET, rest))
     shown = _UNRESOLVED[cell.when_unresolved]
     if shown != "h":
-        steps.append((reset_1, shown))
+        steps.append((reset_2, shown))
     if rest:
         steps.append((reset_2 + _RESET, rest))
     steps.append((decide_3 + _DELAY, other))

@@ -7,6 +7,7 @@ their limits. One streaming pass over the file takes these out. What is left
 
 from __future__ import annotations
 
+import contextlib
 import functools
 import operator
 from collections.abc import Iterable, Mapping, Sequence
@@ -20,7 +21,7 @@ from behavgen.tables.faults import TableFaults
 from behavgen.tables.headers import BoundColumn, Layout
 from behavgen.tables.limits import breaks_limits, breaks_order
 from behavgen.tables.readers import LINE, RawTable, collect
-from behavgen.units import as_number
+from behavgen.units import UnitError, as_number, parse_si
 
 __all__ = ["Cells", "read_cells", "values_present"]
 
@@ -120,7 +121,9 @@ def _scan_plain(
     faults: TableFaults,
 ) -> _Scanned | None:
     """Read the rows that need no second look, in SI."""
-    numbers = {bound.index for bound in layout.columns if not bound.column.is_text}
+    numbers = {
+        bound.index for bound in layout.columns if not bound.column.is_text and not bound.unit.power
+    }
     names = [bound.column.name for bound in layout.columns]
     last = pl.col(str(len(table.headers) - 1))
 
@@ -199,30 +202,35 @@ def _kept(filters: Mapping[int, tuple[str | float, ...]]) -> pl.Expr:
 def _in_si(bound: BoundColumn) -> pl.Expr:
     """Return the cell as a number in SI, null where it is no plain number; or as a name.
 
-    Small units are divided by a column instead of a constant: polars multiplies by the
-    inverse of a constant, and 1.8 V and 1800 mV would no longer be the same condition.
+    A number in another unit is scaled as text, by an exponent: scaling the float would
+    round once more, and 612.3 mV here and 0.6123 V there would be two conditions.
     """
     cell = pl.col(str(bound.index))
     if bound.column.is_text:
         return cell.str.strip_chars().alias(bound.column.name)
+    if bound.unit.power:
+        cell = pl.concat_str(cell, pl.lit(f"e{bound.unit.power}"))
     number = cell.cast(pl.Float64, strict=False)
-    if bound.unit.power < 0:
-        divisor = pl.when(number.is_not_null()).then(10.0**-bound.unit.power)
-        return (number / divisor + bound.unit.shift).alias(bound.column.name)
-    return bound.unit.to_si(number).alias(bound.column.name)
+    return (number + bound.unit.shift).alias(bound.column.name)
+
+
+def _sentinels(bound: BoundColumn, tokens: Iterable[str]) -> Iterable[float]:
+    """Yield the tokens for failed runs that are numbers, such as 1e30."""
+    for token in tokens:
+        with contextlib.suppress(UnitError):
+            yield parse_si(token, bound.column.unit, bound.unit)
 
 
 def _is_plain(layout: Layout, rules: Iterable[tuple[str, str]], tokens: Iterable[str]) -> pl.Expr:
     """Tell whether a row needs no second look, from its columns in SI."""
     tests = []
-    sentinels = [number for token in tokens if (number := as_number(token)) is not None]
     for bound in layout.columns:
         value = pl.col(bound.column.name)
         if bound.column.is_text:
             tests.append(value != "")
             continue
         tests += [value.is_finite(), ~breaks_limits(bound.column, value)]
-        tests += [value != bound.unit.to_si(sentinel) for sentinel in sentinels]
+        tests += [value != sentinel for sentinel in _sentinels(bound, tokens)]
     operands = {bound.column.name: pl.col(bound.column.name) for bound in layout.columns}
     tests += [~breaks_order(pair, operands, layout.fixed) for pair in rules]
     return pl.all_horizontal(test.fill_null(value=False) for test in tests)

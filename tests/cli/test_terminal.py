@@ -64,7 +64,7 @@ def test_progress_is_for_terminals(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(sys, "stderr", screen)
     with Terminal(Options()).progress("simulating") as progress:
         assert progress is not None
-        progress(1, 2)
+        progress("100 decisions")
     assert "simulating" in screen.getvalue()
 
 

@@ -13,7 +13,7 @@ looks random from row to row, and no row tells anything twice.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from math import ceil, inf, log2, log10
+from math import ceil, inf, log, log2, log10
 
 import numpy as np
 import numpy.typing as npt
@@ -44,6 +44,9 @@ _FEWEST_TAIL_ROWS = 4
 _FEWEST_ROWS_A_NODE = 2
 _ROUNDS = 12
 _CURVE_POINTS = 60
+_STEP = 1.05
+_NEARLY = 0.95
+"""Share of tau that the local slope has at the end of the tail."""
 _WINDOWS_A_DECADE = 2
 _FEWEST_WINDOWS = 4
 _EDGE_STEPS = ceil(log2(4.0 / 0.01))
@@ -60,7 +63,7 @@ class KnownDelay:
         Name of the law, as in `model.DelayEffect`.
     tau_s : float
     node_overdrive_v, node_s : tuple of float, length K
-        The law as its nodes carry it; the tail lies below the first.
+        The law as its nodes carry it.
     scatter : float
         Relative standard deviation of a row from the law.
     overdrive_v : tuple of float
@@ -80,6 +83,14 @@ class KnownDelay:
         log_node = np.log(self.node_overdrive_v)
         return node_law_delay(magnitude, log_node, np.array(self.tau_s), np.array(self.node_s))
 
+    @property
+    def tail_end_v(self) -> float:
+        """Overdrive up to which the delay falls by tau per unit of its logarithm, V."""
+        ends_v = np.geomspace(self.node_overdrive_v[0], self.node_overdrive_v[-1], _CURVE_POINTS)
+        rise_s = self.delay_s(ends_v / _STEP) - self.delay_s(ends_v)
+        straight = rise_s >= _NEARLY * self.tau_s * log(_STEP)
+        return float(ends_v[max(np.argmin(straight) - 1, 0)] if not straight.all() else ends_v[-1])
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class PlannedDelays:
@@ -88,7 +99,7 @@ class PlannedDelays:
     Parameters
     ----------
     tail_v, curve_v : tuple of float
-        Overdrives to add below the law's first node and above it, V, rising.
+        Overdrives to add in the tail and above it, V, rising.
     tau_half, delay_half : float
         Half widths of the intervals of tau and of the delay where it is widest,
         relative, with all rows.
@@ -161,7 +172,7 @@ def plan_delays(
     ----------
     known : KnownDelay
     lowest_v : float
-        Smallest overdrive that can be measured, V, below the first node.
+        Smallest overdrive that can be measured, V, below the tail's end.
     tau_within, delay_within : float
         Wanted half widths of the intervals of tau and of the delay anywhere from
         `lowest_v` to the last node, relative.
@@ -180,17 +191,17 @@ def plan_delays(
 
     if known.overdrive_v and enough(delay_halves(known, lowest_v=lowest_v, level=level)):
         return None
-    first_v = known.node_overdrive_v[0]
-    there = sum(v < first_v for v in known.overdrive_v)
+    tail_end_v = known.tail_end_v
+    there = sum(v < tail_end_v for v in known.overdrive_v)
     counts = np.array([there, len(known.overdrive_v) - there])
-    total = np.maximum(counts, [_FEWEST_TAIL_ROWS, _FEWEST_ROWS_A_NODE * len(known.node_s)])
+    total = np.maximum(counts, [_FEWEST_TAIL_ROWS, _fewest_on_curve(known)])
     for _ in range(_ROUNDS):
         tail_v, curve_v = _spread(known, lowest_v, total - counts)
         added = (*known.overdrive_v, *tail_v, *curve_v)
         found = delay_halves(replace(known, overdrive_v=added), lowest_v=lowest_v, level=level)
         if enough(found) or total.sum() >= MOST_ROWS:
             break
-        in_tail = found.widest_v < first_v
+        in_tail = found.widest_v < tail_end_v
         tau, delay = found.tau / tau_within, found.delay / delay_within
         factor = np.array([max(tau, delay * in_tail), delay * (not in_tail)])
         total = np.ceil(total * np.clip(factor, 1.0, 3.0) ** 2).astype(int)
@@ -241,11 +252,11 @@ def plan_windows(known: KnownDelay, *, lowest_v: float) -> PlannedWindows:
     ----------
     known : KnownDelay
     lowest_v : float
-        Smallest overdrive, V, below the first node.
+        Smallest overdrive, V, below the tail's end.
     """
-    first_v = known.node_overdrive_v[0]
-    count = max(ceil(_WINDOWS_A_DECADE * log10(first_v / lowest_v)), _FEWEST_WINDOWS)
-    half_v = np.geomspace(first_v, lowest_v, count)
+    tail_end_v = known.tail_end_v
+    count = max(ceil(_WINDOWS_A_DECADE * log10(tail_end_v / lowest_v)), _FEWEST_WINDOWS)
+    half_v = np.geomspace(tail_end_v, lowest_v, count)
     return PlannedWindows(
         resolve_time_s=tuple(float(t) for t in known.delay_s(half_v)),
         window_v=tuple(float(2.0 * v) for v in half_v),
@@ -257,10 +268,16 @@ def _spread(
     known: KnownDelay, lowest_v: float, more: npt.NDArray[np.int64]
 ) -> tuple[tuple[float, ...], tuple[float, ...]]:
     """Return overdrives to add in the tail and along the curve, even in their logarithm."""
-    first_v, last_v = known.node_overdrive_v[0], known.node_overdrive_v[-1]
-    tail = np.geomspace(lowest_v, first_v, int(more[0]) + 1)[: int(more[0])]
-    curve = np.geomspace(first_v, last_v, int(more[1]))
+    tail_end_v, last_v = known.tail_end_v, known.node_overdrive_v[-1]
+    tail = np.geomspace(lowest_v, tail_end_v, int(more[0]) + 1)[: int(more[0])]
+    curve = np.geomspace(tail_end_v, last_v, int(more[1]))
     return tuple(map(_rounded, tail)), tuple(map(_rounded, curve))
+
+
+def _fewest_on_curve(known: KnownDelay) -> int:
+    """Return how many rows above the tail the law needs at the least."""
+    above = sum(v > known.tail_end_v for v in known.node_overdrive_v)
+    return max(_FEWEST_ROWS_A_NODE * above, 1)
 
 
 def _rounded(overdrive_v: float) -> float:
