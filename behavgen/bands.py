@@ -26,6 +26,8 @@ Floats = npt.NDArray[np.float64]
 
 _STEP = 1e-4
 """Relative step of the numerical derivatives; the law is linear in its parameters."""
+_LOG_SMALLEST = -600.0
+"""ln of the smallest overdrive in V that is evaluated; below, the law is a straight line."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -87,20 +89,38 @@ class Bands:
         if effect is None:
             return Band(value=value, low=value, high=value)
         magnitude = np.maximum(np.abs(overdrive_v), effect.floor_v)
-        half_s, _ = self._delay_error(magnitude, condition)
+        half_s, _ = self._delay_error(np.log(magnitude), condition)
         return _logarithmic(value, half_s / value)
 
     def window(self, resolve_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
         """Width in V of the input interval still unresolved at a time after the edge."""
         value = self._reference.window(resolve_time_s, **condition)
+        log_window = self.log_window(resolve_time_s, **condition)
+        return Band(value=value, low=np.exp(log_window.low), high=np.exp(log_window.high))
+
+    def log_window(self, resolve_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
+        """Natural logarithm of the window in V; finite where the window itself underflows."""
+        resolve_s = np.asarray(resolve_time_s, dtype=float)
+        value = self._log_window(resolve_s, condition)
         if self.model.delay is None:
             return Band(value=value, low=value, high=value)
-        known = np.isfinite(value)
-        half_width = np.where(known, 0.5 * value, self.model.delay.node_overdrive_v[-1])
-        half_s, local_tau_s = self._delay_error(np.maximum(half_width, 1e-300), condition)
-        band = _logarithmic(np.where(known, value, 0.0), half_s / local_tau_s)
-        low, high = np.where(known, band.low, value), np.where(known, band.high, value)
-        return Band(value=value, low=low, high=high)
+        largest = np.log(self.model.delay.node_overdrive_v[-1])
+        log_half_width = np.where(np.isfinite(value), value - np.log(2.0), largest)
+        half_s, local_tau_s = self._delay_error(log_half_width, condition)
+        half = half_s / local_tau_s
+        return Band(value=value, low=value - half, high=value + half)
+
+    def _log_window(self, resolve_time_s: Floats, condition: dict[str, npt.ArrayLike]) -> Floats:
+        width = self._reference.window(resolve_time_s, **condition)
+        if self.model.delay is None:
+            return width
+        point = self._reference.point(resolve_time_s.shape, condition)
+        log_node, law = self._reference.law(point)
+        excess_s = np.broadcast_to(resolve_time_s, point.shape).ravel() - law[:, 1]
+        tail = np.log(2.0) + log_node[0] - excess_s / law[:, 0]
+        with np.errstate(divide="ignore"):
+            above = np.log(width.ravel())
+        return np.where(excess_s >= 0.0, tail, above).reshape(point.shape)
 
     def _offset_variance(self, condition: dict[str, npt.ArrayLike]) -> Floats:
         effect = self.model.offset
@@ -120,16 +140,15 @@ class Bands:
         return np.maximum(variance, 0.0).reshape(point.shape)
 
     def _delay_error(
-        self, magnitude_v: npt.ArrayLike, condition: dict[str, npt.ArrayLike]
+        self, log_magnitude: Floats, condition: dict[str, npt.ArrayLike]
     ) -> tuple[Floats, Floats]:
         """Return the delay's half width and the local slope -d(delay)/d(ln overdrive), s."""
         effect = self.model.delay
         assert effect is not None
-        magnitude = np.asarray(magnitude_v, dtype=float)
-        point = self._reference.point(magnitude.shape, condition)
-        magnitude = np.broadcast_to(magnitude, point.shape).ravel()
+        point = self._reference.point(log_magnitude.shape, condition)
+        log_magnitude = np.broadcast_to(log_magnitude, point.shape).ravel()
         log_node, parameters = self._reference.law(point)
-        gradient, local_tau_s = _gradient(magnitude, log_node, parameters)
+        gradient, local_tau_s = _gradient(log_magnitude, log_node, parameters)
         scatter = _propagated(gradient, effect.scatter)
         if effect.leverage:
             terms = surface_terms(effect.tau, point)
@@ -148,8 +167,9 @@ def _logarithmic(value: Floats, half: Floats) -> Band:
     return Band(value=value, low=value * np.exp(-half), high=value * np.exp(half))
 
 
-def _gradient(magnitude: Floats, log_node: Floats, parameters: Floats) -> tuple[Floats, Floats]:
+def _gradient(log_magnitude: Floats, log_node: Floats, parameters: Floats) -> tuple[Floats, Floats]:
     """Return d(delay) / d ln(parameters), shape (N, K + 1), and the local slope (N,), s."""
+    magnitude = np.exp(np.maximum(log_magnitude, _LOG_SMALLEST))
 
     def delay(at: Floats, overdrive: Floats) -> Floats:
         return node_law_delay(overdrive, log_node, at[:, 0], at[:, 1:])
@@ -160,6 +180,8 @@ def _gradient(magnitude: Floats, log_node: Floats, parameters: Floats) -> tuple[
         up[:, k] *= 1.0 + _STEP
         down[:, k] *= 1.0 - _STEP
         columns.append((delay(up, magnitude) - delay(down, magnitude)) / (2.0 * _STEP))
+    # Below the first node the delay grows by tau with every unit of the logarithm.
+    columns[0] = columns[0] + parameters[:, 0] * np.maximum(_LOG_SMALLEST - log_magnitude, 0.0)
     lower, upper = magnitude * (1.0 - _STEP), magnitude * (1.0 + _STEP)
     slope = (delay(parameters, lower) - delay(parameters, upper)) / (2.0 * _STEP)
     return np.stack(columns, axis=-1), np.maximum(slope, 1e-6 * parameters[:, 0])

@@ -20,6 +20,7 @@ from behavgen.errors import Fault, ModelFileError
 
 __all__ = [
     "FORMAT",
+    "ApertureEffect",
     "Axis",
     "Box",
     "Cell",
@@ -28,7 +29,11 @@ __all__ = [
     "ConditionFit",
     "CurvePoints",
     "DelayEffect",
+    "EnergyEffect",
     "Estimate",
+    "KickbackEffect",
+    "MemoryEffect",
+    "MemoryTerm",
     "MismatchEffect",
     "NoiseEffect",
     "OffsetEffect",
@@ -359,6 +364,106 @@ class ResetEffect:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class MemoryTerm:
+    """One decaying part of the memory: ``shift * exp(-t / tau)``.
+
+    Parameters
+    ----------
+    shift : Surface
+        Extrapolated to no reset at all, in V (transform log).
+    tau : Surface
+        In s (transform log).
+    """
+
+    shift: Surface
+    tau: Surface
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class MemoryEffect:
+    """By how much the trip point moves in favour of the previous decision.
+
+    In V, a time `t` after the reset edge: ``min(cap_v, floor + sum of the terms)``.
+
+    Parameters
+    ----------
+    terms : tuple of MemoryTerm
+        The fastest first; none where no reset time removes anything.
+    floor : Surface or None
+        What no reset time removes, in V (transform log); None: nothing.
+    cap_v : float
+        The largest shift that the table vouches for: shorter resets are not extrapolated beyond.
+    """
+
+    terms: tuple[MemoryTerm, ...]
+    floor: Surface | None
+    cap_v: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ApertureEffect:
+    """When, relative to the decision edge, the input counts.
+
+    Parameters
+    ----------
+    centre : Surface
+        Mean of the input's weight over time, in s (transform plain).
+    width : Surface
+        Time in which its share after a step falls from 90 % to 10 %, in s (transform
+        log); reported, of no influence on decisions.
+    """
+
+    centre: Surface
+    width: Surface
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class EnergyEffect:
+    """Energy of one decision and the reset after it, in J.
+
+    Parameters
+    ----------
+    law : str
+        ``"constant"``: `fixed`; ``"delay"``: ``fixed + rise * delay``, a current that
+        flows while the cell decides; ``"overdrive"``: ``fixed + rise * ln(high / magnitude)``
+        with the overdrive's magnitude kept inside `overdrive_v`.
+    fixed : Surface
+        In J (transform log).
+    rise : Surface or None
+        In W or, of the law ``"overdrive"``, in J (transform log).
+    overdrive_v : Range or None
+        Tabulated overdrives; of the law ``"overdrive"`` only.
+    cycle_time_s : float or None
+        Clock period in which the energy was measured; None where the table does not say.
+    """
+
+    law: str
+    fixed: Surface
+    rise: Surface | None = None
+    overdrive_v: Range | None = None
+    cycle_time_s: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class KickbackEffect:
+    """Charge that a decision drives out of the input pins into their sources.
+
+    Parameters
+    ----------
+    common : Surface
+        Mean of both pins, in C (transform plain).
+    differential : Surface
+        Of `inp` less that of `inn` at balanced inputs, in C (transform plain).
+    differential_per_v : Surface or None
+        What a differential input adds to it, in C/V (transform plain); None: nothing.
+    """
+
+    common: Surface
+    differential: Surface
+    differential_per_v: Surface | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Condition:
     """One operating condition; None or "" where the table does not say."""
 
@@ -379,7 +484,12 @@ class CurvePoints:
         ``"delay"``: x = magnitude of the overdrive in V, y = delay in s;
         ``"window"``: x = resolve time in s, y = window in V;
         ``"offset"``: x = instance number, y = offset in V;
-        ``"reset"``: x = 0, y = reset delay in s.
+        ``"reset"``: x = 0, y = reset delay in s;
+        ``"memory"``: x = reset time in s, y = shift in V; ``"memory_at_least"``: the same
+        where the table only says that the shift is not smaller;
+        ``"aperture"``: x = time of a step after the edge in s, y = weight after it;
+        ``"energy"``: x = magnitude of the overdrive in V, y = energy in J;
+        ``"kickback_common"``, ``"kickback_differential"``: x = vdiff in V, y = charge in C.
     condition : Condition
     x, y : tuple of float
     trials : tuple of int
@@ -404,7 +514,7 @@ class ConditionFit:
     condition : Condition
     rows : int
     rms_relative, worst_relative : float or None
-        Relative errors of the emitted model against the rows (delay, window, reset).
+        Relative errors of the emitted model against the rows (delay, window, memory, energy).
     held_out_rms_relative : float or None
         The same for a model fitted without this condition.
     parameters : tuple of Parameter
@@ -446,7 +556,7 @@ class ComparatorModel:
         A cell without process information has one, ``nominal`` with code 0.
     box : Box
         The cell's characterised range: that of the delay table, else the union.
-    offset, mismatch, noise, delay, reset : effect or None
+    offset, mismatch, noise, delay, reset, memory, aperture, energy, kickback : effect or None
     parameters : tuple of Parameter
         The numbers people ask for first, at the middle of the box.
     fits : tuple of ConditionFit
@@ -468,6 +578,10 @@ class ComparatorModel:
     noise: NoiseEffect | None = None
     delay: DelayEffect | None = None
     reset: ResetEffect | None = None
+    memory: MemoryEffect | None = None
+    aperture: ApertureEffect | None = None
+    energy: EnergyEffect | None = None
+    kickback: KickbackEffect | None = None
     parameters: tuple[Parameter, ...] = ()
     fits: tuple[ConditionFit, ...] = ()
     points: tuple[CurvePoints, ...] = ()

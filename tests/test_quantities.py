@@ -6,6 +6,7 @@ import pytest
 
 from behavgen.quantities import QUANTITIES, column_named, columns_of
 from behavgen.tables import guess
+from behavgen.tables.assemble import ASSEMBLERS
 from behavgen.units import unit_spellings
 
 PROMISED = {
@@ -49,6 +50,10 @@ def test_every_column_can_be_guessed():
     for name in names:
         column = column_named(name)
         assert guess.guess_column(column, ["something else", name]) == name
+
+
+def test_what_is_modelled_can_be_assembled_and_nothing_else():
+    assert {name for name, quantity in QUANTITIES.items() if quantity.modelled} == set(ASSEMBLERS)
 
 
 def test_messages_on_limits_are_readable():

@@ -81,9 +81,7 @@ def compare(expected: Expectation, record: Record) -> Agreement:
     timed &= _differ(expected.before, expected.shown, _SHOWN)
     seen = record.first_change(expected.edge)
     error = np.where(timed & (seen >= 0), seen - expected.ready, 0)
-    return Agreement(
-        fault=fault, compared=~expected.excluded, delay_error=error, timed=timed
-    )
+    return Agreement(fault=fault, compared=~expected.excluded, delay_error=error, timed=timed)
 
 
 def _differ(observed: States, expected: States, columns: slice) -> Mask:
@@ -129,4 +127,5 @@ def _strays(expected: Expectation, record: Record) -> Mask:
         (expected.end, expected.reset - reset_slack - 1),
         (quiet_from_reset, next_edge),
     )
-    return np.sum([record.changes(*span) for span in spans], axis=0) > 0
+    moved: Mask = np.sum([record.changes(*span) for span in spans], axis=0) > 0
+    return moved

@@ -1,9 +1,9 @@
 """What passes between a check and the benches that it runs inside the simulator.
 
-    session.json            which runs a session plays and which benches drive
-    <index>.expected.npz    what a run must show
-    <index>.events          what it showed, written by the harness
-    <index>.agreement.npz   the bench's comparison of the two
+A session file says which runs a session plays and which its benches drive.
+Each played run has its ``<index>.expected.npz``, what it must show, its
+``<index>.events``, what it showed, written by the harness, and its
+``<index>.agreement.npz``, the bench's comparison of the two.
 """
 
 from __future__ import annotations

@@ -16,9 +16,7 @@ Suite = tuple[str, BenchResult]
 """A result and the name of the suite that it belongs to."""
 
 
-def bench_results(
-    model: ComparatorModel, outcomes: Sequence[SessionOutcome]
-) -> tuple[Suite, ...]:
+def bench_results(model: ComparatorModel, outcomes: Sequence[SessionOutcome]) -> tuple[Suite, ...]:
     """Return every result of every session, suite by suite.
 
     Parameters

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import hashlib
-import os
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from itertools import chain
@@ -24,8 +22,11 @@ from behavgen.check.strata import PlayedRun, count_strata
 from behavgen.check.verdict import BenchResult, CheckReport, Disagreement, dump_report
 from behavgen.check.waveform import Expectation, expect
 from behavgen.emit.emitted_file import EmittedFile
+from behavgen.errors import Fault, ProjectError
+from behavgen.files import sha256_of_text, write_whole
 from behavgen.model import ComparatorModel, dump_model
 from behavgen.simulators.icarus import find_icarus
+from behavgen.simulators.process import Finished
 
 __all__ = ["check"]
 
@@ -67,18 +68,32 @@ def check(
     ------
     ToolError
         When the simulator is missing or too old.
+    ProjectError
+        When the folder cannot be written.
     """
     icarus = find_icarus()
     tell = progress or (lambda _: None)
     logs = (folder / "check").absolute()
-    logs.mkdir(parents=True, exist_ok=True)
+    _make_folder(logs)
     with TemporaryDirectory(prefix="behavgen-check-") as work:
         simulation = CompiledCheck(icarus=icarus, work=Path(work).resolve(), logs=logs)
         found = _simulated(model, systemverilog.text, simulation, seed, jobs, tell)
     report = _report(model, systemverilog.text, icarus.version, found)
-    _write_whole(logs / "results.xml", results_xml(model.cell.name, found.suites))
-    _write_whole(logs / "check.json", dump_report(report))
+    write_whole(logs / "results.xml", results_xml(model.cell.name, found.suites))
+    write_whole(logs / "check.json", dump_report(report))
     return report
+
+
+def _make_folder(folder: Path) -> None:
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        fault = Fault(
+            file=str(folder),
+            what=f"cannot be made: {error.strerror or error}",
+            allowed="choose a folder that can be written",
+        )
+        raise ProjectError(fault) from error
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -127,8 +142,8 @@ def _simulated(
     top, macros = top_text(model, plan.runs), harness_macros(model, text)
     compiled = simulation.compile(model.cell.name, text, top, macros)
     if compiled.code != 0:
-        name, message = "the text compiles", f"compile.log ends with:\n{compiled.tail()}"
-        return _Found(suites=(("compile", BenchResult(name=name, passed=False, message=message)),))
+        refused = BenchResult(name="the text compiles", passed=False, message=_complaints(compiled))
+        return _Found(suites=(("compile", refused),))
     blocks = {
         run.index: make_stimulus(model, run, seed=seed)
         for run in plan.runs
@@ -143,6 +158,12 @@ def _simulated(
     played = tuple(_played(plan, blocks, expected, simulation.work))
     described = [describe_disagreements(model, one, simulation.work) for one in played]
     return _Found(suites=tuple(suites), played=played, disagreements=tuple(chain(*described)))
+
+
+def _complaints(compiled: Finished) -> str:
+    """Return what a compiler refused, without its warnings."""
+    lines = [line for line in compiled.text.splitlines() if "warning" not in line]
+    return "compile.log says:\n" + "\n".join(lines[:8] or [compiled.tail()])
 
 
 def _write_blocks(
@@ -183,8 +204,8 @@ def _report(model: ComparatorModel, text: str, simulator: str, found: _Found) ->
         cell=model.cell.name,
         passed=sound and wrong == 0 and bool(strata),
         simulator=simulator,
-        model_sha256=_sha256(dump_model(model)),
-        emitted_sha256=_sha256(text),
+        model_sha256=sha256_of_text(dump_model(model)),
+        emitted_sha256=sha256_of_text(text),
         decisions=sum(int(a.compared.sum()) for a in agreements),
         strata=strata,
         benches=benches,
@@ -193,14 +214,3 @@ def _report(model: ComparatorModel, text: str, simulator: str, found: _Found) ->
         worst_delay_ticks=max((int(abs(a.delay_error).max()) for a in agreements), default=0),
         excluded=sum(int((~a.compared).sum()) for a in agreements),
     )
-
-
-def _sha256(text: str) -> str:
-    return hashlib.sha256(text.encode("utf-8")).hexdigest()
-
-
-def _write_whole(path: Path, text: str) -> None:
-    """Write a file whole or not at all."""
-    temporary = path.with_name(f"{path.name}.part")
-    temporary.write_text(text, encoding="utf-8")
-    os.replace(temporary, path)

@@ -41,9 +41,7 @@ def describe_disagreements(
     return tuple(_describe(model, played, record, int(n)) for n in wrong)
 
 
-def _describe(
-    model: ComparatorModel, played: PlayedRun, record: Record, n: int
-) -> Disagreement:
+def _describe(model: ComparatorModel, played: PlayedRun, record: Record, n: int) -> Disagreement:
     stimulus = played.stimulus
     what = FAULTS[played.agreement.fault[n]]
     expected, got = _WORDS[what](_Case(model, played, record, n))
@@ -72,9 +70,7 @@ def _conditions(played: PlayedRun, n: int) -> str:
 class _Case:
     """One decision that went wrong, with what was expected and seen of it."""
 
-    def __init__(
-        self, model: ComparatorModel, played: PlayedRun, record: Record, n: int
-    ) -> None:
+    def __init__(self, model: ComparatorModel, played: PlayedRun, record: Record, n: int) -> None:
         expected = played.expected
         self.ticks_per_second = model.cell.ticks_per_second
         self.resolved = bool(expected.resolved[n])

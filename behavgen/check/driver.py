@@ -18,7 +18,7 @@ from behavgen.reference import Trace
 __all__ = ["Driver"]
 
 _UNCHARACTERISED_V = 1.0
-_LONG_TICKS = 10**9
+_ENDLESS_TICKS = 2**62
 
 
 @cache
@@ -96,7 +96,8 @@ class Driver:
         """Return the reference's trace of one decision at a distance from the trip point."""
         inp, inn = self._levels(overdrive_v)
         condition = self._condition() | {"vcm": (inp + inn) * 0.5}
-        return self.reference.trace([inp - inn], [_LONG_TICKS], first_decision=number, **condition)
+        endless = [_ENDLESS_TICKS]
+        return self.reference.trace([inp - inn], endless, first_decision=number, **condition)
 
     def delay(self, overdrive_v: float) -> int:
         """Return the expected delay in ticks."""

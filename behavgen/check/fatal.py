@@ -9,7 +9,7 @@ from dataclasses import replace
 import numpy as np
 
 from behavgen.check.runs import Run, Settings
-from behavgen.check.simulation import CompiledCheck
+from behavgen.check.simulation import CompiledCheck, play
 from behavgen.check.stimulus import Stimulus, make_stimulus
 from behavgen.check.verdict import BenchResult
 from behavgen.model import ComparatorModel
@@ -23,9 +23,7 @@ _MESSAGE = "[behavgen]"
 def fatal_run(model: ComparatorModel, *, index: int) -> Run:
     """Return an instance whose warnings are fatal."""
     settings = Settings(process=model.processes[0].name, temperature_c=27.0, warnings=2)
-    return Run(
-        index=index, name="warnings are fatal", given=settings, meant=settings, decisions=4
-    )
+    return Run(index=index, name="warnings are fatal", given=settings, meant=settings, decisions=4)
 
 
 def fatal_stimulus(model: ComparatorModel, run: Run) -> Stimulus:
@@ -40,7 +38,7 @@ def fatal_results(
     """Run both simulations and judge how they ended."""
     unknown = max(process.code for process in model.processes) + 17
     process = simulation.simulate("unknown_process", f"behavgen_process={unknown}")
-    warning = simulation.simulate("fatal_warning", f"play={run.index}")
+    warning = simulation.simulate("fatal_warning", *play(run.index, run.index))
     return (
         _judged("an unknown process code is fatal and names the known ones", process,
                 lambda line: _names_all(model, line)),

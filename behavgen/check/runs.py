@@ -18,7 +18,7 @@ from behavgen.check.conditions import spread
 from behavgen.check.rare_draws import rare_draw_seeds
 from behavgen.formulas import random_stream
 from behavgen.formulas.random_stream import path_seed
-from behavgen.model import ComparatorModel
+from behavgen.model import ComparatorModel, Process
 from behavgen.reference import Reference
 from behavgen.units import ZERO_CELSIUS_K
 
@@ -203,7 +203,7 @@ def _special_runs(model: ComparatorModel, seed: int) -> dict[str, Settings]:
     """Visit every switch, and temperatures outside the characterised ones."""
     low, high, middle, *_ = _temperatures(model, start=seed + 1)
     beyond = _OUTSIDE * (high - low) + 5.0
-    base = Settings(process=model.processes[-1].name, temperature_c=middle, seed=seed + 10)
+    base = Settings(process=_widest_process(model), temperature_c=middle, seed=seed + 10)
     quiet = replace(base, noise_on=False)
     return {
         "colder than characterised": replace(quiet, temperature_c=round(low - beyond, 3)),
@@ -222,7 +222,7 @@ def _rare_runs(model: ComparatorModel) -> dict[str, Settings]:
     if model.noise is None:
         return {}
     middle = _temperatures(model, start=0)[2]
-    base = Settings(process=model.processes[0].name, temperature_c=middle)
+    base = Settings(process=_widest_process(model), temperature_c=middle)
     return {
         f"rare draw {number}": replace(base, seed=seed)
         for number, seed in enumerate(rare_draw_seeds(), start=1)
@@ -234,10 +234,12 @@ def _commanded_runs(
 ) -> dict[str, tuple[Settings, Settings, tuple[str, ...]]]:
     """Return (given, meant, plusargs): what the command line says must win."""
     low, high, middle, *_ = _temperatures(model, start=seed + 2)
-    first, last = model.processes[0], model.processes[-1]
-    given = Settings(process=first.name, temperature_c=low, noise_on=False, seed=seed + 20)
+    codes = {process.name: process.code for process in model.processes}
+    wanted = _widest_process(model)
+    other = next((name for name in reversed(codes) if name != wanted), wanted)
+    given = Settings(process=other, temperature_c=low, noise_on=False, seed=seed + 20)
     meant = replace(
-        given, process=last.name, temperature_c=middle, noise_on=True, mismatch_on=True,
+        given, process=wanted, temperature_c=middle, noise_on=True, mismatch_on=True,
         run_seed=seed + 30,
     )  # fmt: skip
     switched_off = replace(given, noise_on=True, mismatch_on=True, temperature_c=high, seed=0)
@@ -245,7 +247,7 @@ def _commanded_runs(
         "command line": (
             given, meant,
             (f"behavgen_seed={seed + 30}", "behavgen_noise=1", "behavgen_mismatch=1",
-             f"behavgen_temp_c={middle!r}", f"behavgen_process={last.code}"),
+             f"behavgen_temp_c={middle!r}", f"behavgen_process={codes[wanted]}"),
         ),
         "command line, switched off": (
             switched_off, replace(switched_off, noise_on=False, mismatch_on=False),
@@ -262,6 +264,19 @@ def _temperatures(model: ComparatorModel, *, start: int) -> tuple[float, ...]:
     kelvin = span.low + (span.high - span.low) * spread(3, 1, start=start)[:, 0]
     ends = (span.low - ZERO_CELSIUS_K, span.high - ZERO_CELSIUS_K)
     return tuple(round(float(t), 3) for t in (*ends, *(kelvin - ZERO_CELSIUS_K)))
+
+
+def _widest_process(model: ComparatorModel) -> str:
+    """Return the process whose quantities were measured over most temperatures in all."""
+    effects = (model.offset, model.noise, model.reset)
+    surfaces = [effect.surface for effect in effects if effect is not None]
+    surfaces += [] if model.delay is None else [model.delay.tau]
+
+    def width(process: Process) -> float:
+        spans = (surface.variant(process.name).box.temperature_k for surface in surfaces)
+        return sum(span.high - span.low for span in spans if span is not None)
+
+    return max(model.processes, key=width).name
 
 
 def _telling_seed(model: ComparatorModel, seed: int) -> int:

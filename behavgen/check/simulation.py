@@ -20,7 +20,7 @@ from behavgen.simulators.cocotb_benches import (
 from behavgen.simulators.icarus import Icarus
 from behavgen.simulators.process import Finished
 
-__all__ = ["CompiledCheck", "SessionOutcome", "share_out", "simulate_sessions"]
+__all__ = ["CompiledCheck", "SessionOutcome", "play", "share_out", "simulate_sessions"]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -57,9 +57,7 @@ class CompiledCheck:
 
     def simulate(self, name: str, *plusargs: str) -> Finished:
         """Simulate without benches."""
-        return self.icarus.simulate(
-            self.compiled, log=self._log(name), plusargs=plusargs
-        )
+        return self.icarus.simulate(self.compiled, log=self._log(name), plusargs=plusargs)
 
     def run_benches(self, session: Session) -> SessionOutcome:
         """Simulate with the benches of a session."""
@@ -75,9 +73,7 @@ class CompiledCheck:
             self.compiled, log=self._log(name), library=vpi_library("icarus"),
             plusargs=session.plusargs, environment=environment,
         )  # fmt: skip
-        return SessionOutcome(
-            session=session, finished=finished, benches=read_outcomes(results)
-        )
+        return SessionOutcome(session=session, finished=finished, benches=read_outcomes(results))
 
     def _log(self, name: str) -> Path:
         return self.logs / f"{name}.log"
@@ -98,6 +94,11 @@ def simulate_sessions(
     """Run sessions on several processors; outcomes in the order of the sessions."""
     with ThreadPoolExecutor(max_workers=max(jobs, 1)) as pool:
         return tuple(pool.map(check.run_benches, sessions))
+
+
+def play(first: int, last: int) -> tuple[str, str]:
+    """Return the plusargs by which runs are played without benches."""
+    return f"play_from={first}", f"play_to={last}"
 
 
 def share_out(session: Session, parts: int) -> tuple[Session, ...]:

@@ -14,6 +14,7 @@ lies, and the input is set at a chosen distance from it.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -24,7 +25,17 @@ from behavgen.formulas.random_stream import path_seed
 from behavgen.model import ComparatorModel
 from behavgen.reference import Reference, Trace
 
-__all__ = ["BALANCED", "NOISY", "SMALL", "SWEEP", "ZERO", "Stimulus", "make_stimulus"]
+__all__ = [
+    "BALANCED",
+    "LEAST_CUT_TICKS",
+    "LEAST_SWEPT_V",
+    "NOISY",
+    "SMALL",
+    "SWEEP",
+    "ZERO",
+    "Stimulus",
+    "make_stimulus",
+]
 
 Floats = npt.NDArray[np.float64]
 Integers = npt.NDArray[np.int64]
@@ -33,6 +44,8 @@ SWEEP, SMALL, NOISY, BALANCED, ZERO = range(5)
 
 LEAST_SWEPT_V = 1e-7
 NOISY_SIGMAS = 10.0
+LEAST_CUT_TICKS = 6
+"""Shorter resets cannot be cut off without a tick deciding."""
 _START_TICKS = 40
 _AFTER_LAST_TICKS = 40
 
@@ -137,14 +150,13 @@ class _Inputs:
     def _traced(self, vdiff: Floats, vcm: Floats, phase_ticks: Integers) -> Trace:
         return self._reference.trace(vdiff, phase_ticks, vcm=vcm, **self._fixed())
 
-    def _fixed(self) -> dict[str, object]:
+    def _fixed(self) -> dict[str, Any]:
         meant = self._run.meant
         return {"vdd": self.vdd_v, "temp_c": meant.temperature_c, "process": meant.process}
 
     def _trip(self, vcm: Floats) -> Floats:
-        fixed = self._fixed()
-        offset = self._reference.offset(vcm=vcm, **fixed) + self._run.meant.offset_shift_v
-        return offset + self._reference.mismatch_v(vcm=vcm, **fixed)
+        shifted = self._reference.offset(vcm=vcm, **self._fixed()) + self._run.meant.offset_shift_v
+        return shifted + self._reference.mismatch_v(vcm=vcm, **self._fixed())
 
     def _distance(self, model: ComparatorModel, vcm: Floats, rng: np.random.Generator) -> Floats:
         """Return the signed distance of the input from the trip point, V."""
@@ -170,9 +182,7 @@ def _aims(run: Run, reference: Reference, rng: np.random.Generator) -> Integers:
     if reference.noise:
         return rng.choice([SWEEP, NOISY, BALANCED], size=run.decisions, p=[0.3, 0.4, 0.3])
     exact = 0.0 if reference.mismatch else 0.04
-    return rng.choice(
-        [SWEEP, SMALL, ZERO], size=run.decisions, p=[0.42, 0.58 - exact, exact]
-    )
+    return rng.choice([SWEEP, SMALL, ZERO], size=run.decisions, p=[0.42, 0.58 - exact, exact])
 
 
 def _log_uniform(low: float, high: float, count: int, rng: np.random.Generator) -> Floats:
@@ -195,9 +205,9 @@ def _gap_ticks(trace: Trace, rng: np.random.Generator) -> Integers:
     """Return lengths of reset phases: most long enough, some cut off by the next edge."""
     count = len(trace.reset_ticks)
     reset = np.maximum(trace.reset_ticks, 1)
-    cut = (rng.random(count) < 0.15) & (reset > 20)
+    cut = (rng.random(count) < 0.15) & (reset >= LEAST_CUT_TICKS)
     longer = np.floor(reset * rng.uniform(1.02, 3.0, count)).astype(np.int64) + 8
-    shorter = np.floor(reset * rng.uniform(0.1, 0.9, count)).astype(np.int64) + 1
+    shorter = 3 + np.floor((reset - 5) * rng.random(count)).astype(np.int64)
     return np.where(cut, shorter, longer)
 
 

@@ -14,11 +14,12 @@ import numpy.typing as npt
 
 from behavgen.check.agreement import Agreement
 from behavgen.check.runs import MODES, Run
-from behavgen.check.stimulus import BALANCED, LEAST_SWEPT_V, NOISY, Stimulus
+from behavgen.check.stimulus import BALANCED, LEAST_CUT_TICKS, LEAST_SWEPT_V, NOISY, Stimulus
 from behavgen.check.verdict import Stratum
 from behavgen.check.waveform import Expectation
 from behavgen.model import ComparatorModel, Range
 from behavgen.operating_point import VOLTAGE_STEPS_PER_V
+from behavgen.reference import Reference
 from behavgen.units import ZERO_CELSIUS_K, format_si
 
 __all__ = ["PlayedRun", "count_strata"]
@@ -79,8 +80,8 @@ def _counted(one: _Slice, runs: tuple[PlayedRun, ...]) -> Stratum:
 def _slices(model: ComparatorModel) -> Iterator[_Slice]:
     yield _Slice("all", "decisions", ALL_DECISIONS, lambda _: True)
     for process in model.processes:
-        yield _Slice("process", process.name, 8000 // len(model.processes),
-                     lambda p, name=process.name: p.run.meant.process == name)  # fmt: skip
+        share = 8000 // len(model.processes)
+        yield _Slice("process", process.name, share, _in_process(process.name))
     yield from _overdrive_slices(model)
     yield from _noise_slices(model)
     yield from _condition_slices(model)
@@ -111,8 +112,7 @@ def _noise_slices(model: ComparatorModel) -> Iterator[_Slice]:
         return
     yield _Slice("noise on", "within 10 sigma", 3000,
                  lambda p: np.isin(p.stimulus.aim, (NOISY, BALANCED)))  # fmt: skip
-    yield _Slice("noise on", f"taken back to below {format_si(_BALANCED_V, 'V')}", 1500,
-                 lambda p: (p.stimulus.aim == BALANCED) & (_magnitude(p) < _BALANCED_V))  # fmt: skip
+    yield _Slice("noise on", f"taken back to below {format_si(_BALANCED_V, 'V')}", 1500, _balanced)
     yield _Slice("noise on", "draws beyond 6.7 sigma", 4, lambda p: _first(p) & p.run.balanced)
 
 
@@ -149,11 +149,11 @@ def _phase_slices(model: ComparatorModel) -> Iterator[_Slice]:
         yield _Slice("decision phase", "too short", 2000, _too_short)
         yield _Slice("decision phase", "ends close to the ready", 200, _close)
         for mode, name in enumerate(MODES):
-            yield _Slice("unresolved", name, 300,
-                         lambda p, mode=mode: _unresolved(p, mode))  # fmt: skip
+            yield _Slice("unresolved", name, 300, _unresolved_in(mode))
     yield _Slice("unresolved", "forced", 300, _forced)
     yield _Slice("reset", "returns", 10_000, lambda p: p.expected.returns)
-    if model.reset is not None:
+    reset_ticks = Reference(model).trace(0.0, 0).reset_ticks
+    if reset_ticks.min() >= 2 * LEAST_CUT_TICKS:
         yield _Slice("reset", "cut off by the next edge", 500, lambda p: ~p.expected.returns)
     yield _Slice("reset", "power-up", 10, _first)
 
@@ -172,8 +172,18 @@ def _switch_slices() -> Iterator[_Slice]:
         yield _Slice("switch", name, 400, select)
 
 
+def _in_process(name: str) -> Callable[[PlayedRun], bool]:
+    return lambda p: p.run.meant.process == name
+
+
+def _balanced(played: PlayedRun) -> Mask:
+    taken_back: Mask = played.stimulus.aim == BALANCED
+    return taken_back & (_magnitude(played) < _BALANCED_V)
+
+
 def _magnitude(played: PlayedRun) -> Floats:
-    return np.abs(played.stimulus.trace.overdrive_v)
+    magnitude: Floats = np.abs(played.stimulus.trace.overdrive_v)
+    return magnitude
 
 
 def _temperature(played: PlayedRun) -> Floats:
@@ -186,7 +196,8 @@ def _noiseless(model: ComparatorModel, played: PlayedRun) -> bool:
 
 
 def _first(played: PlayedRun) -> Mask:
-    return np.arange(len(played.stimulus.edge)) == 0
+    first: Mask = np.arange(len(played.stimulus.edge)) == 0
+    return first
 
 
 def _phase(played: PlayedRun) -> npt.NDArray[np.int64]:
@@ -203,8 +214,8 @@ def _close(played: PlayedRun) -> Mask:
     return close & played.run.meant.delay_on
 
 
-def _unresolved(played: PlayedRun, mode: int) -> Mask:
-    return ~played.expected.resolved & (played.run.meant.unresolved_mode == mode)
+def _unresolved_in(mode: int) -> Callable[[PlayedRun], Mask]:
+    return lambda p: ~p.expected.resolved & (p.run.meant.unresolved_mode == mode)
 
 
 def _forced(played: PlayedRun) -> Mask:

@@ -10,7 +10,6 @@ import numpy.typing as npt
 
 from behavgen.check.runs import Run
 from behavgen.check.stimulus import Stimulus
-from behavgen.formulas import random_stream
 from behavgen.model import ComparatorModel
 
 __all__ = [
@@ -92,17 +91,20 @@ class Record:
 
     def at(self, time: Integers) -> States:
         """Return the states at some times, shape (N, 4)."""
-        return self.state[np.maximum(np.searchsorted(self.time, time, side="right") - 1, 0)]
+        place = np.searchsorted(self.time, time, side="right") - 1
+        return self.state[np.maximum(place, 0)]
 
     def changes(self, after: Integers, until: Integers) -> Integers:
         """Return how many instants of change lie in ``after < time <= until``, shape (N,)."""
         last = np.searchsorted(self.time, until, side="right")
-        return np.maximum(last - np.searchsorted(self.time, after, side="right"), 0)
+        count: Integers = last - np.searchsorted(self.time, after, side="right")
+        return np.maximum(count, 0)
 
     def first_change(self, after: Integers) -> Integers:
         """Return the time of the first change later than `after`; -1 where there is none."""
         place = np.searchsorted(self.time, after, side="right")
-        return np.append(self.time, -1)[np.minimum(place, len(self.time))]
+        time: Integers = np.append(self.time, -1)
+        return time[np.minimum(place, len(self.time))]
 
 
 def expect(model: ComparatorModel, run: Run, stimulus: Stimulus) -> Expectation:
@@ -121,7 +123,7 @@ def expect(model: ComparatorModel, run: Run, stimulus: Stimulus) -> Expectation:
     gap = stimulus.gap
     returns = wait < gap
     delay_tolerance = int(run.meant.delay_on and model.delay is not None)
-    reset_tolerance = int(run.meant.delay_on and model.reset is not None)
+    reset_tolerance = delay_tolerance if model.reset is not None else 0
     excluded = np.abs(wait - gap) <= reset_tolerance
     if delay_tolerance:
         excluded |= np.abs(phase - trace.delay_ticks) <= delay_tolerance

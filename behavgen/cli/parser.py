@@ -27,6 +27,7 @@ COMMANDS = {
     "emit": "write the behavioural models",
     "check": "simulate the models against their reference",
     "report": "write the report page",
+    "plan": "say what to measure next",
     "tools": "list simulators and compilers, found and missing",
     "completion": "print a script that completes commands in a shell",
 }

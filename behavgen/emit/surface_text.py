@@ -129,16 +129,15 @@ def fold(
     lazy : str
         A condition that is not to be folded here; its coefficients are left.
     """
-    coefficients, process_values = _known_coefficients(name, surface, processes)
+    namer = _Namer(stem=name, target=target)
+    remaining = tuple(axis.condition for axis in surface.axes)
+    coefficients, process_values = _known_coefficients(namer, surface, processes)
     assignments: dict[str, tuple[Assignment, ...]] = {}
-    remaining = [axis.condition for axis in surface.axes]
     for axis in surface.axes:
         if axis.condition == lazy:
             break
         remaining = remaining[1:]
-        coefficients, made = _folded(
-            coefficients, coordinates[axis], _Namer(name, target, tuple(remaining))
-        )
+        coefficients, made = _folded(coefficients, coordinates[axis], namer, remaining)
         assignments[axis.condition] = made
     return FoldedSurface(
         process_values=process_values,
@@ -147,38 +146,39 @@ def fold(
     )
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, kw_only=True)
 class _Namer:
     """Names the coefficients that are left when some conditions are folded."""
 
     stem: str
     target: str
-    remaining: tuple[str, ...]
 
-    def __call__(self, powers: Powers) -> str:
-        if not powers:
-            return self.target
-        digits = zip(self.remaining, powers, strict=True)
-        return f"{self.stem}_{''.join(f'{_LETTERS[name]}{power}' for name, power in digits)}"
+    def __call__(self, remaining: tuple[str, ...], powers: Powers) -> str:
+        digits = zip(remaining, powers, strict=True)
+        order = "".join(f"{_LETTERS[name]}{power}" for name, power in digits)
+        return f"{self.stem}_{order}" if order else self.target
 
 
 def _known_coefficients(
-    name: str, surface: Surface, processes: tuple[Process, ...]
+    namer: _Namer, surface: Surface, processes: tuple[Process, ...]
 ) -> tuple[dict[Powers, str], tuple[ProcessValue, ...]]:
     variants = [surface.variant(process.name).coefficients for process in processes]
-    namer = _Namer(name, f"{name}_0", tuple(axis.condition for axis in surface.axes))
+    conditions = tuple(axis.condition for axis in surface.axes)
     coefficients: dict[Powers, str] = {}
     found: list[ProcessValue] = []
     for term, powers in enumerate(surface.exponents):
         values = [variant[term] for variant in variants]
         if any(values):
-            coefficients[powers], declared = process_value(namer(powers), values)
+            coefficients[powers], declared = process_value(namer(conditions, powers), values)
             found.extend(declared)
     return coefficients, tuple(found)
 
 
 def _folded(
-    coefficients: Mapping[Powers, str], coordinate: str, namer: _Namer
+    coefficients: Mapping[Powers, str],
+    coordinate: str,
+    namer: _Namer,
+    remaining: tuple[str, ...],
 ) -> tuple[dict[Powers, str], tuple[Assignment, ...]]:
     """Fold the first condition; a coefficient that does not depend on it passes unchanged."""
     grouped: dict[Powers, dict[int, str]] = {}
@@ -190,7 +190,7 @@ def _folded(
         if set(by_power) == {0}:
             left[powers] = by_power[0]
         else:
-            left[powers] = namer(powers)
+            left[powers] = namer(remaining, powers)
             value = horner_text(by_power, coordinate)
             made.append(Assignment(target=left[powers], value=value))
     return left, tuple(made)

@@ -66,7 +66,7 @@ def verilog_a(model: ComparatorModel) -> EmittedFile:
         has_delay=model.delay is not None,
         has_noise=model.noise is not None,
         has_reset=model.reset is not None,
-        overdrive=_overdrive(model),
+        target=_target(model),
         floor_v=real_literal(model.delay.floor_v if model.delay else _FLOOR_WITHOUT_DELAY_V),
         node_overdrives_v=_node_overdrives(model),
         segments=tuple(pairwise(numbers)),
@@ -98,14 +98,17 @@ def _declarations(model: ComparatorModel, values: Statements) -> Iterator[str]:
     on = ["on"] if any(_on(model.cell)) else []
     conditions = [name for name in ("temperature_k", "vcm_v") if name in values.conditions]
     yield from declaration(
-        ["supply_v", "supply_scale_v", "clock", *on, "decide", "track", *conditions]
+        ["supply_v", "supply_scale_v", "clock", *on, "decide", "follow", *conditions]
     )
     yield from declaration(values.coordinates)
     yield from declaration(values.variables)
     nominal = [name for name in ("tau_s", "reset_s") if name not in values.variables]
-    yield from declaration([*nominal, "regeneration_s", *(["filter_s"] if model.noise else [])])
-    yield from declaration(["overdrive_v", "magnitude_v", *_law_variables(model), "start"])
-    yield from declaration(["pending", "state", "growth", "one", "zero", "unresolved", "shown"])
+    yield from declaration([*nominal, "regeneration_s"])
+    density = ["density"] if model.noise else []
+    yield from declaration(["target_v", "filter_s", *density, "magnitude_v"])
+    yield from declaration([*_law_variables(model), "start"])
+    yield from declaration(["rise", "fall", "pending", "take", "state", "taken", "growth"])
+    yield from declaration(["one", "zero", "unresolved", "shown"])
     yield from declaration(output.level for output in _outputs(model.cell))
 
 
@@ -154,13 +157,12 @@ def _node_overdrives(model: ComparatorModel) -> tuple[str, ...]:
     return tuple(map(real_literal, model.delay.node_overdrive_v)) if model.delay else ()
 
 
-def _overdrive(model: ComparatorModel) -> tuple[str, ...]:
+def _target(model: ComparatorModel) -> tuple[str, ...]:
     pins = model.cell.pins
-    vdiff = "V(sampled)" if model.noise else f"V({pins.inp}, {pins.inn})"
     trip_point = "(offset_v + OFFSET_SHIFT_V)" if model.offset else "OFFSET_SHIFT_V"
     components = model.mismatch.components if model.mismatch else ()
     drawn = "".join(f" - mismatch_{k}_v * MISMATCH_Z{k}" for k in range(len(components)))
-    return wrapped(f"overdrive_v = {vdiff} - {trip_point}{drawn};")
+    return wrapped(f"target_v = V({pins.inp}, {pins.inn}) - {trip_point}{drawn};")
 
 
 def _outputs(cell: Cell) -> Iterator[_Output]:
@@ -178,16 +180,15 @@ def _header(model: ComparatorModel) -> Iterator[HeaderSection]:
 
 
 def _unlike(model: ComparatorModel) -> Iterator[str]:
+    follows = "tau/2" if model.noise else "tau/20"
     yield (
-        "conditions act at any time, on the start of a decision while the input is followed and "
-        "on tau until it is done; there they are taken at the clock edge"
+        f"the input passes a low-pass of {follows} and is held at the clock edge; conditions act "
+        "at any time, on the overdrive in the first 0.3 tau of a decision, on tau until it is done"
     )
-    follows = "tau/20" if model.noise is None else "tau/2, its low-pass for noise, and tau/20"
-    yield f"the latch follows its input with {follows}, and lets go when the clock is at 46 %"
     if model.noise is not None:
         yield (
-            "noise acts in noise analysis, where V(sampled) integrates to sigma, and in "
-            "transient analysis with noise; there is no seed"
+            "noise acts in noise analysis, where V(overdrive) integrates to sigma, and in "
+            "transient analysis with noise; clock edges beyond 5 tau average some of it away"
         )
     if model.mismatch is not None:
         yield "mismatch enters as parameters MISMATCH_Z, independent standard normal numbers"
@@ -200,12 +201,12 @@ def _unlike(model: ComparatorModel) -> Iterator[str]:
         "the reset state returns; there is neither X nor coin"
     )
     yield (
-        "a latch not yet reset decides as before: reset for 1.6 reset delays and tau/2, and "
-        "start a simulation in reset"
+        "a latch that was reset for less than twice the reset delay may stay as it was; start a "
+        "simulation in reset, in the decision phase it begins balanced and does not resolve"
     )
     yield (
-        "delays are no shorter than tau/4, and a hundredth with DELAY_ON = 0; a reset delay that "
-        "was not characterised is tau/4"
+        "delays are no shorter than tau/4, and a hundredth with DELAY_ON = 0 or where none was "
+        "characterised; a reset delay that was not characterised is tau/4"
     )
     if any(_on(model.cell)):
         yield "a cell switched on in a decision phase decides then"

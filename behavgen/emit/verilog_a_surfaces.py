@@ -108,7 +108,8 @@ def _branch(surfaces: Mapping[str, Surface], process: Process) -> Iterator[str]:
         variant = surface.variant(process.name)
         coordinates = tuple(_coordinate(axis, variant) for axis in surface.axes)
         if coordinates and coordinates != present:
-            yield from coordinates
+            for coordinate in coordinates:
+                yield from wrapped(coordinate)
             present = coordinates
         polynomial = _polynomial(
             dense_coefficients(surface.exponents, variant.coefficients),

@@ -18,7 +18,7 @@ from behavgen.fit.law_families import solve_families
 from behavgen.fit.law_solution import DelayRows, LawSolution, inverse_of
 from behavgen.formulas.node_law import node_law_basis
 
-__all__ = ["LawFit", "LawTrial", "fit_law"]
+__all__ = ["LawFit", "LawTrial", "fit_law", "solve_nodes"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -90,9 +90,9 @@ def fit_law(rows: DelayRows) -> LawFit:
     rows : DelayRows
         Every condition has at least two distinct overdrives.
     """
-    simple = [_solve(rows, log_node) for log_node in _node_sets(rows, (1,))]
+    simple = [solve_nodes(rows, log_node) for log_node in _node_sets(rows, (1,))]
     simple += solve_families(rows)
-    free = [_solve(rows, log_node) for log_node in _node_sets(rows, _NODE_COUNTS)]
+    free = [solve_nodes(rows, log_node) for log_node in _node_sets(rows, _NODE_COUNTS)]
     errors = np.array([float(s.left_out_rms.mean()) for s in (*simple, *free)])
     chosen = _preferred(rows, simple, free, errors)
     solution = (*simple, *free)[chosen]
@@ -158,17 +158,27 @@ def _node_sets(rows: DelayRows, counts: tuple[int, ...]) -> list[Floats]:
 
 def _scaled_basis(rows: DelayRows, log_node: Floats) -> Floats:
     """Return relative delays per unit of each parameter, times root weight, (C, R, K + 1)."""
-    basis = node_law_basis(rows.overdrive_v.ravel(), log_node)
-    scaled = (basis / rows.delay_s.reshape(-1, 1)).reshape(*rows.delay_s.shape, -1)
+    # Tables repeat their overdrives from condition to condition.
+    distinct, index = np.unique(rows.overdrive_v, return_inverse=True)
+    basis = node_law_basis(distinct, log_node)[index.reshape(rows.overdrive_v.shape)]
+    scaled = basis / rows.delay_s[..., None]
     return scaled * np.sqrt(rows.weight)[..., None]
 
 
-def _solve(rows: DelayRows, log_node: Floats) -> LawSolution:
-    """Fit free node values at all conditions."""
+def solve_nodes(rows: DelayRows, log_node: Floats, roughness: float = _ROUGHNESS) -> LawSolution:
+    """Fit free node values at all conditions.
+
+    Parameters
+    ----------
+    rows : DelayRows
+    log_node : ndarray, shape (K,)
+    roughness : float
+        Weight of bends, in relative errors.
+    """
     root = np.sqrt(rows.weight)
     scaled = _scaled_basis(rows, log_node)
     fastest = np.where(rows.weight > 0.0, rows.delay_s, np.inf).min(axis=-1)
-    bend = _ROUGHNESS * _bends(log_node)
+    bend = roughness * _bends(log_node)
     normal = scaled.transpose(0, 2, 1) @ scaled
     inverse = inverse_of(normal + (bend.T @ bend) / (fastest * fastest)[:, None, None])
     parameters = (inverse @ scaled.transpose(0, 2, 1) @ root[..., None])[..., 0]

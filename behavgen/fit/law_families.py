@@ -3,8 +3,9 @@
 Each law is linear in everything but one or two voltages. For given voltages
 the rest is linear least squares (separable least squares; G. H. Golub,
 V. Pereyra, SIAM J. Numer. Anal. 10, 1973, 413-432), so that the voltages are
-found on a grid that closes in on its best point and by Newton steps from
-there, for all conditions at once and without starting values.
+found from the best of a few scales by damped Gauss-Newton steps (K. Levenberg,
+Q. Appl. Math. 2, 1944, 164-168), for all conditions at once and without
+starting values from the user.
 
 | law            | delay(v)                                                     |
 |----------------|--------------------------------------------------------------|
@@ -28,9 +29,12 @@ __all__ = ["solve_families"]
 
 Floats = npt.NDArray[np.float64]
 
-_GRID = 9
-_ZOOMS = 3
-_NEWTON_STEPS = 8
+_SCALES = 7
+_APART = np.log(0.3)
+"""A second voltage starts at this distance in ln from the first."""
+_MOST_STEPS = 200
+_SETTLED = 1e-13
+"""Relative change of the squares below which a step changes nothing."""
 _NODES = 12
 _STRAIGHT = 1e-3
 """The tail of a textbook law is straight below this share of its smallest voltage."""
@@ -73,20 +77,27 @@ _FAMILIES = (
 )
 
 
-def solve_families(rows: DelayRows) -> list[LawSolution]:
-    """Fit every textbook law that the rows can tell from a constant, at all conditions."""
+def solve_families(rows: DelayRows, only: str = "") -> list[LawSolution]:
+    """Fit textbook laws at all conditions, as far as the rows can tell their parameters.
+
+    Parameters
+    ----------
+    rows : DelayRows
+    only : str
+        Name of a single law to fit.
+    """
     used = rows.weight > 0.0
     distinct = min(len(np.unique(v[u])) for v, u in zip(rows.overdrive_v, used, strict=True))
     lowest, highest = rows.overdrive_v[used].min(), rows.overdrive_v[used].max()
     return [
         _solve(rows, family, lowest, highest)
         for family in _FAMILIES
-        if distinct > 2 * family.voltages + 3
+        if distinct > 2 * family.voltages + 3 and only in ("", family.name)
     ]
 
 
 def _solve(rows: DelayRows, family: _Family, lowest: float, highest: float) -> LawSolution:
-    shape = _polished(rows, family, _best_shape(rows, family, highest))
+    shape = _polished(rows, family, _best_scale(rows, family, highest))
     linear, _ = _linear(rows, family, shape)
     first = max(float(np.exp(shape.min())) * _STRAIGHT, 0.1 * lowest)
     log_node = np.linspace(np.log(min(first, 0.3 * highest)), np.log(highest), _NODES)
@@ -112,37 +123,53 @@ def _solve(rows: DelayRows, family: _Family, lowest: float, highest: float) -> L
     )
 
 
-def _best_shape(rows: DelayRows, family: _Family, highest: float) -> Floats:
-    """Return the logarithms of the voltages, shape (C, S), by a grid that closes in."""
+def _best_scale(rows: DelayRows, family: _Family, highest: float) -> Floats:
+    """Return starting logarithms of the voltages, shape (C, S), the best of a few scales."""
+    scales = np.log(highest) + np.linspace(np.log(3e-3), np.log(3.0), _SCALES)
+    trials = scales[:, None] + _APART * np.arange(family.voltages)
     conditions = len(rows.delay_s)
-    centre = np.full((conditions, family.voltages), np.log(0.05 * highest))
-    reach = np.log(200.0)
-    for _ in range(_ZOOMS):
-        steps = np.linspace(-reach, reach, _GRID)
-        mesh = np.stack(np.meshgrid(*[steps] * family.voltages, indexing="ij"), axis=-1)
-        offsets = mesh.reshape(-1, family.voltages)
-        squares = np.stack([_linear(rows, family, centre + offset)[1] for offset in offsets])
-        centre = centre + offsets[np.argmin(squares, axis=0)]
-        reach *= 2.5 / (_GRID - 1)
-    return centre
+    squares = [
+        _linear(rows, family, np.broadcast_to(trial, (conditions, family.voltages)))[1]
+        for trial in trials
+    ]
+    return trials[np.argmin(squares, axis=0)]
 
 
 def _polished(rows: DelayRows, family: _Family, shape: Floats) -> Floats:
-    """Take Gauss-Newton steps in all parameters, keeping those that lower the squares."""
+    """Take damped Gauss-Newton steps at every condition until its squares settle."""
+    shape = shape.copy()
     linear, squares = _linear(rows, family, shape)
-    factor = (np.sqrt(rows.weight) / rows.delay_s)[..., None]
-    for _ in range(_NEWTON_STEPS):
-        scaled = _jacobian(family, rows.overdrive_v, shape, linear) * factor
-        model = _delay(family, rows.overdrive_v, shape, linear)
-        gap = ((rows.delay_s - model) * factor[..., 0])[..., None]
-        step = inverse_of(scaled.transpose(0, 2, 1) @ scaled) @ scaled.transpose(0, 2, 1) @ gap
-        trial = shape + np.clip(step[:, -family.voltages :, 0], -1.0, 1.0)
-        trial_linear, trial_squares = _linear(rows, family, trial)
-        better = trial_squares < squares
-        shape = np.where(better[:, None], trial, shape)
-        linear = np.where(better[:, None], trial_linear, linear)
-        squares = np.minimum(squares, trial_squares)
+    damping = np.full(len(shape), 1e-3)
+    active = np.arange(len(shape))
+    for _ in range(_MOST_STEPS):
+        here = rows.at(active)
+        trial = shape[active] + _step(here, family, shape[active], linear[active], damping[active])
+        trial_linear, trial_squares = _linear(here, family, trial)
+        better = trial_squares <= squares[active]
+        unsettled = np.abs(trial_squares - squares[active]) > _SETTLED * squares[active]
+        taken = active[better]
+        shape[taken], linear[taken] = trial[better], trial_linear[better]
+        squares[taken] = trial_squares[better]
+        damping[active] *= np.where(better, 0.1, 7.0)
+        active = active[unsettled & (damping[active] < 1e9)]
+        if len(active) == 0:
+            break
     return shape
+
+
+def _step(
+    rows: DelayRows, family: _Family, shape: Floats, linear: Floats, damping: Floats
+) -> Floats:
+    """Return the damped Gauss-Newton step of the voltages' logarithms, shape (C, S)."""
+    factor = np.sqrt(rows.weight) / rows.delay_s
+    scaled = _jacobian(family, rows.overdrive_v, shape, linear) * factor[..., None]
+    gap = np.sqrt(rows.weight) - (scaled[..., : linear.shape[-1]] @ linear[..., None])[..., 0]
+    transposed = scaled.transpose(0, 2, 1)
+    normal = transposed @ scaled
+    diagonal = np.diagonal(normal, axis1=-2, axis2=-1)
+    normal = normal + (damping[:, None] * diagonal)[..., None] * np.eye(normal.shape[-1])
+    step = (inverse_of(normal) @ (transposed @ gap[..., None]))[:, -family.voltages :, 0]
+    return np.clip(step, -1.0, 1.0)
 
 
 def _linear(rows: DelayRows, family: _Family, shape: Floats) -> tuple[Floats, Floats]:

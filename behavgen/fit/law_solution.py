@@ -35,6 +35,14 @@ class DelayRows:
         """How many rows each condition has, shape (C,)."""
         return np.maximum((self.weight > 0.0).sum(axis=-1), 1).astype(float)
 
+    def at(self, conditions: npt.NDArray[np.intp]) -> DelayRows:
+        """Return the rows of some conditions."""
+        return DelayRows(
+            overdrive_v=self.overdrive_v[conditions],
+            delay_s=self.delay_s[conditions],
+            weight=self.weight[conditions],
+        )
+
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class LawSolution:

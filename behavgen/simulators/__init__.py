@@ -1,0 +1,1 @@
+"""Find simulators and compilers, build with them, run them."""

@@ -38,9 +38,25 @@ def read_texts(
         Takes what is wrong.
     """
     read = _read(texts, layout.columns, shown, faults)
-    _check_limits(read, texts, layout.columns, shown, faults)
-    _check_order(read, rules, layout, shown, faults)
-    return read
+    within = _within_limits(read, texts, layout.columns, shown, faults)
+    _check_order(within, rules, layout, shown, faults)
+    return within.filter(_without_fault(within, texts, layout.columns))
+
+
+def _without_fault(
+    within: pl.DataFrame, texts: pl.DataFrame, columns: Iterable[BoundColumn]
+) -> pl.Series:
+    """Tell the rows whose cells all say something, or are empty where they may be.
+
+    Rows with a fault go no further: what is left of them could look like another row.
+    """
+    usable = pl.repeat(value=True, n=within.height, eager=True)
+    for bound in columns:
+        says = within[bound.column.name].is_not_null()
+        if bound.column.may_be_empty:
+            says |= texts[bound.column.name].is_null()
+        usable &= says
+    return usable
 
 
 def without_failed(texts: pl.DataFrame, tokens: Iterable[str]) -> tuple[pl.DataFrame, int]:
@@ -57,12 +73,8 @@ def _read(
     texts: pl.DataFrame, columns: Iterable[BoundColumn], shown: str, faults: TableFaults
 ) -> pl.DataFrame:
     """Turn texts into our columns, noting each that says nothing usable."""
-    read = texts.select(
-        LINE,
-        *(
-            pl.col(bound.column.name) if bound.column.is_text else _parsed(bound)
-            for bound in columns
-        ),
+    read = texts.with_columns(
+        _numbers(texts[bound.column.name], bound) for bound in columns if not bound.column.is_text
     )
     for bound in columns:
         name, column = bound.column.name, bound.column
@@ -82,17 +94,31 @@ def _read(
     return read
 
 
-def _parsed(bound: BoundColumn) -> pl.Expr:
-    """Return a text such as ``12.5p`` as a number in SI, null where it is none."""
-    name = bound.column.name
-    parts = pl.col(name).str.extract_groups(CELL_PATTERN).struct
+def _numbers(texts: pl.Series, bound: BoundColumn) -> pl.Series:
+    """Return texts as numbers in SI, null where they are none; most are plain even here."""
+    exponent = f"e{bound.unit.power}" if bound.unit.power else ""
+    plain = (texts + exponent).cast(pl.Float64, strict=False) + bound.unit.shift
+    plain = plain.set(~plain.is_finite(), None)
+    others = (plain.is_null() & texts.is_not_null()).arg_true()
+    for start in range(0, others.len(), _ROWS_AT_ONCE):
+        rows = others.slice(start, _ROWS_AT_ONCE)
+        plain = plain.scatter(rows, _suffixed_numbers(texts.gather(rows), bound))
+    return plain
+
+
+_ROWS_AT_ONCE = 200_000  # taking texts apart needs a multiple of their memory
+
+
+def _suffixed_numbers(texts: pl.Series, bound: BoundColumn) -> pl.Series:
+    """Return texts such as ``12.5p`` or ``1e3 mV`` as numbers in SI, null where they are none."""
+    parts = texts.str.extract_groups(CELL_PATTERN).struct.unnest()
     suffixes = cell_suffixes(bound.column.unit, bound.unit)
-    power = _looked_up(parts.field("3"), {text: unit.power for text, unit in suffixes.items()})
-    shift = _looked_up(parts.field("3"), {text: unit.shift for text, unit in suffixes.items()})
-    exponent = parts.field("2").cast(pl.Int64).fill_null(0) + power
-    number = pl.concat_str(parts.field("1"), pl.lit("e"), exponent.cast(pl.String))
+    power = _looked_up(pl.col("3"), {text: unit.power for text, unit in suffixes.items()})
+    shift = _looked_up(pl.col("3"), {text: unit.shift for text, unit in suffixes.items()})
+    exponent = pl.col("2").cast(pl.Int64).fill_null(0) + power
+    number = pl.concat_str(pl.col("1"), pl.lit("e"), exponent.cast(pl.String))
     value = number.cast(pl.Float64, strict=False) + shift
-    return pl.when(value.is_finite()).then(value).alias(name)
+    return parts.select(pl.when(value.is_finite()).then(value)).to_series()
 
 
 def _looked_up(text: pl.Expr, meaning: Mapping[str, int] | Mapping[str, float]) -> pl.Expr:
@@ -108,21 +134,24 @@ def _reason(text: str, bound: BoundColumn) -> str:
     return f"'{text}' is not a number"
 
 
-def _check_limits(
+def _within_limits(
     read: pl.DataFrame,
     texts: pl.DataFrame,
     columns: Iterable[BoundColumn],
     shown: str,
     faults: TableFaults,
-) -> None:
+) -> pl.DataFrame:
+    """Blank every number beyond its column's limits, and note it."""
     for bound in columns:
         if bound.column.is_text:
             continue
         name = bound.column.name
-        broken = read.select(breaks_limits(bound.column, pl.col(name)).fill_null(value=False))
-        lines = texts.filter(broken.to_series()).select(LINE, name)
+        beyond = breaks_limits(bound.column, pl.col(name)).fill_null(value=False)
+        lines = texts.filter(read.select(beyond).to_series()).select(LINE, name)
         what = ((line, f"'{text}'") for line, text in lines.iter_rows())
         faults.add_rows(shown, bound.header, what, lines.height, bound.column.allowed)
+        read = read.with_columns(pl.when(~beyond).then(name).alias(name))
+    return read
 
 
 def _check_order(

@@ -157,6 +157,7 @@ def _raw_lines(path: Path, header: CsvHeader) -> pl.LazyFrame:
         encoding="utf8-lossy",
         row_index_name=LINE,
         row_index_offset=header.line + 1,
+        glob=False,
     )
     (name,) = (name for name in lines.collect_schema().names() if name != LINE)
     return lines.rename({name: "raw"})

@@ -20,6 +20,8 @@ __all__ = ["gaps"]
 
 def gaps(tables: Characterisation, sets: Mapping[str, ConditionSet]) -> Iterable[str]:
     """Yield what the tables leave open, in words."""
+    if tables.window is not None and (empty := int((tables.window.window_v == 0.0).sum())):
+        yield f"window rows without an unresolved trial: {empty}; more trials would tell the width"
     if tables.delay is not None:
         yield from _delay_gaps(tables.delay, sets["delay"])
         for name, what in _ELSEWHERE.items():

@@ -18,7 +18,7 @@ __all__ = ["Guess", "guess_column", "guess_quantity"]
 _PHRASES: Mapping[str, tuple[str, ...]] = {
     "process": ("process", "proc", "corner", "pvt"),
     "vdd": ("vdd", "vcc", "avdd", "vdda", "supply", "vsupply", "vsup"),
-    "temp": ("temp", "temperature", "junction", "tj", "t j"),
+    "temp": ("temp", "temperature", "junction", "tj", "t j", "t"),
     "vcm": ("vcm", "common mode", "vicm", "cm"),
     "instance": ("instance", "inst", "mc", "run", "seed", "sample", "iteration", "die", "device"),
     "offset": ("offset", "vos", "voff", "trip", "v os"),
@@ -48,7 +48,7 @@ _PHRASES: Mapping[str, tuple[str, ...]] = {
     "step_time": ("step time", "t step"),
     "step_weight": ("step weight", "weight"),
     "step": ("step", "step size"),
-    "energy": ("energy",),
+    "energy": ("energy", "e"),
     "cycle_time": ("cycle time", "cycle", "period", "t cycle"),
     "charge_common": ("charge common", "q cm", "q common", "charge cm"),
     "charge_differential": ("charge differential", "q diff", "charge diff", "q dm"),
@@ -121,17 +121,20 @@ def _assign(columns: Iterable[Column], headers: Sequence[str]) -> tuple[dict[str
 
 
 def _likeness(column: Column, header: str) -> float:
-    """Return 0 to 1: the share of the header's words that are one of the column's names."""
+    """Return 0 to 1: the share of the header's words that are one of the column's names.
+
+    A single letter, as in ``T_C``, is a name only beside a unit that confirms it.
+    """
     try:
-        if not column.is_text:
-            unit_of_header(header, column.unit)
+        unit = None if column.is_text else unit_of_header(header, column.unit)
     except UnitError:
         return 0.0
     words = _words(header_stem(header))
     likeness = 0.0
     for phrase in (column.name.replace("_", " "), *_PHRASES[column.name]):
         wanted = phrase.split()
-        if words and {*wanted} <= {*words}:
+        confirmed = unit is not None or column.unit in ("", "1") or len(phrase) > 1
+        if words and confirmed and {*wanted} <= {*words}:
             likeness = max(likeness, len(wanted) / len(words))
     return likeness
 

@@ -235,17 +235,18 @@ def _scan_csv(
         path,
         skip_lines=header.line - 1,
         infer_schema=False,
-        schema_overrides=kinds,
+        schema_overrides=dict(kinds),
         ignore_errors=bool(kinds),
         truncate_ragged_lines=ragged,
         row_index_name=LINE,
         row_index_offset=header.line + 1,
+        glob=False,
     )
 
 
 def _open_parquet(path: Path, shown: str, faults: TableFaults) -> RawTable | None:
     try:
-        whole = pl.scan_parquet(path, row_index_name=LINE, row_index_offset=2)
+        whole = pl.scan_parquet(path, row_index_name=LINE, row_index_offset=2, glob=False)
         schema = whole.collect_schema()
     except pl.exceptions.PolarsError as error:
         faults.add(shown, f"cannot be read as Parquet: {str(error).splitlines()[0]}")

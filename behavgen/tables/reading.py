@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from pathlib import Path
 
 import polars as pl
@@ -49,14 +49,17 @@ def read_cell(project: Project, cell: CellSettings) -> Characterisation:
             if not form.counted:
                 check_duplicates([part for part in quantity if part.form == form], faults)
     faults.raise_if_any()
+    return _characterisation(cell, parts, notices)
+
+
+def _characterisation(
+    cell: CellSettings, parts: dict[str, list[Part]], notices: Iterable[str]
+) -> Characterisation:
     everything = [part for quantity in parts.values() for part in quantity]
     processes = processes_in_order(everything, cell.process_codes)
-    notices += [
-        f"process {name} is declared, but no table names it"
-        for name in cell.process_codes
-        if name not in processes
-    ]
+    unused = [name for name in cell.process_codes if name not in processes]
     sources = tuple(part.source for part in everything)
+    del everything  # so that each quantity's frames can go once they are arrays
     tables = {
         field: table
         for quantity in [*parts]
@@ -66,7 +69,10 @@ def read_cell(project: Project, cell: CellSettings) -> Characterisation:
         cell=cell.name,
         processes=processes,
         sources=sources,
-        notices=tuple(notices),
+        notices=(
+            *notices,
+            *(f"process {name} is declared, but no table names it" for name in unused),
+        ),
         **tables,
     )
 

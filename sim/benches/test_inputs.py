@@ -1,5 +1,7 @@
 """Inputs that are no numbers, inputs that change late, and warnings."""
 
+# ruff: noqa: D103  the names are sentences
+
 from __future__ import annotations
 
 import cocotb

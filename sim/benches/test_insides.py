@@ -1,5 +1,7 @@
 """What can be read inside the module."""
 
+# ruff: noqa: D103  the names are sentences
+
 from __future__ import annotations
 
 import cocotb

@@ -1,5 +1,7 @@
 """Power-up, supply and enable."""
 
+# ruff: noqa: D103  the names are sentences
+
 from __future__ import annotations
 
 import cocotb

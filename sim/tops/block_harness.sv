@@ -6,8 +6,8 @@
 // and records every instant at which an output changed, after it has settled, as a line of
 // 24 characters: time in ticks (20), outp, outn, unresolved (0 1 x z), x_cause.
 //
-// `start` begins a run, `done` ends it. A bench may instead drive the inputs of an idle unit;
-// without benches, +play=<index> plays one run and finishes.
+// `start` begins a run, `done` ends it. A bench may instead drive the inputs of an idle unit.
+// Without benches, +play_from=<index> +play_to=<index> plays these runs side by side.
 // Macros: CELL names the module, PIN_* its pins (a pin without macro is left out), DECIDING the
 // clock's deciding level, TICK the unit of all times; READS_X_CAUSE says that x_cause is there.
 
@@ -82,7 +82,8 @@ module block_harness #(
   string record_name;
   int record;
   time recorded_at;
-  int played_alone;
+  int first;
+  int last;
 
   // The clock stays X until a run starts or a bench drives it; the supply stays off.
   initial begin
@@ -93,10 +94,8 @@ module block_harness #(
     inp = 0.0;
     inn = 0.0;
     vdd = 0.0;
-    if ($value$plusargs("play=%d", played_alone) && played_alone == INDEX) begin
-      #1 start = 1'b1;
-      wait (done === 1'b1);
-      #1 $finish;
+    if ($value$plusargs("play_from=%d", first) && $value$plusargs("play_to=%d", last)) begin
+      if (INDEX >= first && INDEX <= last) #1 start = 1'b1;
     end
   end
 

@@ -1,24 +1,86 @@
 
   // -- Conditions -------------------------------------------------------------------------------
-  // Each quantity is a polynomial in coordinates x of the conditions, which are clamped to where
-  // it was characterised; t, v and c stand for temperature, supply and common mode, a digit for
-  // the power. It is folded one condition at a time, so that only what has changed is repeated.
+  // Every quantity is a polynomial in coordinates x of the conditions, which are clamped to where
+  // it was characterised. t, v, c are temperature, supply and common mode, digits their powers.
+  // Polynomials are folded one condition at a time, so that only what has changed is repeated.
+{% if constants %}
 
-{% for line in declarations %}
-  {{ line }}
-{% endfor %}
-{% for stage in stages %}
-
-  task {{ stage.task }};
-    begin
-{% for paragraph in stage.paragraphs %}
-{% if paragraph.comment %}
-      // {{ paragraph.comment }}
-{% endif %}
-{% for line in paragraph.lines %}
-      {{ line }}
-{% endfor %}
-{% endfor %}
-    end
+  task take_constants;
+{% set paragraphs = constants %}
+{% include "systemverilog/paragraphs.sv" %}
   endtask
-{% endfor %}
+{% endif %}
+{% if temperature.matters %}
+
+  localparam real STEPS_PER_K = 1024.0;  // to which the temperature is rounded
+{% endif %}
+{% if temperature.matters %}
+
+  task fold_temperature;
+{% if temperature.maps %}
+    real clamped;
+{% endif %}
+    temperature_k = $floor((temperature_c + 273.15) * STEPS_PER_K + 0.5) / STEPS_PER_K;
+{% if temperature.warned %}
+    if (temperature_k < {{ temperature.warned.low }} - 1.0 / STEPS_PER_K
+        || temperature_k > {{ temperature.warned.high }} + 1.0 / STEPS_PER_K) begin
+      temperature_warnings = temperature_warnings + 1;
+      warn($sformatf("temperature %g degC outside %g to %g: clamped", temperature_c,
+                     {{ temperature.warned.low }} - 273.15, {{ temperature.warned.high }} - 273.15));
+    end
+{% endif %}
+{% set paragraphs = temperature.paragraphs %}
+{% include "systemverilog/paragraphs.sv" %}
+  endtask
+{% endif %}
+{% if supply.matters %}
+
+  task fold_supply;
+{% if supply.maps %}
+    real clamped;
+{% endif %}
+{% if fixed_supply %}
+    vdd_v = {{ fixed_supply }};  // in the middle, since the cell has no supply pin
+{% else %}
+    vdd_seen = {{ pins.vdd }};
+    vdd_v = $floor({{ pins.vdd }} * STEPS_PER_V + 0.5) / STEPS_PER_V;
+{% endif %}
+{% if supply.warned %}
+    if (vdd_v < {{ supply.warned.low }} - 1.0 / STEPS_PER_V
+        || vdd_v > {{ supply.warned.high }} + 1.0 / STEPS_PER_V) begin
+      supply_warnings = supply_warnings + 1;
+      if (supply_warnings == 1) begin
+        warn($sformatf("supply %g V outside %g V to %g V: clamped", {{ pins.vdd }},
+                       {{ supply.warned.low }}, {{ supply.warned.high }}));
+      end
+    end
+{% endif %}
+{% set paragraphs = supply.paragraphs %}
+{% include "systemverilog/paragraphs.sv" %}
+{% if not fixed_supply and common_mode.matters %}
+    vcm_step = NO_STEP;
+{% endif %}
+  endtask
+{% endif %}
+{% if common_mode.matters %}
+
+  task fold_common_mode;
+{% if common_mode.maps %}
+    real clamped;
+{% endif %}
+    vcm_step = $floor(vcm_steps);
+    vcm_v = vcm_step / STEPS_PER_V;
+{% if common_mode.warned %}
+    if (vcm_v < {{ common_mode.warned.low }} - 1.0 / STEPS_PER_V
+        || vcm_v > {{ common_mode.warned.high }} + 1.0 / STEPS_PER_V) begin
+      common_mode_warnings = common_mode_warnings + 1;
+      if (common_mode_warnings == 1) begin
+        warn($sformatf("common mode %g V outside %g V to %g V: clamped", vcm_v,
+                       {{ common_mode.warned.low }}, {{ common_mode.warned.high }}));
+      end
+    end
+{% endif %}
+{% set paragraphs = common_mode.paragraphs %}
+{% include "systemverilog/paragraphs.sv" %}
+  endtask
+{% endif %}

@@ -1,12 +1,11 @@
 
-  // -- Messages: the first of each kind ---------------------------------------------------------
+  // -- Messages ---------------------------------------------------------------------------------
 
   task warn(input string what);
-    if (WARNINGS == 2) begin
-      $fatal(1, "[behavgen] %s t=%0.6f ns decision %0d: %s", instance_path,
-             $realtime * NS_PER_TICK, last_decision(), what);
-    end else if (WARNINGS == 1) begin
-      $display("[behavgen] %s t=%0.6f ns decision %0d: %s", instance_path,
-               $realtime * NS_PER_TICK, last_decision(), what);
-    end
+    string message;
+    message = $sformatf("[behavgen] %s t=%0.6f ns decision %0d: %s", instance_path,
+                        $realtime * {{ ns_per_tick }},
+                        decision_count == 64'd0 ? 64'd0 : decision_count - 64'd1, what);
+    if (WARNINGS == 2) $fatal(1, "%s", message);
+    else if (WARNINGS != 0) $display("%s", message);
   endtask

@@ -1,6 +1,20 @@
-{% for line in header %}
+{% for line in head %}
 {{ line }}
 {% endfor %}
+
+// Waivers. Of parameters: those of effects that are not characterised are there all the same, so
+// that every cell has the same. Of signals: some are there to be read from outside, and some
+// algorithms use a part of a word. Of delays: each is one time step at least. Of nets: the supply
+// both switches the cell and is an operand.
+// verilator lint_save
+// verilator lint_off UNUSEDPARAM
+// verilator lint_off UNUSEDSIGNAL
+// verilator lint_off ZERODLY
+// verilator lint_off SYNCASYNCNET
+`ifdef __slang__
+`pragma diagnostic push
+`pragma diagnostic ignore="-Wunused"
+`endif
 
 module {{ cell.name }} #(
 {% for line in parameters %}
@@ -13,26 +27,26 @@ module {{ cell.name }} #(
 );
   timeunit {{ cell.time_precision }};
   timeprecision {{ cell.time_precision }};
-
-  // Verilator: what its checks report here is meant.
-  // verilator lint_off BLKSEQ       waiting processes can only assign blocking
-  // verilator lint_off REALCVT      reals are rounded to whole time steps by assigning them
-  // verilator lint_off UNUSEDPARAM  parameters of effects that are not characterised
-  // verilator lint_off UNUSEDSIGNAL variables that are there to be read from outside
-  // Compile with -ffp-contract=off where it may fuse multiplications and additions:
-  // random numbers would differ in their last bits.
 {% include "systemverilog/state.sv" %}
+{% include "systemverilog/start.sv" %}
 {% include "systemverilog/clock.sv" %}
 {% include "systemverilog/decision.sv" %}
 {% if delay == "curve" %}
 {% include "systemverilog/delay_curve.sv" %}
 {% endif %}
 {% include "systemverilog/outputs.sv" %}
-{% if can_be_off %}
+{% if not holds %}
+{% include "systemverilog/reset.sv" %}
+{% endif %}
+{% if is_on %}
 {% include "systemverilog/supply.sv" %}
 {% endif %}
 {% include "systemverilog/conditions.sv" %}
-{% include "systemverilog/start.sv" %}
 {% include "systemverilog/random.sv" %}
 {% include "systemverilog/messages.sv" %}
 endmodule
+
+`ifdef __slang__
+`pragma diagnostic pop
+`endif
+// verilator lint_restore

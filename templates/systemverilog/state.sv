@@ -1,33 +1,78 @@
 
   // -- To be read from outside ------------------------------------------------------------------
 
-  // Why the outputs show no decision: 0 they do or rest, 1 unresolved, 2 supply or enable,
-  // 3 input not a number, 4 clock unknown, 5 before the first decision
+  // Why the outputs show no decision: 0 they do, or rest; 1 unresolved; 2 supply or enable;
+  // 3 input not a number; 4 clock unknown; 5 before the first decision
   int x_cause = 5;
   bit [63:0] decision_count = 64'd0;  // decision edges so far
-  real overdrive_v = 0.0;             // of the last decision, signed, with its noise
-  real delay_s = 0.0;                 // of the last decision, also if it did not resolve
-  int range_warnings = 0;             // conditions outside the characterised range
-  int input_warnings = 0;             // inputs that are not a number
-  int clock_warnings = 0;             // unknown clock levels
+  real overdrive_v = 0.0;             // effective overdrive of the last decision, signed
+  real delay_s = 0.0;                 // its delay, also if it did not resolve
+  int temperature_warnings = 0;       // how often a condition was outside its range
+  int supply_warnings = 0;
+  int common_mode_warnings = 0;
+  int input_warnings = 0;             // how often an input was not a number at a decision edge
+  int clock_warnings = 0;             // how often the clock became unknown
 
   // -- State ------------------------------------------------------------------------------------
 
-  localparam real TICKS_PER_S = {{ ticks_per_s }};
-
-  // Of the present clock phase: without a decision, with one on its way, with one that is kept
-  // from resolving, with one that is shown
+  // Since the last decision edge: nothing was decided; a decision is on its way; one is kept
+  // from resolving; one is shown
   localparam int IDLE = 0, DECIDING = 1, FORCED = 2, DECIDED = 3;
-  int phase = IDLE;
-  logic clk_level = 1'bx;  // last clock level; x if it was neither 0 nor 1
-{% if can_be_off %}
-  bit on = 1'b0;           // supplied and enabled
+  int decision_state = IDLE;
+  logic clk_level;                    // level of the clock before its last change
+{% if is_on %}
+{% if supply_off and pins.vdd %}
+  localparam real SUPPLY_OFF_V = {{ supply_off }};
 {% endif %}
-  bit leaning;             // what the decision will be
-  longint delay_ticks;     // its delay
-  real edge_time;          // its edge, in ticks
+  bit is_on;                          // supplied and enabled
+{% endif %}
+  bit leaning = 1'b0;                 // which way the decision goes
+  real edge_time = 0.0;               // its decision edge, in ticks of the time precision
+  longint delay_ticks = 64'sd1;
+{% if reset %}
+  longint reset_ticks = 64'sd0;       // delay of the reset after it
+{% endif %}
 {% if not holds %}
-  bit returning = 1'b0;    // the reset state is on its way
-  longint return_ticks;    // how long it takes
-  real return_time;        // when it is there
+  bit returning = 1'b0;               // the reset state is on its way
+  real return_time = 0.0;             // when it is there, in ticks
+  longint return_ticks = 64'sd1;      // how long it takes
 {% endif %}
+
+  // Conditions, and what follows from them
+{% if temperature.matters %}
+  real temperature_k = 0.0;
+{% endif %}
+{% if supply.matters or common_mode.matters %}
+  localparam real STEPS_PER_V = 1048576.0;  // to which supply and common mode are rounded
+{% endif %}
+{% if supply.matters %}
+  real vdd_v = 0.0;
+{% if not fixed_supply %}
+  real vdd_seen = -1.0;               // supply that was last taken in; none yet
+{% endif %}
+{% endif %}
+{% if common_mode.matters %}
+  localparam real NO_STEP = 1e300;
+  real vcm_v = 0.0;
+  real vcm_step = NO_STEP;            // common mode in steps, as last taken in
+{% endif %}
+{% if offset %}
+  real trip_v = 0.0;                  // trip point with OFFSET_SHIFT_V
+{% endif %}
+{% if mismatch %}
+  real mismatch_v = 0.0;              // offset of this instance beyond it
+{% endif %}
+{% if noise %}
+  real sigma_v = 0.0;                 // noise of one decision
+  real noise_reach_v = 0.0;           // overdrives from which noise changes no bit
+{% endif %}
+{% if delay == "logarithm" %}
+  real tau_s = 0.0;                   // regeneration time constant
+  real node_s = 0.0;                  // delay at the largest characterised overdrive
+{% endif %}
+{% if reset %}
+  real reset_s = 0.0;                 // reset delay
+{% endif %}
+{% for line in declarations %}
+  {{ line }}
+{% endfor %}

@@ -1,16 +1,12 @@
 
   // -- Supply and enable ------------------------------------------------------------------------
 
-{% if supply_off %}
-  localparam real SUPPLY_OFF_V = {{ supply_off }};
-{% endif %}
-
   always @({{ off_events }}) begin
-    if (on != ({{ is_on }})) begin
-      on = !on;
-      if (!on) lose_outputs(2);
+    if (is_on != ({{ is_on }})) begin
+      is_on = !is_on;
+      if (!is_on) lose_outputs(2);
 {% if not holds %}
-      else if (clk_level === {{ resting }}) return_to_reset(1);
+      else if (clk_level === {{ resting }}) power_up;
 {% endif %}
     end
   end

@@ -19,7 +19,9 @@ def test_without_a_simulator_everything_but_the_check_is_done(
     assert "iverilog" in ran.complaint
     assert ran.stdout.splitlines()[-1].startswith("NOT OK  2 cells from tables to report, but")
     results = tmp_path / "behavgen-demo" / "build" / "sense_latch"
-    assert {"report.html", "sense_latch.sv", "sense_latch.va"} <= {p.name for p in results.iterdir()}
+    assert {"report.html", "sense_latch.sv", "sense_latch.va"} <= {
+        p.name for p in results.iterdir()
+    }
     told = run(capsys, "demo", "--json").json
     assert told["failed_by"] == ["tools"]
     assert told["cells"]["sense_latch"]["check"] is None
@@ -46,7 +48,9 @@ def test_the_whole_path(
     assert ran.exit_code == 0, ran.stdout
     assert ran.stderr == ""
     labels = [line.split()[0] for line in ran.stdout.splitlines() if line[2:3].strip()]
-    positions = [labels.index(step) for step in ("project", "tables", "fit", "emit", "check", "report")]
+    positions = [
+        labels.index(step) for step in ("project", "tables", "fit", "emit", "check", "report")
+    ]
     assert positions == sorted(positions)
     for name in ("report.html", "sense_latch.sv", "sense_latch.va"):
         path = Path("look", "build", "sense_latch", name)

@@ -47,6 +47,11 @@ def delay_and_bit(circuit, stimulus, vdd=1.2):
     return ready - stimulus.edge(), int(np.interp(ready + 5e-12, waves["time"], apart) > 0.0)
 
 
+def assert_levels(waves, time, expected):
+    levels = [value(waves, pin, time) for pin in ("outp", "outn")]
+    assert levels == pytest.approx(expected, abs=1e-3)
+
+
 def corners(box):
     spans = (box.vdd_v, box.temperature_k, box.vcm_v)
     return itertools.product(*((span.low, span.high) for span in spans))
@@ -93,7 +98,8 @@ LAWS = {
     "three nodes, steep at their end": ((1e-3, 0.1, 0.3), (250e-12, 100e-12, 40e-12)),
     "flat between two nodes": ((1e-4, 1e-3, 1e-2, 0.3), (250e-12, 160e-12, 159e-12, 60e-12)),
     "eleven nodes": (
-        tuple(np.geomspace(1e-4, 0.3, 11).tolist()), tuple(np.linspace(300e-12, 50e-12, 11).tolist()),
+        tuple(np.geomspace(1e-4, 0.3, 11).tolist()),
+        tuple(np.linspace(300e-12, 50e-12, 11).tolist()),
     ),
     "shorter than tau": ((1e-3, 0.3), (80e-12, 10e-12)),
 }  # fmt: skip
@@ -149,15 +155,12 @@ def test_outputs_decide_and_return_to_each_reset_state(in_reset, decides_on, tmp
     stimulus = Stimulus(vdiff=swing, phase_s=0.8e-9, cycles=1.9, parameters=QUIET)
     waves = circuit.transient(stimulus)
 
-    def levels(time):
-        return [pytest.approx(value(waves, pin, time), abs=1e-3) for pin in ("outp", "outn")]
-
     first, second = stimulus.edge(0), stimulus.edge(1)
     at_reset = RESET_STATES[in_reset]
-    assert list(at_reset) == levels(first - 0.1e-9)
-    assert [1.2, 0.0] == levels(first + 0.7e-9)
-    assert ([1.2, 0.0] if in_reset == "hold" else list(at_reset)) == levels(second - 0.1e-9)
-    assert [0.0, 1.2] == levels(second + 0.7e-9)
+    assert_levels(waves, first - 0.1e-9, at_reset)
+    assert_levels(waves, first + 0.7e-9, (1.2, 0.0))
+    assert_levels(waves, second - 0.1e-9, (1.2, 0.0) if in_reset == "hold" else at_reset)
+    assert_levels(waves, second + 0.7e-9, (0.0, 1.2))
 
     ready = crossing(waves["time"], -separation(waves), 0.6, second)
     tolerance = 0.02 * tau_of(reference, **NOMINAL)
@@ -200,12 +203,33 @@ def test_outputs_rest_at_mid_level_after_a_decision_that_did_not_resolve(in_rese
 def test_noise_analysis_of_the_input_gives_sigma_back(full):
     reference = Reference(full.model)
     for condition in (NOMINAL, {"vdd": 1.08, "temp_c": 125.0, "vcm": 0.8}):
-        analysis = 'noise out="x1:sampled" in="vip" from=1e3 to=1e16 mode="dec" points=50'
+        analysis = 'noise out="x1:overdrive" in="vip" from=1e3 to=1e16 mode="dec" points=50'
         waves = full.run(Stimulus(**condition), analysis)
         rms = np.sqrt(np.trapezoid(waves["onoise"], waves["frequency"]))
         assert rms == pytest.approx(float(reference.noise_sigma(**condition)), rel=0.01)
         silent = full.run(Stimulus(parameters=QUIET, **condition), analysis)
         np.testing.assert_array_equal(silent["onoise"], 0.0)
+
+
+@pytest.mark.slow
+def test_noise_reaches_decisions_with_its_full_sigma(full, quiet_reference):
+    """300 decisions: false alarm of the bounds on sigma 1e-4 (chi-square), on the mean 6e-5."""
+    sigma = float(Reference(full.model).noise_sigma(**NOMINAL))
+    vdiff = float(quiet_reference.offset(**NOMINAL)) + sigma
+    stimulus = Stimulus(vdiff=vdiff, phase_s=0.4e-9, cycles=24.8)
+    edges = np.array([stimulus.edge(number) for number in range(25)])
+    held, apart = [], []
+    for seed in range(1, 13):
+        noise = f'noisefmax=500e9 noisemode="sde" noiseseed={seed}'
+        waves = full.run(stimulus, f"tran step=1p stop={edges[-1] + 0.39e-9!r} {noise}")
+        held += np.interp(edges + 20e-12, waves["time"], waves["x1:overdrive"]).tolist()
+        apart += np.interp(edges + 0.38e-9, waves["time"], separation(waves)).tolist()
+    z = np.array(held) / sigma
+    assert np.std(z, ddof=1) == pytest.approx(1.0, abs=4 / np.sqrt(2 * len(z)))
+    assert np.mean(z) == pytest.approx(1.0, abs=4 / np.sqrt(len(z)))
+    resolved = np.abs(apart) > 0.6
+    assert np.mean(resolved) > 0.97  # by the delay law, 0.1 % need more than 380 ps
+    np.testing.assert_array_equal((z > 0.0)[resolved], (np.array(apart) > 0.0)[resolved])
 
 
 def test_mismatch_and_shift_move_the_trip_point(full, quiet_reference):
@@ -245,7 +269,8 @@ def test_renamed_pins_an_enable_and_a_supply_parameter_work(tmp_path):
     condition = {"vdd": 1.1, "temp_c": 27.0, "vcm": 0.65}
     vdiff = float(reference.offset(**condition)) - 1e-3
     enable = steps((0.0, 1.1), (2e-9, 1.1), (2.05e-9, 0.0))
-    stimulus = Stimulus(vdiff=vdiff, enable=enable, parameters=QUIET | {"supply_v": 1.1}, **condition)
+    settings = QUIET | {"supply_v": 1.1}
+    stimulus = Stimulus(vdiff=vdiff, enable=enable, parameters=settings, **condition)
     waves = circuit.transient(stimulus)
     delay = crossing(waves["time"], -waves["outp"], -0.55, stimulus.edge()) - stimulus.edge()
     assert delay == pytest.approx(float(reference.delay(1e-3, **condition)), rel=0.002)

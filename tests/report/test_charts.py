@@ -8,6 +8,7 @@ import pytest
 
 from behavgen.report.axes import PlotAxis
 from behavgen.report.charts import MARKERS, Band, Chart, Dots, Line, Panel, draw_chart, swatch
+from tests.report.drawings import line_places, marker_places, path_of
 
 WIDTH, HEIGHT = 480.0 - 54.0 - 14.0, 200.0
 
@@ -21,28 +22,14 @@ def draw(*layers, log_x=False, title="A title", low=0.0, high=10.0):
     return ET.fromstring(text)
 
 
-def path(svg, style):
-    (found,) = [e for e in svg.iter("path") if e.get("class") == style]
-    return found.get("d")
-
-
-def marker_starts(d, stroke):
-    """Add up the relative steps that place the markers."""
-    steps = [part for part in d.split(stroke) if part]
-    pairs = [[float(v) for v in re.findall(r"-?[\d.]+", step)] for step in steps]
-    return np.cumsum(np.array(pairs), axis=0)
-
-
 @pytest.mark.parametrize("marker", MARKERS)
 def test_markers_stand_at_their_values_to_a_tenth_of_a_unit(marker):
     rng = np.random.default_rng(1)
     x, y = rng.uniform(0.0, 10.0, 300), rng.uniform(0.0, 10.0, 300)
     svg = draw(Dots(x=x, y=y, marker=marker, style="s3"))
-    (d,) = [e.get("d") for e in svg.iter("path") if (e.get("class") or "").endswith(" s3")]
-    across, along, stroke = MARKERS[marker]
-    starts = marker_starts(d, stroke) - [across, along]
+    (style,) = [e.get("class") for e in svg.iter("path") if (e.get("class") or "").endswith(" s3")]
     expected = np.column_stack([x / 10.0 * WIDTH, (1.0 - y / 10.0) * HEIGHT])
-    np.testing.assert_allclose(starts, expected, atol=0.051)
+    np.testing.assert_allclose(marker_places(svg, style, marker), expected, atol=0.051)
 
 
 @pytest.mark.parametrize("marker", MARKERS)
@@ -66,22 +53,21 @@ def test_a_marker_ends_where_it_starts(marker):
 def test_a_line_keeps_its_shape_when_points_are_left_out():
     x = np.linspace(0.0, 10.0, 400)
     y = 5.0 + 4.0 * np.sin(x)
-    d = path(draw(Line(x=x, y=y, style="s1")), "line s1")
-    kept = np.array([[float(v) for v in p.split()] for p in d[1:].split("L")])
+    kept = line_places(draw(Line(x=x, y=y, style="s1")), "line s1")
     assert len(kept) < 150
     drawn = np.interp(x / 10.0 * WIDTH, kept[:, 0], kept[:, 1])
     np.testing.assert_allclose(drawn, (1.0 - y / 10.0) * HEIGHT, atol=0.35)
 
 
 def test_a_straight_line_needs_two_points():
-    d = path(draw(Line(x=np.geomspace(1e-6, 1.0, 50), y=np.linspace(9.0, 1.0, 50)), log_x=True),
+    d = path_of(draw(Line(x=np.geomspace(1e-6, 1.0, 50), y=np.linspace(9.0, 1.0, 50)), log_x=True),
              "line s0")  # fmt: skip
     assert d == f"M0 20L{WIDTH:g} 180"
 
 
 def test_values_that_are_not_finite_are_not_drawn():
     y = np.array([1.0, np.nan, np.inf, 3.0])
-    d = path(draw(Dots(x=np.arange(4.0), y=y)), "dot s0")
+    d = path_of(draw(Dots(x=np.arange(4.0), y=y)), "dot s0")
     assert d.count("h0") == 2
 
 
@@ -91,8 +77,8 @@ def test_a_band_is_a_closed_area_and_error_bars_reach_both_ends():
         Band(x=x, low=np.array([1.0, 2.0]), high=np.array([3.0, 4.0])),
         Dots(x=x, y=x / 2, low=np.array([0.0, 4.0]), high=np.array([1.0, 6.0])),
     )
-    assert path(svg, "band") == f"M0 180L{WIDTH:g} 160L{WIDTH:g} 120L0 140z"
-    assert path(svg, "bar s0") == f"M0 200V180M{WIDTH:g} 120V80"
+    assert path_of(svg, "band") == f"M0 180L{WIDTH:g} 160L{WIDTH:g} 120L0 140z"
+    assert path_of(svg, "bar s0") == f"M0 200V180M{WIDTH:g} 120V80"
 
 
 def test_titles_are_escaped_and_name_the_drawing():
@@ -105,7 +91,7 @@ def test_titles_are_escaped_and_name_the_drawing():
 
 def test_tick_labels_stand_at_their_grid_lines():
     svg = draw(log_x=True)
-    grid = path(svg, "grid")
+    grid = path_of(svg, "grid")
     lines = {float(v) for v in re.findall(r"M([\d.]+) 0V", grid)}
     labels = {round(float(e.get("x")) - 54.0, 1) for e in svg.iter("text")
               if e.get("class") == "tick" and "V" in e.text}  # fmt: skip

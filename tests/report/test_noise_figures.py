@@ -1,6 +1,7 @@
 """S-curves in pictures: intervals, sigmas and what is left out."""
 
 import json
+import xml.etree.ElementTree as ET
 from dataclasses import replace
 from pathlib import Path
 
@@ -8,7 +9,7 @@ import numpy as np
 import pytest
 
 from behavgen.bands import Bands
-from behavgen.model import Condition, CurvePoints, NoiseEffect
+from behavgen.model import Condition, CurvePoints, NoiseEffect, OffsetEffect
 from behavgen.reference import Reference
 from behavgen.report.curves import curves
 from behavgen.report.noise_figures import (
@@ -18,8 +19,11 @@ from behavgen.report.noise_figures import (
     standardised_s_curves,
 )
 from tests.example_models import constant_surface, minimal_model
+from tests.report.drawings import marker_places, tick_places
 
-PUBLISHED = Path(__file__).parents[1] / "published" / "binomial_ci.json"
+PUBLISHED = json.loads(
+    (Path(__file__).parents[1] / "published" / "binomial_ci.json").read_text(encoding="utf-8")
+)
 
 
 def noisy_model(levels_v, shares, conditions=1):
@@ -34,17 +38,12 @@ def noisy_model(levels_v, shares, conditions=1):
     return replace(bare, noise=noise, points=points)
 
 
-@pytest.mark.parametrize(
-    ("ones", "trials", "low", "high"), [(81, 263, 0.2553, 0.3662), (0, 20, 0.0, 0.1611)]
-)
-def test_score_intervals_are_those_published(ones, trials, low, high):
-    """R. G. Newcombe, Statistics in Medicine 17, 1998, 857-872, table I, method 3."""
-    found = score_interval(np.array([ones / trials]), np.array([float(trials)]))
-    assert (found[0][0], found[1][0]) == pytest.approx((low, high), abs=5.1e-5)
-
-
-def test_the_published_cases_are_still_those_of_the_file():
-    assert "81" in PUBLISHED.read_text() and json.loads(PUBLISHED.read_text())
+@pytest.mark.parametrize("case", sorted(PUBLISHED))
+def test_score_intervals_are_those_published(case):
+    """Cases of R. G. Newcombe, Statistics in Medicine 17, 1998, 857-872, method 3."""
+    ones, trials = map(int, case.split("/"))
+    low, high = score_interval(np.array([ones / trials]), np.array([float(trials)]))
+    assert (low[0], high[0]) == pytest.approx(PUBLISHED[case]["wilson"], abs=1e-9)
 
 
 def test_sigmas_observed_are_those_of_the_rarest_count():
@@ -66,6 +65,19 @@ def test_one_condition_needs_no_common_axis():
     small = s_curve_multiples(members, Reference(model), Bands(model))
     assert len(small.figures) == 1
     assert "1\N{NO-BREAK SPACE}mV" in small.figures[0].detail
+
+
+def test_levels_stand_at_their_distance_from_the_trip_point_in_sigmas():
+    model = noisy_model((0.0, 1e-3, 3e-3), (0.2, 0.5, 0.97), conditions=2)
+    offset = OffsetEffect(surface=constant_surface("V", "plain", 1e-3, "nominal"))
+    model = replace(model, offset=offset)
+    figure = standardised_s_curves(curves(model, Reference(model), "noise"), Reference(model))
+    svg = ET.fromstring(figure.svg)
+    ticks = tick_places(svg, "x")
+    upper = next(e for e in svg.iter("svg") if e is not svg)
+    x = marker_places(upper, "dot s0", "dot")[:, 0]
+    unit = ticks["1"] - ticks["0"]
+    np.testing.assert_allclose((x - ticks["0"]) / unit, [-1.0, 0.0, 2.0], atol=2e-3)
 
 
 def test_of_many_conditions_a_dozen_is_drawn_and_said():

@@ -1,12 +1,15 @@
 """Offsets of instances: the emitted sigma and its picture."""
 
+import xml.etree.ElementTree as ET
 from dataclasses import replace
 
+import numpy as np
 import pytest
 
 from behavgen.model import Condition, CurvePoints, MismatchEffect
 from behavgen.report.offset_figures import mismatch_sigma, offset_multiples
 from tests.example_models import constant_surface, minimal_model
+from tests.report.drawings import marker_places, tick_places
 
 NBSP, SIGMA = "\N{NO-BREAK SPACE}", "\N{GREEK SMALL LETTER SIGMA}"
 
@@ -30,6 +33,16 @@ def test_each_condition_has_a_plot_with_its_numbers():
     # statistics.stdev of the four instances is 2.5 mV
     sigma = f"{SIGMA}{NBSP}2.5{NBSP}mV"
     assert figure.detail == f"4 instances, {sigma}, emitted 5{NBSP}mV"
+
+
+def test_instances_stand_at_their_normal_scores():
+    """Expected normal scores of four by G. Blom, (k - 3/8) / (n + 1/4): -1.049, -0.299, ..."""
+    (figure,) = offset_multiples(model_of(3e-3, 4e-3)).figures
+    svg = ET.fromstring(figure.svg)
+    ticks = tick_places(svg, "x")
+    unit = ticks["1"] - ticks["0"]
+    x = (marker_places(svg, "dot s0", "dot")[:, 0] - ticks["0"]) / unit
+    np.testing.assert_allclose(x, [-1.049, -0.299, 0.299, 1.049], atol=3e-3)
 
 
 def test_too_few_instances_are_no_plot():

@@ -93,7 +93,9 @@ def test_every_table_can_be_read_aloud(html):
     page = read_page(html)
     for table in page.all("table"):
         assert table.all("caption")
-        assert all(th.attributes.get("scope") in ("col", "row") for th in table.all("th"))
+        for part, scope in (("thead", "col"), ("tbody", "row")):
+            heads = table.all(part)[0].all("th")
+            assert heads and all(th.attributes.get("scope") == scope for th in heads)
         widths = {len([c for c in tr.children if not isinstance(c, str)]) for tr in table.all("tr")}
         assert len(widths) == 1
 
@@ -164,6 +166,11 @@ def test_validity_shows_where_each_process_was_measured():
     assert rows[0]["temperature"] == f"\N{MINUS SIGN}40 … 125{NBSP}°C"
     noise = next(r for r in rows if r["quantity"] == "noise")
     assert noise["overdrive"] == "\N{EN DASH}"
+    # The bar of 0.6..0.7 V inside 0.5..0.8 V is the middle third.
+    (row,) = [tr for tr in page.one("validity").all("tr") if "slow" in tr.text
+              and tr.text.startswith("delay")]  # fmt: skip
+    bars = [p.attributes["d"] for p in row.of_class("extent")]
+    assert bars[2] == "M33.3 3h33.3"
 
 
 def test_absent_effects_are_named_not_drawn():

@@ -12,15 +12,15 @@ levels of its bend, a star of conditions as ignorance of its corners.
 from __future__ import annotations
 
 import itertools
+from collections.abc import Sequence
 from dataclasses import dataclass
-from math import inf
 
 import numpy as np
 import numpy.typing as npt
 
 from behavgen.fit.conditions import CONDITION_NAMES
 from behavgen.fit.intervals import normal_quantile
-from behavgen.model import Box, Condition, Range
+from behavgen.model import Condition
 
 __all__ = ["NextCondition", "PlannedConditions", "ThinAxis", "plan_conditions", "thin_axes"]
 
@@ -30,8 +30,6 @@ _HIGHEST_POWER = 2
 _DECAY = 0.3
 """Prior spread of a term over that of one whose total power is lower by one, as in the fit."""
 _CONSTANT_SPREAD = 1e3
-_GRID_LEVELS = 5
-"""Candidates on each axis: ends, middle and the quarters between."""
 _ENOUGH_LEVELS = 3
 
 
@@ -96,7 +94,7 @@ class ThinAxis:
 
 def plan_conditions(
     measured: Floats,
-    box: Box,
+    levels: Sequence[Floats],
     *,
     effects: Floats,
     scatter: float,
@@ -110,10 +108,10 @@ def plan_conditions(
     Parameters
     ----------
     measured : ndarray, shape (C, 3)
-        Conditions there are, in the order of `CONDITION_NAMES`, at least one. A
-        column with NaN has no influence and is left out.
-    box : Box
-        Where predictions are wanted.
+        Conditions there are, in the order of `CONDITION_NAMES`. A column with NaN
+        has no influence and is left out.
+    levels : sequence of 3 ndarrays
+        Levels of each condition to choose from, rising; their ends span the box.
     effects : ndarray, shape (3,)
         How much each condition changes the logarithm of the value from the middle
         of the box to its end; a guess where nobody knows.
@@ -128,84 +126,89 @@ def plan_conditions(
     level : float
         Confidence, 0..1.
     """
-    use = [k for k in range(len(CONDITION_NAMES)) if _varies(measured[:, k], _span(box, k))]
-    grid = _grid(box, use)
-    terms = _scaled_terms(_coordinates(grid, box, use), effects[use])
-    known = _scaled_terms(_coordinates(measured, box, use), effects[use])
-    covariance = np.linalg.inv(known.T @ known / scatter**2 + np.eye(known.shape[1]))
-    quantile = normal_quantile(level)
+    use = [k for k in range(len(levels)) if _varies(measured[:, k], levels[k])]
+    grid = _grid(levels, use)
+    terms = _scaled_terms(_coordinates(grid, levels, use), effects[use])
+    known = _scaled_terms(_coordinates(measured, levels, use), effects[use])
+    information = known.T @ known / scatter**2 + np.eye(known.shape[1])
+    covariance = np.asarray(np.linalg.inv(information), dtype=np.float64)
+    halves = _halves(terms, covariance, level)
+    half_now = float(halves.max())
+    open_ones = ~_is_among(grid[:, use], measured[:, use])
     following: list[NextCondition] = []
-    half_now = half = inf
-    while True:
-        halves = quantile * np.sqrt(np.einsum("nt,tu,nu->n", terms, covariance, terms))
-        widest = int(np.argmax(halves))
-        half = float(halves[widest])
-        half_now = half if not following else half_now
-        if half <= within or len(following) == most:
-            break
+    while (halves * open_ones).max() > within and len(following) < most:
+        first = not len(measured) and not following
+        widest = len(grid) // 2 if first else int(np.argmax(halves * open_ones))
+        open_ones[widest] = False
         condition = _condition(grid[widest], measured, process)
-        following.append(NextCondition(condition=condition, half=half))
+        following.append(NextCondition(condition=condition, half=float(halves[widest])))
         covariance = _with_one_more(covariance, terms[widest], scatter)
+        halves = _halves(terms, covariance, level)
     return PlannedConditions(
         measured=len(measured),
         half_now=half_now,
-        half_then=half,
+        half_then=float(halves.max()),
         following=tuple(following),
         level=level,
     )
 
 
-def thin_axes(measured: Floats, box: Box) -> tuple[ThinAxis, ...]:
+def thin_axes(measured: Floats, levels: Sequence[Floats]) -> tuple[ThinAxis, ...]:
     """Return the conditions measured at one or two levels only.
 
     Parameters
     ----------
     measured : ndarray, shape (C, 3)
         In the order of `CONDITION_NAMES`; a column with NaN has no influence.
-    box : Box
-        Where predictions are wanted.
+    levels : sequence of 3 ndarrays
+        Levels of each condition to choose from.
     """
     found = []
-    for k, name in enumerate(CONDITION_NAMES):
-        levels = np.unique(measured[:, k])
-        if np.isnan(levels).any() or len(levels) >= _ENOUGH_LEVELS:
-            continue
-        span = _span(box, k)
-        wanted = {span.low, span.middle, span.high} if span and span.low < span.high else set()
-        missing = sorted(value for value in wanted if not np.isclose(value, levels).any())
-        found.append(
-            ThinAxis(name=name, levels=tuple(levels.tolist()), missing=tuple(missing)),
-        )
+    for name, column, choice in zip(CONDITION_NAMES, measured.T, levels, strict=True):
+        own = np.unique(column)
+        if 0 < len(own) < _ENOUGH_LEVELS and not np.isnan(own).any():
+            missing = _far_levels(own, choice)
+            found.append(ThinAxis(name=name, levels=tuple(own.tolist()), missing=missing))
     return tuple(found)
 
 
-def _span(box: Box, axis: int) -> Range | None:
-    span: Range | None = getattr(box, CONDITION_NAMES[axis])
-    return span
+def _far_levels(own: Floats, choice: Floats) -> tuple[float, ...]:
+    """Return the levels, each as far as can be from those before, that complete three."""
+    have = list(own)
+    while len(have) < _ENOUGH_LEVELS and len(choice):
+        away = np.abs(choice[:, None] - np.array(have)).min(axis=-1)
+        if np.isclose(away.max(), 0.0):
+            break
+        have.append(float(choice[int(np.argmax(away))]))
+    return tuple(sorted(have[len(own) :]))
 
 
-def _varies(column: Floats, span: Range | None) -> bool:
-    return span is not None and span.low < span.high and not np.isnan(column).any()
+def _varies(column: Floats, levels: Floats) -> bool:
+    return len(levels) > 1 and not np.isnan(column).any()
 
 
-def _grid(box: Box, use: list[int]) -> Floats:
+def _grid(levels: Sequence[Floats], use: list[int]) -> Floats:
     """Return the candidates, shape (N, 3); NaN where a condition has no influence."""
-    levels = [np.array([np.nan])] * len(CONDITION_NAMES)
-    for k in use:
-        span = _span(box, k)
-        assert span is not None
-        levels[k] = np.linspace(span.low, span.high, _GRID_LEVELS)
-    return np.stack(np.meshgrid(*levels, indexing="ij"), axis=-1).reshape(-1, len(levels))
+    choice = [levels[k] if k in use else np.array([np.nan]) for k in range(len(levels))]
+    return np.stack(np.meshgrid(*choice, indexing="ij"), axis=-1).reshape(-1, len(levels))
 
 
-def _coordinates(values: Floats, box: Box, use: list[int]) -> Floats:
+def _is_among(rows: Floats, others: Floats) -> npt.NDArray[np.bool_]:
+    """Tell which rows, shape (N, axes), are among others, shape (C, axes)."""
+    alike = np.isclose(rows[:, None], others).all(axis=-1)
+    return np.asarray(alike.any(axis=-1), dtype=np.bool_)
+
+
+def _coordinates(values: Floats, levels: Sequence[Floats], use: list[int]) -> Floats:
     """Return conditions from -1 to 1 over the box, shape (N, axes)."""
-    columns = []
-    for k in use:
-        span = _span(box, k)
-        assert span is not None
-        columns.append((values[:, k] - span.middle) / (0.5 * (span.high - span.low)))
-    return np.stack(columns, axis=-1) if columns else np.empty((len(values), 0))
+    ends = np.array([[levels[k][0], levels[k][-1]] for k in use]).reshape(-1, 2)
+    return (values[:, use] - ends.mean(axis=-1)) / (0.5 * np.diff(ends, axis=-1)[:, 0])
+
+
+def _halves(terms: Floats, covariance: Floats, level: float) -> Floats:
+    variance = np.einsum("nt,tu,nu->n", terms, covariance, terms)
+    halves: Floats = normal_quantile(level) * np.sqrt(variance)
+    return halves
 
 
 def _scaled_terms(coordinates: Floats, effects: Floats) -> Floats:
@@ -223,7 +226,7 @@ def _scaled_terms(coordinates: Floats, effects: Floats) -> Floats:
 
 def _with_one_more(covariance: Floats, term: Floats, scatter: float) -> Floats:
     """Return the covariance after one more value (J. Sherman, W. J. Morrison, 1950)."""
-    across = covariance @ term
+    across: Floats = covariance @ term
     return covariance - np.outer(across, across) / (scatter**2 + term @ across)
 
 
@@ -231,6 +234,7 @@ def _condition(row: Floats, measured: Floats, process: str) -> Condition:
     """Return a candidate as a condition; what has a single level in the tables keeps it."""
     values: dict[str, float | None] = {}
     for name, value, column in zip(CONDITION_NAMES, row, measured.T, strict=True):
-        only = column[0] if not np.isnan(column).any() and np.ptp(column) == 0.0 else None
+        alike = len(column) > 0 and bool((column == column[0]).all())
+        only = float(column[0]) if alike else None
         values[name] = only if np.isnan(value) else float(value)
     return Condition(process=process, **values)

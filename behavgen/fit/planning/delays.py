@@ -43,6 +43,9 @@ MOST_ROWS = 400
 _FEWEST_TAIL_ROWS = 4
 _FEWEST_ROWS_A_NODE = 2
 _ROUNDS = 12
+_MOST_AT_ONCE = 2.0
+"""Rows are at most quadrupled before looking again."""
+
 _CURVE_POINTS = 60
 _STEP = 1.05
 _NEARLY = 0.95
@@ -88,8 +91,8 @@ class KnownDelay:
         """Overdrive up to which the delay falls by tau per unit of its logarithm, V."""
         ends_v = np.geomspace(self.node_overdrive_v[0], self.node_overdrive_v[-1], _CURVE_POINTS)
         rise_s = self.delay_s(ends_v / _STEP) - self.delay_s(ends_v)
-        straight = rise_s >= _NEARLY * self.tau_s * log(_STEP)
-        return float(ends_v[max(np.argmin(straight) - 1, 0)] if not straight.all() else ends_v[-1])
+        bent = np.flatnonzero(rise_s < _NEARLY * self.tau_s * log(_STEP))
+        return float(ends_v[max(int(bent[0]) - 1, 0)] if bent.size else ends_v[-1])
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -194,7 +197,7 @@ def plan_delays(
     tail_end_v = known.tail_end_v
     there = sum(v < tail_end_v for v in known.overdrive_v)
     counts = np.array([there, len(known.overdrive_v) - there])
-    total = np.maximum(counts, [_FEWEST_TAIL_ROWS, _fewest_on_curve(known)])
+    total = counts if known.overdrive_v else _fewest_rows(known)
     for _ in range(_ROUNDS):
         tail_v, curve_v = _spread(known, lowest_v, total - counts)
         added = (*known.overdrive_v, *tail_v, *curve_v)
@@ -204,8 +207,8 @@ def plan_delays(
         in_tail = found.widest_v < tail_end_v
         tau, delay = found.tau / tau_within, found.delay / delay_within
         factor = np.array([max(tau, delay * in_tail), delay * (not in_tail)])
-        total = np.ceil(total * np.clip(factor, 1.0, 3.0) ** 2).astype(int)
-        total = np.minimum(total, MOST_ROWS)
+        total = np.ceil(total * np.clip(factor, 1.0, _MOST_AT_ONCE) ** 2).astype(int)
+        total = np.minimum(total, np.maximum(counts, MOST_ROWS))
     return PlannedDelays(
         tail_v=tail_v,
         curve_v=curve_v,
@@ -274,10 +277,12 @@ def _spread(
     return tuple(map(_rounded, tail)), tuple(map(_rounded, curve))
 
 
-def _fewest_on_curve(known: KnownDelay) -> int:
-    """Return how many rows above the tail the law needs at the least."""
+def _fewest_rows(known: KnownDelay) -> npt.NDArray[np.int64]:
+    """Return how many rows the law needs at the least in the tail and above it."""
     above = sum(v > known.tail_end_v for v in known.node_overdrive_v)
-    return max(_FEWEST_ROWS_A_NODE * above, 1)
+    below = len(known.node_overdrive_v) - above
+    least = _FEWEST_ROWS_A_NODE * np.array([below, above]) + [_FEWEST_TAIL_ROWS, 1]
+    return least.astype(np.int64)
 
 
 def _rounded(overdrive_v: float) -> float:

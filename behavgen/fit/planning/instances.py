@@ -13,9 +13,9 @@ from behavgen.fit.intervals import sigma_interval, student_quantile
 from behavgen.fit.planning.fewest import MOST, fewest
 from behavgen.fit.planning.sample_deviation import mean_deviation
 
-__all__ = ["PlannedInstances", "mean_half", "plan_instances", "sigma_half"]
+__all__ = ["BRACKET", "PlannedInstances", "mean_half", "plan_instances", "sigma_half"]
 
-_BRACKET = 0.2
+BRACKET = 0.2
 """Width of each offset's bracket in spreads: its error adds 1/600 to the spread."""
 
 _SEARCHED = 8.0
@@ -98,7 +98,7 @@ def plan_instances(
         measured=measured,
         sigma_half=sigma_half(instances, level),
         mean_half=mean_half(instances, level),
-        halvings=ceil(log2(_SEARCHED / _BRACKET)),
+        halvings=ceil(log2(_SEARCHED / BRACKET)),
         level=level,
     )
 
@@ -113,13 +113,3 @@ def mean_half(instances: int, level: float = 0.95) -> float:
     """Return the mean half width of the t interval of the mean, in true spreads."""
     quantile = float(student_quantile(level, instances - 1))
     return quantile * mean_deviation(instances - 1) / sqrt(instances)
-
-
-def _mean_deviation(instances: int) -> float:
-    """Return ``c4``: the mean of a normal sample's standard deviation over the true one."""
-    if instances > 10_000:
-        return 1.0 - 0.25 / (
-            instances - 1
-        )  # leading term; the difference of two lgamma loses digits
-    half = 0.5 * instances
-    return sqrt(2.0 / (instances - 1)) * exp(lgamma(half) - lgamma(half - 0.5))

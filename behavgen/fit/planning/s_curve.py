@@ -25,7 +25,7 @@ Floats = npt.NDArray[np.float64]
 
 _WIDEST_OFFSET_Z = 0.5
 _WIDEST_SIGMA = 0.35
-"""Standard errors of the offset, in sigmas, and of ln sigma, beyond which levels tell too little."""
+"""Standard errors of offset, in sigmas, and of ln sigma, beyond which levels tell too little."""
 
 _LEAST_TRIALS = 100
 """At fewer decisions a level the arithmetic of large samples fails."""
@@ -267,7 +267,7 @@ def _information(levels_v: Floats, known: KnownSCurve) -> Floats:
 
 
 def _measured(known: KnownSCurve) -> Floats:
-    """Return what the rows already measured tell, alike at every prior value, shape (1, Q, 2, 2)."""
+    """Return what the rows already measured tell at every prior value, shape (1, Q, 2, 2)."""
     told = np.zeros(2)
     if known.measured:
         told = np.array([known.sigma_v / known.offset_error_v, 1.0 / known.sigma_error]) ** 2

@@ -12,12 +12,12 @@ from behavgen.model import ComparatorModel, Condition, Surface
 from behavgen.operating_point import evaluate, operating_point
 from behavgen.units import ZERO_CELSIUS_K
 
-__all__ = ["log_effects", "tabulated", "value_at"]
+__all__ = ["candidate_levels", "log_effects", "tabulated", "value_at"]
 
 Floats = npt.NDArray[np.float64]
 
 _UNKNOWN_EFFECT = 0.3
-"""Taken where no condition's effect is known: one moves delay or noise by a third (common practice)."""
+"""Taken where no effect is known: a condition moves delay or noise by a third (common practice)."""
 _LEAST_EFFECT = 0.02
 
 
@@ -56,6 +56,25 @@ def log_effects(model: ComparatorModel, surface: Surface, process: str) -> Float
             ]
             found[k] = max(0.5 * abs(np.log(ends[1] / ends[0])), _LEAST_EFFECT)
     return np.where(np.isnan(found), np.nanmax([*found, _UNKNOWN_EFFECT * (not seen)]), found)
+
+
+def candidate_levels(model: ComparatorModel) -> tuple[Floats, ...]:
+    """Return the levels of each condition at which to measure, in the order of `CONDITION_NAMES`.
+
+    Those that any table of the cell has inside the box; where these are fewer than
+    three, the ends and the middle of the box; empty where no table says.
+    """
+    found = []
+    for name in CONDITION_NAMES:
+        span = getattr(model.box, name)
+        given = {getattr(points.condition, name) for points in model.points} - {None}
+        levels = np.array(sorted(given), dtype=float)
+        if span is not None:
+            levels = levels[(levels >= span.low) & (levels <= span.high)]
+            if len(levels) < 3 and span.low < span.high:
+                levels = np.unique([span.low, span.middle, span.high])
+        found.append(levels)
+    return tuple(found)
 
 
 def tabulated(model: ComparatorModel, quantity: str, process: str) -> Floats:

@@ -8,7 +8,7 @@ enough to place levels.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from math import ceil, floor, log2, log10, sqrt
+from math import ceil, floor, log2, log10
 
 import numpy as np
 
@@ -20,10 +20,10 @@ __all__ = ["PlannedSearch", "find_trip_point"]
 _WIDE_ENOUGH_Z = 4.0
 """Standard errors of the guess between which the search begins: it misses 6 in 100 000."""
 
-_SWEEP_Z = np.arange(-3.0, 4.0)
-"""Levels of the sweep, in guessed sigmas: they serve for a sigma from half to twice the guess."""
+_SWEEP_Z = np.linspace(-3.0, 3.0, 9)
+"""Levels of the sweep, in guessed sigmas: they serve for a sigma from 0.4 to 2 times the guess."""
 
-_SWEEP_TRIALS = 50
+_SWEEP_TRIALS = 40
 
 _ERROR_AFTER_HALVING_Z = 0.5
 """Standard error, in sigmas, of a trip point found by noisy decisions down to one sigma."""

@@ -1,0 +1,174 @@
+"""ComparatorModel -> one self-contained SystemVerilog module with real-number ports."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Sequence
+from dataclasses import asdict, replace
+
+from behavgen.emit.coordinates import Coordinate, coordinates
+from behavgen.emit.emitted_file import EmittedFile
+from behavgen.emit.literals import comment_text, real_literal
+from behavgen.emit.quantity_text import (
+    QuantityText,
+    SurfaceFolder,
+    delay_curve,
+    quantities,
+    surfaces_of,
+)
+from behavgen.emit.surface_text import CONDITIONS
+from behavgen.emit.systemverilog_conditions import (
+    declarations,
+    follower,
+    process_branches,
+    process_values,
+    warned_ranges,
+)
+from behavgen.emit.systemverilog_interface import head, parameter_lines, port_lines
+from behavgen.emit.templating import render
+from behavgen.errors import Fault, ProjectError
+from behavgen.formulas.polynomial import quantise
+from behavgen.model import Cell, ComparatorModel, DelayEffect, Pins
+
+__all__ = ["systemverilog"]
+
+_LEVELS = {"high": "1'b1", "low": "1'b0", "mid": "1'bx", "hold": ""}
+
+VOLTAGE_STEPS_PER_V = 2.0**20
+"""Resolution of supply and common mode."""
+
+
+def systemverilog(model: ComparatorModel) -> EmittedFile:
+    """Return the module of a cell.
+
+    Raises
+    ------
+    ProjectError
+        When a pin has the name of something inside the module.
+    """
+    text = _text(model)
+    _refuse_taken_names(model)
+    return EmittedFile(path=f"{model.cell.name}.sv", text=text)
+
+
+def _text(model: ComparatorModel) -> str:
+    points = coordinates(surfaces_of(model), model.processes)
+    folder = SurfaceFolder(processes=model.processes, coordinates=points)
+    return render(
+        "systemverilog/module.sv",
+        cell=model.cell,
+        head=head(model),
+        parameters=parameter_lines(model),
+        ports=port_lines(model.cell),
+        **_cell_facts(model.cell),
+        **_effect_facts(model),
+        **_delay_facts(model.delay, folder),
+        **_condition_facts(model, points, quantities(model, folder)),
+    )
+
+
+def _cell_facts(cell: Cell) -> dict[str, object]:
+    """Return pins, levels and what switches the cell off."""
+    pins = cell.pins
+    deciding, resting = ("1'b1", "1'b0") if cell.decides_on == "rising" else ("1'b0", "1'b1")
+    outputs = [pin for pin in (pins.outp, pins.outn) if pin is not None]
+    return {
+        "pins": pins,
+        "outputs": outputs,
+        "deciding": deciding,
+        "resting": resting,
+        "holds": cell.in_reset == "hold",
+        "reset_level": _LEVELS[cell.in_reset],
+        "supply_off": None if cell.supply_off_v is None else real_literal(cell.supply_off_v),
+        "is_on": _is_on(cell),
+        "off_events": " or ".join(pin for pin in (pins.vdd, pins.enable) if pin is not None),
+        "ticks_per_s": {"1fs": "1e15", "1ps": "1e12"}[cell.time_precision],
+        "ns_per_tick": {"1fs": "1e-6", "1ps": "1e-3"}[cell.time_precision],
+    }
+
+
+def _is_on(cell: Cell) -> str:
+    """Return the condition under which the cell works; "" when it cannot be off."""
+    pins, parts = cell.pins, []
+    if pins.vdd is not None and cell.supply_off_v is not None:
+        parts.append(f"{pins.vdd} >= SUPPLY_OFF_V")
+    elif pins.vdd is not None:
+        parts.append(f"{pins.vdd} - {pins.vdd} == 0.0")
+    if pins.enable is not None:
+        parts.append(f"{pins.enable} === 1'b1")
+    return " && ".join(parts)
+
+
+def _effect_facts(model: ComparatorModel) -> dict[str, object]:
+    """Return which effects there are."""
+    trip = "trip_v" if model.offset is not None else "OFFSET_SHIFT_V"
+    return {
+        "offset": model.offset is not None,
+        "mismatch": [] if model.mismatch is None else range(len(model.mismatch.components)),
+        "noise": model.noise is not None,
+        "reset": "reset" in surfaces_of(model),
+        "overdrive": f"(vdiff_v - {trip})" + (" - mismatch_v" if model.mismatch else ""),
+    }
+
+
+def _delay_facts(delay: DelayEffect | None, folder: SurfaceFolder) -> dict[str, object]:
+    """Return the law: ``"curve"``, ``"logarithm"`` or "" and what it needs."""
+    if delay is None:
+        return {"delay": ""}
+    nodes = [{"number": k, "volts": real_literal(v)} for k, v in enumerate(delay.node_overdrive_v)]
+    law = "curve" if len(nodes) > 1 else "logarithm"
+    curve = delay_curve(delay, folder) if law == "curve" else None
+    return {
+        "delay": law, "nodes": nodes, "curve": curve, "floor_v": real_literal(delay.floor_v)
+    }  # fmt: skip
+
+
+def _condition_facts(
+    model: ComparatorModel, points: Sequence[Coordinate], found: Sequence[QuantityText]
+) -> dict[str, object]:
+    """Return what happens when a condition changes."""
+    warned = warned_ranges(model, points)
+    if model.cell.pins.vdd is None:
+        warned.pop("vdd_v", None)
+    temperature, supply, common_mode = (
+        follower(name, points, found, warned.get(name)) for name in CONDITIONS
+    )
+    values = process_values(points, warned.values(), found)
+    fixed = supply.matters and model.cell.pins.vdd is None
+    return {
+        "constants": follower("", points, found, None).paragraphs,
+        "temperature": temperature,
+        "supply": supply,
+        "common_mode": common_mode,
+        "fixed_supply": _fixed_supply(model) if fixed else "",
+        "declarations": declarations(points, values, found),
+        "processes": process_branches(model.processes, values),
+        "known_processes": comment_text(", ".join(f"{p.code} {p.name}" for p in model.processes)),
+        "exact_exp": any("exact_exp" in line for one in found for line in one.finish),
+    }
+
+
+def _fixed_supply(model: ComparatorModel) -> str:
+    """Return the supply of a cell without a supply pin: the middle of its range."""
+    span = model.box.vdd_v
+    middle = 0.0 if span is None else span.middle
+    return real_literal(float(quantise(middle, VOLTAGE_STEPS_PER_V)))
+
+
+def _refuse_taken_names(model: ComparatorModel) -> None:
+    """Compare the pins' names with all names that the module uses with its usual pins."""
+    pins, usual = model.cell.pins, Pins(enable="enable")
+    text = _text(replace(model, cell=replace(model.cell, pins=usual)))
+    code = re.sub(r'//[^\n]*|"[^"\n]*"', "", text)
+    taken = set(re.findall(r"[A-Za-z_]\w*", code)) - set(asdict(usual).values())
+    faults = [
+        Fault(
+            column=f"cells.{model.cell.name}.pins.{pin}",
+            what=f"'{name}' is also a name inside the emitted module",
+            allowed="choose another pin name",
+        )
+        for pin, name in asdict(pins).items()
+        if name in taken and pin != "vss"
+    ]
+    if faults:
+        raise ProjectError(*faults)

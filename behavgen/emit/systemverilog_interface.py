@@ -1,0 +1,103 @@
+"""Head, parameters and ports of the SystemVerilog module, as finished lines."""
+
+from __future__ import annotations
+
+import textwrap
+from collections.abc import Iterable, Sequence
+
+from behavgen.emit.literals import bits_literal, comment_text, real_literal
+from behavgen.emit.module_parameters import ModuleParameter, module_parameters
+from behavgen.emit.provenance import header_lines, header_sections
+from behavgen.model import Cell, ComparatorModel
+
+__all__ = ["WIDTH", "head", "parameter_lines", "port_lines"]
+
+WIDTH = 100
+"""Columns of an emitted line."""
+
+_TYPES = {"real": "real", "integer": "int", "word": "bit [63:0]"}
+
+
+def head(model: ComparatorModel) -> tuple[str, ...]:
+    """Return the comment at the top of the file."""
+    cell = model.cell
+    title = comment_text(f"{cell.name}: {cell.description or 'clocked comparator'}")
+    what = (
+        "Behavioural model of a clocked comparator for event-driven simulation with real numbers. "
+        f"It decides on the {cell.decides_on} edge of {cell.pins.clk}."
+    )
+    lines = [title, "", *textwrap.wrap(what, WIDTH - 3), ""]
+    lines += header_lines(header_sections(model), WIDTH - 3)
+    return tuple(f"// {line}".rstrip() for line in lines)
+
+
+def parameter_lines(model: ComparatorModel) -> tuple[str, ...]:
+    """Return the parameter declarations, aligned, each with unit, range and meaning."""
+    parameters = module_parameters(model)
+    declared = [
+        (f"parameter {_TYPES[p.kind]}", p.name, f"= {_default(p)}", _meaning(p)) for p in parameters
+    ]
+    return _aligned(declared)
+
+
+def port_lines(cell: Cell) -> tuple[str, ...]:
+    """Return the port declarations, aligned."""
+    pins, resting = cell.pins, _resting(cell)
+    ports = [
+        ("input", "real", pins.inp, "V, taken at the decision edge"),
+        ("input", "real", pins.inn, "V"),
+        ("input", "logic", pins.clk, f"decides on its {cell.decides_on} edge"),
+        ("output", "logic", pins.outp, f"the decision; {resting}"),
+        ("output", "logic", pins.outn, f"its complement; {resting}"),
+        ("input", "real", pins.vdd, "V"),
+        ("output", "logic", pins.unresolved,
+         "1 from the end of an unresolved decision to the next ready"),
+        ("input", "logic", pins.enable, "off unless it is 1"),
+    ]  # fmt: skip
+    present = [(direction, kind, name, comment) for direction, kind, name, comment in ports if name]
+    return _aligned(present)
+
+
+def _aligned(rows: Sequence[tuple[str, str, str, str]]) -> tuple[str, ...]:
+    """Align three columns and a comment; separate by commas."""
+    first, second = (max(len(row[column]) for row in rows) for column in (0, 1))
+    third = max(len(row[2]) for row in rows) + 1
+    lines: list[str] = []
+    for number, (one, two, three, comment) in enumerate(rows, start=1):
+        comma = "," if number < len(rows) else ""
+        code = f"{one:<{first}} {two:<{second}} {three + comma:<{third}}"
+        lines += _with_comment(code, comment)
+    return tuple(lines)
+
+
+def _with_comment(code: str, comment: str) -> Iterable[str]:
+    room = WIDTH - 2 - len(code) - 5
+    first, *more = textwrap.wrap(comment, room) or [""]
+    yield f"{code}  // {first}".rstrip() if first else code.rstrip()
+    for line in more:
+        yield f"{' ' * len(code)}  // {line}"
+
+
+def _default(parameter: ModuleParameter) -> str:
+    if parameter.kind == "real":
+        return real_literal(parameter.default)
+    if parameter.kind == "word":
+        return "64'd0" if parameter.default == 0 else bits_literal(int(parameter.default))
+    return str(int(parameter.default))
+
+
+def _meaning(parameter: ModuleParameter) -> str:
+    """Write ``unit, range: meaning``."""
+    legal = ", ".join(part for part in (parameter.unit, parameter.allowed) if part)
+    what = parameter.description if parameter.effective else "not characterised, does nothing"
+    return comment_text(f"{legal}: {what}" if legal else what)
+
+
+def _resting(cell: Cell) -> str:
+    states = {
+        "high": "1 in reset",
+        "low": "0 in reset",
+        "mid": "x in reset",
+        "hold": "held in reset",
+    }
+    return states[cell.in_reset]

@@ -1,0 +1,90 @@
+"""What sessions left behind becomes results: their end, their benches, their messages."""
+
+from pathlib import Path
+
+import pytest
+
+from behavgen.check.bench_results import bench_results, summarise
+from behavgen.check.directed import WARNING_RUN
+from behavgen.check.runs import Run, Session, Settings
+from behavgen.check.simulation import SessionOutcome, share_out
+from behavgen.simulators.cocotb_benches import BenchOutcome
+from behavgen.simulators.process import Finished
+from tests.example_models import full_model
+
+SETTINGS = Settings(process="typ", temperature_c=27.0)
+BLOCK = Run(index=3, name="typ, noise on", given=SETTINGS, meant=SETTINGS, decisions=10)
+WARNING = Run(index=4, name=WARNING_RUN, given=SETTINGS, meant=SETTINGS)
+TOLD = "[behavgen] check_top.run_4.dut t=5 decision 1: it happened\n"
+
+
+def outcome(tmp_path: Path, *, code=0, log=3 * TOLD, benches=None):
+    path = tmp_path / "first.log"
+    path.write_text(log)
+    passed = BenchOutcome(module="test_agreement", name="all_is_well/run=3", message="")
+    return SessionOutcome(
+        session=Session(name="first", plusargs=(), runs=(BLOCK, WARNING)),
+        finished=Finished(code=code, log=path),
+        benches=(passed,) if benches is None else benches,
+    )
+
+
+def failing(tmp_path, **changed):
+    suites = bench_results(full_model(), [outcome(tmp_path, **changed)])
+    return {result.name: result.message for _, result in suites if not result.passed}
+
+
+def test_all_is_well(tmp_path):
+    assert failing(tmp_path) == {}
+
+
+def test_a_failed_bench_names_its_run(tmp_path):
+    bad = BenchOutcome(module="test_agreement", name="all_is_well/run=3", message="it is not")
+    assert failing(tmp_path, benches=(bad,)) == {"all is well: typ, noise on": "it is not"}
+
+
+@pytest.mark.parametrize(
+    ("changed", "said"),
+    [
+        ({"code": 1}, "ended with exit code 1; first.log ends with:"),
+        ({"code": -11, "benches": ()}, "ended with exit code -11"),
+        ({"benches": ()}, "ended with exit code 0"),
+        ({"code": None}, "did not end in time; see first.log"),
+    ],
+)
+def test_a_simulation_that_ends_otherwise_is_a_failure(changed, said, tmp_path):
+    assert said in failing(tmp_path, **changed)["the simulation runs to its end: first"]
+
+
+@pytest.mark.parametrize("count", [0, 2, 4])
+def test_each_cause_is_warned_of_once(count, tmp_path):
+    name = "each cause is warned of once"
+    assert failing(tmp_path, log=count * TOLD) == {name: f"3 messages expected, {count} found"}
+
+
+def test_a_silent_instance_says_nothing(tmp_path):
+    log = 3 * TOLD + TOLD.replace("run_4", "run_3")
+    name = "a silent instance says nothing"
+    assert failing(tmp_path, log=log) == {name: "0 messages expected, 1 found"}
+
+
+def test_the_summary_has_a_result_for_each_sentence(tmp_path):
+    runs = [
+        BenchOutcome(module="m", name=f"all_is_well/run={run}", message=message)
+        for run, message in ((3, ""), (4, "it is not"))
+    ]
+    suites = bench_results(full_model(), [outcome(tmp_path, benches=tuple(runs))])
+    summary = {result.name: result for result in summarise(suites)}
+    assert summary["all is well"].message == f"1 of 2 fail, first {WARNING_RUN}: it is not"
+    assert summary["the simulation runs to its end"].passed
+
+
+def test_sharing_out_keeps_every_run():
+    runs = tuple(
+        Run(index=n, name=str(n), given=SETTINGS, meant=SETTINGS, decisions=1) for n in range(7)
+    )
+    parts = share_out(Session(name="all", plusargs=(), runs=runs), 3)
+    assert sorted(run.index for part in parts for run in part.runs) == list(range(7))
+    assert max(len(part.runs) for part in parts) == 3
+    assert len({part.name for part in parts}) == 3
+    assert len(share_out(Session(name="all", plusargs=(), runs=runs[:1]), 8)) == 1

@@ -1,0 +1,81 @@
+"""Strata count what they name; a slice that was not looked at is short."""
+
+import numpy as np
+import pytest
+
+from behavgen.check.agreement import compare
+from behavgen.check.runs import plan_sessions
+from behavgen.check.stimulus import make_stimulus
+from behavgen.check.strata import PlayedRun, count_strata
+from behavgen.check.waveform import Record, expect
+from tests.example_models import full_model, minimal_model, renamed_pins_model
+
+EMPTY = Record(time=np.array([0]), state=np.array([[2, 2, 0, 5]], dtype=np.int8))
+MODELS = [
+    full_model(),
+    full_model(time_precision="1ps", in_reset="hold"),
+    minimal_model(),
+    renamed_pins_model(in_reset="mid"),
+]
+
+
+def ideal(expected):
+    """Return the record of a module that does everything right."""
+    times = np.stack([expected.edge - 5, expected.ready, expected.end, expected.reset], axis=1)
+    states = np.stack([expected.before, expected.shown, expected.after, expected.rest], axis=1)
+    states = np.maximum(states, 0).reshape(-1, 4)
+    changed = np.append(True, np.any(states[1:] != states[:-1], axis=1))
+    return Record(time=times.ravel()[changed], state=states[changed])
+
+
+def played(model, runs, record=ideal):
+    for run in runs:
+        stimulus = make_stimulus(model, run, seed=1)
+        expected = expect(model, run, stimulus)
+        agreement = compare(expected, record(expected))
+        yield PlayedRun(run=run, stimulus=stimulus, expected=expected, agreement=agreement)
+
+
+def runs_of(model):
+    return [run for session in plan_sessions(model) for run in session.runs]
+
+
+@pytest.mark.parametrize("model", MODELS, ids=lambda m: f"{m.cell.name} {m.cell.in_reset}")
+def test_a_whole_plan_leaves_no_stratum_short(model):
+    strata = count_strata(model, played(model, runs_of(model)))
+    assert [stratum for stratum in strata if stratum.short] == []
+    assert sum(stratum.disagreements for stratum in strata) == 0
+
+
+def test_a_run_left_out_leaves_strata_short():
+    model = full_model()
+    left = [run for run in runs_of(model) if run.name != "delay off"]
+    short = {(s.group, s.name) for s in count_strata(model, played(model, left)) if s.short}
+    assert ("switch", "DELAY_ON = 0") not in short  # another run has it as well
+    left = [run for run in left if run.meant.delay_on]
+    short = {(s.group, s.name) for s in count_strata(model, played(model, left)) if s.short}
+    assert ("switch", "DELAY_ON = 0") in short
+
+
+def test_a_process_left_out_is_short():
+    model = full_model()
+    left = [run for run in runs_of(model) if run.meant.process != "slow"]
+    short = {(s.group, s.name) for s in count_strata(model, played(model, left)) if s.short}
+    assert ("process", "slow") in short
+
+
+def test_disagreements_fall_into_the_strata_of_their_decisions():
+    model = full_model()
+    runs = [run for run in runs_of(model) if run.meant.process == "slow"]
+    strata = {
+        (s.group, s.name): s for s in count_strata(model, played(model, runs, lambda _: EMPTY))
+    }
+    assert strata["process", "typ"].disagreements == 0
+    slow = strata["process", "slow"]
+    assert slow.disagreements > 0.9 * slow.decisions
+
+
+def test_effects_that_are_absent_have_no_strata():
+    groups = {s.group for s in count_strata(minimal_model(), ())}
+    assert groups.isdisjoint({"noise on", "temperature", "supply", "common mode"})
+    assert {"noise on", "temperature"} <= {s.group for s in count_strata(full_model(), ())}
