@@ -142,15 +142,15 @@ class Levels:
         """Return how many sigmas of noise turn the bit that is turned most easily."""
         margin = self._sign * self._from_trip_point(these)
         margin = margin - _or_nothing(these.farthest_v)[..., None]
-        nearest: Floats = np.min(np.abs(margin), axis=-1) / these.sigma_v
-        return nearest
+        return np.min(np.abs(margin), axis=-1) / these.sigma_v
 
     @property
     def _sign(self) -> Floats:
-        return 2.0 * self.right_bit - 1.0
+        return np.where(self.right_bit == 1, 1.0, -1.0)
 
     def _from_trip_point(self, these: Comparators) -> Floats:
-        return self.vdiff_v - (0.0 if self.from_trip_point else these.offset_v[..., None])
+        offset = these.offset_v[..., None]
+        return self.vdiff_v - (np.zeros_like(offset) if self.from_trip_point else offset)
 
     def _shifts(self, these: Comparators) -> Iterator[Floats]:
         """Yield trip points from the nominal one, (..., 1): the ends and those nearest to a level.

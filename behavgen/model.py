@@ -203,7 +203,7 @@ class Axis:
     condition : str
         ``"temperature_k"``, ``"vdd_v"`` or ``"vcm_v"``.
     shape : str
-        ``"plain"``, ``"reciprocal"`` or ``"reciprocal_square"``.
+        ``"plain"``, ``"reciprocal"``, ``"reciprocal_square"`` or ``"reciprocal_fourth"``.
     centre, half_range : float
         In the unit of ``shape(x)``.
     """

@@ -1,4 +1,4 @@
-"""A model's surfaces at operating conditions."""
+"""A model's surfaces, and the curves they carry, at operating conditions."""
 
 from __future__ import annotations
 
@@ -8,20 +8,35 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.formulas.exact_math import exact_exp
+from behavgen.formulas.memory import memory_shift
+from behavgen.formulas.node_law import node_law_delay
 from behavgen.formulas.polynomial import (
     axis_coordinate,
     dense_coefficients,
     nested_horner,
     quantise,
 )
-from behavgen.model import ComparatorModel, Range, Surface, Variant
+from behavgen.model import (
+    ComparatorModel,
+    DelayEffect,
+    EnergyEffect,
+    MemoryEffect,
+    Range,
+    Surface,
+    Variant,
+)
 
 __all__ = [
     "TEMPERATURE_STEPS_PER_K",
     "VOLTAGE_STEPS_PER_V",
     "OperatingPoint",
+    "delay_law",
+    "delay_s",
+    "energy_j",
     "evaluate",
+    "memory_shift_v",
     "operating_point",
+    "overdrive_at",
     "surface_terms",
 ]
 
@@ -133,3 +148,71 @@ def _coordinates(
         clamped = np.minimum(np.maximum(value, span.low), span.high)
         coordinates.append(axis_coordinate(clamped, axis.shape, axis.centre, axis.half_range))
     return tuple(coordinates)
+
+
+def delay_law(effect: DelayEffect, point: OperatingPoint) -> tuple[Floats, Floats, Floats]:
+    """Return ln of the node overdrives (K,), tau (N,) and node delays (N, K), s."""
+    log_node = np.log(np.array(effect.node_overdrive_v))
+    nodes = np.stack([evaluate(node, point) for node in effect.nodes], axis=-1)
+    return log_node, evaluate(effect.tau, point), nodes
+
+
+def delay_s(effect: DelayEffect, overdrive_v: Floats, point: OperatingPoint) -> Floats:
+    """Return the delay in s at overdrives of shape (..., N)."""
+    log_node, tau, nodes = delay_law(effect, point)
+    overdrive = np.maximum(np.abs(overdrive_v), effect.floor_v)
+    return node_law_delay(overdrive, log_node, tau, nodes)
+
+
+def overdrive_at(effect: DelayEffect, delay: Floats, point: OperatingPoint) -> Floats:
+    """Invert the delay law, (N,) in s to V: closed form on the regenerative tail, bisection above.
+
+    Infinite where even the largest characterised overdrive takes longer.
+    """
+    log_node, tau, nodes = delay_law(effect, point)
+    tail = log_node[0] - (delay - nodes[:, 0]) / tau
+    low = np.full(len(delay), log_node[0])
+    high = np.full(len(delay), log_node[-1])
+    for _ in range(60):
+        middle = 0.5 * (low + high)
+        slower = node_law_delay(np.exp(middle), log_node, tau, nodes) > delay
+        low, high = np.where(slower, middle, low), np.where(slower, high, middle)
+    inside = np.where(delay < nodes[:, -1], np.inf, np.exp(0.5 * (low + high)))
+    return np.where(delay >= nodes[:, 0], np.exp(np.minimum(tail, log_node[0])), inside)
+
+
+def memory_shift_v(effect: MemoryEffect, reset_time_s: Floats, point: OperatingPoint) -> Floats:
+    """Return by how much the trip point favours the previous decision, (N,) in V."""
+    nothing = np.zeros(len(point.vdd_v))
+    return memory_shift(
+        reset_time_s,
+        nothing if effect.floor is None else evaluate(effect.floor, point),
+        np.array([evaluate(term.shift, point) for term in effect.terms]),
+        np.array([evaluate(term.tau, point) for term in effect.terms]),
+        effect.cap_v,
+    )
+
+
+def energy_j(
+    effect: EnergyEffect, overdrive_v: Floats, time_s: Floats, point: OperatingPoint
+) -> Floats:
+    """Return the energy of decisions, (N,) in J.
+
+    Parameters
+    ----------
+    effect : EnergyEffect
+    overdrive_v : ndarray, shape (N,)
+        0 for decisions that did not resolve.
+    time_s : ndarray, shape (N,)
+        For how long the cell decided.
+    point : OperatingPoint
+    """
+    fixed = evaluate(effect.fixed, point)
+    if effect.rise is None:
+        return fixed
+    rise = evaluate(effect.rise, point)
+    if effect.overdrive_v is None:
+        return fixed + rise * time_s
+    span = effect.overdrive_v
+    magnitude = np.minimum(np.maximum(np.abs(overdrive_v), span.low), span.high)
+    return fixed + rise * np.log(span.high / magnitude)

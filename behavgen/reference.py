@@ -7,16 +7,23 @@ the meaning in words, in the order of a decision.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-from typing import NamedTuple
-
 import numpy as np
 import numpy.typing as npt
 
 from behavgen.formulas import random_stream
-from behavgen.formulas.node_law import node_law_delay
-from behavgen.model import ComparatorModel, DelayEffect
-from behavgen.operating_point import OperatingPoint, evaluate, operating_point
+from behavgen.formulas.memory import signs_before
+from behavgen.model import ComparatorModel
+from behavgen.operating_point import (
+    OperatingPoint,
+    delay_law,
+    delay_s,
+    energy_j,
+    evaluate,
+    memory_shift_v,
+    operating_point,
+    overdrive_at,
+)
+from behavgen.trace import Decisions, Trace
 
 __all__ = [
     "CERTAIN_SIGMAS",
@@ -27,53 +34,13 @@ __all__ = [
 
 Floats = npt.NDArray[np.float64]
 Integers = npt.NDArray[np.int64]
+Truths = npt.NDArray[np.bool_]
+
+_SIGNS = np.array([-1.0, 0.0, 1.0])
+"""Of a decision that was a zero, unresolved, or a one."""
 
 CERTAIN_SIGMAS = 8.3
 """No draw reaches this many sigmas, so that beyond it noise cannot change a bit."""
-
-
-class Decisions(NamedTuple):
-    """Outcome of decisions, shape (N,) each.
-
-    Parameters
-    ----------
-    bits : ndarray of int
-        1 or 0; of an unresolved decision the coin's result, else -1.
-    ready_times_s : ndarray
-        When the outputs are valid, s; NaN if unresolved.
-    unresolved : ndarray of bool
-    """
-
-    bits: Integers
-    ready_times_s: Floats
-    unresolved: npt.NDArray[np.bool_]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class Trace:
-    """Decisions in the simulator's terms, shape (N,) each.
-
-    Parameters
-    ----------
-    overdrive_v : ndarray
-        Effective overdrive `e`, signed, V.
-    leaning : ndarray of int
-        1 if ``e > 0``, else 0: the bit if it resolves.
-    delay_ticks : ndarray of int
-        Delay in units of the time precision, at least 1.
-    unresolved : ndarray of bool
-    bits : ndarray of int
-        As in `Decisions`.
-    reset_ticks : ndarray of int
-        Reset delay in units of the time precision.
-    """
-
-    overdrive_v: Floats
-    leaning: Integers
-    delay_ticks: Integers
-    unresolved: npt.NDArray[np.bool_]
-    bits: Integers
-    reset_ticks: Integers
 
 
 class Reference:
@@ -86,8 +53,8 @@ class Reference:
         Instance seed, as the parameter SEED of the emitted models.
     run_seed : int
         Chip-wide seed, as the plusarg ``+behavgen_seed``.
-    noise, mismatch, delay_on : bool
-        As the parameters NOISE_ON, MISMATCH_ON, DELAY_ON.
+    noise, mismatch, memory, delay_on : bool
+        As the parameters NOISE_ON, MISMATCH_ON, MEMORY_ON, DELAY_ON.
     offset_shift_v : float
         Added to the trip point, V.
     when_unresolved : str or None
@@ -111,6 +78,7 @@ class Reference:
         run_seed: int = 0,
         noise: bool = True,
         mismatch: bool = False,
+        memory: bool = True,
         delay_on: bool = True,
         offset_shift_v: float = 0.0,
         when_unresolved: str | None = None,
@@ -119,6 +87,7 @@ class Reference:
         self.model = model
         self.noise = noise and model.noise is not None
         self.mismatch = mismatch and model.mismatch is not None
+        self.memory = memory and model.memory is not None
         self.delay_on = delay_on and model.delay is not None
         self.offset_shift_v = offset_shift_v
         self.when_unresolved = when_unresolved or model.cell.when_unresolved
@@ -147,7 +116,7 @@ class Reference:
         point, overdrive = self._with(overdrive_v, condition)
         if self.model.delay is None:
             return np.full(point.shape, np.nan)
-        return _delay_s(self.model.delay, overdrive, point).reshape(point.shape)
+        return delay_s(self.model.delay, overdrive, point).reshape(point.shape)
 
     def reset_delay(self, **condition: npt.ArrayLike) -> Floats:
         """Time in s from the reset edge to the outputs' reset state; 0 where not characterised."""
@@ -164,10 +133,29 @@ class Reference:
         effect = self.model.delay
         if effect is None:
             return np.full(point.shape, np.nan)
-        return (2.0 * _overdrive_at(effect, resolve, point)).reshape(point.shape)
+        return (2.0 * overdrive_at(effect, resolve, point)).reshape(point.shape)
+
+    def memory_shift(self, reset_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Floats:
+        """Shift of the trip point in V in favour of the previous decision; 0 when switched off.
+
+        `reset_time_s` runs from the reset edge to the decision edge.
+        """
+        point, reset = self._with(reset_time_s, condition)
+        return self._memory_shift(reset, point).reshape(point.shape)
+
+    def energy(self, overdrive_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Floats:
+        """Energy in J of a decision that resolves; NaN where not characterised."""
+        point, overdrive = self._with(overdrive_v, condition)
+        if self.model.energy is None:
+            return np.full(point.shape, np.nan)
+        time_s = self.delay(overdrive_v, **condition).ravel()
+        return energy_j(self.model.energy, overdrive, time_s, point).reshape(point.shape)
 
     def probability(self, vdiff_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Floats:
-        """Probability of a one at a differential input in V, over noise, were it to resolve."""
+        """Probability of a one at a differential input in V, over noise, were it to resolve.
+
+        Without memory of the previous decision.
+        """
         from scipy.special import ndtr  # noqa: PLC0415
 
         point, vdiff = self._with(vdiff_v, condition)
@@ -190,9 +178,10 @@ class Reference:
         Parameters
         ----------
         vdiff_v : array_like, shape (N,)
-            Differential input at each edge, V.
+            Differential input when it is sampled: an aperture's centre after each edge, V.
         edge_times_s, decision_end_times_s : array_like, shape (N,)
-            When each decision phase begins and ends, s.
+            When each decision phase begins and ends, s; in their order each decision
+            remembers the one before, the first none.
         first_decision : int
             Number of the first decision in the instance's random streams.
         """
@@ -200,7 +189,9 @@ class Reference:
         edge = np.rint(np.asarray(edge_times_s, dtype=float) * ticks).astype(np.int64)
         end = np.rint(np.asarray(decision_end_times_s, dtype=float) * ticks).astype(np.int64)
         edge, end, vdiff = np.broadcast_arrays(edge, end, np.asarray(vdiff_v, dtype=float))
-        trace = self.trace(vdiff, end - edge, first_decision=first_decision, **condition)
+        reset = np.append(-1, edge[1:] - end[:-1]) if edge.ndim else None
+        trace = self.trace(vdiff, end - edge, reset, first_decision=first_decision,
+                           sign_before=0, **condition)  # fmt: skip
         ready = np.where(trace.unresolved, np.nan, (edge + trace.delay_ticks) / ticks)
         return Decisions(trace.bits, ready, trace.unresolved)
 
@@ -208,8 +199,10 @@ class Reference:
         self,
         vdiff_v: npt.ArrayLike,
         phase_ticks: npt.ArrayLike,
+        reset_phase_ticks: npt.ArrayLike | None = None,
         *,
         first_decision: int = 0,
+        sign_before: int = 0,
         **condition: npt.ArrayLike,
     ) -> Trace:
         """Decide in the simulator's terms.
@@ -220,15 +213,23 @@ class Reference:
             ``inp - inn`` as subtracted in double precision, V.
         phase_ticks : array_like of int, shape (N,)
             Length of each decision phase in units of the time precision.
+        reset_phase_ticks : array_like of int, shape (N,), optional
+            Length of the reset before each decision; negative: no decision came
+            before. None: all resets are too long for any memory.
+        sign_before : int
+            1, -1 or 0: the decision before the first was a one, a zero or unresolved.
         """
         point, vdiff = self._with(vdiff_v, condition)
         number = first_decision + np.arange(len(vdiff), dtype=np.int64)
-        e = self._effective_overdrive(vdiff, number, point)
+        phase = np.broadcast_to(np.asarray(phase_ticks, dtype=np.int64), vdiff.shape)
+        memory = self._memories(reset_phase_ticks, point)
+        e = self._effective_overdrive(self._distance(vdiff, point) - memory, number, point)
+        aperture = self._aperture_ticks(point)
+        delay = np.maximum(self._delay_ticks(np.abs(e), point), aperture + 1)
+        unresolved = self._unresolved(delay, phase, number)
+        found = _met(e, unresolved, sign_before)
+        e, delay, unresolved = e[found], delay[found], unresolved[found]
         leaning = (e > 0.0).astype(np.int64)
-        delay = self._delay_ticks(np.abs(e), point)
-        unresolved = self.delay_on & (delay > np.asarray(phase_ticks, dtype=np.int64))
-        if self.force_unresolved_every > 0:
-            unresolved = unresolved | ((number + 1) % self.force_unresolved_every == 0)
         return Trace(
             overdrive_v=e,
             leaning=leaning,
@@ -236,25 +237,46 @@ class Reference:
             unresolved=unresolved,
             bits=np.where(unresolved, self._unresolved_bits(number), leaning),
             reset_ticks=self._reset_ticks(point),
+            aperture_ticks=aperture,
+            memory_v=memory[found],
+            energy_j=self._energy(e, np.where(unresolved, phase, delay), unresolved, point),
         )
 
     def law(self, point: OperatingPoint) -> tuple[Floats, Floats]:
         """Return ln of the node overdrives (K,) and tau with the node delays, (N, K + 1), s."""
         assert self.model.delay is not None
-        log_node, tau, nodes = _law(self.model.delay, point)
+        log_node, tau, nodes = delay_law(self.model.delay, point)
         return log_node, np.column_stack([tau, nodes])
 
-    def _effective_overdrive(
-        self, vdiff: Floats, number: Integers, point: OperatingPoint
-    ) -> Floats:
-        e = self._distance(vdiff, point)
+    def _memories(self, reset_ticks: npt.ArrayLike | None, point: OperatingPoint) -> Floats:
+        """Return the memory after a zero, an unresolved decision and a one, (3, N); (1, N) if 0."""
+        if not self.memory or reset_ticks is None:
+            return np.zeros((1, len(point.vdd_v)))
+        ticks = np.broadcast_to(np.asarray(reset_ticks, dtype=np.int64), point.vdd_v.shape)
+        reset_s = np.maximum(ticks, 0) / self.model.cell.ticks_per_second
+        shift = np.where(ticks < 0, 0.0, self._memory_shift(reset_s, point))
+        return -(_SIGNS[:, None] * shift)
+
+    def _memory_shift(self, reset_s: Floats, point: OperatingPoint) -> Floats:
+        effect = self.model.memory if self.memory else None
+        return memory_shift_v(effect, reset_s, point) if effect else np.zeros(len(reset_s))
+
+    def _effective_overdrive(self, e: Floats, number: Integers, point: OperatingPoint) -> Floats:
         if not self.noise:
             return e
         sigma = self._sigma(point)
         uncertain = np.abs(e) < CERTAIN_SIGMAS * sigma
-        bits = random_stream.random_bits(self._keys[random_stream.NOISE], number[uncertain])
-        e[uncertain] += sigma[uncertain] * random_stream.standard_normal(bits)
-        return e
+        drawn = uncertain.any(axis=0)
+        z = np.zeros(len(sigma))
+        bits = random_stream.random_bits(self._keys[random_stream.NOISE], number[drawn])
+        z[drawn] = random_stream.standard_normal(bits)
+        return np.where(uncertain, e + sigma * z, e)
+
+    def _unresolved(self, delay: Integers, phase: Integers, number: Integers) -> Truths:
+        unresolved = self.delay_on & (delay > phase)
+        if self.force_unresolved_every > 0:
+            unresolved = unresolved | ((number + 1) % self.force_unresolved_every == 0)
+        return unresolved
 
     def _distance(self, vdiff: Floats, point: OperatingPoint) -> Floats:
         effect = self.model.offset
@@ -279,10 +301,24 @@ class Reference:
 
     def _delay_ticks(self, magnitude: Floats, point: OperatingPoint) -> Integers:
         if not self.delay_on or self.model.delay is None:
-            return np.ones(len(magnitude), dtype=np.int64)
-        ticks = self.model.cell.ticks_per_second
-        delay = _delay_s(self.model.delay, magnitude, point)
-        return np.maximum(np.floor(delay * ticks + 0.5).astype(np.int64), 1)
+            return np.ones(magnitude.shape, dtype=np.int64)
+        delay = delay_s(self.model.delay, magnitude, point)
+        return np.floor(delay * self.model.cell.ticks_per_second + 0.5).astype(np.int64)
+
+    def _aperture_ticks(self, point: OperatingPoint) -> Integers:
+        effect = self.model.aperture
+        if effect is None or not self.delay_on:
+            return np.zeros(len(point.vdd_v), dtype=np.int64)
+        centre = np.maximum(evaluate(effect.centre, point), 0.0)
+        return np.floor(centre * self.model.cell.ticks_per_second + 0.5).astype(np.int64)
+
+    def _energy(
+        self, e: Floats, ticks: Integers, unresolved: Truths, point: OperatingPoint
+    ) -> Floats:
+        if self.model.energy is None:
+            return np.zeros(len(e))
+        time_s = ticks / self.model.cell.ticks_per_second
+        return energy_j(self.model.energy, np.where(unresolved, 0.0, e), time_s, point)
 
     def _reset_s(self, point: OperatingPoint) -> Floats:
         effect = self.model.reset
@@ -312,28 +348,10 @@ class Reference:
         return operating_point(self.model, shape, condition)
 
 
-def _law(effect: DelayEffect, point: OperatingPoint) -> tuple[Floats, Floats, Floats]:
-    """Return ln of the node overdrives (K,), tau (N,) and node delays (N, K)."""
-    log_node = np.log(np.array(effect.node_overdrive_v))
-    nodes = np.stack([evaluate(node, point) for node in effect.nodes], axis=-1)
-    return log_node, evaluate(effect.tau, point), nodes
-
-
-def _delay_s(effect: DelayEffect, magnitude: Floats, point: OperatingPoint) -> Floats:
-    log_node, tau, nodes = _law(effect, point)
-    overdrive = np.maximum(np.abs(magnitude), effect.floor_v)
-    return node_law_delay(overdrive, log_node, tau, nodes)
-
-
-def _overdrive_at(effect: DelayEffect, delay_s: Floats, point: OperatingPoint) -> Floats:
-    """Invert the delay law: closed form on the regenerative tail, bisection above."""
-    log_node, tau, nodes = _law(effect, point)
-    tail = log_node[0] - (delay_s - nodes[:, 0]) / tau
-    low = np.full(len(delay_s), log_node[0])
-    high = np.full(len(delay_s), log_node[-1])
-    for _ in range(60):
-        middle = 0.5 * (low + high)
-        slower = node_law_delay(np.exp(middle), log_node, tau, nodes) > delay_s
-        low, high = np.where(slower, middle, low), np.where(slower, high, middle)
-    inside = np.where(delay_s < nodes[:, -1], np.inf, np.exp(0.5 * (low + high)))
-    return np.where(delay_s >= nodes[:, 0], np.exp(np.minimum(tail, log_node[0])), inside)
+def _met(e: Floats, unresolved: Truths, sign_before: int) -> tuple[Integers, Integers]:
+    """Return which of the alternatives, shape (1 or 3, N), each decision of a sequence meets."""
+    row = np.zeros(e.shape[1], dtype=np.int64)
+    if len(e) > 1:
+        sign_after = np.where(unresolved, 0, np.where(e > 0.0, 1, -1)).astype(np.int8)
+        row += signs_before(sign_after, sign_before) + 1
+    return row, np.arange(len(row))

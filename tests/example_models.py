@@ -7,6 +7,7 @@ from dataclasses import replace
 import numpy as np
 
 from behavgen.model import (
+    ApertureEffect,
     Axis,
     Box,
     Cell,
@@ -15,7 +16,11 @@ from behavgen.model import (
     ConditionFit,
     CurvePoints,
     DelayEffect,
+    EnergyEffect,
     Estimate,
+    KickbackEffect,
+    MemoryEffect,
+    MemoryTerm,
     MismatchEffect,
     NoiseEffect,
     OffsetEffect,
@@ -148,6 +153,59 @@ def full_model(**cell: object) -> ComparatorModel:
         ),
         generator="behavgen 0.1.0",
     )  # fmt: skip
+
+
+def complete_model(**cell: object) -> ComparatorModel:
+    """Return the full model with memory, aperture, energy and kickback besides."""
+    model = full_model(**cell)
+    here = Condition(vdd_v=1.2, temperature_k=300.15, vcm_v=0.65)
+    points = (
+        CurvePoints(quantity="memory", condition=here, x=(9e-11, 1.5e-10, 3e-10),
+                    y=(3.4e-3, 1.4e-3, 6e-4)),
+        CurvePoints(quantity="memory_at_least", condition=here, x=(4e-11,), y=(6e-3,)),
+        CurvePoints(quantity="aperture", condition=here,
+                    x=(0.0, 1e-11, 2e-11, 3e-11, 4e-11), y=(1.0, 0.9, 0.55, 0.1, 0.0)),
+        CurvePoints(quantity="energy", condition=here, x=(1e-5, 1e-3, 1e-1),
+                    y=(7.4e-14, 6.5e-14, 5e-14)),
+        CurvePoints(quantity="kickback_common", condition=here, x=(1e-3, 1e-1),
+                    y=(2.1e-15, 2.1e-15)),
+        CurvePoints(quantity="kickback_differential", condition=here, x=(1e-3, 1e-1),
+                    y=(-1e-17, -3e-16)),
+    )  # fmt: skip
+    return replace(
+        model,
+        cell=replace(model.cell, name="latch_complete"),
+        memory=MemoryEffect(
+            terms=(
+                MemoryTerm(
+                    shift=full_surface("V", "log", (-3.6, 0.2, 0.1, 0.0, 0.05, 0.0, 0.0), 0.1),
+                    tau=full_surface("s", "log", (-24.4, 0.05, -0.1, 0.02, 0.0, 0.0, 0.0), 0.05),
+                ),
+                MemoryTerm(
+                    shift=constant_surface("V", "log", -5.8, "typ", "slow"),
+                    tau=constant_surface("s", "log", -23.1, "typ", "slow"),
+                ),
+            ),
+            floor=constant_surface("V", "log", -8.1, "typ", "slow"),
+            cap_v=0.012,
+        ),
+        aperture=ApertureEffect(
+            centre=full_surface("s", "plain", (2e-11, 1e-12, -2e-12, 0.0, 0.0, 0.0, 0.0), 4e-12),
+            width=constant_surface("s", "log", -24.7, "typ", "slow"),
+        ),
+        energy=EnergyEffect(
+            law="delay",
+            fixed=full_surface("J", "log", (-30.8, 0.02, 0.2, 0.03, 0.0, 0.0, 0.0), 0.02),
+            rise=full_surface("W", "log", (-9.2, -0.3, 0.4, 0.0, 0.0, 0.0, 0.0)),
+            cycle_time_s=2e-9,
+        ),
+        kickback=KickbackEffect(
+            common=constant_surface("C", "plain", 2.1e-15, "typ", "slow"),
+            differential=constant_surface("C", "plain", -7e-18, "typ", "slow"),
+            differential_per_v=constant_surface("C/V", "plain", -2.9e-15, "typ", "slow"),
+        ),
+        points=(*model.points, *points),
+    )
 
 
 def minimal_model(**cell: object) -> ComparatorModel:

@@ -8,10 +8,12 @@ import pytest
 
 from behavgen.errors import ModelFileError
 from behavgen.model import dump_model, load_model, significant
-from tests.example_models import full_model, minimal_model, renamed_pins_model
+from tests.example_models import complete_model, full_model, minimal_model, renamed_pins_model
 
 
-@pytest.mark.parametrize("model", [full_model(), minimal_model(), renamed_pins_model()])
+@pytest.mark.parametrize(
+    "model", [full_model(), complete_model(), minimal_model(), renamed_pins_model()]
+)
 def test_a_model_file_loads_back_to_an_equal_model(model, tmp_path):
     file = tmp_path / "cell.model.json"
     file.write_text(dump_model(model))

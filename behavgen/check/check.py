@@ -2,25 +2,22 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass
 from itertools import chain
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
-from behavgen.check.bench_files import MODEL_NAME, read_agreement, write_expectation
+from behavgen.check.bench_files import read_agreement
 from behavgen.check.bench_results import Suite, bench_results, summarise
-from behavgen.check.directed import BENCH_MODULES, directed_runs
 from behavgen.check.disagreements import describe_disagreements
-from behavgen.check.fatal import fatal_results, fatal_run, fatal_stimulus
-from behavgen.check.harness import harness_macros, top_text, write_stimulus
+from behavgen.check.fatal import fatal_results
+from behavgen.check.harness import harness_macros, top_text
+from behavgen.check.preparation import Block, plan_check, prepare_blocks
 from behavgen.check.results_file import results_xml
-from behavgen.check.runs import Run, Session, plan_sessions
-from behavgen.check.simulation import CompiledCheck, share_out, simulate_sessions
-from behavgen.check.stimulus import Stimulus, make_stimulus
+from behavgen.check.simulation import CompiledCheck, simulate_sessions
 from behavgen.check.strata import PlayedRun, count_strata
 from behavgen.check.verdict import BenchResult, CheckReport, Disagreement, dump_report
-from behavgen.check.waveform import Expectation, expect
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.errors import Fault, ProjectError
 from behavgen.files import sha256_of_text, write_whole
@@ -96,18 +93,6 @@ def _make_folder(folder: Path) -> None:
         raise ProjectError(fault) from error
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Plan:
-    """Everything that is simulated."""
-
-    sessions: tuple[Session, ...]
-    fatal: Run
-
-    @property
-    def runs(self) -> tuple[Run, ...]:
-        return (*(run for session in self.sessions for run in session.runs), self.fatal)
-
-
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class _Found:
     """Everything that came of it."""
@@ -115,18 +100,6 @@ class _Found:
     suites: tuple[Suite, ...]
     played: tuple[PlayedRun, ...] = ()
     disagreements: tuple[Disagreement, ...] = ()
-
-
-def _planned(model: ComparatorModel, seed: int, jobs: int) -> _Plan:
-    """Give the directed benches to the shortest session."""
-    blocks, *others, last = plan_sessions(model, seed=seed)
-    used = len(blocks.runs) + len(others) + 1
-    directed = directed_runs(model, first_index=used)
-    last = replace(last, runs=last.runs + directed, benches=last.benches + BENCH_MODULES)
-    return _Plan(
-        sessions=(*share_out(blocks, jobs), *others, last),
-        fatal=fatal_run(model, index=used + len(directed)),
-    )
 
 
 def _simulated(
@@ -137,25 +110,20 @@ def _simulated(
     jobs: int,
     tell: Callable[[str], None],
 ) -> _Found:
-    plan = _planned(model, seed, jobs)
+    plan = plan_check(model, seed=seed, jobs=jobs)
     tell("compiling")
     top, macros = top_text(model, plan.runs), harness_macros(model, text)
     compiled = simulation.compile(model.cell.name, text, top, macros)
     if compiled.code != 0:
         refused = BenchResult(name="the text compiles", passed=False, message=_complaints(compiled))
         return _Found(suites=(("compile", refused),))
-    blocks = {
-        run.index: make_stimulus(model, run, seed=seed)
-        for run in plan.runs
-        if run.decisions and run is not plan.fatal
-    }
-    tell(f"simulating {sum(len(block.edge) for block in blocks.values())} decisions")
-    expected = _write_blocks(model, plan, blocks, simulation.work)
+    blocks = prepare_blocks(model, plan, simulation.work, seed=seed)
+    tell(f"simulating {sum(block.run.decisions for block in blocks)} decisions")
     outcomes = simulate_sessions(simulation, plan.sessions, jobs=jobs)
     suites = [*bench_results(model, outcomes)]
     suites += [("fatal", one) for one in fatal_results(simulation, model, plan.fatal)]
     tell("comparing")
-    played = tuple(_played(plan, blocks, expected, simulation.work))
+    played = tuple(_played(blocks, simulation.work))
     described = [describe_disagreements(model, one, simulation.work) for one in played]
     return _Found(suites=tuple(suites), played=played, disagreements=tuple(chain(*described)))
 
@@ -166,30 +134,13 @@ def _complaints(compiled: Finished) -> str:
     return "compile.log says:\n" + "\n".join(lines[:8] or [compiled.tail()])
 
 
-def _write_blocks(
-    model: ComparatorModel, plan: _Plan, blocks: dict[int, Stimulus], work: Path
-) -> dict[int, Expectation]:
-    """Write what the simulations read; return what each run must show."""
-    expected = {}
-    for run in plan.runs:
-        if run.index in blocks:
-            write_stimulus(work, run, blocks[run.index])
-            expected[run.index] = expect(model, run, blocks[run.index])
-            write_expectation(work, run.index, expected[run.index])
-    write_stimulus(work, plan.fatal, fatal_stimulus(model, plan.fatal))
-    (work / MODEL_NAME).write_text(dump_model(model), encoding="utf-8")
-    return expected
-
-
-def _played(
-    plan: _Plan, blocks: dict[int, Stimulus], expected: dict[int, Expectation], work: Path
-) -> Iterator[PlayedRun]:
-    """Return the runs that their benches have compared, in the order of the plan."""
-    for run in sorted(plan.runs, key=lambda run: run.index):
-        agreement = read_agreement(work, run.index)
+def _played(blocks: Iterable[Block], work: Path) -> Iterator[PlayedRun]:
+    """Return the runs that their benches have compared."""
+    for block in blocks:
+        agreement = read_agreement(work, block.run.index)
         if agreement is not None:
             yield PlayedRun(
-                run=run, stimulus=blocks[run.index], expected=expected[run.index],
+                run=block.run, stimulus=block.stimulus, expected=block.expected,
                 agreement=agreement,
             )  # fmt: skip
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import asdict
 from itertools import groupby
 from pathlib import Path
@@ -18,9 +18,9 @@ from behavgen.cli.cells import (
     number_of,
 )
 from behavgen.cli.parser import Options, Parser
-from behavgen.cli.terminal import Terminal
+from behavgen.cli.terminal import Terminal, aligned
 from behavgen.cli.verdict import Outcome
-from behavgen.cli.wording import labelled, shown_path, state_text
+from behavgen.cli.wording import behind, labelled, shown_path, state_text
 from behavgen.errors import Fault, ProjectError
 from behavgen.pipeline import CellPlace, check_cell, check_given_file, emit_cell, fit_cell
 from behavgen.units import format_si
@@ -68,20 +68,19 @@ def check_one(
 def check_result(report: CheckReport, logs: Path, *, made: bool) -> CellResult:
     """Return what there is to say of a check."""
     failed = [bench for bench in report.benches if not bench.passed]
-    short = [stratum for stratum in report.strata if stratum.decisions < stratum.required]
     passed = len(report.benches) - len(failed)
     return CellResult(
         lines=[
             *labelled("simulator", report.simulator + state_text(made=made)),
             *labelled("compared", _compared_text(report)),
-            *(line for text in _covered(report.strata) for line in labelled("covered", text)),
-            *(line for s in short for line in labelled("too few", _stratum_text(s))),
             *labelled("benches", f"{passed} of {len(report.benches)} passed"),
             *(line for b in failed for line in labelled("failed", f"{b.name}: {b.message}")),
+            *_stratum_lines("too few", [s for s in report.strata if s.short]),
+            *_stratum_lines("thinnest", _thinnest(report.strata)),
             *(line for d in report.disagreements[:1] for line in labelled("first", first_text(d))),
             *labelled("logs", shown_path(logs)),
         ],
-        more=[line for s in report.strata for line in labelled("", _stratum_text(s))],
+        more=_stratum_lines("covered", report.strata),
         data={**asdict(report), "made": made, "logs": shown_path(logs)},
         agrees=report.passed,
     )
@@ -110,28 +109,35 @@ def _given_file(options: Options) -> Path:
 
 
 def _compared_text(report: CheckReport) -> str:
-    worst = f"largest delay difference {number_of(report.worst_delay_ticks, 'tick')}"
-    against = report.disagreement_count
-    return f"{number_of(report.decisions, 'decision')}, {against} in disagreement; {worst}"
+    parts = [
+        number_of(report.decisions, "decision"),
+        f"{report.disagreement_count} in disagreement",
+        f"largest delay difference {number_of(report.worst_delay_ticks, 'tick')}",
+    ]
+    if report.excluded:
+        parts.append(f"{report.excluded} left out that hang on one tick")
+    return ", ".join(parts)
 
 
-def _covered(strata: Sequence[Stratum]) -> Iterator[str]:
-    """Yield one line a group of strata, by its least exercised one."""
-    for group, members in groupby(strata, key=lambda stratum: stratum.group):
-        listed = list(members)
-        least = min(listed, key=lambda stratum: stratum.decisions)
-        yield (
-            f"{group}: {number_of(len(listed), 'part')}, fewest decisions {least.decisions} "
-            f"in {least.name} ({least.required} needed)"
+def _thinnest(strata: Sequence[Stratum]) -> list[Stratum]:
+    """Return of each group the part that was exercised least for what it needs."""
+    return [
+        min(group, key=lambda stratum: stratum.decisions / max(stratum.required, 1))
+        for _, group in groupby(strata, key=lambda stratum: stratum.group)
+    ]
+
+
+def _stratum_lines(label: str, strata: Sequence[Stratum]) -> list[str]:
+    """Return one line a stratum, in columns, behind one label."""
+    rows = [
+        (
+            f"{stratum.group}: {stratum.name}",
+            f"{stratum.decisions} of {stratum.required} needed",
+            f"{stratum.disagreements} in disagreement" if stratum.disagreements else "",
         )
-
-
-def _stratum_text(stratum: Stratum) -> str:
-    against = f", {stratum.disagreements} in disagreement" if stratum.disagreements else ""
-    return (
-        f"{stratum.group}, {stratum.name}: {stratum.decisions} decisions "
-        f"of {stratum.required} needed{against}"
-    )
+        for stratum in strata
+    ]
+    return behind(label, aligned(rows, indent=0))
 
 
 def _verdict_of(done: CellsDone) -> str:

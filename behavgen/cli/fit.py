@@ -31,7 +31,12 @@ ARGUMENTS = "[CELL ...]"
 EXAMPLE = "behavgen fit latch_a"
 
 _AXES = {"temperature_k": "temperature", "vdd_v": "supply", "vcm_v": "common mode"}
-_SHAPES = {"plain": "", "reciprocal": " as 1/x", "reciprocal_square": " as 1/x^2"}
+_SHAPES = {
+    "plain": "",
+    "reciprocal": " as 1/x",
+    "reciprocal_square": " as 1/x^2",
+    "reciprocal_fourth": " as 1/x^4",
+}
 
 
 def add_arguments(parser: Parser) -> None:

@@ -27,6 +27,7 @@ COMMANDS = {
     "emit": "write the behavioural models",
     "check": "simulate the models against their reference",
     "report": "write the report page",
+    "predict": "predict error rates, waits and delays to decide with",
     "plan": "say what to measure next",
     "tools": "list simulators and compilers, found and missing",
     "completion": "print a script that completes commands in a shell",
@@ -65,6 +66,22 @@ class Options(argparse.Namespace):
     tables: Sequence[str] = ()
     model: str = ""
     shell: str = ""
+    input: str = ""
+    overdrive: str = ""
+    span: str = ""
+    levels: str = ""
+    weights: str = ""
+    expect: str = ""
+    resolve_time: str = ""
+    clock: str = ""
+    vdd: str = ""
+    temp: str = ""
+    vcm: str = ""
+    process: str = ""
+    corners: bool = False
+    mismatch: str = ""
+    confidence: str = ""
+    csv: str = ""
 
 
 class Parser(argparse.ArgumentParser):

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import textwrap
+from collections.abc import Sequence
 from math import floor, log10
 from pathlib import Path
 
@@ -11,6 +12,7 @@ from behavgen.model import Estimate, Range
 from behavgen.units import format_celsius, format_si
 
 __all__ = [
+    "behind",
     "estimate_text",
     "interval_text",
     "labelled",
@@ -35,6 +37,12 @@ def labelled(label: str, text: str) -> list[str]:
     parts = text.splitlines()
     lines = [line for part in parts for line in wrapped(part, indent=len(head))] or [head.rstrip()]
     return [head + lines[0][len(head) :], *lines[1:]]
+
+
+def behind(label: str, lines: Sequence[str]) -> list[str]:
+    """Return finished lines behind a label that stands beside the first of them."""
+    heads = [label, *[""] * (len(lines) - 1)]
+    return [f"  {head:<{_LABEL_WIDTH}}{line}" for head, line in zip(heads, lines, strict=False)]
 
 
 def wrapped(text: str, *, indent: int = 0) -> list[str]:

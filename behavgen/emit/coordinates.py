@@ -17,7 +17,12 @@ from behavgen.model import Axis, Process, Range, Surface
 __all__ = ["Coordinate", "coordinate_names", "coordinates", "span_text"]
 
 _STEMS = {"temperature_k": "x_t", "vdd_v": "x_v", "vcm_v": "x_c"}
-_SHAPES = {"plain": "{}", "reciprocal": "1.0 / {}", "reciprocal_square": "1.0 / ({0} * {0})"}
+_SHAPES = {
+    "plain": "{}",
+    "reciprocal": "1.0 / {}",
+    "reciprocal_square": "1.0 / ({0} * {0})",
+    "reciprocal_fourth": "1.0 / (({0} * {0}) * ({0} * {0}))",
+}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -95,21 +95,23 @@ def _surfaces(model: ComparatorModel) -> Iterator[tuple[str, Surface]]:
 
 def _declarations(model: ComparatorModel, values: Statements) -> Iterator[str]:
     """Declare the variables, in the order in which they get their values."""
-    on = ["on"] if any(_on(model.cell)) else []
+    on = ["is_on"] if any(_on(model.cell)) else []
     conditions = [name for name in ("temperature_k", "vcm_v") if name in values.conditions]
     yield from declaration(
-        ["supply_v", "supply_scale_v", "clock", *on, "decide", "follow", *conditions]
+        ["supply_v", "supply_scale_v", "clock_depth", *on, "deciding", "following", *conditions]
     )
     yield from declaration(values.coordinates)
     yield from declaration(values.variables)
     nominal = [name for name in ("tau_s", "reset_s") if name not in values.variables]
     yield from declaration([*nominal, "regeneration_s"])
-    density = ["density"] if model.noise else []
+    density = ["noise_density"] if model.noise else []
     yield from declaration(["target_v", "filter_s", *density, "magnitude_v"])
-    yield from declaration([*_law_variables(model), "start"])
-    yield from declaration(["rise", "fall", "pending", "take", "state", "taken", "growth"])
-    yield from declaration(["one", "zero", "unresolved", "shown"])
+    yield from declaration([*_law_variables(model), "start_imbalance"])
+    yield from declaration(["rise_rate", "fall_rate", "taking"])
+    yield from declaration(["latch_state", "since_edge", "taken_state", "growth_rate"])
+    yield from declaration(["is_one", "is_zero", "is_ending", *_shown_variables(model.cell)])
     yield from declaration(output.level for output in _outputs(model.cell))
+    yield from declaration(["longest_s"])
 
 
 def _law_variables(model: ComparatorModel) -> list[str]:
@@ -118,6 +120,10 @@ def _law_variables(model: ComparatorModel) -> list[str]:
         return []
     slopes = [f"slope_{i}_s" for i in range(1, nodes + 1)]
     return ["log_v", *(["secant_s"] if nodes == 2 else []), *slopes, "delay_s"]
+
+
+def _shown_variables(cell: Cell) -> list[str]:
+    return {"hold": ["held_square", "separation"], "mid": []}.get(cell.in_reset, ["is_unresolved"])
 
 
 def _ports(cell: Cell) -> Iterator[_Port]:
@@ -148,9 +154,9 @@ def _on(cell: Cell) -> Iterator[str]:
     """Return the factors that are 1 while the cell works and 0 while it is off."""
     pins = cell.pins
     if pins.vdd is not None and cell.supply_off_v is not None:
-        yield f"step(supply_v / {real_literal(cell.supply_off_v)} - 1.0, 0.01)"
+        yield f"smooth_step(supply_v / {real_literal(cell.supply_off_v)} - 1.0, 0.01)"
     if pins.enable is not None:
-        yield f"step(V({pins.enable}, {pins.vss}) / supply_scale_v - 0.5, 0.02)"
+        yield f"smooth_step(V({pins.enable}, {pins.vss}) / supply_scale_v - 0.5, 0.02)"
 
 
 def _node_overdrives(model: ComparatorModel) -> tuple[str, ...]:
@@ -187,7 +193,7 @@ def _unlike(model: ComparatorModel) -> Iterator[str]:
     )
     if model.noise is not None:
         yield (
-            "noise acts in noise analysis, where V(overdrive) integrates to sigma, and in "
+            "noise acts in noise analysis, where V(n_overdrive) integrates to sigma, and in "
             "transient analysis with noise; clock edges beyond 5 tau average some of it away"
         )
     if model.mismatch is not None:

@@ -25,7 +25,12 @@ _WIDTH = 94
 _TIE = "\0"
 _COORDINATES = {"temperature_k": "x_temperature", "vdd_v": "x_supply", "vcm_v": "x_common"}
 _VARIABLES = {"temperature_k": "temperature_k", "vdd_v": "supply_v", "vcm_v": "vcm_v"}
-_SHAPES = {"plain": "{}", "reciprocal": "1.0 / {}", "reciprocal_square": "1.0 / pow({}, 2.0)"}
+_SHAPES = {
+    "plain": "{}",
+    "reciprocal": "1.0 / {}",
+    "reciprocal_square": "1.0 / pow({}, 2.0)",
+    "reciprocal_fourth": "1.0 / pow({}, 4.0)",
+}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -12,7 +12,7 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.errors import Fault, FitError
-from behavgen.fit.conditions import Sites, find_sites
+from behavgen.fit.conditions import CONDITION_NAMES, Sites, find_sites
 from behavgen.fit.law import LawFit, fit_law
 from behavgen.fit.law_solution import DelayRows
 from behavgen.fit.process_surfaces import SurfaceFamily, exact_family
@@ -164,7 +164,14 @@ def fit_delay(
     rows, sites = _restricted(rows, sites, usable)
     law = fit_law(_padded(rows, sites))
     span = Range(low=float(rows.overdrive_v.min()), high=float(rows.overdrive_v.max()))
-    family = exact_family(sites, np.log(law.parameters), processes, law.metric, span)
+    family = exact_family(
+        sites,
+        np.log(law.parameters),
+        processes,
+        metric=law.metric,
+        overdrive_v=span,
+        expected_shapes=_expected_shapes(sites, law),
+    )
     freedom = max(round(float(law.freedom.sum())), 1)
     measured = delay.measured if delay is not None else window.measured if window else ""
     return DelayFit(
@@ -175,6 +182,24 @@ def fit_delay(
         family=family,
         notices=(*notices, *_measured_alike(delay, window)),
     )
+
+
+def _expected_shapes(sites: Sites, law: LawFit) -> dict[str, str]:
+    """Return how delays are expected to bend along each axis.
+
+    Common practice: rates grow with a voltage beyond a threshold and mobility
+    falls with temperature, so that delays fall more steeply than in proportion.
+    Where the delay rises with the voltage (inputs of the other polarity), a
+    straight line is taken.
+    """
+    shapes = {"temperature_k": "reciprocal"}
+    slowness = np.log(law.parameters[:, 1:]).mean(axis=-1)
+    for name in ("vdd_v", "vcm_v"):
+        level = sites.values[:, CONDITION_NAMES.index(name)]
+        if np.isfinite(level).all() and np.ptp(level) > 0.0:
+            falls = np.corrcoef(level, slowness)[0, 1] < 0.0
+            shapes[name] = "reciprocal_square" if falls else "plain"
+    return shapes
 
 
 def _usable_sites(

@@ -7,6 +7,7 @@ its own conditions reach: measured once, it is the first process scaled.
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -86,9 +87,14 @@ class SurfaceFamily:
 
 
 def exact_family(
-    sites: Sites, targets: Floats, processes: tuple[str, ...], metric: Floats | None = None,
+    sites: Sites,
+    targets: Floats,
+    processes: tuple[str, ...],
+    *,
+    metric: Floats | None = None,
     overdrive_v: Range | None = None,
-) -> SurfaceFamily:  # fmt: skip
+    expected_shapes: Mapping[str, str] | None = None,
+) -> SurfaceFamily:
     """Fit values without random error.
 
     Parameters
@@ -101,11 +107,16 @@ def exact_family(
         See `choose_by_left_out`.
     overdrive_v : Range, optional
         Carried into the variants' boxes.
+    expected_shapes : mapping of str to str, optional
+        See `surface_forms.candidates`.
     """
     primary = _primary(sites, processes)
     rows = _rows(sites, primary)
     fit = choose_by_left_out(
-        sites.values[rows], targets[rows], None if metric is None else metric[rows]
+        sites.values[rows],
+        targets[rows],
+        None if metric is None else metric[rows],
+        expected_shapes,
     )
     coefficients, boxes, scaled = {}, {}, {}
     for process in processes:

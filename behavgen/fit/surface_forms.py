@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -16,6 +17,12 @@ __all__ = ["CONSTANT_SPREAD", "Candidates", "Form", "axis_powers", "candidates",
 
 Floats = npt.NDArray[np.float64]
 
+_STEEPER = {
+    "plain": "plain",
+    "reciprocal": "reciprocal_square",
+    "reciprocal_square": "reciprocal_fourth",
+}
+"""What bends an axis with two levels: tables thinned to two levels were foreseen best so."""
 CONSTANT_SPREAD = 1e4
 """Prior spread of the constant term: wide enough to be free."""
 
@@ -35,6 +42,8 @@ class Candidates:
     Parameters
     ----------
     axes : tuple of tuple of Axis, length S
+    surprises : ndarray of int, shape (S,)
+        How many axes have another shape than expected.
     exponents : tuple
         The complete set of M terms.
     spread : ndarray, shape (P, M)
@@ -42,6 +51,7 @@ class Candidates:
     """
 
     axes: tuple[tuple[Axis, ...], ...]
+    surprises: npt.NDArray[np.intp]
     exponents: tuple[tuple[int, ...], ...]
     spread: Floats
 
@@ -77,14 +87,27 @@ def _axes(values: Floats, shapes: dict[str, str]) -> tuple[Axis, ...]:
     return tuple(axes)
 
 
-def candidates(values: Floats, decays: tuple[float, ...], ratios: tuple[float, ...]) -> Candidates:
-    """Return all candidates; `ratios` are prior spreads of a linear term over the residual's."""
+def candidates(
+    values: Floats,
+    decays: tuple[float, ...],
+    ratios: tuple[float, ...],
+    expected_shapes: Mapping[str, str],
+) -> Candidates:
+    """Return all candidates.
+
+    Parameters
+    ----------
+    values : ndarray, shape (C, 3)
+    decays : tuple of float
+        Prior spread kept with each further power.
+    ratios : tuple of float
+        Prior spreads of a linear term over the residual's.
+    expected_shapes : mapping of str to str
+        Shape that physics expects, by condition; plain by default. It is preferred
+        among equally good ones; an axis whose two levels cannot tell takes a steeper one.
+    """
     powers = axis_powers(values)
-    positive = {n: bool((values[:, CONDITION_NAMES.index(n)] > 0.0).all()) for n in powers}
-    shapes = [
-        AXIS_SHAPES if power > 1 and positive[name] else AXIS_SHAPES[:1]
-        for name, power in powers.items()
-    ]
+    shapes = [_shapes(values, name, power, expected_shapes) for name, power in powers.items()]
     exponents = _visible(values, powers)
     order = np.array([sum(term) for term in exponents])
     spread = [
@@ -93,14 +116,27 @@ def candidates(values: Floats, decays: tuple[float, ...], ratios: tuple[float, .
         for decay in decays
         for ratio in ratios
     ]
+    chosen = [dict(zip(powers, shape, strict=True)) for shape in itertools.product(*shapes)]
+    surprises = [
+        sum(shape != expected_shapes.get(name, "plain") for name, shape in one.items())
+        for one in chosen
+    ]
     return Candidates(
-        axes=tuple(
-            _axes(values, dict(zip(powers, chosen, strict=True)))
-            for chosen in itertools.product(*shapes)
-        ),
+        axes=tuple(_axes(values, one) for one in chosen),
+        surprises=np.array(surprises),
         exponents=exponents,
         spread=np.array(spread),
     )
+
+
+def _shapes(
+    values: Floats, name: str, power: int, expected_shapes: Mapping[str, str]
+) -> tuple[str, ...]:
+    if not (values[:, CONDITION_NAMES.index(name)] > 0.0).all():
+        return ("plain",)
+    if power == 1:
+        return (_STEEPER[expected_shapes.get(name, "plain")],)
+    return AXIS_SHAPES[:3]
 
 
 def _visible(values: Floats, powers: dict[str, int]) -> tuple[tuple[int, ...], ...]:

@@ -13,6 +13,7 @@ from simulation), `choose_by_likelihood` for values with known random errors
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -25,8 +26,8 @@ __all__ = ["SurfaceFit", "choose_by_left_out", "choose_by_likelihood", "differen
 
 Floats = npt.NDArray[np.float64]
 
-_AS_GOOD = 1.05
-"""Fewer terms are preferred while the left-out error rises by no more than this factor."""
+_AS_GOOD = 1.1
+"""The expected axes and fewer terms are preferred while the error rises by no more than this."""
 _AS_LIKELY = 2.0
 """The same for twice the log likelihood."""
 
@@ -82,7 +83,10 @@ def _scaled_designs(ways: Candidates, values: Floats, weights: Floats) -> Floats
 
 
 def choose_by_left_out(
-    values: Floats, targets: Floats, metric: Floats | None = None, *, nested: bool = True
+    values: Floats,
+    targets: Floats,
+    metric: Floats | None = None,
+    expected_shapes: Mapping[str, str] | None = None,
 ) -> SurfaceFit:
     """Choose shape, order and prior by leaving one condition out at a time.
 
@@ -100,40 +104,45 @@ def choose_by_left_out(
     targets : ndarray, shape (C, L)
     metric : ndarray, shape (C, L, L), optional
         An error `d` at a condition costs ``sqrt(d @ metric @ d)``; identity by default.
-    nested : bool
-        Repeat the selection inside each fold.
+    expected_shapes : mapping of str to str, optional
+        See `surface_forms.candidates`.
 
     Returns
     -------
     SurfaceFit
     """
-    ways = candidates(values, decays=(0.3,), ratios=(30.0, 100.0, 300.0))
+    ways = candidates(values, (0.3,), (30.0, 100.0, 300.0), expected_shapes or {})
     weights = np.ones(len(values))
     scaled = _scaled_designs(ways, values, weights)
     smoother, residual = _smoothers(scaled, targets)
     if metric is None:
         metric = np.broadcast_to(np.eye(targets.shape[1]), (len(values), *(targets.shape[1],) * 2))
     single = residual / _slack(smoother)[..., None]
-    terms = _terms(ways)
+    oddity = _oddity(ways)
     fitted = _cost(residual, metric).mean(axis=-1)
-    best = _simplest(_cost(single, metric).mean(axis=-1) + fitted, terms)
-    left_out = _nested(smoother, residual, single, metric, terms) if nested else single[best]
+    best = _simplest(_cost(single, metric).mean(axis=-1) + fitted, oddity)
+    left_out = _nested(smoother, residual, single, metric, oddity)
     if len(values) == 1:
         left_out = np.full_like(targets, np.nan)
     return _finished(ways, best, values, targets, weights, left_out)
 
 
-def _terms(ways: Candidates) -> npt.NDArray[np.intp]:
-    """Return how many terms each candidate of the batch has, shape (S * P,)."""
-    counts: npt.NDArray[np.intp] = np.tile((ways.spread > 0.0).sum(axis=-1), len(ways.axes))
-    return counts
+def _oddity(ways: Candidates) -> npt.NDArray[np.intp]:
+    """Return how far each candidate is from what one would write first, shape (S * P,).
+
+    Unexpected axes count before terms.
+    """
+    terms = np.tile((ways.spread > 0.0).sum(axis=-1), len(ways.axes))
+    surprises = np.repeat(ways.surprises, len(ways.spread))
+    oddity: npt.NDArray[np.intp] = surprises * (1 + len(ways.exponents)) + terms
+    return oddity
 
 
-def _simplest(cost: Floats, terms: npt.NDArray[np.intp]) -> int:
-    """Return the candidate with the fewest terms, then the least cost, among those as good."""
+def _simplest(cost: Floats, oddity: npt.NDArray[np.intp]) -> int:
+    """Return the least odd candidate, then the one of least cost, among those as good."""
     enough = cost <= cost.min() * _AS_GOOD + 1e-12
-    fewest = enough & (terms == terms[enough].min())
-    return int(np.argmin(np.where(fewest, cost, np.inf)))
+    simplest = enough & (oddity == oddity[enough].min())
+    return int(np.argmin(np.where(simplest, cost, np.inf)))
 
 
 def _smoothers(scaled: Floats, targets: Floats) -> tuple[Floats, Floats]:
@@ -157,7 +166,7 @@ def _cost(error: Floats, metric: Floats) -> Floats:
 
 
 def _nested(
-    smoother: Floats, residual: Floats, single: Floats, metric: Floats, terms: npt.NDArray[np.intp]
+    smoother: Floats, residual: Floats, single: Floats, metric: Floats, oddity: npt.NDArray[np.intp]
 ) -> Floats:
     """Return left-out errors, each of the candidate that the other conditions choose."""
     count = smoother.shape[-1]
@@ -170,7 +179,7 @@ def _nested(
         fitted = residual + across[..., None] * single[:, i : i + 1]
         cost = _cost(pair / determinant[..., None], metric) + _cost(fitted, metric)
         cost[:, i] = 0.0
-        left_out[i] = single[_simplest(cost.sum(axis=-1), terms), i]
+        left_out[i] = single[_simplest(cost.sum(axis=-1), oddity), i]
     return left_out
 
 
@@ -191,7 +200,7 @@ def choose_by_likelihood(values: Floats, target: Floats, variance: Floats) -> Su
     """
     scale = float(np.mean(variance))
     weights = scale / variance
-    ways = candidates(values, decays=(0.3,), ratios=(0.1, 0.5, 2.0, 10.0, 100.0))
+    ways = candidates(values, (0.3,), (0.1, 0.5, 2.0, 10.0, 100.0), {})
     scaled = _scaled_designs(ways, values, weights)
     whitened = target * np.sqrt(weights) / np.sqrt(scale)
     spread = np.eye(len(target)) + scaled @ scaled.transpose(0, 2, 1)
@@ -199,8 +208,8 @@ def choose_by_likelihood(values: Floats, target: Floats, variance: Floats) -> Su
     fit = np.linalg.solve(spread, np.broadcast_to(whitened, (len(spread), len(target)))[..., None])
     surprise = log_determinant + np.einsum("c,bc->b", whitened, fit[..., 0])
     likely = surprise <= surprise.min() + _AS_LIKELY
-    terms = _terms(ways)
-    best = int(np.argmin(np.where(likely & (terms == terms[likely].min()), surprise, np.inf)))
+    oddity = _oddity(ways)
+    best = int(np.argmin(np.where(likely & (oddity == oddity[likely].min()), surprise, np.inf)))
     smoother, residual = _smoothers(scaled[best : best + 1], whitened[:, None])
     left_out = residual[0] / _slack(smoother)[0][:, None] * np.sqrt(scale / weights)[:, None]
     return _finished(ways, best, values, target[:, None], weights, left_out)

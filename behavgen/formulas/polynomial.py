@@ -14,8 +14,8 @@ __all__ = ["AXIS_SHAPES", "axis_coordinate", "dense_coefficients", "nested_horne
 
 Floats = npt.NDArray[np.float64]
 
-AXIS_SHAPES = ("plain", "reciprocal", "reciprocal_square")
-"""x, 1/x and 1/x^2: what a condition enters a polynomial as."""
+AXIS_SHAPES = ("plain", "reciprocal", "reciprocal_square", "reciprocal_fourth")
+"""x, 1/x, 1/x^2 and 1/x^4: what a condition enters a polynomial as."""
 
 
 def quantise(x: npt.ArrayLike, steps_per_unit: float) -> Floats:
@@ -42,6 +42,8 @@ def axis_coordinate(x: Floats, shape: str, centre: float, half_range: float) -> 
         x = 1.0 / x
     elif shape == "reciprocal_square":
         x = 1.0 / (x * x)
+    elif shape == "reciprocal_fourth":
+        x = 1.0 / ((x * x) * (x * x))
     return (x - centre) / half_range
 
 

@@ -13,9 +13,13 @@ import numpy as np
 import numpy.typing as npt
 
 __all__ = [
+    "ApertureTable",
     "Characterisation",
     "Conditions",
     "DelayTable",
+    "EnergyTable",
+    "KickbackTable",
+    "MemoryTable",
     "NoiseTable",
     "OffsetStatistics",
     "OffsetTable",
@@ -202,6 +206,89 @@ class ResetTable:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class MemoryTable:
+    """Memory of the previous decision, shape (N,) each.
+
+    Parameters
+    ----------
+    reset_time_s : ndarray
+        From the reset edge to the next decision edge, s.
+    memory_shift_v : ndarray
+        Half the distance between the trip points after a one and after a zero, V.
+    censored : ndarray of bool
+        The shift is at least so large.
+    """
+
+    conditions: Conditions
+    reset_time_s: Floats
+    memory_shift_v: Floats
+    censored: npt.NDArray[np.bool_]
+    sources: tuple[TableSource, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class ApertureTable:
+    """Weight of the input over time, shape (N,) each.
+
+    Parameters
+    ----------
+    step_time_s : ndarray
+        When the input steps, relative to the decision edge, s.
+    step_weight : ndarray
+        Share of the input's weight that lies after the step.
+    step_v : ndarray
+        Height of the step, V; NaN when not given.
+    """
+
+    conditions: Conditions
+    step_time_s: Floats
+    step_weight: Floats
+    step_v: Floats
+    sources: tuple[TableSource, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class EnergyTable:
+    """Energy of a decision and the reset after it, shape (N,) each.
+
+    Parameters
+    ----------
+    overdrive_v, vdiff_v : ndarray
+        One of them per row, V; the other is NaN.
+    energy_j : ndarray
+    cycle_time_s : ndarray
+        Clock period, s; NaN when not given.
+    """
+
+    conditions: Conditions
+    overdrive_v: Floats
+    vdiff_v: Floats
+    energy_j: Floats
+    cycle_time_s: Floats
+    sources: tuple[TableSource, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class KickbackTable:
+    """Charge driven out of the input pins by a decision, shape (N,) each.
+
+    Parameters
+    ----------
+    charge_common_c, charge_differential_c : ndarray
+        Mean of both pins, and of `inp` less that of `inn`, C.
+    vdiff_v, source_resistance_ohm : ndarray
+        NaN when not given.
+    """
+
+    conditions: Conditions
+    charge_common_c: Floats
+    charge_differential_c: Floats
+    vdiff_v: Floats
+    source_resistance_ohm: Floats
+    sources: tuple[TableSource, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class Characterisation:
     """All tables of one cell; an absent table is an absent effect.
 
@@ -216,5 +303,9 @@ class Characterisation:
     delay: DelayTable | None = None
     window: WindowTable | None = None
     reset: ResetTable | None = None
+    memory: MemoryTable | None = None
+    aperture: ApertureTable | None = None
+    energy: EnergyTable | None = None
+    kickback: KickbackTable | None = None
     sources: tuple[TableSource, ...] = ()
     notices: tuple[str, ...] = ()

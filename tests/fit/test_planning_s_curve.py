@@ -101,7 +101,7 @@ def test_information_of_published_designs(design: dict[str, object]) -> None:
         z = np.array([-1.5, 0.0, 1.5])
     else:
         low, high = (float(part) for part in name.split()[1].split(".."))
-        z = np.linspace(low, high, int(name.split("pt")[0]))
+        z = np.linspace(low, high, int(name.split("pt", maxsplit=1)[0]))
         z += 1.0 if name.endswith("by 1 sigma") else 2.0 if name.endswith("2 sigma") else 0.0
     offset_half_v, sigma_half = expected_halves(known(0.0, 0.0), OFFSET_V + SIGMA_V * z, 1000)
     decisions, reach = 1000 * len(z), normal_quantile(0.95)
@@ -197,10 +197,10 @@ def drawn(
 def kept_promise(fits: SCurveFits, sigma_v: np.ndarray, plan: PlannedSCurve) -> tuple[float, float]:
     """Return mean half widths of offset and sigma over the promised ones.
 
-    One curve in a thousand is taken for no S-curve, with wider intervals; it is left out.
+    A few of few decisions are refused or taken for no S-curve; they are left out.
     """
     lawful = fits.overdispersion == 1.0
-    assert lawful.mean() > 0.99
+    assert lawful.mean() > 0.98
     offset_half_v = 0.5 * (fits.offset_high_v - fits.offset_low_v)
     sigma_half = 0.5 * (fits.sigma_high_v - fits.sigma_low_v) / sigma_v
     return (
@@ -233,7 +233,7 @@ class TestPromise:
     def test_of_rows_added_to_a_table(self) -> None:
         """Pilot curves of 7 levels x 200, each planned on by its own fit."""
         rng = np.random.default_rng(4)
-        curves = 60
+        curves = 40
         offset_v, sigma_v = drawn(known(0.2, 0.2), curves, rng)
         pilot_v = np.tile(OFFSET_V + SIGMA_V * np.linspace(-2.0, 2.0, 7), (curves, 1))
         pilot_trials = np.full(7, 200)
@@ -272,7 +272,7 @@ class TestPromise:
         assert promised is not None
         rng = np.random.default_rng(5)
         ratios, decisions = [], []
-        for _ in range(60):
+        for _ in range(40):
             (offset_v,), (sigma_v,) = drawn(rough, 1, rng)
             levels_v, trials, ones = searched(search, offset_v, sigma_v, rng)
             swept = fit(levels_v[None], trials, ones[None])

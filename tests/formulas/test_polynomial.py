@@ -35,12 +35,16 @@ def test_no_axis_is_a_constant():
 
 
 @pytest.mark.parametrize(
-    ("shape", "expected"), [("plain", 0.5), ("reciprocal", 0.0), ("reciprocal_square", -0.25)]
+    ("shape", "expected"),
+    [
+        ("plain", 3.0),
+        ("reciprocal", 0.0),
+        ("reciprocal_square", -0.5),
+        ("reciprocal_fourth", -0.875),
+    ],
 )
 def test_axis_shapes(shape, expected):
-    assert axis_coordinate(np.array([2.0]), shape, 0.5, 1.0)[0] == expected + (
-        1.0 if shape == "plain" else 0.0
-    )
+    assert axis_coordinate(np.array([2.0]), shape, 0.5, 0.5)[0] == expected
 
 
 def test_quantise_is_idempotent_and_near():

@@ -32,7 +32,7 @@ def test_one_on_the_path_is_called_with_exact_arithmetic(tmp_path, monkeypatch, 
 @pytest.mark.parametrize("programs", [{}, {"verilator": "print('Verilator 4.038 2020-07-11')"}])
 def test_a_missing_or_old_one_is_refused(programs, tmp_path, monkeypatch, no_package):
     put_on_path(tmp_path, monkeypatch, **programs)
-    with pytest.raises(ToolError, match="install Verilator 5.36 or newer"):
+    with pytest.raises(ToolError, match=r"install Verilator 5\.36 or newer"):
         find_verilator()
 
 

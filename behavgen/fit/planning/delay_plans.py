@@ -10,14 +10,13 @@ import numpy as np
 from behavgen.fit.planning.delays import (
     KnownDelay,
     PlannedDelays,
-    PlannedWindows,
     delay_halves,
     plan_delays,
-    plan_windows,
 )
 from behavgen.fit.planning.estimates import estimate_of, half_of
 from behavgen.fit.planning.goals import Goals, Guess
 from behavgen.fit.planning.surface_values import value_at
+from behavgen.fit.planning.windows import PlannedWindows, plan_windows
 from behavgen.model import ComparatorModel, Condition, ConditionFit
 
 __all__ = [

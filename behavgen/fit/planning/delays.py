@@ -1,4 +1,4 @@
-"""At which overdrives to measure delays, and at which times windows, for a wanted tau.
+"""At which overdrives to measure delays for a wanted interval of tau and of the delay.
 
 Errors count relative to the delay, as in the fit: with relative scatter `s` the rows
 at overdrives `v` leave the law's parameters the covariance ``s^2 (J^T J)^-1``, `J`
@@ -12,8 +12,9 @@ looks random from row to row, and no row tells anything twice.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
-from math import ceil, inf, log, log2, log10
+from math import inf, log
 
 import numpy as np
 import numpy.typing as npt
@@ -29,31 +30,26 @@ __all__ = [
     "DelayHalves",
     "KnownDelay",
     "PlannedDelays",
-    "PlannedWindows",
     "delay_halves",
     "plan_delays",
-    "plan_windows",
 ]
 
 Floats = npt.NDArray[np.float64]
+Integers = npt.NDArray[np.int64]
 
 MOST_ROWS = 400
-"""More rows at one condition are no plan: the law has to fit better, or the tail to be longer."""
+"""More new rows at a condition are no plan: the law has to fit better, or the tail be longer."""
 
 _FEWEST_TAIL_ROWS = 4
-_FEWEST_ROWS_A_NODE = 2
-_ROUNDS = 12
+_ROUNDS = 30
 _MOST_AT_ONCE = 2.0
-"""Rows are at most quadrupled before looking again."""
+_CAREFUL = 1.5
+"""Rows grow with less than the square of what is missing, so as not to add too many."""
 
 _CURVE_POINTS = 60
 _STEP = 1.05
-_NEARLY = 0.95
-"""Share of tau that the local slope has at the end of the tail."""
-_WINDOWS_A_DECADE = 2
-_FEWEST_WINDOWS = 4
-_EDGE_STEPS = ceil(log2(4.0 / 0.01))
-"""Simulations that find one edge of a window to 1 %, known before within a factor of 4."""
+_BEND = 0.05
+"""Relative difference of the local slope from tau at the end of the tail."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -91,8 +87,13 @@ class KnownDelay:
         """Overdrive up to which the delay falls by tau per unit of its logarithm, V."""
         ends_v = np.geomspace(self.node_overdrive_v[0], self.node_overdrive_v[-1], _CURVE_POINTS)
         rise_s = self.delay_s(ends_v / _STEP) - self.delay_s(ends_v)
-        bent = np.flatnonzero(rise_s < _NEARLY * self.tau_s * log(_STEP))
+        bent = np.flatnonzero(np.abs(rise_s / (self.tau_s * log(_STEP)) - 1.0) > _BEND)
         return float(ends_v[max(int(bent[0]) - 1, 0)] if bent.size else ends_v[-1])
+
+    def is_tail(self, overdrive_v: float) -> bool:
+        """Whether an overdrive lies in the tail; of a straight law all do."""
+        tail_end_v = self.tail_end_v
+        return overdrive_v < tail_end_v or tail_end_v == self.node_overdrive_v[-1]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -123,23 +124,6 @@ class PlannedDelays:
     def simulations(self) -> int:
         """Decisions to simulate at each condition."""
         return len(self.tail_v) + len(self.curve_v)
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class PlannedWindows:
-    """Times at which to look for the metastable window.
-
-    Parameters
-    ----------
-    resolve_time_s, window_v : tuple of float
-        Times after the edge and the windows expected then.
-    simulations : int
-        Decisions that find both edges of all of them to 1 %.
-    """
-
-    resolve_time_s: tuple[float, ...]
-    window_v: tuple[float, ...]
-    simulations: int
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -194,21 +178,20 @@ def plan_delays(
 
     if known.overdrive_v and enough(delay_halves(known, lowest_v=lowest_v, level=level)):
         return None
-    tail_end_v = known.tail_end_v
-    there = sum(v < tail_end_v for v in known.overdrive_v)
-    counts = np.array([there, len(known.overdrive_v) - there])
-    total = counts if known.overdrive_v else _fewest_rows(known)
+    there = _by_part(known, known.overdrive_v)
+    more: Integers = np.zeros_like(there)
+    if not known.overdrive_v:  # two rows a node, and the tail's own
+        more = _by_part(known, (*known.node_overdrive_v, *known.node_overdrive_v))
+        more[0] += _FEWEST_TAIL_ROWS
     for _ in range(_ROUNDS):
-        tail_v, curve_v = _spread(known, lowest_v, total - counts)
+        tail_v, curve_v = _spread(known, lowest_v, more)
         added = (*known.overdrive_v, *tail_v, *curve_v)
         found = delay_halves(replace(known, overdrive_v=added), lowest_v=lowest_v, level=level)
-        if enough(found) or total.sum() >= MOST_ROWS:
+        if enough(found) or more.sum() >= MOST_ROWS:
             break
-        in_tail = found.widest_v < tail_end_v
+        in_tail = known.is_tail(found.widest_v)
         tau, delay = found.tau / tau_within, found.delay / delay_within
-        factor = np.array([max(tau, delay * in_tail), delay * (not in_tail)])
-        total = np.ceil(total * np.clip(factor, 1.0, _MOST_AT_ONCE) ** 2).astype(int)
-        total = np.minimum(total, np.maximum(counts, MOST_ROWS))
+        more = _grown(there, more, max(tau, delay * in_tail), delay * (not in_tail))
     return PlannedDelays(
         tail_v=tail_v,
         curve_v=curve_v,
@@ -245,44 +228,27 @@ def delay_halves(known: KnownDelay, *, lowest_v: float, level: float = 0.95) -> 
     )
 
 
-def plan_windows(known: KnownDelay, *, lowest_v: float) -> PlannedWindows:
-    """Return times at which windows tell tau independently of the delays.
+def _by_part(known: KnownDelay, overdrives_v: Sequence[float]) -> Integers:
+    """Return how many overdrives lie in the tail and how many above it."""
+    in_tail = sum(known.is_tail(v) for v in overdrives_v)
+    return np.array([in_tail, len(overdrives_v) - in_tail])
 
-    A window is twice the overdrive whose delay is the time: times step evenly down
-    the tail.
 
-    Parameters
-    ----------
-    known : KnownDelay
-    lowest_v : float
-        Smallest overdrive, V, below the tail's end.
-    """
-    tail_end_v = known.tail_end_v
-    count = max(ceil(_WINDOWS_A_DECADE * log10(tail_end_v / lowest_v)), _FEWEST_WINDOWS)
-    half_v = np.geomspace(tail_end_v, lowest_v, count)
-    return PlannedWindows(
-        resolve_time_s=tuple(float(t) for t in known.delay_s(half_v)),
-        window_v=tuple(float(2.0 * v) for v in half_v),
-        simulations=2 * _EDGE_STEPS * count,
-    )
+def _grown(there: Integers, more: Integers, *short: float) -> Integers:
+    """Return how many rows to add in each part, from how many times its halves are too wide."""
+    factor = np.clip(short, 1.0, _MOST_AT_ONCE) ** _CAREFUL
+    wanted = np.ceil((there + more) * factor).astype(np.int64) - there
+    return np.rint(wanted * min(1.0, MOST_ROWS / wanted.sum())).astype(np.int64)
 
 
 def _spread(
-    known: KnownDelay, lowest_v: float, more: npt.NDArray[np.int64]
+    known: KnownDelay, lowest_v: float, more: Integers
 ) -> tuple[tuple[float, ...], tuple[float, ...]]:
     """Return overdrives to add in the tail and along the curve, even in their logarithm."""
     tail_end_v, last_v = known.tail_end_v, known.node_overdrive_v[-1]
-    tail = np.geomspace(lowest_v, tail_end_v, int(more[0]) + 1)[: int(more[0])]
+    tail = np.geomspace(lowest_v, tail_end_v, int(more[0]), endpoint=tail_end_v == last_v)
     curve = np.geomspace(tail_end_v, last_v, int(more[1]))
     return tuple(map(_rounded, tail)), tuple(map(_rounded, curve))
-
-
-def _fewest_rows(known: KnownDelay) -> npt.NDArray[np.int64]:
-    """Return how many rows the law needs at the least in the tail and above it."""
-    above = sum(v > known.tail_end_v for v in known.node_overdrive_v)
-    below = len(known.node_overdrive_v) - above
-    least = _FEWEST_ROWS_A_NODE * np.array([below, above]) + [_FEWEST_TAIL_ROWS, 1]
-    return least.astype(np.int64)
 
 
 def _rounded(overdrive_v: float) -> float:

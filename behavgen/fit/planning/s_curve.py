@@ -36,6 +36,7 @@ _LEAST_APART_Z = 0.65
 """Levels closer together than this cannot tell one shape of the curve from another."""
 
 _PRIOR_NODES = 7
+_BISECTIONS = 20
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -228,7 +229,7 @@ def _placed(known: KnownSCurve, wanted: Floats, level: float) -> tuple[float, ..
     per_decision = _information(known.offset_v + z * known.sigma_v, known)
     measured = _measured(known)
     low, high = np.zeros(len(z)), np.full(len(z), np.log(MOST))
-    for _ in range(40):
+    for _ in range(_BISECTIONS):
         middle = 0.5 * (low + high)
         information = measured + np.exp(middle)[:, None, None, None] * per_decision
         enough = (_halves(information, known, level) <= wanted).all(axis=-1)

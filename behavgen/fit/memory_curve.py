@@ -1,0 +1,182 @@
+"""Shifts over reset time -> a sum of exponentials and a floor.
+
+With the time constants given the curve is linear in everything else (separable
+least squares; G. H. Golub, V. Pereyra, SIAM J. Numer. Anal. 10, 1973, 413-432),
+so that only they are searched, on a grid first. Errors count relative to the
+shift. A row that only says "at least so much" counts while the curve is below it.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+from scipy.optimize import minimize, nnls
+
+__all__ = ["CurveShape", "MemoryCurves", "MemoryRows", "fit_curves"]
+
+Floats = npt.NDArray[np.float64]
+Truths = npt.NDArray[np.bool_]
+
+_GRID = {1: 48, 2: 24}
+"""Time constants tried a term; two terms take all pairs."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class MemoryRows:
+    """Rows of a memory table, shape (N,) each.
+
+    Parameters
+    ----------
+    reset_time_s, shift_v : ndarray
+    scale_v : ndarray
+        By which an error is divided.
+    is_bound : ndarray of bool
+        The shift is at least so large.
+    site : ndarray of int
+        Operating condition.
+    """
+
+    reset_time_s: Floats
+    shift_v: Floats
+    scale_v: Floats
+    is_bound: Truths
+    site: npt.NDArray[np.intp]
+
+    def where(self, use: Truths) -> MemoryRows:
+        """Return some of the rows."""
+        return MemoryRows(
+            reset_time_s=self.reset_time_s[use],
+            shift_v=self.shift_v[use],
+            scale_v=self.scale_v[use],
+            is_bound=self.is_bound[use],
+            site=self.site[use],
+        )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CurveShape:
+    """How many exponentials, and whether something lasts."""
+
+    terms: int
+    floor: bool
+
+    @property
+    def heights(self) -> int:
+        """Number of parameters in which the curve is linear."""
+        return self.terms + self.floor
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class MemoryCurves:
+    """Curves of G groups of rows that share their time constants.
+
+    Parameters
+    ----------
+    tau_s : ndarray, shape (K,)
+        Rising.
+    heights_v : ndarray, shape (G, K + floor)
+        Of the terms at `start_s`, then the floor; not negative.
+    start_s : float
+        The shortest reset time that was fitted; terms are told from there, where data are.
+    squares : float
+        Sum of squared relative errors.
+    """
+
+    tau_s: Floats
+    heights_v: Floats
+    start_s: float
+    squares: float
+
+    def shift_v(self, reset_time_s: Floats, group: npt.NDArray[np.intp]) -> Floats:
+        """Return the shift of rows in their groups, V."""
+        basis = _basis(reset_time_s - self.start_s, self.tau_s, self.heights_v.shape[1])
+        shift: Floats = (basis * self.heights_v[group]).sum(axis=-1)
+        return shift
+
+    def log_parameters(self) -> Floats:
+        """Return ln of heights at no reset, ln tau and, if any, ln floor, (G, 2 K + floor)."""
+        heights = np.log(self.heights_v)
+        terms = len(self.tau_s)
+        heights[:, :terms] += self.start_s / self.tau_s
+        tau = np.broadcast_to(np.log(self.tau_s), (len(heights), terms))
+        return np.column_stack([heights[:, :terms], tau, heights[:, terms:]])
+
+
+def fit_curves(
+    rows: MemoryRows, group: npt.NDArray[np.intp], shape: CurveShape
+) -> MemoryCurves | None:
+    """Fit groups of rows with shared time constants; None where the shape is one part too many.
+
+    Parameters
+    ----------
+    rows : MemoryRows
+    group : ndarray of int, shape (N,)
+        0, 1, ... without gaps.
+    shape : CurveShape
+    """
+    start_s = float(rows.reset_time_s.min())
+
+    def squares(log_tau: Floats) -> float:
+        return _solved(rows, group, shape, start_s, log_tau)[1]
+
+    log_tau = np.empty(0)
+    if shape.terms:
+        grid = _grid(rows.reset_time_s, shape.terms)
+        best = grid[int(np.argmin([squares(candidate) for candidate in grid]))]
+        options = {"xatol": 1e-9, "fatol": 1e-18, "maxiter": 400}
+        log_tau = np.sort(minimize(squares, best, method="Nelder-Mead", options=options).x)
+    heights, total = _solved(rows, group, shape, start_s, log_tau)
+    if not (heights > 0.0).all() or (np.diff(log_tau) < 1e-3).any():
+        return None
+    return MemoryCurves(
+        tau_s=np.exp(log_tau), heights_v=heights, start_s=start_s, squares=total
+    )
+
+
+def _grid(reset_time_s: Floats, terms: int) -> list[Floats]:
+    """Return ln of time constants that the reset times can tell from nothing and from a floor."""
+    times = np.unique(reset_time_s)
+    shortest = max(0.1 * np.diff(times).min(), times[0] / 300.0)
+    single = np.linspace(np.log(shortest), np.log(10.0 * np.ptp(times)), _GRID[terms])
+    if terms == 1:
+        return list(single[:, None])
+    first, second = np.triu_indices(len(single), k=1)
+    return list(np.column_stack([single[first], single[second]]))
+
+
+def _basis(time_s: Floats, tau_s: Floats, heights: int) -> Floats:
+    decays = np.exp(np.minimum(-time_s[:, None] / tau_s, 300.0))
+    return np.column_stack([decays, np.ones((len(time_s), heights - len(tau_s)))])
+
+
+def _solved(
+    rows: MemoryRows,
+    group: npt.NDArray[np.intp],
+    shape: CurveShape,
+    start_s: float,
+    log_tau: Floats,
+) -> tuple[Floats, float]:
+    """Return each group's heights (G, H) and the sum of squares for given time constants."""
+    tau_s = np.exp(np.clip(log_tau, -100.0, 100.0))
+    basis = _basis(rows.reset_time_s - start_s, tau_s, shape.heights)
+    found = [
+        _heights(basis[here], rows.where(here))
+        for here in (group == g for g in range(int(group.max()) + 1))
+    ]
+    return np.array([heights for heights, _ in found]), sum(squares for _, squares in found)
+
+
+def _heights(basis: Floats, rows: MemoryRows) -> tuple[Floats, float]:
+    """Solve for heights that are not negative; bounds count once the curve falls short of them."""
+    scaled, target = basis / rows.scale_v[:, None], rows.shift_v / rows.scale_v
+    counts = ~rows.is_bound
+    heights, root = nnls(scaled[counts], target[counts])
+    for _ in range(int(rows.is_bound.sum())):
+        short = rows.is_bound & (scaled @ heights < target)
+        if (short == (counts & rows.is_bound)).all():
+            break
+        counts = ~rows.is_bound | short
+        heights, root = nnls(scaled[counts], target[counts])
+    return heights, float(root) ** 2
