@@ -45,6 +45,8 @@ _LN_10 = np.log(10.0)
 class Prediction:
     """What is to be expected, in one shape; None where it was not asked or not characterised.
 
+    Intervals are NaN where the model does not know the error of its own numbers.
+
     Parameters
     ----------
     level : float
@@ -61,10 +63,11 @@ class Prediction:
     delay_s : Band or None
         Delay, noise left out, at `overdrive_v`, s.
     overdrive_v : ndarray or None
-        Overdrive of the input nearest to the trip point, V; None for a span.
+        Overdrive of the input nearest to the trip point, V, not below the model's floor;
+        None for a span.
     sigmas : ndarray or None
         How far out the Gaussian law is used, in sigmas.
-    log10_half_window : ndarray or None
+    log10_half_window_v : ndarray or None
         Decimal logarithm of the overdrive in V down to which the delay law is used.
     """
 
@@ -76,7 +79,7 @@ class Prediction:
     delay_s: Band | None
     overdrive_v: Floats | None
     sigmas: Floats | None
-    log10_half_window: Floats | None
+    log10_half_window_v: Floats | None
 
 
 def predict(
@@ -118,19 +121,23 @@ def predict(
     moved = _moved(*_fitted_numbers(bands, inputs.shape, resolve_time_s, instances, condition))
     these, nominal = _comparators(moved, instances), _comparators(moved[:, 0], instances)
     noise, unresolved, either = (_log10_band(log_p) for log_p in inputs.failures(these))
+    noisy = model.noise is not None
     waits = resolve_time_s is not None and model.delay is not None
+    know_noise = model.noise is None or bool(model.noise.surface.covariance)
+    know_delay = model.delay is None or bool(model.delay.scatter or model.delay.lack_of_fit)
+    unresolved = _with_interval(unresolved, known=know_delay)
     return Prediction(
         level=level,
-        log10_noise_error=noise if model.noise is not None else None,
+        log10_noise_error=_with_interval(noise, known=know_noise) if noisy else None,
         log10_unresolved=unresolved if waits else None,
-        log10_error=either if waits else None,
+        log10_error=_with_interval(either, known=know_noise and know_delay) if waits else None,
         log10_time_between_failures_s=_time_between(unresolved, clock_hz)
         if waits and clock_hz is not None
         else None,
-        delay_s=_delay(bands, inputs.nearest_overdrive_v(these), condition),
-        overdrive_v=inputs.nearest_overdrive_v(nominal),
-        sigmas=inputs.sigmas(nominal) if model.noise is not None else None,
-        log10_half_window=nominal.log_half_window / _LN_10 if waits else None,
+        delay_s=_delay(bands, inputs.nearest_overdrive_v(these), condition, known=know_delay),
+        overdrive_v=_above_floor(inputs.nearest_overdrive_v(nominal), model),
+        sigmas=inputs.sigmas(nominal) if noisy else None,
+        log10_half_window_v=nominal.log_half_window / _LN_10 if waits else None,
     )
 
 
@@ -226,7 +233,15 @@ def _time_between(unresolved: Band, clock_hz: npt.ArrayLike) -> Band:
     )
 
 
-def _delay(bands: Bands, overdrive_v: Floats | None, condition: Conditions) -> Band | None:
+def _above_floor(overdrive_v: Floats | None, model: ComparatorModel) -> Floats | None:
+    if overdrive_v is None or model.delay is None:
+        return overdrive_v
+    return np.maximum(overdrive_v, model.delay.floor_v)
+
+
+def _delay(
+    bands: Bands, overdrive_v: Floats | None, condition: Conditions, *, known: bool
+) -> Band | None:
     """Return the delay at an overdrive and its moved cases; the law's own interval moves it too."""
     if overdrive_v is None or bands.model.delay is None:
         return None
@@ -234,7 +249,12 @@ def _delay(bands: Bands, overdrive_v: Floats | None, condition: Conditions) -> B
     log_delay = np.log(Reference(bands.model).delay(overdrive_v, **condition))
     ends = [*_by_number(log_delay), np.log(np.stack([own.low, own.high]))]
     low, high = _in_squares(log_delay[0], ends)
-    return Band(value=own.value, low=np.exp(low), high=np.exp(high))
+    return _with_interval(Band(value=own.value, low=np.exp(low), high=np.exp(high)), known=known)
+
+
+def _with_interval(band: Band, *, known: bool) -> Band:
+    nothing = np.full_like(band.value, np.nan)
+    return band if known else Band(value=band.value, low=nothing, high=nothing)
 
 
 def _by_number(moved: Floats) -> list[Floats]:

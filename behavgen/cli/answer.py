@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
-from math import log10
+from math import isnan, log10
 from typing import TYPE_CHECKING
 
 from behavgen.cli.question import Case, Question, cases
@@ -34,14 +34,16 @@ class Answer:
     Parameters
     ----------
     case : Case
-    noise_error, unresolved, error, time_between_failures : Estimate or None
-        Decimal logarithms: of probabilities, and of a time in s.
+    log10_noise_error, log10_unresolved, log10_error : Estimate or None
+        Decimal logarithms of probabilities.
+    log10_time_between_failures_s : Estimate or None
+        Decimal logarithm of the mean time between unresolved decisions in s.
     delay_s : Estimate or None
     overdrive_v : float or None
         Where the delay is taken.
     sigmas : float or None
         How far out the Gaussian law is used.
-    log10_half_window : float or None
+    log10_half_window_v : float or None
         Decimal logarithm of the overdrive in V down to which the delay law is used.
     decades_beyond : float or None
         Decades of overdrive by which that lies below all that is tabulated.
@@ -50,14 +52,14 @@ class Answer:
     """
 
     case: Case
-    noise_error: Estimate | None
-    unresolved: Estimate | None
-    error: Estimate | None
-    time_between_failures: Estimate | None
+    log10_noise_error: Estimate | None
+    log10_unresolved: Estimate | None
+    log10_error: Estimate | None
+    log10_time_between_failures_s: Estimate | None
     delay_s: Estimate | None
     overdrive_v: float | None
     sigmas: float | None
-    log10_half_window: float | None
+    log10_half_window_v: float | None
     decades_beyond: float | None
     outside: tuple[Outside, ...]
 
@@ -155,23 +157,24 @@ def _answer(
     def at(band: Band | None) -> Estimate | None:
         if band is None:
             return None
-        value, low, high = (float(a[k]) for a in (band.value, band.low, band.high))
+        value, *ends = (float(a[k]) for a in (band.value, band.low, band.high))
+        low, high = (None if isnan(end) else end for end in ends)
         return Estimate(value=value, low=low, high=high, level=found.level)
 
     def one_of(values: Floats | None) -> float | None:
         return None if values is None else float(values[k])
 
-    half_window = one_of(found.log10_half_window)
+    half_window = one_of(found.log10_half_window_v)
     return Answer(
         case=case,
-        noise_error=at(found.log10_noise_error),
-        unresolved=at(found.log10_unresolved),
-        error=at(found.log10_error),
-        time_between_failures=at(found.log10_time_between_failures_s),
+        log10_noise_error=at(found.log10_noise_error),
+        log10_unresolved=at(found.log10_unresolved),
+        log10_error=at(found.log10_error),
+        log10_time_between_failures_s=at(found.log10_time_between_failures_s),
         delay_s=at(found.delay_s),
         overdrive_v=one_of(found.overdrive_v),
         sigmas=one_of(found.sigmas),
-        log10_half_window=half_window,
+        log10_half_window_v=half_window,
         decades_beyond=_decades_beyond(half_window, reached),
         outside=outside,
     )
@@ -191,7 +194,7 @@ def _outside(model: ComparatorModel, case: Case, question: Question) -> tuple[Ou
     return tuple(one for one in outside(model, condition) if one.quantity in used)
 
 
-def _decades_beyond(log10_half_window: float | None, reached: Evidence) -> float | None:
-    if log10_half_window is None or reached.overdrive_v is None:
+def _decades_beyond(log10_half_window_v: float | None, reached: Evidence) -> float | None:
+    if log10_half_window_v is None or reached.overdrive_v is None:
         return None
-    return max(log10(reached.overdrive_v.low) - log10_half_window, 0.0)
+    return max(log10(reached.overdrive_v.low) - log10_half_window_v, 0.0)

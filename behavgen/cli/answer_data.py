@@ -15,10 +15,10 @@ from behavgen.model import Estimate
 __all__ = ["as_csv", "as_data", "csv_rows"]
 
 _ESTIMATES = {
-    "log10_wrong_by_noise [1]": "noise_error",
-    "log10_unresolved [1]": "unresolved",
-    "log10_wrong_or_unresolved [1]": "error",
-    "log10_seconds_between_unresolved [1]": "time_between_failures",
+    "log10_wrong_by_noise [1]": "log10_noise_error",
+    "log10_unresolved [1]": "log10_unresolved",
+    "log10_wrong_or_unresolved [1]": "log10_error",
+    "log10_seconds_between_unresolved [1]": "log10_time_between_failures_s",
     "delay [s]": "delay_s",
 }
 _CASE = {
@@ -32,7 +32,7 @@ _CASE = {
 _BASIS = {
     "overdrive_of_delay [V]": "overdrive_v",
     "sigmas_used [1]": "sigmas",
-    "log10_half_window_used [log10 V]": "log10_half_window",
+    "log10_half_window_used [log10 V]": "log10_half_window_v",
     "decades_beyond_tables [1]": "decades_beyond",
 }
 
@@ -97,4 +97,6 @@ def _finite(value: object) -> object:
         return {key: _finite(inner) for key, inner in value.items()}
     if isinstance(value, list | tuple):
         return [_finite(inner) for inner in value]
-    return None if isinstance(value, float) and not math.isfinite(value) else value
+    if isinstance(value, float):
+        return value + 0.0 if math.isfinite(value) else None  # no minus zero
+    return value

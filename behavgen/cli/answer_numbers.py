@@ -77,13 +77,11 @@ def wait_texts(found: Estimate) -> tuple[str, str]:
 
 def delay_texts(found: Estimate) -> tuple[str, str]:
     """Write a delay in s and its interval."""
-    if found.low == found.high:
-        return estimate_text(found, "s"), _NO_INTERVAL
-    return estimate_text(found, "s"), interval_text(found, "s")
+    return estimate_text(found, "s"), interval_text(found, "s") or _NO_INTERVAL
 
 
 def _interval(found: Estimate, text: Callable[[float], str]) -> str:
-    if found.low is None or found.high is None or found.high <= found.low:
+    if found.low is None or found.high is None:
         return _NO_INTERVAL
     ends = f"{text(found.low)}..{text(found.high)}"
     return f"{ends} ({100.0 * found.level:g} %, {found.high - found.low:.1g} decades)"

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 from behavgen.cli.answer import Answer, Answers
@@ -45,10 +45,10 @@ def case_rows(answers: Answers) -> list[Row]:
 
 def extreme_rows(answers: Answers) -> list[Row]:
     """Return of each number the first case and the ones among the others with least and most."""
-    rows = []
+    rows: list[Row] = []
     first, *others = answers.cases
     for quantity in _present(answers):
-        ranked = sorted(others, key=lambda found, of=quantity: _estimate(of, found).value)
+        ranked = _ranked(quantity, others)
         for label, name, found in (
             (quantity.label, "middle", first),
             ("", "least", ranked[0]),
@@ -62,6 +62,10 @@ def extreme_rows(answers: Answers) -> list[Row]:
 def _present(answers: Answers) -> list[_Quantity]:
     """Return the numbers that there are: each in all cases or in none."""
     return [q for q in _QUANTITIES if q.find(answers.cases[0]) is not None]
+
+
+def _ranked(quantity: _Quantity, among: Sequence[Answer]) -> list[Answer]:
+    return sorted(among, key=lambda found: _estimate(quantity, found).value)
 
 
 def _estimate(quantity: _Quantity, found: Answer) -> Estimate:
@@ -82,16 +86,16 @@ def _noise_basis(found: Answer, answers: Answers) -> str:
 
 
 def _window_basis(found: Answer, answers: Answers) -> str:
-    used, tabulated = found.log10_half_window, answers.evidence.overdrive_v
+    used, tabulated = found.log10_half_window_v, answers.evidence.overdrive_v
     assert used is not None
     if math.isinf(used):
         return "no tabulated overdrive resolves so soon"
     text = f"{volts_text(used)} used"
     if tabulated is None:
         return text
-    beyond = found.decades_beyond
     known = f"{text}, {format_si(tabulated.low, 'V')} tabulated"
-    return f"{known}, {beyond:.1f} decades beyond" if beyond else known
+    beyond = f"{found.decades_beyond or 0.0:.1f}"
+    return known if beyond == "0.0" else f"{known}, {beyond} decades beyond"
 
 
 def _wait_basis(found: Answer, answers: Answers) -> str:
@@ -107,13 +111,13 @@ def _delay_basis(found: Answer, answers: Answers) -> str:
 
 
 _QUANTITIES = (
-    _Quantity(label="wrong by noise", find=lambda found: found.noise_error,
+    _Quantity(label="wrong by noise", find=lambda found: found.log10_noise_error,
               write=chance_texts, basis=_noise_basis),
-    _Quantity(label="unresolved", find=lambda found: found.unresolved,
+    _Quantity(label="unresolved", find=lambda found: found.log10_unresolved,
               write=chance_texts, basis=_window_basis),
-    _Quantity(label="wrong or unresolved", find=lambda found: found.error,
+    _Quantity(label="wrong or unresolved", find=lambda found: found.log10_error,
               write=chance_texts, basis=lambda _found, _answers: "as the two above"),
-    _Quantity(label="MTBF (unresolved)", find=lambda found: found.time_between_failures,
+    _Quantity(label="MTBF (unresolved)", find=lambda found: found.log10_time_between_failures_s,
               write=wait_texts, basis=_wait_basis),
     _Quantity(label="delay", find=lambda found: found.delay_s,
               write=delay_texts, basis=_delay_basis),

@@ -73,11 +73,11 @@ def check_result(report: CheckReport, logs: Path, *, made: bool) -> CellResult:
         lines=[
             *labelled("simulator", report.simulator + state_text(made=made)),
             *labelled("compared", _compared_text(report)),
+            *(line for d in report.disagreements[:1] for line in labelled("first", first_text(d))),
             *labelled("benches", f"{passed} of {len(report.benches)} passed"),
             *(line for b in failed for line in labelled("failed", f"{b.name}: {b.message}")),
             *_stratum_lines("too few", [s for s in report.strata if s.short]),
             *_stratum_lines("thinnest", _thinnest(report.strata)),
-            *(line for d in report.disagreements[:1] for line in labelled("first", first_text(d))),
             *labelled("logs", shown_path(logs)),
         ],
         more=_stratum_lines("covered", report.strata),

@@ -62,7 +62,8 @@ _WANTED = (
 )  # fmt: skip
 _GUESSED = (
     _Asked(option="--guess-sigma", field="sigma_v", unit="V", about="noise sigma, as in 0.5m"),
-    _Asked(option="--guess-offset", field="offset_v", unit="V", about="trip point, as in =-2m", signed=True),
+    _Asked(option="--guess-offset", field="offset_v", unit="V",
+           about="trip point, as in =-2m", signed=True),
     _Asked(option="--guess-spread", field="spread_v", unit="V",
            about="spread of the offset between instances"),
     _Asked(option="--guess-tau", field="tau_s", unit="s", about="tau, as in 15p"),

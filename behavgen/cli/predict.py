@@ -85,9 +85,11 @@ def run(options: Options, terminal: Terminal) -> Outcome:
     if options.csv == _STDOUT:
         return _to_stdout(each_cell(options, _silent(options), work), rows, terminal)
     done = each_cell(options, terminal, work)
+    said = "predicted"
     if options.csv:
+        said += f", table in {options.csv}"
         _write(Path(options.csv), rows)
-    return done.outcome(options, done="predicted", then=command_line(options, "report"))
+    return done.outcome(options, done=said, then=command_line(options, "report"))
 
 
 def _answer_one(place: CellPlace, question: Question, rows: list[dict[str, object]]) -> CellResult:
@@ -121,8 +123,9 @@ def _to_stdout(done: CellsDone, rows: list[dict[str, object]], terminal: Termina
     """Print the table and nothing else; what must be said goes to the diagnostics."""
     from behavgen.cli.answer_data import as_csv  # noqa: PLC0415
 
-    terminal.conclude(as_csv(rows).rstrip("\n"))
-    terminal.complain(CAUTION)
+    if rows:
+        terminal.conclude(as_csv(rows).rstrip("\n"))
+        terminal.complain(CAUTION)
     warnings = tuple(
         f"{name}: {text}" for name, result in done.results.items() for text in result.warnings
     )

@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
-from itertools import product
+from dataclasses import dataclass, replace
 
 from behavgen.cli.parser import Options
 from behavgen.cli.series import SERIES_HELP, series
@@ -178,21 +177,22 @@ def cases(question: Question, model: ComparatorModel) -> tuple[Case, ...]:
         For a process that the model does not know, or too many cases.
     """
     _refuse_unknown(question.process, [process.name for process in model.processes])
-    conditions = [_middle(model), *_corners(model)] if question.corners else _asked(question, model)
-    values = (None,) if question.kind == "levels" else question.values_v
-    rest = list(product(values, question.resolve_time_s or (None,), question.clock_hz or (None,)))
-    if len(conditions) * len(rest) > _MOST_CASES:
-        what = f"{len(conditions) * len(rest)} combinations"
-        raise ProjectError(Fault(what=what, allowed=f"at most {_MOST_CASES}"))
+    settings = [_middle(model), *_corners(model)] if question.corners else _asked(question, model)
+    values = question.values_v if question.kind != "levels" else (None,)
+    times = [
+        (resolve or _half_period(clock), clock)
+        for resolve in question.resolve_time_s or (None,)
+        for clock in question.clock_hz or (None,)
+    ]
+    if (count := len(settings) * len(values) * len(times)) > _MOST_CASES:
+        fault = Fault(what=f"{count} combinations", allowed=f"at most {_MOST_CASES}")
+        raise ProjectError(fault)
     return tuple(
-        Case(process=process, vdd_v=vdd, temp_c=temp, vcm_v=vcm,
-             value_v=value, resolve_time_s=resolve or _half_period(clock), clock_hz=clock)
-        for process, vdd, temp, vcm in conditions
-        for value, resolve, clock in rest
-    )  # fmt: skip
-
-
-_Condition = tuple[str, float | None, float | None, float | None]
+        replace(setting, value_v=value, resolve_time_s=resolve, clock_hz=clock)
+        for setting in settings
+        for value in values
+        for resolve, clock in times
+    )
 
 
 def _half_period(clock_hz: float | None) -> float | None:
@@ -200,32 +200,42 @@ def _half_period(clock_hz: float | None) -> float | None:
     return None if clock_hz is None else 0.5 / clock_hz
 
 
-def _asked(question: Question, model: ComparatorModel) -> list[_Condition]:
-    process, *middle = _middle(model)
-    asked = (question.vdd_v, question.temp_c, question.vcm_v)
-    return list(
-        product(
-            question.process or (process,),
-            *(values or (at,) for values, at in zip(asked, middle, strict=True)),
-        )
-    )
+def _asked(question: Question, model: ComparatorModel) -> list[Case]:
+    middle = _middle(model)
+    return [
+        Case(process=process, vdd_v=vdd, temp_c=temp, vcm_v=vcm)
+        for process in question.process or (middle.process,)
+        for vdd in question.vdd_v or (middle.vdd_v,)
+        for temp in question.temp_c or (middle.temp_c,)
+        for vcm in question.vcm_v or (middle.vcm_v,)
+    ]
 
 
-def _middle(model: ComparatorModel) -> _Condition:
-    vdd, temp, vcm = (None if s is None else s.middle for s in _spans(model.box))
-    return model.processes[0].name, vdd, temp, vcm
+def _middle(model: ComparatorModel) -> Case:
+    vdd, temp, vcm = (None if span is None else span.middle for span in _spans(model.box))
+    return Case(process=model.processes[0].name, vdd_v=vdd, temp_c=temp, vcm_v=vcm)
 
 
-def _corners(model: ComparatorModel) -> list[_Condition]:
-    """Return the corners of where each process was measured, each once."""
+def _corners(model: ComparatorModel) -> list[Case]:
+    """Return the corners of where each process was characterised, each once."""
     surface = _surface(model)
-    found: list[_Condition] = []
+    found = []
     for process in model.processes:
         own = surface.variant(process.name).box if surface else model.box
-        spans = [mine or whole for mine, whole in zip(_spans(own), _spans(model.box), strict=True)]
-        ends = [(None,) if s is None else dict.fromkeys((s.low, s.high)) for s in spans]
-        found += [(process.name, *corner) for corner in product(*ends)]
+        vdds, temps, vcms = (
+            _ends(mine or whole) for mine, whole in zip(_spans(own), _spans(model.box), strict=True)
+        )
+        found += [
+            Case(process=process.name, vdd_v=vdd, temp_c=temp, vcm_v=vcm)
+            for vdd in vdds for temp in temps for vcm in vcms
+        ]  # fmt: skip
     return found
+
+
+def _ends(span: Range | None) -> tuple[float | None, ...]:
+    if span is None:
+        return (None,)
+    return (span.low,) if span.low == span.high else (span.low, span.high)
 
 
 def _surface(model: ComparatorModel) -> Surface | None:

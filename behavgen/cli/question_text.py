@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
+from typing import Any
 
 from behavgen.cli.question import Case, Question
 from behavgen.cli.wording import labelled
@@ -53,7 +54,8 @@ def condition_text(case: Case) -> str:
 
 def asked_lines(question: Question, cases: Sequence[Case]) -> Iterator[str]:
     """Yield what all cases share; what differs stands in the table."""
-    shared = replace(cases[0], **dict.fromkeys(varying_fields(cases)))
+    nothing: dict[str, Any] = dict.fromkeys(varying_fields(cases))
+    shared = replace(cases[0], **nothing)
     if question.corners:
         corners = f"middle and {len(cases) - 1} corners of the characterised range"
         yield from labelled("setting", corners)

@@ -11,6 +11,7 @@ from behavgen.fit.mismatch import MismatchFit
 from behavgen.fit.noise import NoiseFit
 from behavgen.fit.surface_forms import Form, design
 from behavgen.fit.wording import condition_words
+from behavgen.formulas.node_law import node_law_basis
 from behavgen.model import (
     Box,
     ComparatorModel,
@@ -27,6 +28,7 @@ __all__ = ["headline_parameters"]
 Floats = npt.NDArray[np.float64]
 
 _LEVEL = 0.95
+_SHOWN_OVERDRIVES_V = (1e-5, 1e-3, 3e-2)
 
 
 def headline_parameters(
@@ -51,23 +53,39 @@ def headline_parameters(
 
 
 def _delays(effect: DelayEffect) -> list[Parameter]:
-    source = "surface through the delay and window tables"
-    what = ["regeneration time constant"]
-    what += [f"delay at {volts * 1e3:.4g} mV overdrive" for volts in effect.node_overdrive_v]
+    """Return tau and the delay at a few overdrives in the middle of the box."""
+    row, words = _middle(effect.tau, effect.tau.variants[0].box)
+    surfaces = (effect.tau, *effect.nodes)
+    parameters = np.exp([row @ np.array(s.variants[0].coefficients) for s in surfaces])
+    log_node = np.log(effect.node_overdrive_v)
+    highest = effect.node_overdrive_v[-1]
+    shown = [v for v in _SHOWN_OVERDRIVES_V if v < highest] + [highest]
+    gradients = [np.eye(len(parameters))[0] * parameters]
+    gradients += list(node_law_basis(np.array(shown), log_node) * parameters)
+    names = ["regeneration time constant", *(f"delay at {v * 1e3:.4g} mV overdrive" for v in shown)]
     return [
-        _of_surface("delay_s" if k else "tau_s", words, surface, source, _law_half_width(effect, k))
-        for k, (words, surface) in enumerate(zip(what, (effect.tau, *effect.nodes), strict=True))
+        _parameter(
+            name="delay_s" if k else "tau_s",
+            ends=_ends(float(gradient.sum()), _law_half_width(effect, row, gradient)),
+            unit="s",
+            description=f"{names[k]} at {words}",
+            source="surface through the delay and window tables",
+        )
+        for k, gradient in enumerate(gradients)
     ]
 
 
-def _law_half_width(effect: DelayEffect, k: int) -> float:
-    """Return the interval's half width of ln(parameter k) at the middle of the box."""
-    row, _ = _middle(effect.tau, effect.tau.variants[0].box)
-    scatter = effect.scatter[k][k] if effect.scatter else 0.0
-    lack_of_fit = effect.lack_of_fit[k][k] if effect.lack_of_fit else 0.0
-    scatter *= float(row @ np.array(effect.leverage) @ row)
+def _law_half_width(effect: DelayEffect, row: Floats, gradient: Floats) -> float:
+    """Return the half width of ln(value), for the value's derivatives by ln(parameters)."""
+    share = gradient / gradient.sum()
+    scatter = share @ np.array(effect.scatter) @ share * (row @ np.array(effect.leverage) @ row)
+    lack_of_fit = share @ np.array(effect.lack_of_fit) @ share if effect.lack_of_fit else 0.0
     student = float(student_quantile(_LEVEL, max(effect.scatter_freedom, 1)))
     return float(np.hypot(student * scatter**0.5, normal_quantile(_LEVEL) * lack_of_fit**0.5))
+
+
+def _ends(value: float, half: float) -> list[float]:
+    return [value, value * float(np.exp(-half)), value * float(np.exp(half))]
 
 
 def _mismatch(mismatch: MismatchFit) -> Parameter:
@@ -88,29 +106,41 @@ def _mismatch(mismatch: MismatchFit) -> Parameter:
     )
 
 
-def _of_surface(
-    name: str, what: str, surface: Surface, source: str, half: float | None = None
-) -> Parameter:
+def _of_surface(name: str, what: str, surface: Surface, source: str) -> Parameter:
+    """Return a surface's value in the middle of its own box."""
     variant = surface.variants[0]
     row, words = _middle(surface, variant.box)
     value = float(row @ np.array(variant.coefficients))
-    if half is None and surface.covariance:
+    ends = [value]
+    if surface.covariance:
         variance = float(row @ np.array(surface.covariance) @ row)
-        half = normal_quantile(_LEVEL) * float(np.sqrt(variance))
-    ends = [value] if half is None else [value, value - half, value + half]
+        half = normal_quantile(_LEVEL) * variance**0.5
+        ends += [value - half, value + half]
     if surface.transform == "log":
         ends = [float(np.exp(end)) for end in ends]
+    description = f"{what} at {words}"
+    return _parameter(
+        name=name, ends=ends, unit=surface.unit, description=description, source=source,
+        positive=surface.transform == "log",
+    )  # fmt: skip
+
+
+def _parameter(
+    *, name: str, ends: list[float], unit: str, description: str, source: str, positive: bool = True
+) -> Parameter:
+    """Return a parameter from its value and, where known, the ends of its interval."""
+    bounded = len(ends) > 1
     return Parameter(
         name=name,
         estimate=Estimate(
             value=significant(ends[0]),
-            low=None if half is None else significant(ends[1], 6),
-            high=None if half is None else significant(ends[2], 6),
+            low=significant(ends[1], 6) if bounded else None,
+            high=significant(ends[2], 6) if bounded else None,
             level=_LEVEL,
         ),
-        unit=surface.unit,
-        low=0.0 if surface.transform == "log" else None,
-        description=f"{what} at {words}",
+        unit=unit,
+        low=0.0 if positive else None,
+        description=description,
         source=source,
     )
 

@@ -130,9 +130,7 @@ def fit_curves(
     heights, total = _solved(rows, group, shape, start_s, log_tau)
     if not (heights > 0.0).all() or (np.diff(log_tau) < 1e-3).any():
         return None
-    return MemoryCurves(
-        tau_s=np.exp(log_tau), heights_v=heights, start_s=start_s, squares=total
-    )
+    return MemoryCurves(tau_s=np.exp(log_tau), heights_v=heights, start_s=start_s, squares=total)
 
 
 def _grid(reset_time_s: Floats, terms: int) -> list[Floats]:

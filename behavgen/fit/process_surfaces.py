@@ -7,7 +7,7 @@ its own conditions reach: measured once, it is the first process scaled.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -25,6 +25,7 @@ from behavgen.model import Box, Range, Surface, Variant, significant
 __all__ = ["SurfaceFamily", "exact_family", "noisy_family"]
 
 Floats = npt.NDArray[np.float64]
+Indices = npt.NDArray[np.intp]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -118,22 +119,11 @@ def exact_family(
         None if metric is None else metric[rows],
         expected_shapes,
     )
-    coefficients, boxes, scaled = {}, {}, {}
-    for process in processes:
-        own = _rows(sites, process)
-        away = process != primary and len(own) > 0
-        coefficients[process] = fit.coefficients
-        if away:
-            difference = difference_by_left_out(fit, sites.values[own], targets[own])
-            coefficients[process] = fit.coefficients + difference
-        boxes[process] = range_of(sites.values[own if len(own) else rows], overdrive_v)
-        scaled[process] = _scaled_from(sites, process, primary)
-    left_out = np.full_like(targets, np.nan)
-    left_out[rows] = fit.left_out
-    return SurfaceFamily(
-        primary=primary, fit=fit, coefficients=coefficients, boxes=boxes, scaled=scaled,
-        left_out=left_out,
-    )  # fmt: skip
+
+    def difference(own: Indices) -> Floats:
+        return difference_by_left_out(fit, sites.values[own], targets[own])
+
+    return _family(sites, processes, primary, fit, difference, overdrive_v)
 
 
 def noisy_family(
@@ -147,33 +137,50 @@ def noisy_family(
     primary = _primary(sites, processes)
     rows = _rows(sites, primary)
     fit = choose_by_likelihood(sites.values[rows], target[rows], variance[rows])
+
+    def difference(own: Indices) -> Floats:
+        gap = target[own] - fit.predict(sites.values[own])[:, 0]
+        shift = np.zeros_like(fit.coefficients)
+        shift[fit.constant_term] = np.average(gap, weights=1.0 / variance[own])
+        return shift
+
+    return _family(sites, processes, primary, fit, difference, None)
+
+
+def _family(
+    sites: Sites,
+    processes: tuple[str, ...],
+    primary: str,
+    fit: SurfaceFit,
+    difference: Callable[[Indices], Floats],
+    overdrive_v: Range | None,
+) -> SurfaceFamily:
+    """Give every process its polynomial, range and origin."""
+    rows = _rows(sites, primary)
+    named = any(sites.process)
     coefficients, boxes, scaled = {}, {}, {}
     for process in processes:
-        own = _rows(sites, process)
-        coefficients[process] = fit.coefficients.copy()
-        if process != primary and len(own):
-            gap = target[own] - fit.predict(sites.values[own])[:, 0]
-            shift = float(np.average(gap, weights=1.0 / variance[own]))
-            coefficients[process][fit.constant_term] += shift
-        boxes[process] = range_of(sites.values[own if len(own) else rows])
-        scaled[process] = _scaled_from(sites, process, primary)
-    left_out = np.full((sites.count, 1), np.nan)
+        own = np.flatnonzero([name == process for name in sites.process])
+        away = process != primary
+        change = difference(own) if away and len(own) else 0.0
+        coefficients[process] = fit.coefficients + change
+        boxes[process] = range_of(sites.values[own if away and len(own) else rows], overdrive_v)
+        scaled[process] = primary if away and named else ""
+    left_out = np.full((sites.count, fit.coefficients.shape[1]), np.nan)
     left_out[rows] = fit.left_out
     return SurfaceFamily(
-        primary=primary, fit=fit, coefficients=coefficients, boxes=boxes, scaled=scaled,
+        primary=primary,
+        fit=fit,
+        coefficients=coefficients,
+        boxes=boxes,
+        scaled=scaled,
         left_out=left_out,
-    )  # fmt: skip
+    )
 
 
-def _rows(sites: Sites, process: str) -> npt.NDArray[np.intp]:
+def _rows(sites: Sites, process: str) -> Indices:
     """Return the sites measured in a process; those that hold for all count for every one."""
     return np.flatnonzero([name in (process, "") for name in sites.process])
-
-
-def _scaled_from(sites: Sites, process: str, primary: str) -> str:
-    """Return the process whose shape a variant borrows; none where one table holds for all."""
-    holds_for_all = all(name == "" for name in sites.process)
-    return "" if process == primary or holds_for_all else primary
 
 
 def _primary(sites: Sites, processes: tuple[str, ...]) -> str:

@@ -78,6 +78,15 @@ class Conditions:
     vcm_v: Floats
     process: Texts
 
+    def taken(self, use: npt.NDArray[np.bool_]) -> Conditions:
+        """Return the conditions of some rows."""
+        return Conditions(
+            vdd_v=self.vdd_v[use],
+            temperature_k=self.temperature_k[use],
+            vcm_v=self.vcm_v[use],
+            process=self.process[use],
+        )
+
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
 class OffsetTable:

@@ -74,7 +74,10 @@ def test_an_edited_model_disagrees(
     ran = run(capsys, "-C", checked, "check", "--model", edited)
     assert ran.exit_code == 1
     assert ran.stderr == ""
-    assert re.search(r"first +.* of decision \d+ in run \S+ at .*: expected .*, got ", ran.stdout)
+    shown = " ".join(ran.stdout.split())
+    assert re.search(
+        r" first bit of decision \d+ in run .+ at .+: expected .+, got .+ applied", shown
+    )
     assert ran.stdout.splitlines()[-1].startswith(
         "NOT OK  1 cell checked; model and reference part in latch."
     )

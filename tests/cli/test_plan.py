@@ -86,7 +86,7 @@ class TestInAProject:
         assert "mean offset: no spread is known; give --guess-spread" in unwrapped(ran.stdout)
         assert run(capsys, "plan", "--mean-within", "0.5m", "--strict").exit_code == 1
         guessed = run(capsys, "plan", "--mean-within", "0.5m", "--guess-spread", "6m")
-        assert re.search(r"instances +\d+: .*mean within 49\d uV", unwrapped(guessed.stdout))
+        assert re.search(r"instances +\d+: .*mean within 500 uV", unwrapped(guessed.stdout))
 
 
 class TestFromGuesses:

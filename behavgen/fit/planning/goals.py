@@ -26,7 +26,7 @@ class Goals:
     delay : float or None
         Of the delay anywhere between the least and the largest overdrive, relative.
     level : float
-        Confidence of the intervals, 0..1.
+        Confidence of the intervals promised, 0..1; a model's own are at 95 %.
     """
 
     sigma: float | None = None
