@@ -138,6 +138,14 @@ class Levels:
         nearest = np.min(np.abs(self._from_trip_point(these)), axis=-1)
         return np.maximum(nearest - _or_nothing(these.farthest_v), 0.0)
 
+    def nearest_trip_point_v(self, offset_v: Floats) -> Floats:
+        """Return the trip point next to the present one at which a level would be balanced, V."""
+        if self.from_trip_point:
+            return offset_v
+        nearest = np.argmin(np.abs(self.vdiff_v - offset_v[..., None]), axis=-1)
+        levels = np.broadcast_to(self.vdiff_v, (*offset_v.shape, self.vdiff_v.shape[-1]))
+        return np.take_along_axis(levels, nearest[..., None], axis=-1)[..., 0]
+
     def sigmas(self, these: Comparators) -> Floats:
         """Return how many sigmas of noise turn the bit that is turned most easily."""
         margin = self._sign * self._from_trip_point(these)
@@ -200,6 +208,10 @@ class Uniform:
 
     def nearest_overdrive_v(self, _these: Comparators) -> None:
         """Return None: inputs come as near to the trip point as one likes."""
+
+    def nearest_trip_point_v(self, offset_v: Floats) -> Floats:
+        """Return the present trip point: the input is always about it."""
+        return offset_v
 
     def sigmas(self, these: Comparators) -> Floats:
         """Return how many sigmas of noise make nearly all errors."""

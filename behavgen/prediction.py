@@ -118,7 +118,8 @@ def predict(
     if instances not in INSTANCES:
         raise ValueError(f"no instances {instances!r}; use one of {INSTANCES}")
     bands = Bands(model, level)
-    moved = _moved(*_fitted_numbers(bands, inputs.shape, resolve_time_s, instances, condition))
+    numbers = _fitted_numbers(bands, inputs.shape, resolve_time_s, instances, condition)
+    moved = _moved(*numbers, inputs)
     these, nominal = _comparators(moved, instances), _comparators(moved[:, 0], instances)
     noise, unresolved, either = (_log10_band(log_p) for log_p in inputs.failures(these))
     noisy = model.noise is not None
@@ -191,18 +192,29 @@ def _log_spread(bands: Bands, instances: str, condition: Conditions) -> tuple[Fl
         return np.log(spread), np.full(spread.shape, ndtri(0.5 + 0.5 * bands.level) * error)
 
 
-def _moved(value: Floats, half: Floats) -> Floats:
-    """Return the fitted numbers as they are, then each moved by each part of its half interval.
+def _moved(value: Floats, half: Floats, inputs: Levels | Uniform) -> Floats:
+    """Return the fitted numbers as they are, then each moved within its interval.
 
-    Shape (4, 1 + 4 * parts, ...).
+    Shape (4, cases, ...), see `_by_number`. The trip point also moves towards the
+    nearest input as far as it can: there waits are longest.
     """
     cases = [value]
-    for k in range(len(value)):
-        for part in _PARTS:
+    for number in range(len(value)):
+        places = [value[number] + part * half[number] for part in _PARTS]
+        if number == _OFFSET:
+            nearest = inputs.nearest_trip_point_v(value[_OFFSET])
+            places.append(np.clip(nearest, places[0], places[-1]))
+        for place in places:
             case = value.copy()
-            case[k] += part * half[k]
+            case[number] = place
             cases.append(case)
     return np.stack(cases, axis=1)
+
+
+def _by_number(moved: Floats) -> list[Floats]:
+    """Return for each fitted number the cases in which it was moved."""
+    trip_point, others = moved[1 : 2 + len(_PARTS)], moved[2 + len(_PARTS) :]
+    return [trip_point, *others.reshape(-1, len(_PARTS), *moved.shape[1:])]
 
 
 def _comparators(numbers: Floats, instances: str) -> Comparators:
@@ -255,11 +267,6 @@ def _delay(
 def _with_interval(band: Band, *, known: bool) -> Band:
     nothing = np.full_like(band.value, np.nan)
     return band if known else Band(value=band.value, low=nothing, high=nothing)
-
-
-def _by_number(moved: Floats) -> list[Floats]:
-    """Return for each fitted number the cases in which it was moved."""
-    return list(moved[1:].reshape(-1, len(_PARTS), *moved.shape[1:]))
 
 
 def _in_squares(value: Floats, ends: list[Floats]) -> tuple[Floats, Floats]:

@@ -38,6 +38,21 @@ def test_windows_widen_with_every_decade_of_extrapolation():
     assert gain == pytest.approx(2.01 * 0.01 * 6e-10 / tau, rel=0.25)
 
 
+def test_the_logarithm_of_the_window_goes_on_where_the_window_underflows():
+    bands = Bands(with_scatter(full_model()))
+    log_window = bands.log_window(np.array([4e-10, 5e-10, 1e-8, 2e-8]))
+    window = bands.window(np.array([4e-10, 5e-10, 1e-8, 2e-8]))
+    np.testing.assert_allclose(np.exp(log_window.value[:2]), window.value[:2], rtol=1e-12)
+    np.testing.assert_allclose(np.exp(log_window.high[:2]), window.high[:2], rtol=1e-12)
+    assert window.value[3] == 0.0
+    # W falls by e every tau, on one straight line.
+    tau_s = 1e-10 / (log_window.value[0] - log_window.value[1])
+    assert log_window.value[2] - log_window.value[3] == pytest.approx(1e-8 / tau_s, rel=1e-9)
+    # One percent of tau is one percent of the wait in tau, 2.01 of them in the interval.
+    half = log_window.high - log_window.value
+    assert half[3] - half[2] == pytest.approx(2.01 * 0.01 * 1e-8 / tau_s, rel=0.01)
+
+
 def test_delay_band_of_independent_nodes_is_that_of_the_node():
     model = with_scatter(full_model())
     band = Bands(model).delay(model.delay.node_overdrive_v[1])

@@ -72,12 +72,11 @@ def _parameters(model: ComparatorModel, given: Settings) -> dict[str, str]:
 def write_stimulus(folder: Path, run: Run, stimulus: Stimulus) -> None:
     """Write the files that the block harness plays: big-endian words of 64 bits."""
     waits = stimulus.edge - np.append(0, stimulus.end[:-1])
-    clock = np.stack([waits, stimulus.end - stimulus.edge], axis=-1)
-    clock.astype(">u8").tofile(folder / f"{run.index}.clock")
+    phases = np.stack([waits, stimulus.end - stimulus.edge], axis=-1)
+    phases.astype(">u8").tofile(folder / f"{run.index}.clock")
     moments = np.append(stimulus.moment, stimulus.finish)
+    levels = np.stack([stimulus.inp_v, stimulus.inn_v, stimulus.vdd_v], axis=-1)
     inputs = np.empty((len(moments), 4), dtype=">f8")
-    levels = (stimulus.inp_v, stimulus.inn_v, stimulus.vdd_v)
-    for column, level in enumerate(levels, start=1):
-        inputs[:, column] = np.append(level, level[-1])
+    inputs[:, 1:] = np.append(levels, levels[-1:], axis=0)
     inputs.view(">u8")[:, 0] = np.diff(moments, prepend=0)
     inputs.tofile(folder / f"{run.index}.inputs")

@@ -49,6 +49,8 @@ def uncounted(question: Question, model: ComparatorModel) -> Iterator[str]:
         yield "the delay is not characterised: every decision counts as resolved"
     elif not (question.resolve_time_s or question.clock_hz):
         yield "without --resolve-time or --clock every decision counts as resolved"
+    if model.memory is not None:
+        yield "memory of the previous decision is not counted: long resets are assumed"
     if model.mismatch is None and question.instances != "nominal":
         yield "mismatch is not characterised: all instances are the nominal one"
     box, asked = model.box, (question.vdd_v, question.temp_c, question.vcm_v)

@@ -143,7 +143,7 @@ def _stratum_lines(label: str, strata: Sequence[Stratum]) -> list[str]:
 def _verdict_of(done: CellsDone) -> str:
     against = [name for name, result in done.results.items() if not result.agrees]
     if against:
-        return f"checked; model and reference part in {', '.join(against)}"
+        return f"checked; the check fails for {', '.join(against)}"
     return "checked; model and reference agree" if done.results else "checked"
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import shlex
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -85,21 +86,28 @@ def _check_all(
 
 def _outcome(walked: Sequence[_Walked], missing: tuple[ToolError, ...]) -> Outcome:
     against = tuple(c.place.name for c in walked if c.check is not None and not c.check.passed)
-    first = walked[0].place.report_file
     said = f"{number_of(len(walked), 'cell')} from tables to report"
     if missing:
         said += ", but unchecked"
     if against:
-        said += f"; model and reference part in {', '.join(against)}"
+        said += f"; the check fails for {', '.join(against)}"
     return Outcome(
         said=said,
-        next_step="behavgen tools" if missing
-        else f"open {shown_path(first)}, then behavgen new DIR --from YOUR_TABLE.csv",
+        next_step=_next_step(walked[0].place, missing=bool(missing), failed=bool(against)),
         data={"cells": {cell.place.name: _as_data(cell) for cell in walked}},
         errors=missing,
         disagreements=against,
         shows_results=True,
-    )  # fmt: skip
+    )
+
+
+def _next_step(place: CellPlace, *, missing: bool, failed: bool) -> str:
+    if missing:
+        return "behavgen tools"
+    if failed:
+        return shlex.join(("behavgen", "-C", shown_path(place.project.file.parent), "check"))
+    page = shown_path(place.report_file)
+    return f"open {page}, then behavgen new DIR --from YOUR_TABLE.csv"
 
 
 def _as_data(cell: _Walked) -> dict[str, object]:
@@ -144,4 +152,8 @@ def _fit_text(model: ComparatorModel) -> str:
 
 def _check_text(report: CheckReport) -> str:
     against = report.disagreement_count or "none"
-    return f"{report.cell}: {report.decisions} decisions in {report.simulator}, {against} wrong"
+    text = f"{report.cell}: {report.decisions} decisions in {report.simulator}, {against} wrong"
+    if report.passed:
+        return text
+    failed = sum(not bench.passed for bench in report.benches)
+    return f"{text}; the check fails, with {failed} of {len(report.benches)} benches"

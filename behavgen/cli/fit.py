@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import asdict
+from dataclasses import asdict, fields
 from itertools import groupby
 from statistics import median
 
@@ -115,7 +115,8 @@ def _effects(model: ComparatorModel) -> Iterator[tuple[str, str]]:
 
 
 def _absent(model: ComparatorModel) -> list[str]:
-    effects = ("offset", "mismatch", "noise", "delay", "reset")
+    """Return the effects that the model could have and has not."""
+    effects = (field.name for field in fields(model) if field.default is None)
     return [name for name in effects if getattr(model, name) is None]
 
 

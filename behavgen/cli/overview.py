@@ -88,7 +88,7 @@ def _next_step(states: dict[str, dict[str, str]]) -> tuple[str, str]:
     for step in STEP_NAMES:
         waiting = [name for name, of_cell in states.items() if of_cell[step] != "current"]
         if waiting and step == "check" and {states[n][step] for n in waiting} == {"disagrees"}:
-            return f"model and reference part in {', '.join(waiting)}", "check"
+            return f"the check fails for {', '.join(waiting)}", "check"
         if waiting:
             return f"{number_of(len(waiting), 'cell')} to {step}", step
     return "everything is current", ""

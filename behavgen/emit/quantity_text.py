@@ -28,7 +28,7 @@ __all__ = [
     "surfaces_of",
 ]
 
-_UNDO_CURVE = ("node_known = '0;", "segment_known = '0;")
+_UNDO_CURVE = ("segment_known = '0;",)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -181,7 +181,7 @@ def _reset(surface: Surface, folder: SurfaceFolder) -> QuantityText:
         folded=(reset,),
         finish=(
             f"reset_s = {_exponential('$exp', reset.value)};",
-            "reset_ticks = DELAY_ON != 0 ? longint'(reset_s * TICKS_PER_S) : 64'sd0;",
+            "reset_ticks = DELAY_ON != 0 ? $floor(reset_s * TICKS_PER_S + 0.5) : 0.0;",
         ),
         finished_by=reset.changes_with,
     )
@@ -202,7 +202,7 @@ def _curve(effect: DelayEffect, folder: SurfaceFolder) -> tuple[QuantityText, ..
             folded=tuple(nodes), finish=(), finished_by="",
         ),
         QuantityText(
-            comment="Delay: nodes and segments are to be evaluated anew",
+            comment="Delay: its segments are to be evaluated anew",
             folded=(), finish=_UNDO_CURVE, finished_by=undone,
         ),
     ]  # fmt: skip

@@ -70,13 +70,16 @@ def _text(model: ComparatorModel) -> str:
 def _cell_facts(cell: Cell) -> dict[str, object]:
     """Return pins, levels and what switches the cell off."""
     pins = cell.pins
-    deciding, resting = ("1'b1", "1'b0") if cell.decides_on == "rising" else ("1'b0", "1'b1")
+    rising = cell.decides_on == "rising"
+    deciding_step, resetting_step = ("2'b01", "2'b10") if rising else ("2'b10", "2'b01")
+    resting = "1'b0" if rising else "1'b1"
     outputs = [pin for pin in (pins.outp, pins.outn) if pin is not None]
     return {
         "pins": pins,
         "outputs": outputs,
-        "deciding": deciding,
         "resting": resting,
+        "deciding_step": deciding_step,
+        "resetting_step": resetting_step,
         "holds": cell.in_reset == "hold",
         "reset_level": _LEVELS[cell.in_reset],
         "supply_off": None if cell.supply_off_v is None else real_literal(cell.supply_off_v),
@@ -102,12 +105,14 @@ def _is_on(cell: Cell) -> str:
 def _effect_facts(model: ComparatorModel) -> dict[str, object]:
     """Return which effects there are."""
     trip = "trip_v" if model.offset is not None else "OFFSET_SHIFT_V"
+    pins = model.cell.pins
     return {
         "offset": model.offset is not None,
         "mismatch": [] if model.mismatch is None else range(len(model.mismatch.components)),
         "noise": model.noise is not None,
         "reset": "reset" in surfaces_of(model),
-        "overdrive": f"(vdiff_v - {trip})" + (" - mismatch_v" if model.mismatch else ""),
+        "overdrive": f"(({pins.inp} - {pins.inn}) - {trip})"
+        + (" - mismatch_v" if model.mismatch else ""),
     }
 
 
@@ -119,7 +124,8 @@ def _delay_facts(delay: DelayEffect | None, folder: SurfaceFolder) -> dict[str, 
     law = "curve" if len(nodes) > 1 else "logarithm"
     curve = delay_curve(delay, folder) if law == "curve" else None
     return {
-        "delay": law, "nodes": nodes, "curve": curve, "floor_v": real_literal(delay.floor_v)
+        "delay": law, "nodes": nodes, "curve": curve, "floor_v": real_literal(delay.floor_v),
+        "segment_bits": len(nodes).bit_length(),
     }  # fmt: skip
 
 

@@ -2,23 +2,31 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from dataclasses import replace
 from importlib.metadata import PackageNotFoundError, version
+from typing import TypeVar
 
 from behavgen.errors import Fault, FitError
+from behavgen.fit.aperture import ApertureFit, fit_aperture
 from behavgen.fit.delay import DelayFit, fit_delay
 from behavgen.fit.delay_report import delay_fits, delay_notices
+from behavgen.fit.energy import fit_energy
 from behavgen.fit.headline import headline_parameters
-from behavgen.fit.mismatch import MismatchFit, fit_mismatch
+from behavgen.fit.kickback import fit_kickback
+from behavgen.fit.memory import MemoryFit, fit_memory
+from behavgen.fit.mismatch import fit_mismatch
 from behavgen.fit.noise import NoiseFit, fit_noise
-from behavgen.fit.offset import OffsetFit, fit_offset
-from behavgen.fit.process_surfaces import SurfaceFamily
+from behavgen.fit.offset import fit_offset
 from behavgen.fit.reset import fit_reset
 from behavgen.fit.table_points import table_points
-from behavgen.model import Box, Cell, ComparatorModel, Pins, Process, Range, ResetEffect, Source
+from behavgen.model import Box, Cell, ComparatorModel, Pins, Process, Range, Source, Surface
 from behavgen.project import CellSettings
 from behavgen.tables.characterisation import Characterisation
 
 __all__ = ["fit"]
+
+Fitted = TypeVar("Fitted")
 
 
 def fit(tables: Characterisation, settings: CellSettings) -> ComparatorModel:
@@ -41,29 +49,46 @@ def fit(tables: Characterisation, settings: CellSettings) -> ComparatorModel:
     """
     processes = _processes(tables, settings)
     names = tuple(process.name for process in processes)
-    noise, delay = _noise_and_delay(tables, names)
+    noise, delay, memory, aperture = _all_or_refusals(
+        lambda: fit_noise(tables.noise, names),
+        lambda: fit_delay(tables.delay, tables.window, names),
+        lambda: fit_memory(tables.memory, names),
+        lambda: fit_aperture(tables.aperture, names),
+    )
     trip_points = noise.trip_points if noise else None
     offset = fit_offset(trip_points, tables.delay, tables.offset, tables.offset_statistics, names)
     mismatch = fit_mismatch(tables.offset, tables.offset_statistics, names)
-    reset = fit_reset(tables.reset, settings.reset_delay_s, names)
-    box = _box(offset, mismatch, noise, delay, reset, names)
+    kickback = fit_kickback(tables.kickback, names)
     bare = ComparatorModel(
-        cell=_cell(settings, box),
+        cell=_cell(settings, Box()),
         processes=processes,
-        box=box,
+        box=Box(),
         offset=offset.effect if offset else None,
         mismatch=mismatch.effect if mismatch else None,
         noise=noise.effect if noise else None,
         delay=delay.effect if delay else None,
-        reset=reset,
+        reset=fit_reset(tables.reset, settings.reset_delay_s, names),
+        memory=memory.effect if memory else None,
+        aperture=aperture.effect if aperture else None,
+        kickback=kickback.effect if kickback else None,
     )
-    return ComparatorModel(
-        cell=bare.cell, processes=processes, box=box, offset=bare.offset, mismatch=bare.mismatch,
-        noise=bare.noise, delay=bare.delay, reset=reset,
+    bare = _boxed(bare, settings)
+    energy = fit_energy(tables.energy, bare)
+    bare = _boxed(replace(bare, energy=energy.effect if energy else None), settings)
+    parts = (offset, mismatch, noise, delay, memory, aperture, energy, kickback)
+    return replace(
+        bare,
         parameters=headline_parameters(bare, noise, mismatch),
-        fits=(*(delay_fits(delay) if delay else ()), *(noise.fits if noise else ())),
-        points=table_points(tables),
-        notices=_notices(tables, offset, mismatch, noise, delay),
+        fits=(
+            *(delay_fits(delay) if delay else ()),
+            *(fit for part in (noise, memory, aperture, energy, kickback) if part
+              for fit in part.fits),
+        ),
+        points=table_points(tables, energy),
+        notices=(
+            *(notice for part in parts if part for notice in part.notices),
+            *(delay_notices(delay, tables) if delay else ()),
+        ),
         sources=tuple(
             Source(quantity=s.quantity, file=s.file, sha256=s.sha256, rows=s.rows,
                    failed_rows=s.failed_rows)
@@ -80,23 +105,26 @@ def _version() -> str:
         return "from a source tree"
 
 
-def _noise_and_delay(
-    tables: Characterisation, names: tuple[str, ...]
-) -> tuple[NoiseFit | None, DelayFit | None]:
-    """Fit the two quantities that may refuse, and report all refusals at once."""
+def _all_or_refusals(
+    noise: Callable[[], NoiseFit | None],
+    delay: Callable[[], DelayFit | None],
+    memory: Callable[[], MemoryFit | None],
+    aperture: Callable[[], ApertureFit | None],
+) -> tuple[NoiseFit | None, DelayFit | None, MemoryFit | None, ApertureFit | None]:
+    """Fit the quantities that may refuse, and report all refusals at once."""
     faults: list[Fault] = []
-    noise, delay = None, None
-    try:
-        noise = fit_noise(tables.noise, names)
-    except FitError as error:
-        faults.extend(error.faults)
-    try:
-        delay = fit_delay(tables.delay, tables.window, names)
-    except FitError as error:
-        faults.extend(error.faults)
+
+    def tried(fit_one: Callable[[], Fitted | None]) -> Fitted | None:
+        try:
+            return fit_one()
+        except FitError as error:
+            faults.extend(error.faults)
+            return None
+
+    found = tried(noise), tried(delay), tried(memory), tried(aperture)
     if faults:
         raise FitError(*faults)
-    return noise, delay
+    return found
 
 
 def _processes(tables: Characterisation, settings: CellSettings) -> tuple[Process, ...]:
@@ -124,31 +152,30 @@ def _cell(settings: CellSettings, box: Box) -> Cell:
     )
 
 
-def _box(
-    offset: OffsetFit | None,
-    mismatch: MismatchFit | None,
-    noise: NoiseFit | None,
-    delay: DelayFit | None,
-    reset: ResetEffect | None,
-    names: tuple[str, ...],
-) -> Box:
-    """Return the delay table's range, else the union of all others'."""
-    if delay is not None:
-        boxes = [delay.family.boxes[name] for name in names]
-    else:
-        boxes = [f.boxes[n] for f in _families(offset, noise) for n in names]
-        boxes += [v.box for v in reset.surface.variants] if reset else []
-        boxes += [v.box for c in mismatch.effect.components for v in c.variants] if mismatch else []
-    return Box(
+def _boxed(model: ComparatorModel, settings: CellSettings) -> ComparatorModel:
+    """Give a model its box: the delay table's range, else the union of all others'."""
+    surfaces = [model.delay.tau] if model.delay else _surfaces(model)
+    boxes = [variant.box for surface in surfaces for variant in surface.variants]
+    box = Box(
         vdd_v=_union([box.vdd_v for box in boxes]),
         temperature_k=_union([box.temperature_k for box in boxes]),
         vcm_v=_union([box.vcm_v for box in boxes]),
         overdrive_v=_union([box.overdrive_v for box in boxes]),
     )
+    return replace(model, box=box, cell=_cell(settings, box))
 
 
-def _families(offset: OffsetFit | None, noise: NoiseFit | None) -> list[SurfaceFamily]:
-    return [found.family for found in (offset, noise) if found is not None]
+def _surfaces(model: ComparatorModel) -> list[Surface]:
+    """Return a surface for every range in which a table other than the delay's was measured."""
+    found = [effect.surface for effect in (model.offset, model.noise, model.reset) if effect]
+    found += model.mismatch.components if model.mismatch else ()
+    if model.memory:
+        found += [term.tau for term in model.memory.terms]
+        found += [model.memory.floor] if model.memory.floor else []
+    found += [model.aperture.centre] if model.aperture else []
+    found += [model.energy.fixed] if model.energy else []
+    found += [model.kickback.common] if model.kickback else []
+    return found
 
 
 def _union(spans: list[Range | None]) -> Range | None:
@@ -156,17 +183,3 @@ def _union(spans: list[Range | None]) -> Range | None:
     if not known:
         return None
     return Range(low=min(s.low for s in known), high=max(s.high for s in known))
-
-
-def _notices(
-    tables: Characterisation,
-    offset: OffsetFit | None,
-    mismatch: MismatchFit | None,
-    noise: NoiseFit | None,
-    delay: DelayFit | None,
-) -> tuple[str, ...]:
-    found: list[str] = []
-    for part in (offset, mismatch, noise, delay):
-        found.extend(part.notices if part is not None else ())
-    found.extend(delay_notices(delay, tables) if delay else ())
-    return tuple(found)

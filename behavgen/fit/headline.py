@@ -17,7 +17,10 @@ from behavgen.model import (
     ComparatorModel,
     Condition,
     DelayEffect,
+    EnergyEffect,
     Estimate,
+    KickbackEffect,
+    MemoryEffect,
     Parameter,
     Surface,
     significant,
@@ -49,7 +52,62 @@ def headline_parameters(
     if model.reset is not None:
         found.append(_of_surface("reset_delay_s", "reset edge to reset state",
                                  model.reset.surface, "reset table or project file"))  # fmt: skip
+    if model.memory is not None:
+        found += _memory(model.memory)
+    if model.aperture is not None:
+        source = "aperture table"
+        found.append(_of_surface("aperture_centre_s", "mean of the input's weight after the edge",
+                                 model.aperture.centre, source))  # fmt: skip
+        found.append(_of_surface("aperture_width_s", "fall of the input's weight, 90 % to 10 %",
+                                 model.aperture.width, source))  # fmt: skip
+    if model.energy is not None:
+        found += _energy(model.energy)
+    if model.kickback is not None:
+        found += _kickback(model.kickback)
     return tuple(found)
+
+
+def _memory(effect: MemoryEffect) -> list[Parameter]:
+    what, source = "time constant in which memory fades", "surface through the memory table"
+    found = [_of_surface("memory_tau_s", what, term.tau, source) for term in effect.terms]
+    if effect.floor is not None:
+        what = "memory that no reset time removes"
+        found.append(_of_surface("memory_floor_v", what, effect.floor, source))
+    return found
+
+
+def _energy(effect: EnergyEffect) -> list[Parameter]:
+    source = "surface through the energy table"
+    if effect.rise is None:
+        return [_of_surface("energy_j", "energy of a decision", effect.fixed, source)]
+    fixed, name, growth = {
+        "delay": (
+            "energy of a decision but for its delay",
+            "energy_power_w",
+            "power while the cell decides",
+        ),
+        "overdrive": (
+            "energy of a decision at the largest overdrive",
+            "energy_rise_j",
+            "energy with every factor e of smaller overdrive",
+        ),
+    }[effect.law]
+    return [
+        _of_surface("energy_fixed_j", fixed, effect.fixed, source),
+        _of_surface(name, growth, effect.rise, source),
+    ]
+
+
+def _kickback(effect: KickbackEffect) -> list[Parameter]:
+    source = "surface through the kickback table"
+    parts = [
+        ("kickback_common_c", "charge out of either input", effect.common),
+        ("kickback_differential_c", "charge out of inp less inn, inputs alike",
+         effect.differential),
+        ("kickback_differential_c_per_v", "what a differential input adds to it",
+         effect.differential_per_v),
+    ]  # fmt: skip
+    return [_of_surface(name, what, s, source) for name, what, s in parts if s is not None]
 
 
 def _delays(effect: DelayEffect) -> list[Parameter]:

@@ -79,7 +79,7 @@ class MemoryCurves:
     heights_v : ndarray, shape (G, K + floor)
         Of the terms at `start_s`, then the floor; not negative.
     start_s : float
-        The shortest reset time that was fitted; terms are told from there, where data are.
+        The shortest measured reset time; terms are told from there, where data are.
     squares : float
         Sum of squared relative errors.
     """
@@ -116,14 +116,15 @@ def fit_curves(
         0, 1, ... without gaps.
     shape : CurveShape
     """
-    start_s = float(rows.reset_time_s.min())
+    measured_s = rows.reset_time_s[~rows.is_bound]
+    start_s = float(measured_s.min())
 
     def squares(log_tau: Floats) -> float:
         return _solved(rows, group, shape, start_s, log_tau)[1]
 
     log_tau = np.empty(0)
     if shape.terms:
-        grid = _grid(rows.reset_time_s, shape.terms)
+        grid = _grid(measured_s, shape.terms)
         best = grid[int(np.argmin([squares(candidate) for candidate in grid]))]
         options = {"xatol": 1e-9, "fatol": 1e-18, "maxiter": 400}
         log_tau = np.sort(minimize(squares, best, method="Nelder-Mead", options=options).x)

@@ -6,6 +6,7 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.fit.conditions import conditions_of, find_sites
+from behavgen.fit.energy import EnergyFit
 from behavgen.model import CurvePoints, significant
 from behavgen.tables.characterisation import Characterisation, Conditions
 
@@ -14,8 +15,12 @@ __all__ = ["table_points"]
 Floats = npt.NDArray[np.float64]
 
 
-def table_points(tables: Characterisation) -> tuple[CurvePoints, ...]:
+def table_points(tables: Characterisation, energy: EnergyFit | None) -> tuple[CurvePoints, ...]:
     """Return all rows by quantity and condition, sorted by their abscissa."""
+    return (*_timing_and_decisions(tables), *_memory_and_charges(tables, energy))
+
+
+def _timing_and_decisions(tables: Characterisation) -> list[CurvePoints]:
     found: list[CurvePoints] = []
     if tables.delay is not None:
         t = tables.delay
@@ -37,7 +42,29 @@ def table_points(tables: Characterisation) -> tuple[CurvePoints, ...]:
         r = tables.reset
         found += _curves("reset", r.conditions, np.zeros(len(r.reset_delay_s)), r.reset_delay_s,
                          np.isfinite(r.reset_delay_s))  # fmt: skip
-    return tuple(found)
+    return found
+
+
+def _memory_and_charges(tables: Characterisation, energy: EnergyFit | None) -> list[CurvePoints]:
+    found: list[CurvePoints] = []
+    if tables.memory is not None:
+        m = tables.memory
+        for quantity, use in (("memory", ~m.censored), ("memory_at_least", m.censored)):
+            found += _curves(quantity, m.conditions, m.reset_time_s, m.memory_shift_v, use)
+    if tables.aperture is not None:
+        a = tables.aperture
+        found += _curves("aperture", a.conditions, a.step_time_s, a.step_weight,
+                         np.isfinite(a.step_weight))  # fmt: skip
+    if tables.energy is not None and energy is not None:
+        e = tables.energy
+        found += _curves("energy", e.conditions, energy.overdrive_v, e.energy_j, energy.is_shortest)
+    if tables.kickback is not None:
+        k = tables.kickback
+        charges = (("common", k.charge_common_c), ("differential", k.charge_differential_c))
+        for name, charge in charges:
+            found += _curves(f"kickback_{name}", k.conditions, np.nan_to_num(k.vdiff_v), charge,
+                             np.isfinite(charge))  # fmt: skip
+    return found
 
 
 def _curves(

@@ -69,6 +69,8 @@ class Verilator:
     ) -> Finished:
         """Build a program that simulates the top module; its other files go beside it."""
         options = ["--binary", "-Wno-fatal", "-j", str(jobs), "-CFLAGS", _COMPILER_FLAGS]
+        if self.root is not None:  # the package does not know the compiler it will meet
+            options += ["-MAKEFLAGS", "CFG_CXXFLAGS_PCH_I=-include"]
         folder = output.with_name(f"{output.name}.build")
         place = ["--Mdir", str(folder), "-o", str(output.resolve()), "--top-module", top]
         return self._run([*options, *_macro_options(macros), *place, *map(str, sources)], log=log)

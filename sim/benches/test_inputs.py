@@ -61,9 +61,9 @@ async def each_cause_of_a_warning_is_met_twice(top) -> None:
     """Provoke the warnings; whether each was printed once is judged from the log."""
     cell = Driver(top, WARNING_RUN)
     await cell.power_up()
-    await cell.decide(cell.large_v)
     long_enough = cell.delay(cell.large_v) + 20
     for _ in range(2):
+        await cell.decide(cell.large_v)
         cell.leave_the_box()
         await cell.wait(5)
         await cell.cycle(long_enough)

@@ -36,12 +36,12 @@ async def the_insides_can_be_read(top) -> None:
 
 @cocotb.test()
 async def the_parameters_are_those_of_the_interface(top) -> None:
-    cell = Driver(top, "the insides can be read").cell
-    declared = top.as_declared
-    mode = MODES.index(cell.when_unresolved)
+    model = Driver(top, "the insides can be read").model
+    declared, first = top.as_declared, model.processes[0]
+    mode = MODES.index(model.cell.when_unresolved)
     defaults = {
         "OFFSET_SHIFT_V": 0.0, "NOISE_ON": 1, "MISMATCH_ON": 0, "MEMORY_ON": 1, "DELAY_ON": 1,
-        "SEED": 0, "TEMPERATURE_C": None, "PROCESS": None, "UNRESOLVED_MODE": mode,
+        "SEED": 0, "TEMPERATURE_C": None, "PROCESS": first.code, "UNRESOLVED_MODE": mode,
         "FORCE_UNRESOLVED_EVERY": 0, "WARNINGS": None,
     }  # fmt: skip
     missing = [name for name in defaults if not hasattr(declared, name)]

@@ -2,31 +2,25 @@
   // -- Clock: only a clean step from one level to the other counts ------------------------------
 
   always @({{ pins.clk }}) begin
-    if ({{ pins.clk }} === {{ deciding }} && clk_level === {{ resting }}) decide;
-    else if ({{ pins.clk }} === {{ resting }} && clk_level === {{ deciding }}) end_phase;
-    else if ({{ pins.clk }} !== 1'b0 && {{ pins.clk }} !== 1'b1) lose_clock;
-{% if not holds %}
-    else if ({{ pins.clk }} === {{ resting }} && clk_level !== {{ resting }}) {{ "begin" if is_on else "power_up;" }}
-{% if is_on %}
-      if (is_on) power_up;
-    end
-{% endif %}
-{% endif %}
+    case ({clk_level, {{ pins.clk }}})
+      {{ deciding_step }}: decide;
+      {{ resetting_step }}: end_phase;
+      2'b00, 2'b11: ;  // it came back within the same instant
+      default: {{ "if (is_on) " if is_on }}unclean_step;
+    endcase
     clk_level = {{ pins.clk }};
   end
 
-  task lose_clock;
-    if (clk_level === 1'b0 || clk_level === 1'b1) begin
-{% if is_on %}
-      if (is_on) begin
-        lose_outputs(4);
-        if (decision_count != 64'd0) clock_warnings = clock_warnings + 1;
+  // To a level that is neither 0 nor 1, or from there
+  task unclean_step;
+    if ({{ pins.clk }} !== 1'b0 && {{ pins.clk }} !== 1'b1) begin
+      lose_outputs(4);
+      if (decision_count != 64'd0) begin
+        clock_warnings = clock_warnings + 1;
         if (clock_warnings == 1) warn("the clock is unknown");
       end
-{% else %}
-      lose_outputs(4);
-      if (decision_count != 64'd0) clock_warnings = clock_warnings + 1;
-      if (clock_warnings == 1) warn("the clock is unknown");
-{% endif %}
     end
+{% if not holds %}
+    if ({{ pins.clk }} === {{ resting }}) power_up;
+{% endif %}
   endtask

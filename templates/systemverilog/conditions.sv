@@ -42,7 +42,7 @@
 {% if fixed_supply %}
     vdd_v = {{ fixed_supply }};  // in the middle, since the cell has no supply pin
 {% else %}
-    vdd_seen = {{ pins.vdd }};
+    vdd_changed = 1'b0;
     vdd_v = $floor({{ pins.vdd }} * STEPS_PER_V + 0.5) / STEPS_PER_V;
 {% endif %}
 {% if supply.warned %}
@@ -57,9 +57,6 @@
 {% endif %}
 {% set paragraphs = supply.paragraphs %}
 {% include "systemverilog/paragraphs.sv" %}
-{% if not fixed_supply and common_mode.matters %}
-    vcm_step = NO_STEP;
-{% endif %}
   endtask
 {% endif %}
 {% if common_mode.matters %}
@@ -69,6 +66,7 @@
     real clamped;
 {% endif %}
     vcm_step = $floor(vcm_steps);
+    vcm_step_end = vcm_step + 1.0;
     vcm_v = vcm_step / STEPS_PER_V;
 {% if common_mode.warned %}
     if (vcm_v < {{ common_mode.warned.low }} - 1.0 / STEPS_PER_V

@@ -5,14 +5,10 @@
   localparam real CERTAIN_SIGMAS = 8.3;  // no draw reaches it, so that none is made beyond
 {% endif %}
 {% if delay %}
-  localparam real FLOOR_V = {{ floor_v }};  // overdrives below are not distinguished
+  localparam real FLOOR_V = {{ floor_v }};       // overdrives below are not distinguished
 {% endif %}
-{% if common_mode.matters %}
-  real vcm_steps = 0.0;      // common mode in steps, and half a step to round it
-{% endif %}
-  real vdiff_v = 0.0;
 {% if noise or delay %}
-  real magnitude_v = 0.0;    // of the overdrive
+  real magnitude_v = 0.0;                // of the overdrive
 {% endif %}
 
   task decide;
@@ -20,27 +16,47 @@
     if (returning) cancel_return;
 {% endif %}
     decision_count = decision_count + 64'd1;
-    vdiff_v = {{ pins.inp }} - {{ pins.inn }};
 {% if is_on %}
     if (is_on) begin
-      if (vdiff_v - vdiff_v == 0.0) weigh;
-      else lose_input;
+      take_input;
     end
 {% else %}
-    if (vdiff_v - vdiff_v == 0.0) weigh;
-    else lose_input;
+    take_input;
+{% endif %}
+  endtask
+
+  task take_input;
+{% if common_mode.matters %}
+    vcm_steps = ({{ pins.inp }} + {{ pins.inn }}) * (0.5 * STEPS_PER_V) + 0.5;
+    if (vcm_steps >= vcm_step && vcm_steps < vcm_step_end) begin
+      weigh;  // the common mode is that of the last decision
+    end else if (vcm_steps - vcm_steps == 0.0) begin
+{% if supply.matters and pins.vdd %}
+      if (vdd_changed) fold_supply;
+{% endif %}
+      fold_common_mode;
+      weigh;
+    end else begin
+      lose_input;  // it is infinite or not a number
+    end
+{% else %}
+    if ({{ pins.inp }} - {{ pins.inp }} == 0.0 && {{ pins.inn }} - {{ pins.inn }} == 0.0) begin
+{% if supply.matters and pins.vdd %}
+      if (vdd_changed) fold_supply;
+{% endif %}
+      weigh;
+    end else begin
+      lose_input;  // it is infinite or not a number
+    end
 {% endif %}
   endtask
 
   task weigh;
     edge_time = $realtime;
-{% if pins.vdd and supply.matters %}
-    if ({{ pins.vdd }} != vdd_seen) fold_supply;
-{% endif %}
-{% if common_mode.matters %}
-    vcm_steps = ({{ pins.inp }} + {{ pins.inn }}) * (0.5 * STEPS_PER_V) + 0.5;
-    if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step + 1.0)) fold_common_mode;
-{% endif %}
+    decision_state = DECIDING;
+    if (FORCE_UNRESOLVED_EVERY > 0) begin
+      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
+    end
     overdrive_v = {{ overdrive }};
 {% if noise or delay %}
     magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
@@ -51,22 +67,11 @@
       magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
     end
 {% endif %}
-    leaning = overdrive_v > 0.0;
 {% if delay %}
-    if (DELAY_ON != 0) begin
-      if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;
-      find_delay;
-      delay_ticks = longint'(delay_s * TICKS_PER_S);
-      if (delay_ticks < 64'sd1) delay_ticks = 64'sd1;
-    end
+    if (DELAY_ON != 0) find_delay;
 {% endif %}
-    decision_state = DECIDING;
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
-    end
   endtask
 
-  // The input is infinite or not a number
   task lose_input;
     lose_outputs(3);
     input_warnings = input_warnings + 1;
@@ -76,10 +81,11 @@
   endtask
 {% if delay == "logarithm" %}
 
+  // ln(overdrive) as in linear regeneration; from the largest characterised overdrive on constant
   task find_delay;
     delay_s = node_s;
-    if (magnitude_v < {{ nodes[0].volts }}) begin
-      delay_s = node_s + tau_s * $ln({{ nodes[0].volts }} / magnitude_v);
-    end
+    if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;
+    if (magnitude_v < {{ nodes[0].volts }}) delay_s = node_s + tau_s * $ln({{ nodes[0].volts }} / magnitude_v);
+    if (delay_s < TICK_S) delay_s = TICK_S;
   endtask
 {% endif %}

@@ -1,100 +1,96 @@
 
   // -- Delay over overdrive ---------------------------------------------------------------------
-  // Below the first node a straight line in ln(overdrive) with slope -tau: linear regeneration.
-  // Between nodes a cubic in ln(overdrive) whose slopes at the nodes are those of the parabola
-  // through three neighbours, kept falling. From the last node on constant.
-  // Nodes and segments are evaluated when an overdrive needs them under the present conditions.
+  // A curve over ln(overdrive) through nodes. Below the first node a straight line with slope
+  // -tau, which is linear regeneration; between nodes cubics whose slopes at the nodes are those
+  // of the parabola through three neighbours, kept falling; from the last node on constant.
+  // A segment is built when an overdrive needs it under the present conditions.
 
-  localparam int LAST = {{ nodes[-1].number }};          // node
-  real node_ln_v[0:LAST];        // ln of the overdrive at each node
-  real gap[1:LAST];              // its distance from the node before
-  real delay_at[0:LAST];         // delay at each node in s
-  bit [LAST:0] node_known = '0;
-
-  // Segment k ends at node k: delay = sum of cubic_n (ln(overdrive) - ln(overdrive at its start))^n
-  int segment = 0;
-  real start_ln_v[0:LAST+1];
-  real cubic_0[0:LAST+1], cubic_1[0:LAST+1], cubic_2[0:LAST+1], cubic_3[0:LAST+1];
+  localparam int LAST = {{ nodes[-1].number }};    // node
+  real gap[1:LAST];            // ln of the overdrive at a node over that at the node before
   bit [LAST+1:0] segment_known = '0;
-  real from_start = 0.0;
+  // Segment k ends at node k: delay = cubic_0 + x (cubic_1 + x (cubic_2 + x cubic_3))
+  real cubic_0[0:LAST+1], cubic_1[0:LAST+1], cubic_2[0:LAST+1], cubic_3[0:LAST+1];
+  real x_ln = 0.0;             // ln of the overdrive over that at the start of its segment
 
   task lay_out_curve;
-    real node_v;
-    for (int node = 0; node <= LAST; node = node + 1) begin
+    for (int node = 1; node <= LAST; node = node + 1) begin
       case (node)
-{% for node in nodes %}
-        {{ "default" if loop.last else node.number }}: node_v = {{ node.volts }};
+{% for node in nodes[1:] %}
+        {{ "default" if loop.last else node.number }}: gap[node] = $ln({{ node.volts }} / {{ nodes[loop.index0].volts }});
 {% endfor %}
       endcase
-      node_ln_v[node] = $ln(node_v);
-      if (node > 0) gap[node] = node_ln_v[node] - node_ln_v[node-1];
     end
   endtask
 
   task find_delay;
 {% for node in nodes | reverse %}
-    {{ "if" if loop.first else "else if" }} (magnitude_v >= {{ node.volts }}) segment = {{ node.number + 1 }};
-{% endfor %}
-    else segment = 0;
-    if (!segment_known[segment]) build_segment;
-    from_start = $ln(magnitude_v) - start_ln_v[segment];
-    delay_s = cubic_0[segment] + from_start * (cubic_1[segment]
-        + from_start * (cubic_2[segment] + from_start * cubic_3[segment]));
-  endtask
-
-  task build_segment;
-    int first;
-    real chord, width;
-    first = segment == 0 ? 0 : segment - 1;
-    start_ln_v[segment] = node_ln_v[first];
-    cubic_0[segment] = node_delay(first);
-    cubic_1[segment] = segment > LAST ? 0.0 : node_slope(first);
-    cubic_2[segment] = 0.0;
-    cubic_3[segment] = 0.0;
-    if (segment > 0 && segment <= LAST) begin
-      width = gap[segment];
-      chord = chord_slope(segment);
-      cubic_3[segment] = (cubic_1[segment] + node_slope(segment) - 2.0 * chord) / (width * width);
-      cubic_2[segment] = (chord - cubic_1[segment]) / width - cubic_3[segment] * width;
-    end
-    segment_known[segment] = 1'b1;
-  endtask
-
-  function real node_slope(input int node);
-    real below, above, slope, flattest;
-    if (node == 0) begin
-      flattest = chord_slope(1);
-      slope = -{{ curve.tau_s }};
-    end else if (node == LAST) begin
-      flattest = chord_slope(LAST);
-{% if nodes | length == 2 %}
-      slope = 2.0 * flattest + {{ curve.tau_s }};
+{% if loop.first %}
+    if (magnitude_v >= {{ node.volts }}) begin
+      if (!segment_known[{{ node.number + 1 }}]) build_segment({{ node.number + 1 }});
+      delay_s = cubic_0[{{ node.number + 1 }}];
 {% else %}
-      slope = flattest + gap[LAST] * (flattest - chord_slope(LAST - 1)) / (gap[LAST] + gap[LAST-1]);
+    end else if (magnitude_v >= {{ node.volts }}) begin
+      if (!segment_known[{{ node.number + 1 }}]) build_segment({{ node.number + 1 }});
+      x_ln = $ln(magnitude_v / {{ node.volts }});
+      delay_s = cubic_0[{{ node.number + 1 }}]
+          + x_ln * (cubic_1[{{ node.number + 1 }}] + x_ln * (cubic_2[{{ node.number + 1 }}] + x_ln * cubic_3[{{ node.number + 1 }}]));
 {% endif %}
-    end else begin
-      below = chord_slope(node);
-      above = chord_slope(node + 1);
-      flattest = below > above ? below : above;
-      slope = (gap[node+1] * below + gap[node] * above) / (gap[node+1] + gap[node]);
-    end
-    if (slope < 3.0 * flattest) slope = 3.0 * flattest;
-    return slope < 0.0 ? slope : 0.0;
-  endfunction
-
-  // Slope of the straight line from the node before
-  function real chord_slope(input int node);
-    return (node_delay(node) - node_delay(node - 1)) / gap[node];
-  endfunction
-
-  function real node_delay(input int node);
-    if (!node_known[node]) begin
-      case (node)
-{% for node_s in curve.node_s %}
-        {{ "default" if loop.last else loop.index0 }}: delay_at[node] = {{ node_s }};
 {% endfor %}
-      endcase
-      node_known[node] = 1'b1;
+    end else begin
+      if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;
+      if (!segment_known[0]) build_segment(0);
+      delay_s = cubic_0[0] + $ln(magnitude_v / {{ nodes[0].volts }}) * cubic_1[0];
     end
-    return delay_at[node];
+    if (delay_s < TICK_S) delay_s = TICK_S;
+  endtask
+
+  task build_segment(input int k);
+    real first, last, chord, chord_before, chord_after, slope_first, slope_last;
+    first = node_delay(k == 0 ? 0 : k - 1);
+    cubic_0[k] = first;
+    if (k == 0) begin
+      cubic_1[k] = -{{ curve.tau_s }};
+    end else if (k <= LAST) begin
+      last = node_delay(k);
+      chord = (last - first) / gap[k];
+      if (k == 1) begin
+        chord_before = chord;
+        slope_first = -{{ curve.tau_s }};
+      end else begin
+        chord_before = (first - node_delay(k - 2)) / gap[k-1];
+        slope_first = (gap[k] * chord_before + gap[k-1] * chord) / (gap[k] + gap[k-1]);
+      end
+      if (k == LAST) begin
+        chord_after = chord;
+{% if nodes | length == 2 %}
+        slope_last = 2.0 * chord - slope_first;
+{% else %}
+        slope_last = chord + gap[k] * (chord - chord_before) / (gap[k] + gap[k-1]);
+{% endif %}
+      end else begin
+        chord_after = (node_delay(k + 1) - last) / gap[k+1];
+        slope_last = (gap[k+1] * chord + gap[k] * chord_after) / (gap[k+1] + gap[k]);
+      end
+      slope_first = falling(slope_first, chord_before, chord);
+      slope_last = falling(slope_last, chord, chord_after);
+      cubic_1[k] = slope_first;
+      cubic_3[k] = (slope_first + slope_last - 2.0 * chord) / (gap[k] * gap[k]);
+      cubic_2[k] = (chord - slope_first) / gap[k] - cubic_3[k] * gap[k];
+    end
+    segment_known[k] = 1'b1;
+  endtask
+
+  // A slope that lets the curve fall wherever its nodes do
+  function automatic real falling(input real slope, input real chord_1, input real chord_2);
+    real steepest;
+    steepest = 3.0 * (chord_1 > chord_2 ? chord_1 : chord_2);
+    return slope < steepest ? steepest : slope > 0.0 ? 0.0 : slope;
+  endfunction
+
+  function automatic real node_delay(input int node);
+    case (node)
+{% for node_s in curve.node_s %}
+      {{ "default" if loop.last else loop.index0 }}: return {{ node_s }};
+{% endfor %}
+    endcase
   endfunction

@@ -3,15 +3,15 @@
 
   always begin : show_when_ready
     wait (decision_state == DECIDING);
-    #(delay_ticks);
+    #(delay_s * TICKS_PER_S);
     show_decision;
   end
 
   task show_decision;
     decision_state = DECIDED;
-    {{ pins.outp }} = leaning;
+    {{ pins.outp }} = overdrive_v > 0.0;
 {% if pins.outn %}
-    {{ pins.outn }} = !leaning;
+    {{ pins.outn }} = !(overdrive_v > 0.0);
 {% endif %}
 {% if pins.unresolved %}
     {{ pins.unresolved }} = 1'b0;
@@ -21,22 +21,23 @@
 
   // At a clean step of the clock back to its reset level
   task end_phase;
-    if (decision_state == DECIDING && (DELAY_ON == 0 || $realtime >= edge_time + real'(delay_ticks))) begin
-      show_decision;  // it is ready at this very moment
-      disable show_when_ready;
+    if (decision_state == DECIDING) begin
+      if (DELAY_ON == 0 || $realtime >= edge_time + $floor(delay_s * TICKS_PER_S + 0.5)) begin
+        show_decision;  // it is ready at this very moment
+        disable show_when_ready;
+      end
     end
 {% if holds %}
     if (decision_state == DECIDING || decision_state == FORCED) leave_unresolved;
 {% else %}
-    if (decision_state == DECIDED) return_to_reset({{ "reset_ticks" if reset else "64'sd0" }});
-    else if (decision_state == DECIDING || decision_state == FORCED) begin
-      leave_unresolved;
-{% if reset %}
-      return_to_reset(reset_ticks > 64'sd1 ? reset_ticks : 64'sd1);
-{% else %}
-      return_to_reset(64'sd1);
-{% endif %}
-    end else {{ "if (is_on) " if is_on }}power_up;  // nothing was decided
+    case (decision_state)
+      DECIDED: return_to_reset({{ "reset_ticks" if reset else "0.0" }});
+      IDLE: {{ "if (is_on) " if is_on }}power_up;  // nothing was decided
+      default: begin
+        leave_unresolved;
+        return_to_reset({{ "reset_ticks > 1.0 ? reset_ticks : 1.0" if reset else "1.0" }});
+      end
+    endcase
 {% endif %}
   endtask
 

@@ -3,14 +3,16 @@
 
   // With the supply on, the clock at its reset level and no decision before
   task power_up;
-    return_to_reset(64'sd1);
+    return_to_reset(1.0);
   endtask
 
-  task return_to_reset(input longint ticks);
-    return_ticks = ticks;
-    return_time = $realtime + real'(ticks);
-    if (ticks == 64'sd0) show_reset;
-    else returning = 1'b1;
+  task return_to_reset(input real ticks);
+    if (ticks == 0.0) show_reset;
+    else begin
+      return_ticks = ticks;
+      return_time = $realtime + ticks;
+      returning = 1'b1;
+    end
   endtask
 
   always begin : reset_when_due

@@ -1,7 +1,6 @@
 
   // -- Start: what stays for the whole simulation -----------------------------------------------
 
-  localparam real TICKS_PER_S = {{ ticks_per_s }};
   string instance_path;
   int process_code;
 {% if temperature.matters %}
@@ -37,7 +36,6 @@
 {% if delay == "curve" %}
     lay_out_curve;
 {% endif %}
-    if (DELAY_ON == 0) delay_s = 1.0 / TICKS_PER_S;
     clk_level = {{ pins.clk }};
 {% if is_on %}
     is_on = {{ is_on }};

@@ -1,12 +1,15 @@
 
   // -- To be read from outside ------------------------------------------------------------------
 
+  localparam real TICKS_PER_S = {{ ticks_per_s }};
+  localparam real TICK_S = 1.0 / TICKS_PER_S;
+
   // Why the outputs show no decision: 0 they do, or rest; 1 unresolved; 2 supply or enable;
   // 3 input not a number; 4 clock unknown; 5 before the first decision
   int x_cause = 5;
   bit [63:0] decision_count = 64'd0;  // decision edges so far
   real overdrive_v = 0.0;             // effective overdrive of the last decision, signed
-  real delay_s = 0.0;                 // its delay, also if it did not resolve
+  real delay_s = TICK_S;                 // its delay, also if it did not resolve
   int temperature_warnings = 0;       // how often a condition was outside its range
   int supply_warnings = 0;
   int common_mode_warnings = 0;
@@ -17,8 +20,8 @@
 
   // Since the last decision edge: nothing was decided; a decision is on its way; one is kept
   // from resolving; one is shown
-  localparam int IDLE = 0, DECIDING = 1, FORCED = 2, DECIDED = 3;
-  int decision_state = IDLE;
+  localparam bit [1:0] IDLE = 2'd0, DECIDING = 2'd1, FORCED = 2'd2, DECIDED = 2'd3;
+  bit [1:0] decision_state = IDLE;
   logic clk_level;                    // level of the clock before its last change
 {% if is_on %}
 {% if supply_off and pins.vdd %}
@@ -26,16 +29,14 @@
 {% endif %}
   bit is_on;                          // supplied and enabled
 {% endif %}
-  bit leaning = 1'b0;                 // which way the decision goes
   real edge_time = 0.0;               // its decision edge, in ticks of the time precision
-  longint delay_ticks = 64'sd1;
 {% if reset %}
-  longint reset_ticks = 64'sd0;       // delay of the reset after it
+  real reset_ticks = 0.0;             // delay of the reset after it, whole
 {% endif %}
 {% if not holds %}
   bit returning = 1'b0;               // the reset state is on its way
   real return_time = 0.0;             // when it is there, in ticks
-  longint return_ticks = 64'sd1;      // how long it takes
+  real return_ticks = 1.0;            // how long it takes
 {% endif %}
 
   // Conditions, and what follows from them
@@ -48,13 +49,14 @@
 {% if supply.matters %}
   real vdd_v = 0.0;
 {% if not fixed_supply %}
-  real vdd_seen = -1.0;               // supply that was last taken in; none yet
+  bit vdd_changed = 1'b1;             // since it was last taken in
 {% endif %}
 {% endif %}
 {% if common_mode.matters %}
-  localparam real NO_STEP = 1e300;
   real vcm_v = 0.0;
-  real vcm_step = NO_STEP;            // common mode in steps, as last taken in
+  real vcm_steps = 0.0;               // common mode in steps, plus half a step to round it
+  real vcm_step = 0.0;                // range of vcm_steps at the last decision; none yet
+  real vcm_step_end = 0.0;
 {% endif %}
 {% if offset %}
   real trip_v = 0.0;                  // trip point with OFFSET_SHIFT_V

@@ -1,6 +1,15 @@
 
   // -- Supply and enable ------------------------------------------------------------------------
 
+{% if pins.vdd and supply.matters %}
+  always @({{ pins.vdd }}) begin
+    vdd_changed = 1'b1;
+{% if common_mode.matters %}
+    vcm_step_end = vcm_step;  // an empty range: everything is to be taken in anew
+{% endif %}
+  end
+
+{% endif %}
   always @({{ off_events }}) begin
     if (is_on != ({{ is_on }})) begin
       is_on = !is_on;

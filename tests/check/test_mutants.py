@@ -90,7 +90,10 @@ EDITS = {
         r"longint'\(delay_s \* TICKS_PER_S\)",
         "longint'($floor(delay_s * TICKS_PER_S))",
     ),
-    "ready at the reset edge": (r"\$realtime >= edge_time", "$realtime > edge_time"),
+    "a phase that is a tick too short": (
+        r"\$realtime >= edge_time",
+        "$realtime + 1.0 >= edge_time",
+    ),
     "a lower clamp of the supply": (r": x_v_low;", ": vdd_v;"),
     "an upper clamp of the temperature": (
         r"\? temperature_k : x_t_high",
@@ -113,7 +116,7 @@ EDITS = {
     "seed from the command line": ("behavgen_seed=", "behavgen_sed="),
     "a warning at every decision": (r"if \(common_mode_warnings == 1\)", "if (1)"),
     "a fatal warning": (r"if \(WARNINGS == 2\) \$fatal", "if (WARNINGS == 3) $fatal"),
-    "a parameter's default": (r"NOISE_ON = 1", "NOISE_ON = 0"),
+    "a parameter's default": (r"(NOISE_ON +)= 1", r"\g<1>= 0"),
     "decision count while off": (
         r"decision_count = decision_count \+ 64'd1",
         "if (is_on) decision_count = decision_count + 64'd1",

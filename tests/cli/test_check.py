@@ -79,7 +79,7 @@ def test_an_edited_model_disagrees(
         r" first bit of decision \d+ in run .+ at .+: expected .+, got .+ applied", shown
     )
     assert ran.stdout.splitlines()[-1].startswith(
-        "NOT OK  1 cell checked; model and reference part in latch."
+        "NOT OK  1 cell checked; the check fails for latch."
     )
     assert run(capsys, "-C", checked, "check", "-q").exit_code == 0
 

@@ -11,6 +11,7 @@ import pytest
 
 from behavgen.fit.planning.conditions import plan_conditions, thin_axes
 from behavgen.fit.surfaces import choose_by_left_out
+from behavgen.model import Condition
 
 LEVELS = (np.array([233.15, 300.15, 398.15]), np.array([0.9, 1.0, 1.1]), np.array([0.5, 0.6, 0.7]))
 EFFECTS = np.array([0.2, 0.3, 0.2])
@@ -132,38 +133,37 @@ def latch() -> tuple[np.ndarray, np.ndarray]:
 
 
 def test_planned_conditions_tell_more_than_others(latch: tuple[np.ndarray, np.ndarray]) -> None:
-    """Five planned ones added to nine at random, against five others at random, six times.
+    """Five planned ones added to nine at random, against five others at random, 16 times.
 
-    Ordered by chance, the planned would beat the median in all six once in 64 times,
-    and by a fifth on the average far less often.
+    The geometric mean of the ratios of errors strays by 0.1 (one standard deviation);
+    conditions no better than others would pass 15 times in 100.
     """
     values, log_tau = latch
     assert len(values) == 27
     levels = [np.unique(column) for column in values.T]
     scale = np.array([level[-1] - level[0] for level in levels])
-    effects = np.array([0.2, 0.35, 0.25])
 
     def error(rows: list[int]) -> float:
         fit = choose_by_left_out(values[rows], log_tau[rows][:, None])
         return float(np.sqrt(np.mean((fit.predict(values)[:, 0] - log_tau) ** 2)))
 
+    def nearest(condition: Condition) -> int:
+        wanted = [condition.temperature_k, condition.vdd_v, condition.vcm_v]
+        return int(np.argmin((np.abs(values - wanted) / scale).sum(axis=1)))
+
     ratios = []
-    for seed in range(6):
+    for seed in range(16):
         rng = np.random.default_rng(seed)
-        start = sorted(rng.choice(27, 9, replace=False).tolist())
+        start = rng.choice(27, 9, replace=False).tolist()
         planned = plan_conditions(
-            values[start], levels, effects=effects, scatter=0.005, within=0.0, most=5
-        )
-        added = []
-        for following in planned.following:
-            c = following.condition
-            away = np.abs(values - [c.temperature_k, c.vdd_v, c.vcm_v]) / scale
-            added.append(int(np.argmin(away.sum(axis=1))))
+            values[start], levels, effects=np.array([0.2, 0.35, 0.25]), scatter=0.005, within=0.0,
+            most=5,
+        )  # fmt: skip
         others = [i for i in range(27) if i not in start]
         chance = [
             error(sorted([*start, *rng.choice(others, 5, replace=False).tolist()]))
-            for _ in range(11)
+            for _ in range(7)
         ]
+        added = [nearest(following.condition) for following in planned.following]
         ratios.append(error(sorted([*start, *added])) / np.median(chance))
-    assert np.median(ratios) < 0.9
-    assert np.mean(ratios) < 0.8
+    assert np.exp(np.mean(np.log(ratios))) < 0.9

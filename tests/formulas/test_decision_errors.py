@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -114,7 +115,7 @@ def test_uniform_input_is_the_mean_over_levels(span_v: float, half_window_v: flo
     ends = sorted({0.0, 0.5 * span_v, *np.clip(about_the_edge, 0.0, 0.5 * span_v)})
 
     def mean(density: Callable[[float], float]) -> float:
-        pieces = (quad(density, a, b, epsabs=0.0)[0] for a, b in zip(ends, ends[1:], strict=False))
+        pieces = (quad(density, a, b, epsabs=0.0)[0] for a, b in pairwise(ends))
         return 2.0 * sum(pieces) / span_v
 
     def unresolved(x: float) -> float:
