@@ -14,7 +14,7 @@ from scipy.stats import binomtest
 from behavgen.applied_inputs import Levels, Uniform
 from behavgen.bands import Band
 from behavgen.formulas.metastability import mean_time_between_failures
-from behavgen.model import ComparatorModel, NoiseEffect, OffsetEffect
+from behavgen.model import ComparatorModel, MismatchEffect, NoiseEffect, OffsetEffect
 from behavgen.operating_point import evaluate, operating_point
 from behavgen.prediction import Prediction, predict
 from behavgen.reference import Reference
@@ -118,7 +118,10 @@ def test_a_long_wait_does_not_underflow() -> None:
     assert found.log10_time_between_failures_s is not None
     np.testing.assert_allclose(found.log10_time_between_failures_s.value, -9.0 - expected)
     # One percent of tau moves ln W = -(t - t_node) / tau by one percent: 1.96 of them.
-    half = found.log10_unresolved.high - found.log10_unresolved.value
+    between, unresolved = found.log10_time_between_failures_s, found.log10_unresolved
+    np.testing.assert_allclose(between.low, -9.0 - unresolved.high)
+    np.testing.assert_allclose(between.high, -9.0 - unresolved.low)
+    half = unresolved.high - unresolved.value
     np.testing.assert_allclose(half, 1.96e-2 * np.abs(expected), rtol=1e-2)
 
 
@@ -227,22 +230,54 @@ def test_average_over_instances() -> None:
     assert 10 ** value(found.log10_noise_error) == pytest.approx(wrong.mean(), abs=error)
 
 
-def test_worst_of_the_instances_within_3_sigma() -> None:
-    model, time_s = full_model(), 300e-12
-    reference = Reference(model)
-    spread_v = np.hypot(*_component_values(model))
-    shifts = np.linspace(-3.0, 3.0, 601) * spread_v
-    inputs = Levels.of(30e-3)
-    found = predict(model, inputs, resolve_time_s=time_s, instances="3-sigma")
+def mismatched_model(instances: int = 19) -> ComparatorModel:
+    """Return the plain cell with a mismatch of 2 mV per sigma."""
+    component = constant_surface("V", "plain", 2e-3, "nominal")
+    effect = MismatchEffect(components=(component,), instances=instances)
+    return replace(plain_model(), mismatch=effect)
+
+
+def test_average_adds_variances_and_knows_the_mismatch_by_its_instances() -> None:
+    # A sum of independent normals is normal with the sum of their variances.
+    found = predict(mismatched_model(), Levels.of(OFFSET_V + 6e-3), instances="average")
+    total_v = np.hypot(SIGMA_V, 2e-3)
+    assert 10 ** value(found.log10_noise_error) == pytest.approx(float(ndtr(-6e-3 / total_v)))
+    # 19 instances: ln of their standard deviation is known to 1 / sqrt(2 * 18) = 1/6.
+    spread_v = 2e-3 * np.exp(1.959964 / 6.0 * np.array([-1.0, 1.0]))
+    expected = ndtr(-6e-3 / np.hypot(SIGMA_V, spread_v))
+    np.testing.assert_allclose(10 ** np.array(ends(found.log10_noise_error)), expected, rtol=1e-6)
+
+
+@pytest.mark.parametrize("vdiff_v", [30e-3, -30e-3, 5e-3])
+def test_worst_of_the_instances_within_3_sigma(vdiff_v: float) -> None:
+    model, time_s, right_bit = full_model(), 300e-12, int(vdiff_v > 0.0)
+    spread_v = float(np.hypot(*_component_values(model)))
+    shifts = np.linspace(-3.0, 3.0, 1201) * spread_v
+    found = predict(model, Levels.of(vdiff_v), resolve_time_s=time_s, instances="3-sigma")
     # An instance with another trip point is the nominal one with another input.
-    others = predict(model, Levels.of(30e-3 - shifts, right_bit=1), resolve_time_s=time_s)
+    inputs = Levels.of(vdiff_v - shifts, right_bit=right_bit)
+    others = predict(model, inputs, resolve_time_s=time_s)
     for worst, of_all in ((found.log10_noise_error, others.log10_noise_error),
                           (found.log10_unresolved, others.log10_unresolved),
                           (found.log10_error, others.log10_error)):  # fmt: skip
         assert of_all is not None
-        assert value(worst) == pytest.approx(float(of_all.value.max()), rel=1e-3)
-    slowest = float(reference.delay(30e-3 - reference.offset() - 3.0 * spread_v))
-    assert value(found.delay_s) == pytest.approx(slowest)
+        assert value(worst) == pytest.approx(float(of_all.value.max()), abs=1e-3)
+    from_trip_v = abs(vdiff_v - float(Reference(model).offset()))
+    slowest = Reference(model).delay(max(from_trip_v - 3.0 * spread_v, 1e-15))
+    assert value(found.delay_s) == pytest.approx(float(slowest))
+
+
+def test_worst_instance_over_a_span() -> None:
+    model, trials, ticks = full_model(), 200_000, 240_000
+    shift_v = 3.0 * float(np.hypot(*_component_values(model)))
+    reference = Reference(model, seed=3, offset_shift_v=shift_v)
+    from_trip = np.random.default_rng(6).uniform(-0.05, 0.05, trials)
+    trace = reference.trace(from_trip + reference.offset(), ticks)
+    wrong, late = trace.leaning != (from_trip > 0.0), trace.unresolved
+    span = Uniform(span_v=np.array(0.1))
+    found = predict(model, span, resolve_time_s=ticks * 1e-15, instances="3-sigma")
+    assert agrees(value(found.log10_noise_error), int(wrong.sum()), trials)
+    assert agrees(value(found.log10_error), int((wrong | late).sum()), trials)
 
 
 def _component_values(model: ComparatorModel) -> list[float]:

@@ -84,4 +84,6 @@ def _interval(found: Estimate, text: Callable[[float], str]) -> str:
     if found.low is None or found.high is None:
         return _NO_INTERVAL
     ends = f"{text(found.low)}..{text(found.high)}"
-    return f"{ends} ({100.0 * found.level:g} %, {found.high - found.low:.1g} decades)"
+    decades = found.high - found.low
+    width = f"{decades:.1g}" if decades >= 1e-3 else "< 0.001"
+    return f"{ends} ({100.0 * found.level:g} %, {width} decades)"

@@ -23,6 +23,7 @@ _CONDITIONS = (
     ("overdrive_v", "overdrive", "V"),
 )
 _NEVER_MODELLED = ("memory of earlier decisions", "aperture", "energy", "kickback")
+_NOISE = "Gaussian, no draws beyond 8.3 sigma where they cannot change a bit"
 _CAUTIONS = (
     "Fitted to the tables named above and valid inside the stated ranges; outside, conditions "
     "are clamped and results are no predictions.",
@@ -46,16 +47,28 @@ class HeaderSection:
     lines: tuple[str, ...]
 
 
-def header_sections(model: ComparatorModel) -> tuple[HeaderSection, ...]:
-    """Return the head of an emitted file in reading order; sections without content are absent."""
+def header_sections(
+    model: ComparatorModel, *, noise: str = _NOISE, differences: HeaderSection | None = None
+) -> tuple[HeaderSection, ...]:
+    """Return the head of an emitted file in reading order; sections without content are absent.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+    noise : str
+        How the file models noise.
+    differences : HeaderSection or None
+        From the models in other languages.
+    """
     candidates = (
         ("Valid for", _ranges(model)),
-        ("Models", _effects(model)),
+        ("Models", _effects(model, noise)),
         ("Does not model", (", ".join(_absent(model)),)),
         ("Values at the middle of the range", tuple(map(_value, model.parameters))),
         ("Made from", _tables(model)),
         ("Fits the tables", _fits(model)),
         ("Note", tuple(map(comment_text, model.notices))),
+        *([(differences.title, differences.lines)] if differences else []),
         ("Caution", _CAUTIONS),
         ("Use", (_origin(model),)),
     )
@@ -107,14 +120,14 @@ def _span(box: Box, condition: str) -> Range | None:
     return span
 
 
-def _effects(model: ComparatorModel) -> tuple[str, ...]:
+def _effects(model: ComparatorModel, noise: str) -> tuple[str, ...]:
     lines = []
     if model.offset is not None:
         lines.append(f"offset: {model.offset.source or 'nominal trip point'}")
     if model.mismatch is not None:
         lines.append(f"mismatch between instances: {model.mismatch.instances} measured")
     if model.noise is not None:
-        lines.append("noise: Gaussian, no draws beyond 8.3 sigma where they cannot change a bit")
+        lines.append(f"noise: {noise}")
     if model.delay is not None:
         law = f"delay over overdrive: {model.delay.law or 'nodes'}"
         measured = f", measured from {model.delay.measured}" if model.delay.measured else ""

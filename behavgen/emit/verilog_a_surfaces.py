@@ -21,7 +21,7 @@ from behavgen.model import Axis, Process, Range, Surface, Variant
 
 __all__ = ["Statements", "declaration", "surface_statements", "wrapped"]
 
-_WIDTH = 94
+_WIDTH = 90
 _TIE = "\0"
 _COORDINATES = {"temperature_k": "x_temperature", "vdd_v": "x_supply", "vcm_v": "x_common"}
 _VARIABLES = {"temperature_k": "temperature_k", "vdd_v": "supply_v", "vcm_v": "vcm_v"}
@@ -46,7 +46,7 @@ class Statements:
     conditions : frozenset of str
         Conditions that the values depend on, as in `Axis.condition`.
     lines : tuple of str
-        At most 96 columns wide.
+        At most 92 columns wide.
     """
 
     variables: tuple[str, ...]
@@ -62,7 +62,7 @@ def declaration(names: Iterable[str]) -> tuple[str, ...]:
 
 
 def wrapped(statement: str) -> tuple[str, ...]:
-    """Break a statement into lines of at most 94 columns, after commas and before + and -."""
+    """Break a statement into lines of at most 90 columns, after commas and before + and -."""
     tied = re.sub(r" ([*/]) ", rf"{_TIE}\1{_TIE}", statement)
     tied = re.sub(r"([-+=]) ", rf"\1{_TIE}", tied)
     lines = textwrap.wrap(

@@ -29,14 +29,14 @@ __all__ = ["fit"]
 Fitted = TypeVar("Fitted")
 
 
-def fit(tables: Characterisation, settings: CellSettings) -> ComparatorModel:
+def fit(tables: Characterisation, settings: CellSettings | None = None) -> ComparatorModel:
     """Fit everything that the tables tell.
 
     Parameters
     ----------
     tables : Characterisation
-    settings : CellSettings
-        The cell's entry in the project file.
+    settings : CellSettings, optional
+        The cell's entry in the project file; default those that the tables were read with.
 
     Returns
     -------
@@ -46,7 +46,12 @@ def fit(tables: Characterisation, settings: CellSettings) -> ComparatorModel:
     ------
     FitError
         When data cannot identify what they are meant for; names all such data.
+    ValueError
+        When neither the tables nor the caller bring settings.
     """
+    settings = settings or tables.settings
+    if settings is None:
+        raise ValueError("these tables carry no settings of a cell; pass them as `settings`")
     processes = _processes(tables, settings)
     names = tuple(process.name for process in processes)
     noise, delay, memory, aperture = _all_or_refusals(

@@ -5,6 +5,7 @@ Chosen by leaving rows out. What fits and foresees as well with fewer numbers is
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from enum import IntEnum
 
@@ -78,20 +79,19 @@ def choose_memory(rows: MemoryRows, conditions: int) -> MemoryChoice:
         Each condition has a measured row, and all of them two or more reset times.
     conditions : int
     """
-    found = []
-    for sharing in Sharing:
-        for shape in _SHAPES:
-            fitted = _fitted(rows, conditions, shape, sharing)
-            spare = int((~rows.is_bound).sum()) - _spent(conditions, shape, sharing)
-            if fitted is None or (spare < 1 and shape is not _SHAPES[0]):
-                continue
-            choice = MemoryChoice(
-                shape=shape,
-                sharing=sharing,
-                log_parameters=fitted,
-                spent=_spent(conditions, shape, sharing),
-            )
-            found.append((choice, _cost(rows, conditions, choice)))
+    found: list[tuple[MemoryChoice, float]] = []
+    ways = itertools.product(_SHAPES, Sharing if conditions > 1 else (Sharing.ALL,))
+    for shape, sharing in sorted(ways, key=lambda way: _spent(conditions, *way)):
+        spent = _spent(conditions, shape, sharing)
+        if spent >= int((~rows.is_bound).sum()) and shape is not _SHAPES[0]:
+            continue
+        fitted = _fitted(rows, conditions, shape, sharing)
+        if fitted is None:
+            continue
+        choice = MemoryChoice(shape=shape, sharing=sharing, log_parameters=fitted, spent=spent)
+        found.append((choice, _cost(rows, conditions, choice)))
+        if found[-1][1] <= _NEGLIGIBLE:
+            break
     least = min(cost for _, cost in found)
     good = [f for f in found if f[1] <= max(_AS_GOOD * least, least + _NEGLIGIBLE)]
     return min(good, key=lambda f: (f[0].spent, f[1]))[0]
@@ -104,22 +104,28 @@ def _spent(conditions: int, shape: CurveShape, sharing: Sharing) -> int:
 
 
 def _fitted(
-    rows: MemoryRows, conditions: int, shape: CurveShape, sharing: Sharing
+    rows: MemoryRows,
+    conditions: int,
+    shape: CurveShape,
+    sharing: Sharing,
+    near: Floats | None = None,
 ) -> Floats | None:
-    """Return every condition's parameters; None where the rows cannot tell them."""
+    """Return every condition's parameters, maybe near others; None where rows cannot tell them."""
     if not _identified(rows, conditions, shape, sharing):
         return None
+    log_tau = None if near is None else near[:, shape.terms : 2 * shape.terms]
     if sharing == Sharing.NOTHING:
-        parts = [
-            fit_curves(own, np.zeros_like(own.site), shape)
-            for own in (rows.where(rows.site == c) for c in range(conditions))
-        ]
+        parts = []
+        for c in range(conditions):
+            own = rows.where(rows.site == c)
+            start = None if log_tau is None else log_tau[c]
+            parts.append(fit_curves(own, np.zeros_like(own.site), shape, start))
         curves = [part for part in parts if part is not None]
         if len(curves) < conditions:
             return None
         return np.concatenate([curve.log_parameters() for curve in curves])
     together = np.zeros_like(rows.site) if sharing == Sharing.ALL else rows.site
-    curve = fit_curves(rows, together, shape)
+    curve = fit_curves(rows, together, shape, None if log_tau is None else log_tau.mean(axis=0))
     if curve is None:
         return None
     parameters = curve.log_parameters()
@@ -160,7 +166,9 @@ def _left_out(rows: MemoryRows, conditions: int, choice: MemoryChoice) -> float:
         keep = np.ones(len(rows.shift_v), dtype=bool)
         keep[left] = False
         for sharing in range(choice.sharing, -1, -1):
-            fitted = _fitted(rows.where(keep), conditions, choice.shape, Sharing(sharing))
+            fitted = _fitted(
+                rows.where(keep), conditions, choice.shape, Sharing(sharing), choice.log_parameters
+            )
             if fitted is not None:
                 away = rows.where(np.isin(np.arange(len(keep)), left))
                 missed = shift_of(fitted, choice.shape, away) - away.shift_v

@@ -14,6 +14,8 @@ import numpy as np
 import numpy.typing as npt
 from scipy.optimize import minimize, nnls
 
+from behavgen.fit.law_solution import inverse_of
+
 __all__ = ["CurveShape", "MemoryCurves", "MemoryRows", "fit_curves"]
 
 Floats = npt.NDArray[np.float64]
@@ -21,6 +23,8 @@ Truths = npt.NDArray[np.bool_]
 
 _GRID = {1: 48, 2: 24}
 """Time constants tried a term; two terms take all pairs."""
+_SEARCH = {"xatol": 1e-9, "fatol": 1e-18, "maxiter": 400}
+_SHORT_SEARCH = {"xatol": 1e-4, "fatol": 1e-10, "maxiter": 60}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -105,7 +109,10 @@ class MemoryCurves:
 
 
 def fit_curves(
-    rows: MemoryRows, group: npt.NDArray[np.intp], shape: CurveShape
+    rows: MemoryRows,
+    group: npt.NDArray[np.intp],
+    shape: CurveShape,
+    near_log_tau: Floats | None = None,
 ) -> MemoryCurves | None:
     """Fit groups of rows with shared time constants; None where the shape is one part too many.
 
@@ -115,6 +122,8 @@ def fit_curves(
     group : ndarray of int, shape (N,)
         0, 1, ... without gaps.
     shape : CurveShape
+    near_log_tau : ndarray, shape (K,), optional
+        ln of time constants in s to start from instead of a grid.
     """
     measured_s = rows.reset_time_s[~rows.is_bound]
     start_s = float(measured_s.min())
@@ -124,9 +133,9 @@ def fit_curves(
 
     log_tau = np.empty(0)
     if shape.terms:
-        grid = _grid(measured_s, shape.terms)
+        grid = _grid(measured_s, shape.terms) if near_log_tau is None else [near_log_tau]
         best = grid[int(np.argmin([squares(candidate) for candidate in grid]))]
-        options = {"xatol": 1e-9, "fatol": 1e-18, "maxiter": 400}
+        options = _SEARCH if near_log_tau is None else _SHORT_SEARCH
         log_tau = np.sort(minimize(squares, best, method="Nelder-Mead", options=options).x)
     heights, total = _solved(rows, group, shape, start_s, log_tau)
     if not (heights > 0.0).all() or (np.diff(log_tau) < 1e-3).any():
@@ -157,25 +166,29 @@ def _solved(
     start_s: float,
     log_tau: Floats,
 ) -> tuple[Floats, float]:
-    """Return each group's heights (G, H) and the sum of squares for given time constants."""
+    """Return each group's heights (G, H) and the sum of squares for given time constants.
+
+    Bounds count once the curve falls short of them.
+    """
     tau_s = np.exp(np.clip(log_tau, -100.0, 100.0))
     basis = _basis(rows.reset_time_s - start_s, tau_s, shape.heights)
-    found = [
-        _heights(basis[here], rows.where(here))
-        for here in (group == g for g in range(int(group.max()) + 1))
-    ]
-    return np.array([heights for heights, _ in found]), sum(squares for _, squares in found)
-
-
-def _heights(basis: Floats, rows: MemoryRows) -> tuple[Floats, float]:
-    """Solve for heights that are not negative; bounds count once the curve falls short of them."""
     scaled, target = basis / rows.scale_v[:, None], rows.shift_v / rows.scale_v
-    counts = ~rows.is_bound
-    heights, root = nnls(scaled[counts], target[counts])
-    for _ in range(int(rows.is_bound.sum())):
-        short = rows.is_bound & (scaled @ heights < target)
-        if (short == (counts & rows.is_bound)).all():
+    short = np.zeros(len(target), dtype=bool)
+    for _ in range(1 + int(rows.is_bound.sum())):
+        counts = short | ~rows.is_bound
+        heights = _heights(scaled[counts], target[counts], group[counts])
+        error = (scaled * heights[group]).sum(axis=-1) - target
+        before, short = short, rows.is_bound & (error < 0.0)
+        if (short == before).all():
             break
-        counts = ~rows.is_bound | short
-        heights, root = nnls(scaled[counts], target[counts])
-    return heights, float(root) ** 2
+    return heights, float(error[counts] @ error[counts])
+
+
+def _heights(scaled: Floats, target: Floats, group: npt.NDArray[np.intp]) -> Floats:
+    """Solve each group for heights that are not negative, (G, H)."""
+    member = group == np.arange(int(group.max()) + 1)[:, None]
+    columns = (member[..., None] * scaled).transpose(0, 2, 1)
+    heights: Floats = (inverse_of(columns @ scaled) @ (columns @ target)[..., None])[..., 0]
+    for g in np.flatnonzero((heights < 0.0).any(axis=-1)):
+        heights[g] = nnls(scaled[member[g]], target[member[g]])[0]
+    return heights

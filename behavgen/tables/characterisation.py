@@ -12,6 +12,8 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
+from behavgen.project import CellSettings
+
 __all__ = [
     "ApertureTable",
     "Characterisation",
@@ -301,11 +303,13 @@ class KickbackTable:
 class Characterisation:
     """All tables of one cell; an absent table is an absent effect.
 
+    `settings` are the cell's entry in the project file, where there is one.
     `notices` are what a user should look at although nothing is wrong.
     """
 
     cell: str
     processes: tuple[str, ...]
+    settings: CellSettings | None = None
     offset: OffsetTable | None = None
     offset_statistics: OffsetStatistics | None = None
     noise: NoiseTable | None = None

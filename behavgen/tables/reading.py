@@ -68,6 +68,7 @@ def _characterisation(
     return Characterisation(
         cell=cell.name,
         processes=processes,
+        settings=cell,
         sources=sources,
         notices=(
             *notices,

@@ -2,6 +2,7 @@
 
 import json
 import os
+import re
 import subprocess
 import sys
 from dataclasses import replace
@@ -131,6 +132,24 @@ def test_a_text_that_does_not_compile_is_a_verdict_with_the_place(tmp_path):
     assert bench.name == "the text compiles"
     assert "compile.log" in bench.message
     assert "latch_minimal.sv:" in bench.message
+
+
+def test_insides_that_cannot_be_read_are_told_and_the_rest_is_checked(tmp_path):
+    text = re.sub(r"\bx_cause\b", "hidden", emitted_text(SMALL))
+    report = checked(SMALL, tmp_path, text)
+    assert [bench.name for bench in report.benches if not bench.passed] == [
+        "the insides can be read"
+    ]
+    assert report.decisions >= 20_000
+    assert report.disagreement_count == 0
+
+
+def test_a_parameter_that_is_missing_is_told(tmp_path):
+    text = re.sub(r"\bMEMORY_ON\b", "REMEMBERS", emitted_text(SMALL))
+    report = checked(SMALL, tmp_path, text)
+    (failed,) = [bench for bench in report.benches if not bench.passed]
+    assert failed.name == "the parameters are those of the interface"
+    assert failed.message == "the module has no parameter MEMORY_ON"
 
 
 def test_another_module_is_a_verdict(tmp_path):
