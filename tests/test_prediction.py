@@ -248,7 +248,7 @@ def test_average_adds_variances_and_knows_the_mismatch_by_its_instances() -> Non
     np.testing.assert_allclose(10 ** np.array(ends(found.log10_noise_error)), expected, rtol=1e-6)
 
 
-@pytest.mark.parametrize("vdiff_v", [30e-3, -30e-3, 5e-3])
+@pytest.mark.parametrize("vdiff_v", [30e-3, -30e-3, 5e-3, -5e-3])
 def test_worst_of_the_instances_within_3_sigma(vdiff_v: float) -> None:
     model, time_s, right_bit = full_model(), 300e-12, int(vdiff_v > 0.0)
     spread_v = float(np.hypot(*_component_values(model)))

@@ -32,15 +32,17 @@ def bench_results(model: ComparatorModel, outcomes: Sequence[SessionOutcome]) ->
 
 
 def _result(outcome: SessionOutcome, bench: BenchOutcome) -> BenchResult:
-    sentence, _, run = bench.name.partition("/run=")
-    names = {str(one.index): one.name for one in outcome.session.runs}
-    if run in names:
-        sentence = f"{sentence}: {names[run]}"
-    elif not run and bench.module == "test_agreement":
+    function, _, option = bench.name.partition("/")
+    sentence = function.replace("_", " ")
+    kind, _, value = option.partition("=")
+    if kind == "run":
+        run = next(run for run in outcome.session.runs if run.index == int(value))
+        sentence = f"{sentence}: {run.name}"
+    elif option:
+        sentence = f"{sentence}: {kind} {value}"
+    elif bench.module == "test_agreement":
         sentence = f"{sentence}: {outcome.session.name}"
-    return BenchResult(
-        name=sentence.replace("_", " "), passed=not bench.message, message=bench.message
-    )
+    return BenchResult(name=sentence, passed=not bench.message, message=bench.message)
 
 
 def _ended(outcome: SessionOutcome) -> BenchResult:

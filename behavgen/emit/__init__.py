@@ -1,0 +1,1 @@
+"""ComparatorModel -> emitted files: SystemVerilog and Verilog-A."""

@@ -30,9 +30,9 @@ _IN_CONTINUOUS = {
     "TEMPERATURE_C": _TEMPERATURE,
 }
 _IN_EVENT = {
-    "DELAY_ON": "delays; off: none but half an edge",
+    "DELAY_ON": "delays; without, outputs follow at once in an edge",
     "TEMPERATURE_C": _TEMPERATURE,
-    "SEED": "of this instance's random numbers; equal seeds give equal numbers",
+    "SEED": "seed of this instance's random numbers; equal seeds give equal numbers",
 }
 """Descriptions where the meaning differs from that in SystemVerilog."""
 
@@ -144,7 +144,7 @@ def _attributes(parameter: ModuleParameter) -> tuple[str, ...]:
 
 def _comments(parameter: ModuleParameter) -> tuple[str, ...]:
     note = _note(parameter)
-    text = f"{note}, {parameter.unit}" if parameter.unit else note
+    text = f"{note} ({parameter.unit})" if parameter.unit else note
     return tuple(textwrap.wrap(comment_text(text), _WIDTH, initial_indent="// ",
                                subsequent_indent="//   "))  # fmt: skip
 

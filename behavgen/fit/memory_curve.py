@@ -23,8 +23,8 @@ Truths = npt.NDArray[np.bool_]
 
 _GRID = {1: 48, 2: 24}
 """Time constants tried a term; two terms take all pairs."""
-_SEARCH = {"xatol": 1e-9, "fatol": 1e-18, "maxiter": 400}
-_SHORT_SEARCH = {"xatol": 1e-4, "fatol": 1e-10, "maxiter": 60}
+_SEARCH = {"xatol": 1e-8, "fatol": 1e-15, "maxiter": 200}
+_SHORT_SEARCH = {"xatol": 1e-3, "fatol": 1e-6, "maxiter": 40}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

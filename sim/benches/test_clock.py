@@ -121,9 +121,9 @@ async def an_early_decision_edge_cancels_the_reset(top) -> None:
 
 
 @cocotb.test()
-@cocotb.parametrize(mode=range(len(MODES)))
-async def unresolved_outputs_stay_until_the_reset(top, mode: int) -> None:
-    cell = Driver(top, f"unresolved outputs stay until the reset, {MODES[mode]}")
+@cocotb.parametrize(mode=MODES)
+async def unresolved_outputs_stay_until_the_reset(top, mode: str) -> None:
+    cell = Driver(top, f"unresolved outputs stay until the reset, {mode}")
     await cell.power_up()
     await cell.decide(cell.large_v)
     delay, reset = cell.delay(cell.large_v), max(cell.reset_ticks, 1)
@@ -135,7 +135,7 @@ async def unresolved_outputs_stay_until_the_reset(top, mode: int) -> None:
     cell.must_show(before, "in an unresolved decision")
     cell.release()
     coin = int(cell.reference.trace([0.0], [0], first_decision=1).bits[0])
-    shown = (cell.unknown, cell.bit(coin), before)[mode]
+    shown = {"x": cell.unknown, "coin": cell.bit(coin), "hold": before}[mode]
     await cell.settle()
     for when in ("at the end of an unresolved decision", "just before the reset state"):
         cell.must_show(shown, when)

@@ -85,6 +85,7 @@ def test_sentences_name_what_was_checked(small_check):
     assert "every bit is that of the reference: nominal, noise off, coldest" in results
 
 
+@pytest.mark.slow
 def test_the_same_check_gives_the_same_bytes_whatever_the_jobs(small_check, tmp_path):
     folder, _, _ = small_check
     checked(SMALL, tmp_path, jobs=1)
@@ -92,6 +93,7 @@ def test_the_same_check_gives_the_same_bytes_whatever_the_jobs(small_check, tmp_
     assert first.read_bytes() == second.read_bytes()
 
 
+@pytest.mark.slow
 def test_nothing_in_the_shell_changes_the_verdict(small_check, tmp_path):
     """Variables that would skip tests, drop assertions or stop Python, and a foreign folder."""
     trouble = {
@@ -134,6 +136,7 @@ def test_a_text_that_does_not_compile_is_a_verdict_with_the_place(tmp_path):
     assert "latch_minimal.sv:" in bench.message
 
 
+@pytest.mark.slow
 def test_insides_that_cannot_be_read_are_told_and_the_rest_is_checked(tmp_path):
     text = re.sub(r"\bx_cause\b", "hidden", emitted_text(SMALL))
     report = checked(SMALL, tmp_path, text)
@@ -144,6 +147,7 @@ def test_insides_that_cannot_be_read_are_told_and_the_rest_is_checked(tmp_path):
     assert report.disagreement_count == 0
 
 
+@pytest.mark.slow
 def test_a_parameter_that_is_missing_is_told(tmp_path):
     text = re.sub(r"\bMEMORY_ON\b", "REMEMBERS", emitted_text(SMALL))
     report = checked(SMALL, tmp_path, text)
@@ -190,6 +194,7 @@ def test_a_folder_that_cannot_be_made_is_told(tmp_path):
         checked(SMALL, tmp_path / "taken")
 
 
+@pytest.mark.slow
 def test_process_codes_are_those_of_the_model(tmp_path):
     """Codes far apart and a process name with a dot: the module must still be told apart."""
     far = replace(SMALL, processes=(Process(name="nominal", code=1000),))
