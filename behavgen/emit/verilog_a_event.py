@@ -3,8 +3,8 @@
 The clock's crossings of half the supply decide and reset, one timer brings what
 follows them, and ``transition`` filters drive the outputs. Everything is
 Verilog-A as its standard has it (Verilog-AMS LRM 2.4: cross and timer 5.10.3,
-transition 4.5.8, $rdist_normal 9.13.2), without arrays, attributes and excluded
-parameter values, which not every simulator takes.
+transition 4.5.8, $rdist_normal 9.13.2), without arrays and attributes, which not
+every simulator takes.
 """
 
 from __future__ import annotations
@@ -26,7 +26,7 @@ from behavgen.emit.verilog_a_decision import (
 from behavgen.emit.verilog_a_parameters import event_parameters
 from behavgen.emit.verilog_a_ports import outputs, ports, supply
 from behavgen.emit.verilog_a_surfaces import Statements, declaration, surface_statements
-from behavgen.model import Cell, ComparatorModel, Process
+from behavgen.model import Cell, ComparatorModel
 
 __all__ = ["verilog_a_event"]
 
@@ -57,7 +57,10 @@ def verilog_a_event(model: ComparatorModel) -> EmittedFile:
 
 def _text(model: ComparatorModel) -> str:
     cell = model.cell
-    values = surface_statements(dict(decision_surfaces(model)), model.processes)
+    surfaces = dict(decision_surfaces(model))
+    if model.delay is None:
+        surfaces.pop("reset_s", None)  # without delays, resets have none either
+    values = surface_statements(surfaces, model.processes)
     switches = tuple(_switches(cell))
     return render(
         "verilog_a/event.va",
@@ -76,10 +79,9 @@ def _text(model: ComparatorModel) -> str:
         values=values.lines,
         overdrive=overdrive_statement(model, "overdrive_v"),
         has_noise=model.noise is not None,
-        has_reset=model.reset is not None,
+        has_reset="reset_s" in values.variables,
         floor_v=real_literal(model.delay.floor_v) if model.delay else "",
         reset_level=_RESET_LEVELS[cell.in_reset],
-        known_processes=_known_processes(model.processes),
         **_clock_facts(cell),
         **law_facts(model.delay),
     )
@@ -106,12 +108,6 @@ def _switches(cell: Cell) -> Iterator[_Switch]:
     if pins.enable is not None:
         excess = f"V({pins.enable}, {pins.vss}) - 0.5 * {supply(cell)}"
         yield _Switch(flag="is_enabled", excess=excess)
-
-
-def _known_processes(processes: tuple[Process, ...]) -> tuple[int, ...]:
-    """Return the process codes where the parameter's range holds others too."""
-    codes = sorted(process.code for process in processes)
-    return tuple(codes) if codes[-1] - codes[0] >= len(codes) else ()
 
 
 def _declarations(

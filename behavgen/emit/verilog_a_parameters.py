@@ -30,7 +30,7 @@ _IN_CONTINUOUS = {
     "TEMPERATURE_C": _TEMPERATURE,
 }
 _IN_EVENT = {
-    "DELAY_ON": "delays; without, outputs follow at once in an edge",
+    "DELAY_ON": "delays, else outputs follow at once",
     "TEMPERATURE_C": _TEMPERATURE,
     "SEED": "seed of this instance's random numbers; equal seeds give equal numbers",
 }
@@ -60,15 +60,14 @@ def continuous_parameters(model: ComparatorModel) -> tuple[ParameterText, ...]:
     shared = _shared(model, _BOTH, _IN_CONTINUOUS)
     parameters = (*shared, *_mismatch(model), *_supply(model), resistance)
     return tuple(
-        ParameterText(notes=_attributes(one), declaration=_declaration(one, _range(one)))
-        for one in parameters
+        ParameterText(notes=_attributes(one), declaration=_declaration(one)) for one in parameters
     )
 
 
 def event_parameters(model: ComparatorModel) -> tuple[ParameterText, ...]:
     """Return the event-driven module's parameters in order, described by comments.
 
-    It must do without attributes and excluded values, which not every simulator takes.
+    Not every simulator that takes its events takes attributes.
     """
     duration = ModuleParameter(
         name="EDGE_S", kind="real", unit="s", low=1e-15, default=_edge_s(model),
@@ -77,8 +76,7 @@ def event_parameters(model: ComparatorModel) -> tuple[ParameterText, ...]:
     shared = _shared(model, _EVENT, _IN_EVENT)
     parameters = (*map(_in_event, shared), *_mismatch(model), *_supply(model), duration)
     return tuple(
-        ParameterText(notes=_comments(one), declaration=_declaration(one, _span(one)))
-        for one in parameters
+        ParameterText(notes=_comments(one), declaration=_declaration(one)) for one in parameters
     )
 
 
@@ -126,9 +124,10 @@ def _edge_s(model: ComparatorModel) -> float:
     return significant(_EDGE_OVER_TAU * float(tau_s[0]), digits=1)
 
 
-def _declaration(parameter: ModuleParameter, span: str) -> str:
+def _declaration(parameter: ModuleParameter) -> str:
     kind = "real" if parameter.kind == "real" else "integer"
-    return f"parameter {kind} {parameter.name} = {_literal(parameter, parameter.default)}{span};"
+    default = _literal(parameter, parameter.default)
+    return f"parameter {kind} {parameter.name} = {default}{_range(parameter)};"
 
 
 def _attributes(parameter: ModuleParameter) -> tuple[str, ...]:
@@ -157,24 +156,15 @@ def _note(parameter: ModuleParameter) -> str:
 
 
 def _range(parameter: ModuleParameter) -> str:
-    """Return the legal values, those between the codes of a choice excluded."""
-    codes = sorted(code for code, _ in parameter.codes)
-    gaps = sorted(set(range(codes[0], codes[-1])) - set(codes)) if codes else []
-    return _span(parameter) + "".join(f" exclude {gap}" for gap in gaps)
-
-
-def _span(parameter: ModuleParameter) -> str:
-    """Return the range that holds all legal values."""
     if parameter.codes:
-        codes = [code for code, _ in parameter.codes]
-        return f" from [{min(codes)}:{max(codes)}]"
+        codes = sorted(code for code, _ in parameter.codes)
+        gaps = sorted(set(range(codes[0], codes[-1])) - set(codes))
+        return f" from [{codes[0]}:{codes[-1]}]" + "".join(f" exclude {gap}" for gap in gaps)
     if parameter.low is None:
         return ""
-    low, high = (
-        _literal(parameter, value) if value is not None else ""
-        for value in (parameter.low, parameter.high)
-    )
-    return f" from [{low}:{high}]" if high else f" from [{low}:inf)"
+    low = _literal(parameter, parameter.low)
+    high = "inf)" if parameter.high is None else f"{_literal(parameter, parameter.high)}]"
+    return f" from [{low}:{high}"
 
 
 def _literal(parameter: ModuleParameter, value: float) -> str:

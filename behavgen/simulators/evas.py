@@ -1,9 +1,9 @@
 """evas-sim: find it, run event-driven Verilog-A with it, read what it found.
 
 The Python package ``evas-sim`` executes cross, timer and transition, which free
-compilers of Verilog-A refuse. It knows potentials but no currents, takes texts
-that the standard does not, and sees a crossing only where the ``cross`` event
-itself names the pins. It is run as a separate program.
+compilers of Verilog-A refuse. It is no judge of a text: it takes undeclared nodes
+and missing semicolons, and refuses attributes, currents, ``$finish`` and a second
+``exclude``. It sees crossings only where the ``cross`` event itself names the pins.
 """
 
 from __future__ import annotations

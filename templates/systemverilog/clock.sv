@@ -3,7 +3,13 @@
 
   always @({{ pins.clk }}) begin
     case ({clk_level, {{ pins.clk }}})
-      {{ deciding_step }}: decide;
+      {{ deciding_step }}: begin
+        decision_count = decision_count + 64'd1;
+{% if not holds %}
+        if (returning) cancel_return;
+{% endif %}
+        {{ "if (is_on) " if is_on }}decide;
+      end
       {{ resetting_step }}: end_phase;
       2'b00, 2'b11: ;  // it came back within the same instant
       default: {{ "if (is_on) " if is_on }}unclean_step;

@@ -12,47 +12,18 @@
 {% endif %}
 
   task decide;
-{% if not holds %}
-    if (returning) cancel_return;
-{% endif %}
-    decision_count = decision_count + 64'd1;
-{% if is_on %}
-    if (is_on) begin
-      take_input;
-    end
-{% else %}
-    take_input;
-{% endif %}
-  endtask
-
-  task take_input;
+    edge_time = $realtime;
 {% if common_mode.matters %}
     vcm_steps = ({{ pins.inp }} + {{ pins.inn }}) * (0.5 * STEPS_PER_V) + 0.5;
-    if (vcm_steps >= vcm_step && vcm_steps < vcm_step_end) begin
-      weigh;  // the common mode is that of the last decision
-    end else if (vcm_steps - vcm_steps == 0.0) begin
-{% if supply.matters and pins.vdd %}
-      if (vdd_changed) fold_supply;
-{% endif %}
-      fold_common_mode;
-      weigh;
-    end else begin
-      lose_input;  // it is infinite or not a number
-    end
+    if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step_end)) take_conditions;
+    if (vcm_steps < vcm_step_end) begin
 {% else %}
-    if ({{ pins.inp }} - {{ pins.inp }} == 0.0 && {{ pins.inn }} - {{ pins.inn }} == 0.0) begin
 {% if supply.matters and pins.vdd %}
-      if (vdd_changed) fold_supply;
+    if (vdd_changed) fold_supply;
 {% endif %}
-      weigh;
-    end else begin
-      lose_input;  // it is infinite or not a number
-    end
+    if (!({{ pins.inp }} - {{ pins.inp }} == 0.0 && {{ pins.inn }} - {{ pins.inn }} == 0.0)) lose_input;
+    else begin
 {% endif %}
-  endtask
-
-  task weigh;
-    edge_time = $realtime;
     decision_state = DECIDING;
     if (FORCE_UNRESOLVED_EVERY > 0) begin
       if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
@@ -70,8 +41,20 @@
 {% if delay %}
     if (DELAY_ON != 0) find_delay;
 {% endif %}
+    end
   endtask
 
+{% if common_mode.matters %}
+  task take_conditions;
+    if (vcm_steps - vcm_steps == 0.0) begin
+{% if supply.matters and pins.vdd %}
+      if (vdd_changed) fold_supply;
+{% endif %}
+      fold_common_mode;
+    end else lose_input;
+  endtask
+
+{% endif %}
   task lose_input;
     lose_outputs(3);
     input_warnings = input_warnings + 1;

@@ -7,31 +7,25 @@
   endtask
 
   task return_to_reset(input real ticks);
-    if (ticks == 0.0) show_reset;
-    else begin
-      return_ticks = ticks;
-      return_time = $realtime + ticks;
-      returning = 1'b1;
-    end
+    return_ticks = ticks;
+    return_time = $realtime + ticks;
+    returning = 1'b1;
   endtask
 
   always begin : reset_when_due
     wait (returning);
     #(return_ticks);
-    show_reset;
-  end
-
-  task show_reset;
     returning = 1'b0;
 {% for output in outputs %}
     {{ output }} = {{ reset_level }};
 {% endfor %}
     x_cause = 0;
-  endtask
+  end
 
-  // By a decision edge, unless the reset state is due at this very moment
+  // By a decision edge, unless it is due at this very moment
   task cancel_return;
-    if ($realtime >= return_time) show_reset;
-    returning = 1'b0;
-    disable reset_when_due;
+    if ($realtime < return_time) begin
+      returning = 1'b0;
+      disable reset_when_due;
+    end
   endtask
