@@ -2,8 +2,7 @@
 
 This is the one place that knows them. The project file is judged by it, the
 tables are read by it, and a starter project is guessed by it. Adding a quantity
-is one entry in `QUANTITIES`; one that no model uses yet says ``modelled=False``
-and is then named in the summary instead of read.
+is one entry in `QUANTITIES` and a function in `tables.assemble`.
 """
 
 from __future__ import annotations
@@ -113,15 +112,12 @@ class Quantity:
         The first whose required columns a table has is taken.
     ordered : tuple of (str, str)
         Columns of which the first may never exceed the second in a row.
-    modelled : bool
-        False: named in the summary, not read.
     """
 
     name: str
     columns: tuple[Column, ...]
     forms: tuple[Form, ...]
     ordered: tuple[tuple[str, str], ...] = ()
-    modelled: bool = True
 
 
 _VOLTS = (0.0, 100.0)
@@ -250,7 +246,6 @@ QUANTITIES: Mapping[str, Quantity] = {
                     name="memory", required=("reset_time", "memory_shift"), optional=("censored",)
                 ),
             ),
-            modelled=False,
         ),
         Quantity(
             name="reset",
@@ -261,27 +256,25 @@ QUANTITIES: Mapping[str, Quantity] = {
             name="aperture",
             columns=(
                 Column(name="step_time", unit="s", usual=(0.0, 1e-3)),
-                Column(name="step_weight"),
+                Column(name="step_weight", at_least=-0.2, at_most=1.2),
                 _volts("step"),
             ),
             forms=(
                 Form(name="aperture", required=("step_time", "step_weight"), optional=("step",)),
             ),
-            modelled=False,
         ),
         Quantity(
             name="energy",
             columns=(
                 _volts("overdrive"),
                 _volts("vdiff"),
-                Column(name="energy", unit="J", usual=(0.0, 1e-6)),
+                Column(name="energy", unit="J", above=0.0, usual=(1e-18, 1e-6)),
                 _time("cycle_time"),
             ),
             forms=tuple(
                 Form(name=level, required=(level, "energy"), optional=("cycle_time",))
                 for level in ("overdrive", "vdiff")
             ),
-            modelled=False,
         ),
         Quantity(
             name="kickback",
@@ -298,7 +291,6 @@ QUANTITIES: Mapping[str, Quantity] = {
                     optional=("vdiff", "source_resistance"),
                 ),
             ),
-            modelled=False,
         ),
     )
 }

@@ -52,8 +52,8 @@ def test_every_column_can_be_guessed():
         assert guess.guess_column(column, ["something else", name]) == name
 
 
-def test_what_is_modelled_can_be_assembled_and_nothing_else():
-    assert {name for name, quantity in QUANTITIES.items() if quantity.modelled} == set(ASSEMBLERS)
+def test_every_quantity_can_be_assembled_and_nothing_else():
+    assert QUANTITIES.keys() == ASSEMBLERS.keys()
 
 
 def test_messages_on_limits_are_readable():
@@ -61,4 +61,4 @@ def test_messages_on_limits_are_readable():
     assert delay["delay"].allowed == "a number in s above 0, or empty"
     assert delay["decision"].allowed == "0 or 1, or empty"
     assert columns_of("noise")["trials"].allowed == "a whole number at least 1"
-    assert columns_of("aperture")["step_weight"].allowed == "a number"
+    assert columns_of("aperture")["step_weight"].allowed == "a number at least -0.2 and at most 1.2"

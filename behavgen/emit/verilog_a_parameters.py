@@ -36,7 +36,7 @@ _IN_EVENT = {
 }
 """Descriptions where the meaning differs from that in SystemVerilog."""
 
-_WIDTH = 88
+_WIDTH = 92
 _LARGEST_Z = 10.0
 _UNKNOWN_SUPPLY_V = 1.0
 _UNKNOWN_EDGE_S = 1e-12
@@ -136,7 +136,7 @@ def _attributes(parameter: ModuleParameter) -> tuple[str, ...]:
         f'type = "instance", units = "{parameter.unit}"' if parameter.unit else 'type = "instance"'
     )
     description = f"desc = {string_literal(_note(parameter))}"
-    if len(kind) + len(description) <= _WIDTH:
+    if len(kind) + len(description) <= _WIDTH - 4:
         return (f"(* {kind}, {description} *)",)
     return (f"(* {kind},", f"   {description} *)")
 
@@ -144,8 +144,10 @@ def _attributes(parameter: ModuleParameter) -> tuple[str, ...]:
 def _comments(parameter: ModuleParameter) -> tuple[str, ...]:
     note = _note(parameter)
     text = f"{note} ({parameter.unit})" if parameter.unit else note
-    return tuple(textwrap.wrap(comment_text(text), _WIDTH, initial_indent="// ",
-                               subsequent_indent="//   "))  # fmt: skip
+    lines = textwrap.wrap(
+        comment_text(text), _WIDTH, initial_indent="// ", subsequent_indent="//   "
+    )
+    return tuple(lines)
 
 
 def _note(parameter: ModuleParameter) -> str:

@@ -22,7 +22,7 @@ from behavgen.fit.reset import fit_reset
 from behavgen.fit.table_points import table_points
 from behavgen.model import Box, Cell, ComparatorModel, Pins, Process, Range, Source, Surface
 from behavgen.project import CellSettings
-from behavgen.tables.characterisation import Characterisation
+from behavgen.tables.characterisation import Characterisation, DelayTable
 
 __all__ = ["fit"]
 
@@ -78,7 +78,7 @@ def fit(tables: Characterisation, settings: CellSettings | None = None) -> Compa
         kickback=kickback.effect if kickback else None,
     )
     bare = _boxed(bare, settings)
-    energy = fit_energy(tables.energy, bare)
+    energy = fit_energy(tables.energy, _with_stated_offset(bare, tables.delay))
     bare = _boxed(replace(bare, energy=energy.effect if energy else None), settings)
     parts = (offset, mismatch, noise, delay, memory, aperture, energy, kickback)
     return replace(
@@ -168,6 +168,16 @@ def _boxed(model: ComparatorModel, settings: CellSettings) -> ComparatorModel:
         overdrive_v=_union([box.overdrive_v for box in boxes]),
     )
     return replace(model, box=box, cell=_cell(settings, box))
+
+
+def _with_stated_offset(model: ComparatorModel, delay: DelayTable | None) -> ComparatorModel:
+    """Return the model with the trip point that the delay table itself states, if it does.
+
+    Like delays, energies come from single decisions, where no noise blurs the
+    trip point; that of S-curves is known no better than their counts allow.
+    """
+    stated = fit_offset(None, delay, None, None, tuple(p.name for p in model.processes))
+    return replace(model, offset=stated.effect) if stated else model
 
 
 def _surfaces(model: ComparatorModel) -> list[Surface]:

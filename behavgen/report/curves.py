@@ -35,7 +35,8 @@ class Curve:
     error : ndarray, shape (N,)
         Relative error of the model, NaN where it has none: for a delay of the
         delay; for a window of the time at which the model's window is as wide,
-        since window and delay are one curve; for shares of ones the difference.
+        since window and delay are one curve; for a memory or an energy of itself; for
+        shares of ones the difference.
     trials : ndarray of int, shape (N,) or (0,)
     """
 
@@ -50,7 +51,10 @@ class Curve:
 
 
 def curves(model: ComparatorModel, reference: Reference, quantity: str) -> tuple[Curve, ...]:
-    """Return one curve for each condition of ``"delay"``, ``"window"`` or ``"noise"``."""
+    """Return one curve for each condition of a quantity that the reference can draw.
+
+    These are ``"delay"``, ``"window"``, ``"noise"``, ``"memory"`` and ``"energy"``.
+    """
     found = (p for p in model.points if p.quantity == quantity and len(p.x) > 0)
     return tuple(_curve(points, reference) for points in found)
 
@@ -83,12 +87,12 @@ def _curve(points: CurvePoints, reference: Reference) -> Curve:
     x, y = np.array(points.x), np.array(points.y)
     keywords = reference_keywords(points.condition)
     law = _law(points.quantity, reference)
-    line_x = _line_places(x, logarithmic=points.quantity == "delay")
+    line_x = _line_places(x, logarithmic=points.quantity in ("delay", "energy"))
     model_y = law(x, **keywords)
     if points.quantity == "window":
         error = _relative(reference.delay(0.5 * y, **keywords), x)
     else:
-        error = _relative(model_y, y) if points.quantity == "delay" else model_y - y
+        error = model_y - y if points.quantity == "noise" else _relative(model_y, y)
     return Curve(condition=points.condition, x=x, y=y, model_y=model_y, error=error, line_x=line_x,
                  line_y=law(line_x, **keywords),
                  trials=np.array(points.trials, dtype=np.int64))  # fmt: skip
@@ -97,6 +101,7 @@ def _curve(points: CurvePoints, reference: Reference) -> Curve:
 def _law(quantity: str, reference: Reference) -> Callable[..., Floats]:
     laws: dict[str, Callable[..., Floats]] = {
         "delay": reference.delay, "window": reference.window, "noise": reference.probability,
+        "memory": reference.memory_shift, "energy": reference.energy,
     }  # fmt: skip
     return laws[quantity]
 

@@ -53,7 +53,10 @@ def drawn_curves(members: Sequence[Curve]) -> tuple[Curve, ...]:
 
 
 def spotlights(
-    members: Sequence[Curve], middle: Condition, slowness: Sequence[float]
+    members: Sequence[Curve],
+    middle: Condition,
+    slowness: Sequence[float],
+    ends: tuple[str, str] = ("slowest", "fastest"),
 ) -> tuple[Spotlight, ...]:
     """Return the conditions that stand out.
 
@@ -64,6 +67,8 @@ def spotlights(
         Middle of the characterised range.
     slowness : sequence of float
         One number a member; the larger, the slower.
+    ends : tuple of str
+        What to call the largest and the smallest of these.
     """
     if len(members) <= _MOST_IN_FULL:
         return tuple(Spotlight(role="", curve=c) for c in members)
@@ -71,8 +76,8 @@ def spotlights(
     distances = _distances([c.condition for c in members], middle)
     wanted = (
         ("fits worst", max(index, key=lambda i: _badness(members[i]))),
-        ("slowest", max(index, key=lambda i: slowness[i])),
-        ("fastest", min(index, key=lambda i: slowness[i])),
+        (ends[0], max(index, key=lambda i: slowness[i])),
+        (ends[1], min(index, key=lambda i: slowness[i])),
         ("nearest the middle", min(index, key=lambda i: distances[i])),
     )
     chosen: dict[int, list[str]] = {}

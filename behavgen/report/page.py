@@ -14,13 +14,16 @@ from behavgen.bands import Bands
 from behavgen.check.verdict import CheckReport
 from behavgen.model import ComparatorModel
 from behavgen.reference import Reference
+from behavgen.report.aperture_figures import aperture_figure
 from behavgen.report.cautions import cautions, is_invented
 from behavgen.report.conditions import condition_words, middle_condition
 from behavgen.report.curves import Curve, curves
 from behavgen.report.delay_figures import delay_alone, delay_multiples, delay_overview
+from behavgen.report.energy_figures import energy_figure, energy_law_words
 from behavgen.report.figure import Figure, Multiples
 from behavgen.report.findings import Findings, findings
 from behavgen.report.key_numbers import KeyNumber, key_numbers, middle_numbers
+from behavgen.report.memory_figures import memory_figure
 from behavgen.report.noise_figures import (
     observed_sigmas,
     s_curve_multiples,
@@ -31,7 +34,13 @@ from behavgen.report.reset_words import reset_sentence
 from behavgen.report.scope import Effect, effects
 from behavgen.report.summary import fit_sentences
 from behavgen.report.symbol import draw_symbol
-from behavgen.report.tabulation import Table, fit_tables, parameter_table, source_table
+from behavgen.report.tabulation import (
+    Table,
+    fit_tables,
+    kickback_table,
+    parameter_table,
+    source_table,
+)
 from behavgen.report.timing import draw_timing, timing_words
 from behavgen.report.validity import ValidityRow, validity_rows
 from behavgen.report.window_figures import window_figure, window_from_delay
@@ -53,6 +62,9 @@ class _Drawings:
     noise: Figure | None
     noise_small: Multiples | None
     offset: Multiples | None
+    memory: Figure | None
+    aperture: Figure | None
+    energy: Figure | None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -68,6 +80,8 @@ class _Content:
     middle: str
     drawings: _Drawings
     reset: str
+    energy_law: str
+    kickback: Table | None
     fit_tables: tuple[Table, ...]
     parameters: Table | None
     validity: tuple[ValidityRow, ...]
@@ -111,6 +125,8 @@ def _content(model: ComparatorModel, check: CheckReport | None) -> _Content:
         middle=condition_words(middle),
         drawings=_drawings(model, reference),
         reset=reset_sentence(model, reference),
+        energy_law=energy_law_words(model.energy) if model.energy else "",
+        kickback=kickback_table(model),
         fit_tables=fit_tables(model),
         parameters=parameter_table(model.parameters),
         validity=validity_rows(model),
@@ -133,6 +149,9 @@ def _drawings(model: ComparatorModel, reference: Reference) -> _Drawings:
         noise=standardised_s_curves(noise, reference),
         noise_small=s_curve_multiples(noise, reference, Bands(model)),
         offset=offset_multiples(model),
+        memory=memory_figure(model, reference, middle_condition(model)),
+        aperture=aperture_figure(model),
+        energy=energy_figure(model, reference, middle_condition(model)),
     )
 
 

@@ -9,9 +9,6 @@ from behavgen.report.numbers import count_text, volts_text
 
 __all__ = ["Effect", "effects"]
 
-_NEVER_MODELLED = ("memory of the previous decision", "aperture", "energy", "kickback")
-"""What tables may hold but this version of the model does not carry."""
-
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Effect:
@@ -37,16 +34,20 @@ def effects(model: ComparatorModel) -> tuple[Effect, ...]:
          "every decision resolves"),
         ("reset delay", model.reset is not None, "from the reset edge to the reset state",
          "the reset state returns with the edge"),
+        ("memory of the previous decision", model.memory is not None, _memory_words(model),
+         "every decision is alone; MEMORY_ON does nothing"),
+        ("aperture", model.aperture is not None, "the input is sampled at its weight's mean",
+         "the input is sampled at the edge"),
+        ("energy", model.energy is not None, "of every decision, summed up in energy_j",
+         "energy_j stays 0"),
+        ("kickback", model.kickback is not None, "charge out of the inputs, in Verilog-A only",
+         "no charge leaves the inputs"),
         ("supply failure", _has_off_level(model), _off_words(model), "the cell is always on"),
     )  # fmt: skip
-    known = tuple(
+    return tuple(
         Effect(name=name, modelled=there, words=what if there else f"not characterised: {absent}")
         for name, there, what, absent in found
     )
-    never = tuple(
-        Effect(name=name, modelled=False, words="not modelled") for name in _NEVER_MODELLED
-    )
-    return known + never
 
 
 def _has_off_level(model: ComparatorModel) -> bool:
@@ -69,6 +70,16 @@ def _mismatch_words(model: ComparatorModel) -> str:
     parts = "one component" if number == 1 else f"{number} components"
     measured = count_text(model.mismatch.instances)
     return f"Gaussian between instances, {parts}, from {measured} instances"
+
+
+def _memory_words(model: ComparatorModel) -> str:
+    if model.memory is None:
+        return ""
+    number = len(model.memory.terms)
+    parts = {0: "", 1: "one exponential"}.get(number, f"{number} exponentials")
+    floor = "a floor" if model.memory.floor else ""
+    law = " and ".join(part for part in (parts, floor) if part)
+    return f"the trip point moves in its favour: {law} over the reset time"
 
 
 def _delay_words(model: ComparatorModel) -> str:

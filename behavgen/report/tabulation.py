@@ -16,7 +16,15 @@ from behavgen.report.numbers import (
     probability_text,
 )
 
-__all__ = ["Column", "Row", "Table", "fit_tables", "parameter_table", "source_table"]
+__all__ = [
+    "Column",
+    "Row",
+    "Table",
+    "fit_tables",
+    "kickback_table",
+    "parameter_table",
+    "source_table",
+]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -97,9 +105,15 @@ def source_table(sources: Sequence[Source]) -> Table | None:
 
 
 def fit_tables(model: ComparatorModel) -> tuple[Table, ...]:
-    """Return one table a quantity: how well each tabulated condition is met."""
-    quantities = dict.fromkeys(fit.quantity for fit in model.fits)
+    """Return one table a quantity but kickback: how well each tabulated condition is met."""
+    quantities = dict.fromkeys(fit.quantity for fit in model.fits if fit.quantity != "kickback")
     return tuple(_fit_table(q, [f for f in model.fits if f.quantity == q]) for q in quantities)
+
+
+def kickback_table(model: ComparatorModel) -> Table | None:
+    """Return the charges at every tabulated condition; None without any."""
+    fits = [fit for fit in model.fits if fit.quantity == "kickback"]
+    return _fit_table("kickback", fits) if fits else None
 
 
 def _fit_table(quantity: str, fits: Sequence[ConditionFit]) -> Table:

@@ -64,6 +64,15 @@ def _surfaces(model: ComparatorModel) -> list[tuple[str, Surface]]:
         found.append(("mismatch", model.mismatch.components[0]))
     if model.reset:
         found.append(("reset", model.reset.surface))
+    if model.memory:
+        parts = [*(term.tau for term in model.memory.terms), model.memory.floor]
+        found += [("memory", part) for part in parts if part][:1]
+    if model.aperture:
+        found.append(("aperture", model.aperture.centre))
+    if model.energy:
+        found.append(("energy", model.energy.fixed))
+    if model.kickback:
+        found.append(("kickback", model.kickback.common))
     return found
 
 

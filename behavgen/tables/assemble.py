@@ -13,10 +13,14 @@ import numpy as np
 import polars as pl
 
 from behavgen.tables.characterisation import (
+    ApertureTable,
     Conditions,
     DelayTable,
+    EnergyTable,
     Floats,
     Integers,
+    KickbackTable,
+    MemoryTable,
     NoiseTable,
     OffsetStatistics,
     OffsetTable,
@@ -146,12 +150,70 @@ def reset_tables(parts: Sequence[Part]) -> dict[str, ResetTable]:
     }
 
 
+def memory_tables(parts: Sequence[Part]) -> dict[str, MemoryTable]:
+    """Return shifts left by the previous decision; without a word on it none is only a bound."""
+    return {
+        "memory": MemoryTable(
+            conditions=conditions_of(parts),
+            reset_time_s=_numbers(parts, "reset_time"),
+            memory_shift_v=_numbers(parts, "memory_shift"),
+            censored=_numbers(parts, "censored") == 1.0,
+            sources=_sources(parts),
+        )
+    }
+
+
+def aperture_tables(parts: Sequence[Part]) -> dict[str, ApertureTable]:
+    """Return weights after a step."""
+    return {
+        "aperture": ApertureTable(
+            conditions=conditions_of(parts),
+            step_time_s=_numbers(parts, "step_time"),
+            step_weight=_numbers(parts, "step_weight"),
+            step_v=_numbers(parts, "step"),
+            sources=_sources(parts),
+        )
+    }
+
+
+def energy_tables(parts: Sequence[Part]) -> dict[str, EnergyTable]:
+    """Return energies; the fit takes the trip point off where inputs are given."""
+    return {
+        "energy": EnergyTable(
+            conditions=conditions_of(parts),
+            overdrive_v=_numbers(parts, "overdrive"),
+            vdiff_v=_numbers(parts, "vdiff"),
+            energy_j=_numbers(parts, "energy"),
+            cycle_time_s=_numbers(parts, "cycle_time"),
+            sources=_sources(parts),
+        )
+    }
+
+
+def kickback_tables(parts: Sequence[Part]) -> dict[str, KickbackTable]:
+    """Return charges driven out of the inputs."""
+    return {
+        "kickback": KickbackTable(
+            conditions=conditions_of(parts),
+            charge_common_c=_numbers(parts, "charge_common"),
+            charge_differential_c=_numbers(parts, "charge_differential"),
+            vdiff_v=_numbers(parts, "vdiff"),
+            source_resistance_ohm=_numbers(parts, "source_resistance"),
+            sources=_sources(parts),
+        )
+    }
+
+
 ASSEMBLERS: Mapping[str, Callable[[Sequence[Part]], Mapping[str, Any]]] = {
     "offset": offset_tables,
     "noise": noise_tables,
     "delay": delay_tables,
     "window": window_tables,
+    "memory": memory_tables,
     "reset": reset_tables,
+    "aperture": aperture_tables,
+    "energy": energy_tables,
+    "kickback": kickback_tables,
 }
 """Quantity to the function that turns its rows into fields of a characterisation."""
 

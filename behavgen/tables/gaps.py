@@ -33,7 +33,11 @@ _ELSEWHERE = {
     "offset": "mismatch",
     "noise": "sigma",
     "window": "the window",
+    "memory": "the memory",
     "reset": "the reset delay",
+    "aperture": "the aperture",
+    "energy": "the energy",
+    "kickback": "the kickback",
 }
 
 

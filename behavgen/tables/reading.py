@@ -39,11 +39,8 @@ def read_cell(project: Project, cell: CellSettings) -> Characterisation:
     notices: list[str] = []
     parts: dict[str, list[Part]] = {}
     for settings in cell.tables:
-        if QUANTITIES[settings.quantity].modelled:
-            read = _read_entry(project, cell, settings, notices, faults)
-            parts.setdefault(settings.quantity, []).extend(read)
-        else:
-            notices.append(f"{settings.quantity} is not modelled yet: {settings.file} is ignored")
+        read = _read_entry(project, cell, settings, notices, faults)
+        parts.setdefault(settings.quantity, []).extend(read)
     for quantity in parts.values():
         for form in {part.form.name: part.form for part in quantity}.values():
             if not form.counted:

@@ -5,10 +5,14 @@ from __future__ import annotations
 import numpy as np
 
 from behavgen.tables.characterisation import (
+    ApertureTable,
     Characterisation,
     DelayTable,
+    EnergyTable,
     Floats,
     Integers,
+    KickbackTable,
+    MemoryTable,
     NoiseTable,
     OffsetStatistics,
     OffsetTable,
@@ -44,10 +48,24 @@ def described_quantities(tables: Characterisation) -> dict[str, Described]:
         described["window"] = _of_window(tables.window)
     if tables.reset is not None:
         described["reset"] = _of_reset(tables.reset)
+    described |= _memory_and_charges(tables)
     return {
         name: (conditions, (*facts, *_not_given(conditions)))
         for name, (conditions, facts) in described.items()
     }
+
+
+def _memory_and_charges(tables: Characterisation) -> dict[str, Described]:
+    described: dict[str, Described] = {}
+    if tables.memory is not None:
+        described["memory"] = _of_memory(tables.memory)
+    if tables.aperture is not None:
+        described["aperture"] = _of_aperture(tables.aperture)
+    if tables.energy is not None:
+        described["energy"] = _of_energy(tables.energy)
+    if tables.kickback is not None:
+        described["kickback"] = _of_kickback(tables.kickback)
+    return described
 
 
 def _of_offset(instances: OffsetTable | None, statistics: OffsetStatistics | None) -> Described:
@@ -114,6 +132,41 @@ def _of_window(table: WindowTable) -> Described:
 def _of_reset(table: ResetTable) -> Described:
     conditions = condition_set(table.conditions)
     return conditions, (_conditions(conditions), _range(table.reset_delay_s, "s"))
+
+
+def _of_memory(table: MemoryTable) -> Described:
+    conditions = condition_set(table.conditions)
+    facts = [_conditions(conditions), _range(table.reset_time_s, "s")]
+    facts.append(_range(table.memory_shift_v, "V"))
+    if bounds := int(table.censored.sum()):
+        facts.append(f"{bounds} at least so much")
+    return conditions, tuple(facts)
+
+
+def _of_aperture(table: ApertureTable) -> Described:
+    conditions = condition_set(table.conditions)
+    facts = [_conditions(conditions), _range(table.step_time_s, "s")]
+    if np.isfinite(table.step_v).any():
+        facts.append(f"steps of {_range(table.step_v, 'V')}")
+    return conditions, tuple(facts)
+
+
+def _of_energy(table: EnergyTable) -> Described:
+    conditions = condition_set(table.conditions)
+    levels_v = np.abs(np.concatenate([table.overdrive_v, table.vdiff_v]))
+    facts = [_conditions(conditions), _range(levels_v, "V"), _range(table.energy_j, "J")]
+    if np.isfinite(table.cycle_time_s).any():
+        facts.append(f"clock period {_range(table.cycle_time_s, 's')}")
+    return conditions, tuple(facts)
+
+
+def _of_kickback(table: KickbackTable) -> Described:
+    conditions = condition_set(table.conditions)
+    facts = [_conditions(conditions), f"common {_range(table.charge_common_c, 'C')}"]
+    facts.append(f"differential {_range(table.charge_differential_c, 'C')}")
+    if np.isfinite(table.source_resistance_ohm).any():
+        facts.append(f"sources of {_range(table.source_resistance_ohm, 'ohm')}")
+    return conditions, tuple(facts)
 
 
 def _conditions(conditions: ConditionSet) -> str:

@@ -15,14 +15,24 @@
     edge_time = $realtime;
 {% if common_mode.matters %}
     vcm_steps = ({{ pins.inp }} + {{ pins.inn }}) * (0.5 * STEPS_PER_V) + 0.5;
-    if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step_end)) take_conditions;
-    if (vcm_steps < vcm_step_end) begin
+    if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step_end)) begin
+      if (vcm_steps - vcm_steps != 0.0) begin  // it is infinite or not a number
+        lose_input;
+        disable decide;
+      end
+{% if supply.matters and pins.vdd %}
+      if (vdd_changed) fold_supply;
+{% endif %}
+      fold_common_mode;
+    end
 {% else %}
+    if (({{ pins.inp }} - {{ pins.inp }}) + ({{ pins.inn }} - {{ pins.inn }}) != 0.0) begin  // infinite or not a number
+      lose_input;
+      disable decide;
+    end
 {% if supply.matters and pins.vdd %}
     if (vdd_changed) fold_supply;
 {% endif %}
-    if (!({{ pins.inp }} - {{ pins.inp }} == 0.0 && {{ pins.inn }} - {{ pins.inn }} == 0.0)) lose_input;
-    else begin
 {% endif %}
     decision_state = DECIDING;
     if (FORCE_UNRESOLVED_EVERY > 0) begin
@@ -41,20 +51,8 @@
 {% if delay %}
     if (DELAY_ON != 0) find_delay;
 {% endif %}
-    end
   endtask
 
-{% if common_mode.matters %}
-  task take_conditions;
-    if (vcm_steps - vcm_steps == 0.0) begin
-{% if supply.matters and pins.vdd %}
-      if (vdd_changed) fold_supply;
-{% endif %}
-      fold_common_mode;
-    end else lose_input;
-  endtask
-
-{% endif %}
   task lose_input;
     lose_outputs(3);
     input_warnings = input_warnings + 1;

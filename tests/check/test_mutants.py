@@ -68,8 +68,14 @@ COEFFICIENTS = {
 }
 """Effect by effect; the terms are those of the example's exponents."""
 
+
+def swapped_edge(found):
+    """Return a case of the clock's steps with the other direction."""
+    return f"2'b{found[1][::-1]}: {found[2]}"
+
+
 EDITS = {
-    "a bit at exactly zero": (r"leaning = overdrive_v > 0\.0", "leaning = overdrive_v >= 0.0"),
+    "a bit at exactly zero": (r"overdrive_v > 0\.0", "overdrive_v >= 0.0"),
     "reach of the noise": (r"CERTAIN_SIGMAS = 8\.3", "CERTAIN_SIGMAS = 8.2"),
     "a factor of the mixing function": ("94d0_49bb_1331_11eb", "94d0_49bb_1331_11ed"),
     "the golden step": ("9e37_79b9_7f4a_7c15", "9e37_79b9_7f4a_7c17"),
@@ -77,19 +83,10 @@ EDITS = {
     "a flank constant, tenth digit": (r"2\.27238449892691845833e-2", "2.27238449992691845833e-2"),
     "a tail constant, ninth digit": (r"2\.65321895265761230930e-2", "2.65321896265761230930e-2"),
     "a constant of the path's hash": ("0100_0000_01b3", "0100_0000_01b5"),
-    "deciding edge": (
-        r"=== 1'b1 && clk_level === 1'b0\) decide",
-        "=== 1'b0 && clk_level === 1'b1) decide",
-    ),
-    "deciding on a step from X": (
-        r"&& clk_level === 1'b0\) decide",
-        "&& clk_level !== 1'b1) decide",
-    ),
-    "reset state": (r"(task show_reset;[^;]*;\s*outp = )1'b1", r"\g<1>1'b0"),
-    "rounding of the delay": (
-        r"longint'\(delay_s \* TICKS_PER_S\)",
-        "longint'($floor(delay_s * TICKS_PER_S))",
-    ),
+    "deciding edge": (r"2'b(01|10): (begin|end_phase)", swapped_edge),
+    "deciding on a step from X": (r"2'b01: begin", "2'b01, 2'bx1: begin"),
+    "reset state": (r"(returning = 1'b0;\s*outp = )1'b1", r"\g<1>1'b0"),
+    "rounding of the delay": (r"#\(delay_s \* TICKS_PER_S\)", "#($floor(delay_s * TICKS_PER_S))"),
     "a phase that is a tick too short": (
         r"\$realtime >= edge_time",
         "$realtime + 1.0 >= edge_time",

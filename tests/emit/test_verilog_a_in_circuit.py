@@ -8,15 +8,10 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from behavgen.model import DelayEffect
 from behavgen.reference import Reference
+from tests.emit.delay_laws import LAWS, TAU_S, model_with
 from tests.emit.verilog_a_circuit import Circuit, Stimulus, crossing, separation, steps, value
-from tests.example_models import (
-    constant_surface,
-    full_model,
-    minimal_model,
-    renamed_pins_model,
-)
+from tests.example_models import full_model, minimal_model, renamed_pins_model
 
 RESET_STATES = {"high": (1.2, 1.2), "low": (0.0, 0.0), "mid": (0.6, 0.6), "hold": (0.6, 0.6)}
 QUIET = {"noise_on": 0}
@@ -93,32 +88,14 @@ def test_the_temperature_parameter_wins_over_the_circuits(full, quiet_reference)
     assert delay_and_bit(full, stimulus)[0] == pytest.approx(expected, rel=0.002)
 
 
-LAWS = {
-    "two nodes": ((1e-3, 0.3), (250e-12, 60e-12)),
-    "three nodes, steep at their end": ((1e-3, 0.1, 0.3), (250e-12, 100e-12, 40e-12)),
-    "flat between two nodes": ((1e-4, 1e-3, 1e-2, 0.3), (250e-12, 160e-12, 159e-12, 60e-12)),
-    "eleven nodes": (
-        tuple(np.geomspace(1e-4, 0.3, 11).tolist()),
-        tuple(np.linspace(300e-12, 50e-12, 11).tolist()),
-    ),
-    "shorter than tau": ((1e-3, 0.3), (80e-12, 10e-12)),
-}  # fmt: skip
-
-
 @pytest.mark.parametrize("law", LAWS)
 def test_any_falling_law_is_carried(law, tmp_path):
-    overdrives, delays = LAWS[law]
-    effect = DelayEffect(
-        tau=constant_surface("s", "log", float(np.log(20e-12)), "nominal"),
-        node_overdrive_v=overdrives,
-        nodes=tuple(constant_surface("s", "log", float(np.log(d)), "nominal") for d in delays),
-    )
-    model = replace(minimal_model(), delay=effect)
+    model = model_with(law)
     circuit, reference = Circuit.of(model, tmp_path), Reference(model)
     for overdrive in (1e-6, 2e-4, 3e-3, 0.04, 0.2, 0.3, 0.6):
         delay, _ = delay_and_bit(circuit, Stimulus(vdiff=overdrive))
         expected = float(reference.delay(overdrive))
-        assert delay == pytest.approx(expected, abs=0.01 * 20e-12), overdrive
+        assert delay == pytest.approx(expected, abs=0.01 * TAU_S), overdrive
 
 
 @pytest.mark.parametrize("options", ['tran_method="euler"', 'tran_method="gear2"', "reltol=1e-2"])

@@ -32,10 +32,10 @@ def line_places(svg: ET.Element, style: str) -> np.ndarray:
 
 
 def tick_places(svg: ET.Element, axis: str) -> dict[str, float]:
-    """Return where the labelled ticks of the x or y axis stand, in the plot's own units."""
+    """Return where the labelled ticks of the uppermost plot's x or y axis stand, in its units."""
     plot = next(e for e in svg.iter("svg") if e is not svg)
     origin = float(plot.get(axis) or 0.0) - (4.0 if axis == "y" else 0.0)
-    (group,) = [e for e in svg.iter("g") if e.get("class") == axis]
+    group = next(e for e in svg.iter("g") if e.get("class") == axis)
     return {
         e.text or "": float(e.get(axis) or 0.0) - origin - (8.0 if axis == "y" else 0.0)
         for e in group

@@ -9,9 +9,9 @@ from functools import cache
 import pytest
 
 from behavgen.check.verdict import BenchResult, Stratum
-from behavgen.model import Process, Source
+from behavgen.model import ConditionFit, Estimate, Parameter, Process, Source
 from behavgen.report.page import report_page
-from tests.example_models import full_model, minimal_model, renamed_pins_model
+from tests.example_models import complete_model, full_model, minimal_model, renamed_pins_model
 from tests.report.reading import read_page, table_rows
 from tests.report.sample_cells import (
     WORST_AT,
@@ -21,8 +21,8 @@ from tests.report.sample_cells import (
 )
 
 NBSP = "\N{NO-BREAK SPACE}"
-SECTIONS = ["verdict", "cell", "delay", "window", "noise", "offset", "fits", "parameters",
-            "validity", "sources", "check", "scope", "cautions"]  # fmt: skip
+SECTIONS = ["verdict", "cell", "delay", "window", "noise", "offset", "memory", "energy", "fits",
+            "parameters", "validity", "sources", "check", "scope", "cautions"]  # fmt: skip
 
 
 def without_everything():
@@ -32,6 +32,7 @@ def without_everything():
 
 MODELS = {
     "full": full_model,
+    "complete": complete_model,
     "minimal": minimal_model,
     "renamed": renamed_pins_model,
     "holding": lambda: renamed_pins_model(in_reset="hold", when_unresolved="coin"),
@@ -184,6 +185,31 @@ def test_absent_effects_are_named_not_drawn():
     for name in ("offset", "mismatch", "noise", "reset delay", "memory of the previous decision",
                  "aperture", "energy", "kickback"):  # fmt: skip
         assert name in absent.text
+
+
+def test_what_was_characterised_besides_is_drawn_and_in_scope():
+    page = read_page(report_page(complete_model(), None))
+    assert len(page.one("memory").of_class("chart")) == 2
+    assert len(page.one("energy").of_class("chart")) == 1
+    modelled, _ = page.one("scope").of_class("scope")[0].all("ul")
+    for words in ("memory of the previous decision : the trip point moves in its favour: "
+                  "2 exponentials and a floor", "aperture", "energy", "kickback"):  # fmt: skip
+        assert words in modelled.text
+    rows = table_rows(page.one("validity").all("table")[0])
+    assert {"memory", "aperture", "energy", "kickback"} <= {row["quantity"] for row in rows}
+    assert f"clock period of 2{NBSP}ns" in page.one("energy").text
+
+
+def test_kickback_is_a_table_of_its_own():
+    model = complete_model()
+    charge = Parameter(name="kickback_common_c", unit="C", estimate=Estimate(value=2.1e-15))
+    fit = ConditionFit(quantity="kickback", condition=model.points[-1].condition, rows=2,
+                       parameters=(charge,))  # fmt: skip
+    page = read_page(report_page(replace(model, fits=(*model.fits, fit)), None))
+    (table,) = page.one("energy").all("table")
+    (row,) = table_rows(table)
+    assert row == {"rows": "2", "kickback_common_c": f"2.1{NBSP}fC"}
+    assert "Kickback" not in page.one("fits").text
 
 
 def test_a_model_of_nothing_still_has_a_page():

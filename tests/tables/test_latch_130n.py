@@ -7,7 +7,6 @@ import hashlib
 from pathlib import Path
 
 import numpy as np
-import pytest
 
 FOLDER = Path(__file__).parents[1] / "data" / "latch_130n"
 
@@ -66,6 +65,35 @@ def test_processes_and_sources(latch_130n):
         assert source.sha256 == hashlib.sha256((FOLDER / source.file).read_bytes()).hexdigest()
 
 
-@pytest.mark.parametrize("quantity", ["memory", "aperture", "energy", "kickback"])
-def test_what_is_not_modelled_yet_is_a_notice(latch_130n, quantity):
-    assert f"{quantity} is not modelled yet: {quantity}.csv is ignored" in latch_130n.notices
+def test_memory(latch_130n):
+    memory = latch_130n.memory
+    assert_conditions(memory.conditions, "memory.csv")
+    np.testing.assert_array_equal(memory.reset_time_s, numbers("memory.csv", "t_reset_s"))
+    np.testing.assert_array_equal(memory.memory_shift_v, numbers("memory.csv", "shift_V"))
+    np.testing.assert_array_equal(memory.censored, numbers("memory.csv", "censored") == 1.0)
+
+
+def test_aperture(latch_130n):
+    aperture = latch_130n.aperture
+    assert_conditions(aperture.conditions, "aperture.csv")
+    times = numbers("aperture.csv", "t_step_rel_clk_s")
+    np.testing.assert_array_equal(aperture.step_time_s, times)
+    np.testing.assert_array_equal(aperture.step_weight, numbers("aperture.csv", "weight_after"))
+    np.testing.assert_array_equal(aperture.step_v, numbers("aperture.csv", "step_V"))
+
+
+def test_energy(latch_130n):
+    energy = latch_130n.energy
+    assert_conditions(energy.conditions, "energy.csv")
+    np.testing.assert_array_equal(energy.vdiff_v, numbers("energy.csv", "vid_V"))
+    np.testing.assert_array_equal(energy.energy_j, numbers("energy.csv", "energy_vdd_J"))
+    assert np.isnan(energy.overdrive_v).all() and np.isnan(energy.cycle_time_s).all()
+
+
+def test_kickback(latch_130n):
+    kickback = latch_130n.kickback
+    assert_conditions(kickback.conditions, "kickback.csv")
+    common, differential = kickback.charge_common_c, kickback.charge_differential_c
+    np.testing.assert_array_equal(common, numbers("kickback.csv", "q_cm_net_C"))
+    np.testing.assert_array_equal(differential, numbers("kickback.csv", "q_diff_net_C"))
+    np.testing.assert_array_equal(kickback.source_resistance_ohm, numbers("kickback.csv", "rs_ohm"))

@@ -153,15 +153,64 @@ def test_a_column_may_be_fixed_for_the_whole_file(read):
     assert noise.conditions.vdd_v.tolist() == [1.8, 1.8]
 
 
-@pytest.mark.parametrize("quantity", ["memory", "aperture", "energy", "kickback"])
-def test_quantities_that_are_not_modelled_yet_are_said_to_be_ignored(read, quantity):
-    tables = read(
-        {"t.csv": "reset_delay\n25p\n"},
-        table("reset"),
-        f'quantity = "{quantity}"\nfile = "not_even_there.csv"',
-    )
-    assert tables.reset is not None
-    assert tables.notices == (f"{quantity} is not modelled yet: not_even_there.csv is ignored",)
+def test_memory_with_and_without_bounds(read):
+    text = "reset_time_ps,memory_shift_mV,censored\n60,100,1\n150,30,0\n"
+    memory = read({"t.csv": text}, table("memory")).memory
+    assert memory.reset_time_s.tolist() == [60e-12, 150e-12]
+    assert memory.memory_shift_v.tolist() == [0.1, 0.03]
+    assert memory.censored.tolist() == [True, False]
+    plain = "reset_time,memory_shift\n60p,-1u\n"
+    assert read({"t.csv": plain}, table("memory")).memory.censored.tolist() == [False]
+
+
+def test_aperture(read):
+    text = "step_time_ps,step_weight,vcm\n-80,1.001,0.9\n40,0.5,0.9\n170,-0.0008,0.9\n"
+    aperture = read({"t.csv": text}, table("aperture", "at = { step = '20m' }")).aperture
+    assert aperture.step_time_s.tolist() == [-80e-12, 40e-12, 170e-12]
+    assert aperture.step_weight.tolist() == [1.001, 0.5, -0.0008]
+    assert aperture.step_v.tolist() == [0.02] * 3
+    assert aperture.conditions.vcm_v.tolist() == [0.9] * 3
+
+
+def test_energy_by_overdrive_or_by_input(read):
+    files = {
+        "t.csv": "overdrive_mV,energy_fJ\n1,120\n",
+        "u.csv": "vdiff,energy,cycle_time\n-2m,95f,2n\n",
+    }
+    energy = read(files, table("energy"), 'quantity = "energy"\nfile = "u.csv"').energy
+    np.testing.assert_array_equal(energy.overdrive_v, [1e-3, np.nan])
+    np.testing.assert_array_equal(energy.vdiff_v, [np.nan, -2e-3])
+    assert energy.energy_j == pytest.approx([120e-15, 95e-15])
+    np.testing.assert_array_equal(energy.cycle_time_s, [np.nan, 2e-9])
+
+
+def test_kickback_in_coulombs(read):
+    text = "charge_common_fC,charge_differential_C,vdiff,source_resistance\n-3.6,-2e-16,0.1,1k\n"
+    kickback = read({"t.csv": text}, table("kickback")).kickback
+    assert kickback.charge_common_c == pytest.approx([-3.6e-15])
+    assert kickback.charge_differential_c.tolist() == [-2e-16]
+    assert kickback.vdiff_v.tolist() == [0.1]
+    assert kickback.source_resistance_ohm.tolist() == [1000.0]
+
+
+@pytest.mark.parametrize(
+    ("quantity", "text", "what"),
+    [
+        ("memory", "reset_time,memory_shift\n0,1m\n", "above 0"),
+        ("memory", "reset_time,memory_shift,censored\n1n,1m,2\n", "0 or 1"),
+        ("aperture", "step_time,step_weight\n1p,1.3\n", "at most 1.2"),
+        ("aperture", "step_time,step_weight\n1p,-0.3\n", "at least -0.2"),
+        ("energy", "overdrive,energy\n1m,0\n", "above 0"),
+        (
+            "kickback",
+            "charge_common,charge_differential,source_resistance\n1f,0,-1\n",
+            "at least 0",
+        ),
+    ],
+)
+def test_what_cannot_be_is_refused(faults, quantity, text, what):
+    (fault,) = faults({"t.csv": text}, table(quantity))
+    assert what in fault
 
 
 def test_absent_tables_are_absent(read):

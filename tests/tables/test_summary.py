@@ -24,7 +24,18 @@ def test_the_characterised_latch(latch_130n):
     assert f"{offset} {several} process not given: holds for all" in lines
     window = "window window.csv 28 rows 4 conditions 120 ps..520 ps 40.1 nV..88.6 mV"
     assert f"{window} process not given: holds for all" in lines
-    assert "absent memory reset aperture energy kickback" in lines
+    memory = (
+        "memory memory.csv 7 rows 2 conditions 60 ps..250 ps 1.96 mV..100 mV 2 at least so much"
+    )
+    assert f"{memory} process not given: holds for all" in lines
+    aperture = "aperture aperture.csv 84 rows 3 conditions -80 ps..170 ps steps of 20 mV..100 mV"
+    assert f"{aperture} process not given: holds for all" in lines
+    energy = "energy energy.csv 40 rows 10 conditions 10 uV..200 mV 78.4 fJ..221 fJ"
+    assert f"{energy} process not given: holds for all" in lines
+    kickback = "kickback kickback.csv 12 rows 1 condition common -3.63 fC..-3.59 fC"
+    more = "differential -268 aC..7.67 aC sources of 100 ohm..10 kohm"
+    assert f"{kickback} {more} process not given: holds for all" in lines
+    assert "absent reset" in lines
     box = "box vdd 1.62 V..1.98 V temp -40 degC..125 degC vcm 800 mV..1.2 V process tt ff ss"
     assert box in lines
     gap = "look at noise covers 5 of 29 conditions; elsewhere sigma is interpolated or clamped"
@@ -35,7 +46,7 @@ def test_columns_are_aligned_and_plain_ascii(latch_130n):
     lines = summary_lines(summarise(latch_130n))
     assert all(line.isascii() and line == line.rstrip() for line in lines)
     rows = [line.index(" rows") for line in lines if " rows " in line]
-    assert len(rows) == 4 and len(set(rows)) == 1
+    assert len(rows) == 8 and len(set(rows)) == 1
 
 
 DELAY = 'quantity = "delay"\nfile = "d.csv"\n'
