@@ -214,8 +214,8 @@ class Reference:
         phase_ticks : array_like of int, shape (N,)
             Length of each decision phase in units of the time precision.
         reset_phase_ticks : array_like of int, shape (N,), optional
-            Length of the reset before each decision; negative: no decision came
-            before. None: all resets are too long for any memory.
+            Length of the reset before each decision; negative: there is nothing to
+            remember. None: no decision remembers the one before.
         sign_before : int
             1, -1 or 0: the decision before the first was a one, a zero or unresolved.
         """

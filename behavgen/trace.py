@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
-from typing import Any, NamedTuple
+from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -29,10 +29,6 @@ class Decisions(NamedTuple):
     bits: Integers
     ready_times_s: Floats
     unresolved: npt.NDArray[np.bool_]
-
-
-def _not_asked() -> npt.NDArray[Any]:
-    return np.empty(0)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -66,6 +62,6 @@ class Trace:
     unresolved: npt.NDArray[np.bool_]
     bits: Integers
     reset_ticks: Integers
-    aperture_ticks: Integers = field(default_factory=_not_asked)
-    memory_v: Floats = field(default_factory=_not_asked)
-    energy_j: Floats = field(default_factory=_not_asked)
+    aperture_ticks: Integers
+    memory_v: Floats
+    energy_j: Floats

@@ -110,8 +110,26 @@ def _effects(model: ComparatorModel) -> Iterator[tuple[str, str]]:
         yield "mismatch", f"spread of {model.mismatch.instances} instances"
     if model.reset is not None:
         yield "reset", _surface_text(model.reset.surface)
+    yield from _memory_and_charges(model)
     if _absent(model):
         yield "absent", f"{' '.join(_absent(model))} (not characterised, so without effect)"
+
+
+def _memory_and_charges(model: ComparatorModel) -> Iterator[tuple[str, str]]:
+    if model.memory is not None:
+        terms, floor = len(model.memory.terms), model.memory.floor is not None
+        number = "an exponential" if terms == 1 else f"{terms} exponentials"
+        law = " and ".join([number] * (terms > 0) + ["a floor"] * floor)
+        yield "memory", f"{law} over the reset time, at most {format_si(model.memory.cap_v, 'V')}"
+        yield from _quality(model, "memory")
+    if model.aperture is not None:
+        yield "aperture", _surface_text(model.aperture.centre)
+    if model.energy is not None:
+        growth = {"delay": "more with the delay, ", "overdrive": "more at small overdrives, "}
+        yield "energy", growth.get(model.energy.law, "") + _surface_text(model.energy.fixed)
+        yield from _quality(model, "energy")
+    if model.kickback is not None:
+        yield "kickback", _surface_text(model.kickback.common)
 
 
 def _absent(model: ComparatorModel) -> list[str]:

@@ -5,11 +5,12 @@ from __future__ import annotations
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.emit.systemverilog import systemverilog
 from behavgen.emit.verilog_a import verilog_a
+from behavgen.emit.verilog_a_event import verilog_a_event
 from behavgen.model import ComparatorModel
 
 __all__ = ["emit"]
 
 
 def emit(model: ComparatorModel) -> tuple[EmittedFile, ...]:
-    """Return the SystemVerilog and the Verilog-A file of a cell; the same model, the same bytes."""
-    return systemverilog(model), verilog_a(model)
+    """Return the SystemVerilog and the Verilog-A files of a cell; the same model, the same bytes."""
+    return systemverilog(model), verilog_a(model), verilog_a_event(model)

@@ -28,7 +28,7 @@ __all__ = [
     "surfaces_of",
 ]
 
-_UNDO_CURVE = ("segment_known = '0;",)
+_UNDO_CURVE = ("segment_known = '0;", "tail_known = 1'b0;")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -149,13 +149,20 @@ def _mismatch(components: tuple[Surface, ...], folder: SurfaceFolder) -> Quantit
 
 def _noise(surface: Surface, folder: SurfaceFolder) -> QuantityText:
     sigma = folder("noise", surface, target="noise_ln")
-    return QuantityText(
-        comment="Noise: ln of its sigma in V",
-        folded=(sigma,),
-        finish=(
+    if sigma.changes_with:
+        finish = (
+            "noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;",
+            "sigma_known = 1'b0;",
+        )
+    else:
+        finish = (
             f"sigma_v = {_exponential('exact_exp', sigma.value)};",
             "noise_reach_v = noise_on != 0 ? CERTAIN_SIGMAS * sigma_v : 0.0;",
-        ),
+        )
+    return QuantityText(
+        comment="Noise: ln of its sigma in V, and overdrives from which it need not be known",
+        folded=(sigma,),
+        finish=finish,
         finished_by=sigma.changes_with,
     )
 
@@ -202,7 +209,7 @@ def _curve(effect: DelayEffect, folder: SurfaceFolder) -> tuple[QuantityText, ..
             folded=tuple(nodes), finish=(), finished_by="",
         ),
         QuantityText(
-            comment="Delay: its segments are to be evaluated anew",
+            comment="Delay: the curve is to be evaluated anew",
             folded=(), finish=_UNDO_CURVE, finished_by=undone,
         ),
     ]  # fmt: skip

@@ -120,12 +120,14 @@ def _delay_facts(delay: DelayEffect | None, folder: SurfaceFolder) -> dict[str, 
     """Return the law: ``"curve"``, ``"logarithm"`` or "" and what it needs."""
     if delay is None:
         return {"delay": ""}
-    nodes = [{"number": k, "volts": real_literal(v)} for k, v in enumerate(delay.node_overdrive_v)]
+    nodes = [
+        {"number": k, "next": k + 1, "volts": real_literal(v)}
+        for k, v in enumerate(delay.node_overdrive_v)
+    ]
     law = "curve" if len(nodes) > 1 else "logarithm"
     curve = delay_curve(delay, folder) if law == "curve" else None
     return {
         "delay": law, "nodes": nodes, "curve": curve, "floor_v": real_literal(delay.floor_v),
-        "segment_bits": len(nodes).bit_length(),
     }  # fmt: skip
 
 
@@ -150,7 +152,7 @@ def _condition_facts(
         "declarations": declarations(points, values, found),
         "processes": process_branches(model.processes, values),
         "known_processes": comment_text(", ".join(f"{p.code} {p.name}" for p in model.processes)),
-        "exact_exp": any("exact_exp" in line for one in found for line in one.finish),
+        "exact_exp": any("sigma_known" in line for one in found for line in one.finish),
     }
 
 

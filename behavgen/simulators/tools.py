@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 from behavgen.errors import ToolError
-from behavgen.simulators import icarus, openvaf, slang, vacask, verilator
+from behavgen.simulators import evas, icarus, openvaf, slang, vacask, verilator
 
 __all__ = ["Tool", "list_tools"]
 
@@ -59,6 +59,8 @@ def list_tools() -> tuple[Tool, ...]:
               openvaf.HOW_TO_GET),
         _tool("VACASK", "simulates compiled Verilog-A", lambda: vacask.find_vacask().version,
               openvaf.HOW_TO_GET),
+        _tool("EVAS", "executes event-driven Verilog-A", lambda: evas.find_evas().version,
+              evas.HOW_TO_GET),
     )  # fmt: skip
 
 

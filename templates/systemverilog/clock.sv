@@ -10,7 +10,7 @@
 {% endif %}
         {{ "if (is_on) " if is_on }}decide;
       end
-      {{ resetting_step }}: end_phase;
+      {{ resetting_step }}: {{ "if (is_on) " if is_on }}end_phase;
       2'b00, 2'b11: ;  // it came back within the same instant
       default: {{ "if (is_on) " if is_on }}unclean_step;
     endcase

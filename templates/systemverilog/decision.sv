@@ -43,16 +43,32 @@
     magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
 {% endif %}
 {% if noise %}
-    if (magnitude_v < noise_reach_v) begin
-      overdrive_v = overdrive_v + sigma_v * standard_normal(random_bits(noise_key, decision_count));
-      magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
-    end
+    if (magnitude_v < noise_reach_v) add_noise;
 {% endif %}
 {% if delay %}
     if (DELAY_ON != 0) find_delay;
 {% endif %}
   endtask
 
+{% if noise %}
+  task add_noise;
+{% if exact_exp %}
+    if (!sigma_known) begin
+      sigma_known = 1'b1;
+      sigma_v = exact_exp(noise_ln);
+      noise_reach_v = CERTAIN_SIGMAS * sigma_v;
+    end
+    if (magnitude_v < noise_reach_v) begin
+      overdrive_v = overdrive_v + sigma_v * standard_normal(random_bits(noise_key, decision_count));
+      magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+    end
+{% else %}
+    overdrive_v = overdrive_v + sigma_v * standard_normal(random_bits(noise_key, decision_count));
+    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+{% endif %}
+  endtask
+
+{% endif %}
   task lose_input;
     lose_outputs(3);
     input_warnings = input_warnings + 1;

@@ -5,12 +5,13 @@
 // Waivers. Of parameters: those of effects that are not characterised are there all the same, so
 // that every cell has the same. Of signals: some are there to be read from outside, and some
 // algorithms use a part of a word. Of delays: each is one time step at least. Of nets: the supply
-// both switches the cell and is an operand.
+// both switches the cell and is an operand. Of first values: there is no pin that could give them.
 // verilator lint_save
 // verilator lint_off UNUSEDPARAM
 // verilator lint_off UNUSEDSIGNAL
 // verilator lint_off ZERODLY
 // verilator lint_off SYNCASYNCNET
+// verilator lint_off PROCASSINIT
 `ifdef __slang__
 `pragma diagnostic push
 `pragma diagnostic ignore="-Wunused"

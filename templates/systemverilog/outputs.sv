@@ -21,25 +21,37 @@
 
   // At a clean step of the clock back to its reset level
   task end_phase;
-    if (decision_state == DECIDING) begin
-      if (DELAY_ON == 0 || $realtime >= edge_time + $floor(delay_s * TICKS_PER_S + 0.5)) begin
-        show_decision;  // it is ready at this very moment
-        disable show_when_ready;
-      end
-    end
 {% if holds %}
-    if (decision_state == DECIDING || decision_state == FORCED) leave_unresolved;
+    if (decision_state != DECIDED) end_undecided;
 {% else %}
-    case (decision_state)
-      DECIDED: return_to_reset({{ "reset_ticks" if reset else "0.0" }});
-      IDLE: {{ "if (is_on) " if is_on }}power_up;  // nothing was decided
-      default: begin
-        leave_unresolved;
-        return_to_reset({{ "reset_ticks > 1.0 ? reset_ticks : 1.0" if reset else "1.0" }});
-      end
-    endcase
+    if (decision_state == DECIDED) return_ticks = {{ "reset_ticks" if reset else "0.0" }};
+    else end_undecided;
+    return_time = $realtime + return_ticks;
+    returning = 1'b1;
 {% endif %}
   endtask
+
+  task end_undecided;
+{% if not holds %}
+    return_ticks = 1.0;  // as at power-up if there was nothing to decide
+{% endif %}
+    if (decision_state == DECIDING && (DELAY_ON == 0 || $realtime >= ready_time())) begin
+      show_decision;  // it is ready at this very moment
+      disable show_when_ready;
+{% if not holds %}
+      return_ticks = {{ "reset_ticks" if reset else "0.0" }};
+{% endif %}
+    end else if (decision_state != IDLE) begin
+      leave_unresolved;
+{% if reset %}
+      if (reset_ticks > 1.0) return_ticks = reset_ticks;
+{% endif %}
+    end
+  endtask
+
+  function automatic real ready_time();
+    return edge_time + $floor(delay_s * TICKS_PER_S + 0.5);
+  endfunction
 
   task leave_unresolved;
     decision_state = IDLE;

@@ -1,14 +1,10 @@
 
   // -- Reset ------------------------------------------------------------------------------------
 
-  // With the supply on, the clock at its reset level and no decision before
+  // With the supply on and the clock at its reset level, but no decision before
   task power_up;
-    return_to_reset(1.0);
-  endtask
-
-  task return_to_reset(input real ticks);
-    return_ticks = ticks;
-    return_time = $realtime + ticks;
+    return_ticks = 1.0;
+    return_time = $realtime + return_ticks;
     returning = 1'b1;
   endtask
 
@@ -22,7 +18,7 @@
     x_cause = 0;
   end
 
-  // By a decision edge, unless it is due at this very moment
+  // By a decision edge, unless the reset state is due at this very moment
   task cancel_return;
     if ($realtime < return_time) begin
       returning = 1'b0;

@@ -67,6 +67,9 @@
 {% if noise %}
   real sigma_v = 0.0;                 // noise of one decision
   real noise_reach_v = 0.0;           // overdrives from which noise changes no bit
+{% if exact_exp %}
+  bit sigma_known = 1'b0;             // else the reach is only an upper bound
+{% endif %}
 {% endif %}
 {% if delay == "logarithm" %}
   real tau_s = 0.0;                   // regeneration time constant

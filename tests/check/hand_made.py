@@ -41,6 +41,9 @@ def three_decisions() -> Stimulus:
         unresolved=np.array([False, True, False]),
         bits=np.array([1, 1, 0]),
         reset_ticks=np.array([30, 30, 30]),
+        aperture_ticks=np.zeros(3, dtype=np.int64),
+        memory_v=np.zeros(3),
+        energy_j=np.zeros(3),
     )
     return Stimulus(
         inp_v=np.array([0.601, 0.6, 0.599]), inn_v=np.full(3, 0.6), vdd_v=np.full(3, 1.2),

@@ -140,7 +140,7 @@ def test_a_changed_coefficient_is_caught(name, tmp_path, monkeypatch):
 def test_a_changed_text_is_caught(name, tmp_path, monkeypatch):
     pattern, replacement = EDITS[name]
     text, count = re.subn(pattern, replacement, emitted_text(MODEL))
-    assert count > 0
+    assert count > 0, f"the emitted text has no {pattern} any more: name its successor"
     must_be_caught(text, tmp_path, monkeypatch)
 
 

@@ -194,7 +194,7 @@ def test_a_balanced_input_takes_the_longest_delay(tmp_path):
     # The law by hand: 25 ps at 0.5 V and 10 ps a factor e down to the floor of 1 fV.
     by_hand = np.exp(-24.412145) + np.exp(-25.328436) * np.log(0.5 / 1e-15)
     assert longest == pytest.approx(by_hand, rel=1e-9)
-    cycles = [Cycle(phase_s=longest - 0.1e-12), Cycle(phase_s=longest + 5e-12)]
+    cycles = [Cycle(phase_s=longest - 1.1e-12), Cycle(phase_s=longest + 5e-12)]
     played = circuit(tmp_path, model).play(cycles)
     assert played.levels(played.ends[0]) == pytest.approx([1.2, 1.2])
     assert played.levels(played.ends[0] + 2e-12) == pytest.approx([0.6, 0.6])
@@ -266,7 +266,8 @@ def test_the_edges_last_as_long_as_asked_and_their_middle_stays(reference, tmp_p
     played = circuit(tmp_path, EDGE_S=20e-12).play(cycles)
     expected = float(reference.delay(1e-2, **NOMINAL))
     assert delays(played, played.edges, cycles) == pytest.approx([expected], abs=TOLERANCE_S)
-    levels = [played.level("outn", played.edges[0] + expected + t) for t in (-10e-12, 5e-12, 10e-12)]
+    middle = played.edges[0] + expected
+    levels = [played.level("outn", middle + late) for late in (-10e-12, 5e-12, 10e-12)]
     assert levels == pytest.approx([1.2, 0.3, 0.0], abs=2e-3)
 
 

@@ -13,7 +13,7 @@ from behavgen.emit.verilog_a_event import verilog_a_event
 from behavgen.model import ComparatorModel
 from behavgen.simulators.evas import Waves, find_evas
 
-RAMP_S = 20e-12
+RAMP_S = 10e-12
 
 Corners = Sequence[tuple[float, float]]
 """Of a piecewise linear source: time in s, voltage in V."""

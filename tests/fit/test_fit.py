@@ -23,6 +23,7 @@ from behavgen.tables.characterisation import (
     WindowTable,
 )
 from behavgen.tables.read import read_tables
+from tests.fit.effect_tables import aperture_table, memory_table
 
 LATCH = Path(__file__).parents[1] / "data" / "latch_130n"
 
@@ -258,3 +259,52 @@ def test_the_nearest_data_that_can_be_told_are_not_refused(settings):
     curve = s_curve([0, 1, 199, 200], [-3, -1, 1, 3])
     model = fit(Characterisation(cell="c", processes=(), noise=curve), settings)
     assert model.noise is not None
+
+
+def test_memory_aperture_energy_and_kickback_of_the_latch(latch):
+    reference = Reference(latch)
+    nominal = {"vdd": 1.8, "temp_c": 27.0, "vcm": 0.95}
+    memory = csv_columns("memory.csv")
+    measured = (memory["censored"] == "0") & (memory["temp_C"] == "27")
+    reset_s, shift_v = (memory[k][measured].astype(float) for k in ("t_reset_s", "shift_V"))
+    assert reference.memory_shift(reset_s, **nominal) == pytest.approx(shift_v, rel=0.01)
+    # Rows that say "at least" are met too.
+    assert (reference.memory_shift([6e-11, 9e-11], **nominal) >= 0.1).all()
+    energy = csv_columns("energy.csv")
+    vid, vdd, temp, vcm = (energy[k].astype(float) for k in ("vid_V", "vdd_V", "temp_C", "vcm_V"))
+    emitted = reference.energy(vid, vdd=vdd, temp_c=temp, vcm=vcm)
+    error = emitted / energy["energy_vdd_J"].astype(float) - 1.0
+    # Two numbers a condition against four rows that follow no law exactly.
+    assert np.sqrt(np.mean(error**2)) < 0.02
+    assert np.abs(error).max() < 0.05
+    assert latch.energy.law == "delay"
+    ticks = reference.trace(0.3, 10**9, **nominal).aperture_ticks
+    assert ticks == pytest.approx(48_000, abs=500)
+    assert {p.quantity for p in latch.points} >= {
+        "memory", "memory_at_least", "aperture", "energy", "kickback_common",
+        "kickback_differential",
+    }  # fmt: skip
+    assert {f.quantity for f in latch.fits} >= {"memory", "aperture", "energy", "kickback"}
+    names = {p.name for p in latch.parameters}
+    assert names >= {"memory_tau_s", "aperture_centre_s", "aperture_width_s", "energy_fixed_j",
+                     "energy_power_w", "kickback_common_c"}  # fmt: skip
+
+
+def test_refusals_of_several_quantities_come_together(settings):
+    tables = Characterisation(
+        cell="c", processes=(), noise=s_curve([0, 0, 200, 200], [-3, -1, 1, 3]),
+        memory=memory_table([1e-10, 1e-10], [0.1, 0.1]),
+        aperture=aperture_table([0.0, 1e-11, 2e-11], [1.0, 0.9, 0.8]),
+    )  # fmt: skip
+    with pytest.raises(FitError) as caught:
+        fit(tables, settings)
+    assert {fault.file for fault in caught.value.faults} == {
+        "noise.csv", "memory.csv", "aperture.csv"}  # fmt: skip
+
+
+def test_a_memory_table_alone_gives_a_model_and_a_box(settings):
+    table = memory_table([1e-10, 2e-10, 3e-10], [0.1, 0.01, 0.001], vdd=1.1)
+    model = fit(Characterisation(cell="c", processes=(), memory=table), settings)
+    assert model.delay is None
+    assert (model.box.vdd_v.low, model.box.vdd_v.high) == (1.1, 1.1)
+    assert Reference(model).memory_shift(2e-10) == pytest.approx(0.01, rel=1e-6)

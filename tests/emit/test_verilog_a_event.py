@@ -1,0 +1,187 @@
+"""The text of the emitted event-driven Verilog-A model, and a strict compiler's word on it."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+
+from behavgen.emit.verilog_a import verilog_a
+from behavgen.emit.verilog_a_event import verilog_a_event
+from behavgen.errors import ProjectError
+from behavgen.model import Pins
+from behavgen.simulators.openvaf import find_openvaf
+from tests.emit.delay_laws import LAWS, model_with
+from tests.example_models import full_model, minimal_model, renamed_pins_model
+
+GOLDEN = Path(__file__).parents[1] / "golden"
+VARIANTS = {
+    "full": full_model(),
+    "minimal": minimal_model(),
+    "renamed pins": renamed_pins_model(),
+    "low": full_model(in_reset="low"),
+    "mid": full_model(in_reset="mid"),
+    "hold": full_model(in_reset="hold", decides_on="falling"),
+    "no reset, no noise": replace(full_model(), reset=None, noise=None),
+    "no tables": replace(minimal_model(), delay=None),
+    **{law: model_with(law) for law in LAWS},
+}
+
+
+def without_events(text):
+    """Put what a compiler without analogue events takes in their places.
+
+    What stands around them has to be Verilog-A to the letter, every name declared.
+    """
+    for found, instead in (
+        (r"@\(timer\((\w+)\)\)", r"if (\1 > $abstime)"),
+        (r"@\(cross\((.*), ([+-]1), (\w+)\)\)", r"if ((\1) * \2 > \3)"),
+        (r"transition\((\w+), 0\.0, (\w+), (\w+)\)", r"(\1 * \2 / \3)"),
+        (r"\$rdist_(?:normal|uniform)\((\w+), 0\.0, 1\.0\)", r"(0.5 * \1)"),
+    ):
+        text = re.sub(found, instead, text)
+    return text
+
+
+def compiled(text, folder):
+    source = folder / "model.va"
+    source.write_text(text)
+    return find_openvaf().compile(source, library=folder / "model.osdi", log=folder / "log")
+
+
+@pytest.mark.parametrize("model", [full_model(), minimal_model()], ids=lambda m: m.cell.name)
+def test_the_text_is_the_one_that_was_approved(model, request):
+    emitted = verilog_a_event(model)
+    approved = GOLDEN / emitted.path
+    if request.config.getoption("--update-golden", default=False):
+        approved.write_text(emitted.text, encoding="utf-8", newline="\n")
+    assert emitted.text == approved.read_text(encoding="utf-8")
+
+
+@pytest.mark.parametrize("name", VARIANTS)
+def test_lines_are_plain_short_and_without_loose_ends(name):
+    text = verilog_a_event(VARIANTS[name]).text
+    assert text.isascii()
+    assert text.endswith("endmodule\n")
+    assert "\n\n\n" not in text
+    assert not any(mark in text for mark in ("{{", "{%", "None", "nan", "(*"))
+    for line in text.splitlines():
+        assert len(line) <= 100, line
+        assert line == line.rstrip(), line
+
+
+@pytest.mark.parametrize("name", VARIANTS)
+def test_all_but_the_events_compiles_without_a_warning(name, tmp_path):
+    compilation = compiled(without_events(verilog_a_event(VARIANTS[name]).text), tmp_path)
+    assert compilation.library is not None, compilation.message
+    assert compilation.warnings == 0, compilation.message
+
+
+def test_every_variable_is_used():
+    for name, model in VARIANTS.items():
+        code = re.sub(r"//.*", "", verilog_a_event(model).text)
+        for variable in declared(code) - set(re.findall(r"parameter \w+ ([A-Z_]+)", code)):
+            assert len(re.findall(rf"\b{variable}\b", code)) > 1, (name, variable)
+
+
+def test_events_are_nowhere_conditional():
+    """LRM 2.4, 4.5.1 and 5.10: analogue operators and events stand outside of conditions."""
+    for model in VARIANTS.values():
+        body = verilog_a_event(model).text.partition("  analog begin\n")[2]
+        for line in body.splitlines():
+            if "transition(" in line or line.lstrip().startswith("@("):
+                assert re.match(r"    \S", line), line
+
+
+def test_absent_effects_leave_no_trace_in_the_statements():
+    text = verilog_a_event(minimal_model()).text
+    statements = text.partition("// -- Constants")[2]
+    for trace in (
+        "sigma", "offset_v", "mismatch", "slope", "temperature", "vcm", "PROCESS", "$param_given",
+        "clamp", "is_on;", "is_on ", "reset_s", "supply_v",
+    ):  # fmt: skip
+        assert trace not in statements, trace
+
+
+def test_parameters_are_described_by_comments():
+    text = verilog_a_event(full_model()).text
+    for lines in (
+        "  // process: 0 typ, 3 slow\n"
+        "  parameter integer PROCESS = 0 from [0:3] exclude 1 exclude 2;\n",
+        "  // added to the trip point (V)\n  parameter real OFFSET_SHIFT_V = 0.0;\n",
+        "  parameter integer SEED = 1;\n",
+        "  // outputs after an unresolved decision: 0 half the supply, 1 coin, 2 hold\n"
+        "  parameter integer UNRESOLVED_MODE = 0 from [0:2];\n",
+        "  parameter integer FORCE_UNRESOLVED_EVERY = 0 from [0:inf);\n",
+        "  parameter real MISMATCH_Z1 = 0.0 from [-10.0:10.0];\n",
+        "  // duration of the output edges (s)\n"
+        "  parameter real EDGE_S = 4e-12 from [1e-15:inf);\n",
+    ):
+        assert lines in text
+    coin = verilog_a_event(full_model(when_unresolved="coin")).text
+    assert "UNRESOLVED_MODE = 1 from" in coin
+
+
+def test_pins_are_renamed_and_left_out():
+    text = verilog_a_event(renamed_pins_model()).text
+    assert "module latch_renamed_event(vip, vim, ck, en, q, vss);" in text
+    assert "parameter real SUPPLY_V = 1.2 from [0.0:inf);" in text
+    assert "outn" not in text.partition("`include")[2]
+    assert "level_n" not in text
+
+
+def test_the_head_says_how_noise_is_drawn_in_either_form():
+    skipped = "no draws beyond 8.3 sigma"
+    assert skipped in verilog_a_event(full_model()).text
+    assert skipped not in verilog_a(full_model()).text
+    assert "noise: Gaussian\n" in verilog_a(full_model()).text
+
+
+# -- Pins that are named like something inside ---------------------------------------------------
+
+FORMS = {"continuous": verilog_a, "event": verilog_a_event}
+
+
+def declared(code):
+    """Return the names of all variables, nodes, constants, parameters and functions of a module."""
+    body = code.partition(");\n")[2]
+    names = re.findall(r"(?:parameter|localparam|function) (?:real|integer) (\w+)", body)
+    for listed in re.findall(r"^ +(?:real|integer|electrical|input) ([\w,\s]+);", body, re.M):
+        names += re.findall(r"\w+", listed)
+    pins = re.findall(r"\w+", code.partition("(")[2].partition(")")[0])
+    return set(names) - set(pins)
+
+
+@pytest.mark.parametrize("form", FORMS)
+def test_every_name_inside_is_refused_as_a_pin(form):
+    emitted = FORMS[form](full_model(in_reset="hold")).text
+    module = re.sub(r"//.*", "", emitted).partition("module ")[2]
+    names = sorted(declared(module))
+    assert len(names) > 40
+    assert {"continuous": "n_latch", "event": "awaited"}[form] in names
+    for name in names:
+        pins = Pins(inp=name, outn="q")
+        with pytest.raises(ProjectError) as refused:
+            FORMS[form](full_model(in_reset="hold", pins=pins))
+        assert [fault.column for fault in refused.value.faults] == ["cells.latch_full.pins.inp"]
+        assert f"'{name}' is also a name inside" in str(refused.value)
+
+
+def test_all_taken_names_are_told_at_once():
+    pins = Pins(clk="sigma_v", outp="level_p", unresolved="delay_s")
+    with pytest.raises(ProjectError) as refused:
+        verilog_a_event(full_model(pins=pins))
+    columns = [fault.column for fault in refused.value.faults]
+    assert columns == ["cells.latch_full.pins.clk", "cells.latch_full.pins.outp"]
+
+
+@pytest.mark.parametrize("form", FORMS)
+def test_pins_named_like_words_of_the_comments_or_like_other_pins_compile(form, tmp_path):
+    pins = Pins(inp="inn", inn="inp", clk="overdrive", outp="latch", outn="noise", vdd="supply",
+                vss="phase", enable="imbalance")  # fmt: skip
+    text = FORMS[form](full_model(pins=pins)).text
+    compilation = compiled(without_events(text), tmp_path)
+    assert compilation.library is not None, compilation.message
+    assert compilation.warnings == 0, compilation.message

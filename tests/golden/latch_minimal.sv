@@ -1,0 +1,382 @@
+// latch_minimal: invented example with a delay only
+//
+// Behavioural model of a clocked comparator for event-driven simulation with real numbers. It
+// decides on the rising edge of clk.
+//
+// Valid for:
+//   supply not characterised: has no influence
+//   temperature not characterised: has no influence
+//   common mode not characterised: has no influence
+//   overdrive 1 uV to 500 mV
+//   process nominal (code 0)
+//
+// Models:
+//   delay over overdrive: logarithmic, measured from clk 50 % to outp-outn at half supply
+//
+// Does not model:
+//   offset, mismatch, noise, reset delay, memory of earlier decisions, aperture, energy, kickback
+//
+// Caution:
+//   Fitted to the tables named above and valid inside the stated ranges; outside, conditions are
+//     clamped and results are no predictions.
+//   It replaces neither transistor-level, extracted, timing or reliability sign-off nor your own
+//     safety process, and claims no integrity level.
+//   Rates far below what was counted rest on a Gaussian and an exponential law. Intervals leave out
+//     the process kit's accuracy, parasitics, ageing, supply noise and jitter; mismatch has no
+//     spatial correlation.
+//   What an unresolved output shows is a convention; coin and hold can hide a synchroniser fault.
+//     Random numbers reproduce a simulation and are not for security.
+//   The file reveals performance that derives from a process kit: check its licence before passing
+//     it on.
+//
+// Use:
+//   Written by behavgen 0.1.0. This file belongs to you: use, change and pass it on without
+//     condition.
+
+// Waivers. Of parameters: those of effects that are not characterised are there all the same, so
+// that every cell has the same. Of signals: some are there to be read from outside, and some
+// algorithms use a part of a word. Of delays: each is one time step at least. Of nets: the supply
+// both switches the cell and is an operand. Of first values: there is no pin that could give them.
+// verilator lint_save
+// verilator lint_off UNUSEDPARAM
+// verilator lint_off UNUSEDSIGNAL
+// verilator lint_off ZERODLY
+// verilator lint_off SYNCASYNCNET
+// verilator lint_off PROCASSINIT
+`ifdef __slang__
+`pragma diagnostic push
+`pragma diagnostic ignore="-Wunused"
+`endif
+
+module latch_minimal #(
+  parameter real       OFFSET_SHIFT_V         = 0.0,    // V: added to the trip point
+  parameter int        NOISE_ON               = 1,      // 0 off, 1 on: not characterised, does
+                                                        // nothing
+  parameter int        MISMATCH_ON            = 0,      // 0 off, 1 on: not characterised, does
+                                                        // nothing
+  parameter int        MEMORY_ON              = 1,      // 0 off, 1 on: not characterised, does
+                                                        // nothing
+  parameter int        DELAY_ON               = 1,      // 0 off, 1 on: delays; off: one time step
+  parameter bit [63:0] SEED                   = 64'd0,  // from 0: of this instance's random
+                                                        // numbers; 0: from its hierarchical path
+  parameter real       TEMPERATURE_C          = 27.0,   // degC, from -273.15: not characterised,
+                                                        // does nothing
+  parameter int        PROCESS                = 0,      // 0 nominal: process
+  parameter int        UNRESOLVED_MODE        = 0,      // 0 x, 1 coin, 2 hold: outputs after an
+                                                        // unresolved decision
+  parameter int        FORCE_UNRESOLVED_EVERY = 0,      // from 0: one in so many decisions stays
+                                                        // unresolved; 0: none is forced
+  parameter int        WARNINGS               = 1       // 0 silent, 1 once a cause, 2 fatal:
+                                                        // messages
+) (
+  input  real  inp,         // V, taken at the decision edge
+  input  real  inn,         // V
+  input  logic clk,         // decides on its rising edge
+  output logic outp,        // the decision; 1 in reset
+  output logic outn,        // its complement; 1 in reset
+  input  real  vdd,         // V
+  output logic unresolved   // 1 from the end of an unresolved decision to the next ready
+);
+  timeunit 1fs;
+  timeprecision 1fs;
+
+  // -- To be read from outside ------------------------------------------------------------------
+
+  localparam real TICKS_PER_S = 1e15;
+  localparam real TICK_S = 1.0 / TICKS_PER_S;
+
+  // Why the outputs show no decision: 0 they do, or rest; 1 unresolved; 2 supply or enable;
+  // 3 input not a number; 4 clock unknown; 5 before the first decision
+  int x_cause = 5;
+  bit [63:0] decision_count = 64'd0;  // decision edges so far
+  real overdrive_v = 0.0;             // effective overdrive of the last decision, signed
+  real delay_s = TICK_S;                 // its delay, also if it did not resolve
+  int temperature_warnings = 0;       // how often a condition was outside its range
+  int supply_warnings = 0;
+  int common_mode_warnings = 0;
+  int input_warnings = 0;             // how often an input was not a number at a decision edge
+  int clock_warnings = 0;             // how often the clock became unknown
+
+  // -- State ------------------------------------------------------------------------------------
+
+  // Since the last decision edge: nothing was decided; a decision is on its way; one is kept
+  // from resolving; one is shown
+  localparam bit [1:0] IDLE = 2'd0, DECIDING = 2'd1, FORCED = 2'd2, DECIDED = 2'd3;
+  bit [1:0] decision_state = IDLE;
+  logic clk_level;                    // level of the clock before its last change
+  bit is_on;                          // supplied and enabled
+  real edge_time = 0.0;               // its decision edge, in ticks of the time precision
+  bit returning = 1'b0;               // the reset state is on its way
+  real return_time = 0.0;             // when it is there, in ticks
+  real return_ticks = 1.0;            // how long it takes
+
+  // Conditions, and what follows from them
+  real tau_s = 0.0;                   // regeneration time constant
+  real node_s = 0.0;                  // delay at the largest characterised overdrive
+
+  // -- Start: what stays for the whole simulation -----------------------------------------------
+
+  string instance_path;
+  int process_code;
+  logic [63:0] coin_key;
+
+  initial begin
+    $sformat(instance_path, "%m");
+    take_settings;
+    take_keys;
+    select_process;
+    take_constants;
+    clk_level = clk;
+    is_on = vdd - vdd == 0.0;
+    if (clk_level === 1'b0 && is_on) power_up;
+  end
+
+  // The command line speaks to all instances and wins over their parameters
+  task take_settings;
+    if (!$value$plusargs("behavgen_process=%d", process_code)) process_code = PROCESS;
+  endtask
+
+  task take_keys;
+    logic [63:0] seed, run_seed;
+    seed = SEED == 64'd0 ? path_seed(instance_path) : SEED;
+    if (!$value$plusargs("behavgen_seed=%d", run_seed)) run_seed = 64'd0;
+    coin_key = stream_key(seed, run_seed, 64'd2);
+  endtask
+
+  task select_process;
+    case (process_code)
+      0: ;  // nominal
+      default: begin
+        $fatal(1, "[behavgen] %s t=0: process code %0d is unknown; known are 0 nominal",
+               instance_path, process_code);
+      end
+    endcase
+  endtask
+
+  // -- Clock: only a clean step from one level to the other counts ------------------------------
+
+  always @(clk) begin
+    case ({clk_level, clk})
+      2'b01: begin
+        decision_count = decision_count + 64'd1;
+        if (returning) cancel_return;
+        if (is_on) decide;
+      end
+      2'b10: if (is_on) end_phase;
+      2'b00, 2'b11: ;  // it came back within the same instant
+      default: if (is_on) unclean_step;
+    endcase
+    clk_level = clk;
+  end
+
+  // To a level that is neither 0 nor 1, or from there
+  task unclean_step;
+    if (clk !== 1'b0 && clk !== 1'b1) begin
+      lose_outputs(4);
+      if (decision_count != 64'd0) begin
+        clock_warnings = clock_warnings + 1;
+        if (clock_warnings == 1) warn("the clock is unknown");
+      end
+    end
+    if (clk === 1'b0) power_up;
+  endtask
+
+  // -- Decision: at a clean step of the clock to its deciding level -----------------------------
+
+  localparam real FLOOR_V = 1e-15;       // overdrives below are not distinguished
+  real magnitude_v = 0.0;                // of the overdrive
+
+  task decide;
+    edge_time = $realtime;
+    if ((inp - inp) + (inn - inn) != 0.0) begin  // infinite or not a number
+      lose_input;
+      disable decide;
+    end
+    decision_state = DECIDING;
+    if (FORCE_UNRESOLVED_EVERY > 0) begin
+      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
+    end
+    overdrive_v = ((inp - inn) - OFFSET_SHIFT_V);
+    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+    if (DELAY_ON != 0) find_delay;
+  endtask
+
+  task lose_input;
+    lose_outputs(3);
+    input_warnings = input_warnings + 1;
+    if (input_warnings == 1) begin
+      warn($sformatf("the input is not a number: %g V and %g V", inp, inn));
+    end
+  endtask
+
+  // ln(overdrive) as in linear regeneration; from the largest characterised overdrive on constant
+  task find_delay;
+    delay_s = node_s;
+    if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;
+    if (magnitude_v < 0.5) delay_s = node_s + tau_s * $ln(0.5 / magnitude_v);
+    if (delay_s < TICK_S) delay_s = TICK_S;
+  endtask
+
+  // -- Outputs ----------------------------------------------------------------------------------
+
+  always begin : show_when_ready
+    wait (decision_state == DECIDING);
+    #(delay_s * TICKS_PER_S);
+    show_decision;
+  end
+
+  task show_decision;
+    decision_state = DECIDED;
+    outp = overdrive_v > 0.0;
+    outn = !(overdrive_v > 0.0);
+    unresolved = 1'b0;
+    x_cause = 0;
+  endtask
+
+  // At a clean step of the clock back to its reset level
+  task end_phase;
+    if (decision_state == DECIDED) return_ticks = 0.0;
+    else end_undecided;
+    return_time = $realtime + return_ticks;
+    returning = 1'b1;
+  endtask
+
+  task end_undecided;
+    return_ticks = 1.0;  // as at power-up if there was nothing to decide
+    if (decision_state == DECIDING && (DELAY_ON == 0 || $realtime >= ready_time())) begin
+      show_decision;  // it is ready at this very moment
+      disable show_when_ready;
+      return_ticks = 0.0;
+    end else if (decision_state != IDLE) begin
+      leave_unresolved;
+    end
+  endtask
+
+  function automatic real ready_time();
+    return edge_time + $floor(delay_s * TICKS_PER_S + 0.5);
+  endfunction
+
+  task leave_unresolved;
+    decision_state = IDLE;
+    disable show_when_ready;
+    unresolved = 1'b1;
+    x_cause = 1;
+    if (UNRESOLVED_MODE == 0) begin
+      outp = 1'bx;
+      outn = 1'bx;
+    end else if (UNRESOLVED_MODE == 1) begin
+      outp = random_bits(coin_key, decision_count) >> 63 != 64'd0;
+      outn = !outp;
+    end
+  endtask
+
+  // The outputs are unknown at once, whatever was on its way
+  task lose_outputs(input int cause);
+    decision_state = IDLE;
+    disable show_when_ready;
+    returning = 1'b0;
+    disable reset_when_due;
+    outp = 1'bx;
+    outn = 1'bx;
+    x_cause = cause;
+  endtask
+
+  // -- Reset ------------------------------------------------------------------------------------
+
+  // With the supply on and the clock at its reset level, but no decision before
+  task power_up;
+    return_ticks = 1.0;
+    return_time = $realtime + return_ticks;
+    returning = 1'b1;
+  endtask
+
+  always begin : reset_when_due
+    wait (returning);
+    #(return_ticks);
+    returning = 1'b0;
+    outp = 1'b1;
+    outn = 1'b1;
+    x_cause = 0;
+  end
+
+  // By a decision edge, unless the reset state is due at this very moment
+  task cancel_return;
+    if ($realtime < return_time) begin
+      returning = 1'b0;
+      disable reset_when_due;
+    end
+  endtask
+
+  // -- Supply and enable ------------------------------------------------------------------------
+
+  always @(vdd) begin
+    if (is_on != (vdd - vdd == 0.0)) begin
+      is_on = !is_on;
+      if (!is_on) lose_outputs(2);
+      else if (clk_level === 1'b0) power_up;
+    end
+  end
+
+  // -- Conditions -------------------------------------------------------------------------------
+  // Every quantity is a polynomial in coordinates x of the conditions, which are clamped to where
+  // it was characterised. t, v, c are temperature, supply and common mode, digits their powers.
+  // Polynomials are folded one condition at a time, so that only what has changed is repeated.
+
+  task take_constants;
+    // Delay: ln of the time constant and of the delay at the node, both in s
+    tau_s = 1.0000000229345028e-11;
+    node_s = 2.5000007276509775e-11;
+  endtask
+
+  // -- Random numbers ---------------------------------------------------------------------------
+  // A counter through the mixing function SplitMix64 (Steele, Lea, Flood, OOPSLA 2014): no draw
+  // needs those before it. Only + - * / and square root, so that all simulators draw the same.
+
+  localparam logic [63:0] GOLDEN = 64'h9e37_79b9_7f4a_7c15;
+
+  // FNV-1a (IETF RFC 9923) over the hierarchical path, so that no two instances draw alike
+  function automatic logic [63:0] path_seed(input string path);
+    logic [63:0] hash;
+    hash = 64'hcbf2_9ce4_8422_2325;
+    for (int i = 0; i < path.len(); i = i + 1) begin
+      hash = (hash ^ {56'd0, path[i]}) * 64'h0000_0100_0000_01b3;
+    end
+    return hash;
+  endfunction
+
+  function automatic logic [63:0] stream_key(
+      input logic [63:0] seed, input logic [63:0] run_seed, input logic [63:0] channel);
+    logic [63:0] key;
+    key = mix(seed + GOLDEN);
+    key = mix((key ^ run_seed) + GOLDEN);
+    return mix((key ^ channel) + GOLDEN);
+  endfunction
+
+  // Draw number n has the count n + 1
+  function automatic logic [63:0] random_bits(input logic [63:0] key, input logic [63:0] count);
+    return mix(key + count * GOLDEN);
+  endfunction
+
+  function automatic logic [63:0] mix(input logic [63:0] word);
+    logic [63:0] mixed;
+    mixed = (word ^ (word >> 30)) * 64'hbf58_476d_1ce4_e5b9;
+    mixed = (mixed ^ (mixed >> 27)) * 64'h94d0_49bb_1331_11eb;
+    return mixed ^ (mixed >> 31);
+  endfunction
+
+  // -- Messages ---------------------------------------------------------------------------------
+
+  task warn(input string what);
+    string message;
+    message = $sformatf("[behavgen] %s t=%0.6f ns decision %0d: %s", instance_path,
+                        $realtime * 1e-6,
+                        decision_count == 64'd0 ? 64'd0 : decision_count - 64'd1, what);
+    if (WARNINGS == 2) $fatal(1, "%s", message);
+    else if (WARNINGS != 0) $display("%s", message);
+  endtask
+endmodule
+
+`ifdef __slang__
+`pragma diagnostic pop
+`endif
+// verilator lint_restore
