@@ -12,5 +12,5 @@ __all__ = ["emit"]
 
 
 def emit(model: ComparatorModel) -> tuple[EmittedFile, ...]:
-    """Return the SystemVerilog and the Verilog-A files of a cell; the same model, the same bytes."""
+    """Return a cell's SystemVerilog and Verilog-A files; the same model, the same bytes."""
     return systemverilog(model), verilog_a(model), verilog_a_event(model)

@@ -14,7 +14,7 @@ __all__ = ["EnergyLaw", "EnergyRows", "choose_law", "energies"]
 Floats = npt.NDArray[np.float64]
 
 _NEGLIGIBLE = 2e-3
-_PREFERRED = {"constant": 1.05, "delay": 1.25, "overdrive": 1.0}
+_PREFERRED = {"constant": 1.0, "delay": 1.25, "overdrive": 1.0}
 """How much worse than the best a law may be and still be taken, in this order.
 
 The delay is preferred to the overdrive: it has a cause, and an end with the decision phase.

@@ -31,7 +31,8 @@ def test_the_way_from_step_to_step(project: Path, capsys: pytest.CaptureFixture[
         assert ran.stderr == ""
         assert ran.stdout.splitlines()[-1].endswith(f"Next: behavgen {following}")
     names = {path.name for path in (project / "build" / "latch").iterdir()}
-    assert names == {".steps.json", "latch.model.json", "latch.sv", "latch.va", "report.html"}
+    models = {"latch.model.json", "latch.sv", "latch.va", "latch_event.va"}
+    assert names == {".steps.json", "report.html", *models}
 
 
 def test_a_step_does_the_steps_before_it(project: Path, capsys: pytest.CaptureFixture[str]) -> None:
@@ -69,7 +70,7 @@ def test_fit_in_json_is_the_model_file(project: Path, capsys: pytest.CaptureFixt
 
 def test_what_is_current_says_so(project: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert "current already" not in run(capsys, "emit").stdout
-    assert run(capsys, "emit").stdout.count("current already") == 2
+    assert run(capsys, "emit").stdout.count("current already") == 3
 
 
 def test_quiet_is_one_line(project: Path, capsys: pytest.CaptureFixture[str]) -> None:

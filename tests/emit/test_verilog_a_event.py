@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import re
+import subprocess
+import sys
 from dataclasses import replace
 from pathlib import Path
 
@@ -10,10 +12,8 @@ import pytest
 
 from behavgen.emit.verilog_a import verilog_a
 from behavgen.emit.verilog_a_event import verilog_a_event
-from behavgen.errors import ProjectError
-from behavgen.model import Pins
-from behavgen.simulators.openvaf import find_openvaf
 from tests.emit.delay_laws import LAWS, model_with
+from tests.emit.verilog_a_text import compiled, declared
 from tests.example_models import full_model, minimal_model, renamed_pins_model
 
 GOLDEN = Path(__file__).parents[1] / "golden"
@@ -28,27 +28,6 @@ VARIANTS = {
     "no tables": replace(minimal_model(), delay=None),
     **{law: model_with(law) for law in LAWS},
 }
-
-
-def without_events(text):
-    """Put what a compiler without analogue events takes in their places.
-
-    What stands around them has to be Verilog-A to the letter, every name declared.
-    """
-    for found, instead in (
-        (r"@\(timer\((\w+)\)\)", r"if (\1 > $abstime)"),
-        (r"@\(cross\((.*), ([+-]1), (\w+)\)\)", r"if ((\1) * \2 > \3)"),
-        (r"transition\((\w+), 0\.0, (\w+), (\w+)\)", r"(\1 * \2 / \3)"),
-        (r"\$rdist_(?:normal|uniform)\((\w+), 0\.0, 1\.0\)", r"(0.5 * \1)"),
-    ):
-        text = re.sub(found, instead, text)
-    return text
-
-
-def compiled(text, folder):
-    source = folder / "model.va"
-    source.write_text(text)
-    return find_openvaf().compile(source, library=folder / "model.osdi", log=folder / "log")
 
 
 @pytest.mark.parametrize("model", [full_model(), minimal_model()], ids=lambda m: m.cell.name)
@@ -74,9 +53,17 @@ def test_lines_are_plain_short_and_without_loose_ends(name):
 
 @pytest.mark.parametrize("name", VARIANTS)
 def test_all_but_the_events_compiles_without_a_warning(name, tmp_path):
-    compilation = compiled(without_events(verilog_a_event(VARIANTS[name]).text), tmp_path)
+    compilation = compiled(verilog_a_event(VARIANTS[name]).text, tmp_path)
     assert compilation.library is not None, compilation.message
     assert compilation.warnings == 0, compilation.message
+
+
+def test_a_linter_for_its_events_has_nothing_to_say(tmp_path):
+    source = tmp_path / "model.va"
+    source.write_text(re.sub(r" exclude \d+", "", verilog_a_event(full_model()).text))
+    command = [sys.executable, "-m", "evas", "lint", source]
+    said = subprocess.run(command, capture_output=True, text=True, check=True).stdout
+    assert said == "No EVAS lint diagnostics.\n"
 
 
 def test_every_variable_is_used():
@@ -137,51 +124,3 @@ def test_the_head_says_how_noise_is_drawn_in_either_form():
     assert skipped in verilog_a_event(full_model()).text
     assert skipped not in verilog_a(full_model()).text
     assert "noise: Gaussian\n" in verilog_a(full_model()).text
-
-
-# -- Pins that are named like something inside ---------------------------------------------------
-
-FORMS = {"continuous": verilog_a, "event": verilog_a_event}
-
-
-def declared(code):
-    """Return the names of all variables, nodes, constants, parameters and functions of a module."""
-    body = code.partition(");\n")[2]
-    names = re.findall(r"(?:parameter|localparam|function) (?:real|integer) (\w+)", body)
-    for listed in re.findall(r"^ +(?:real|integer|electrical|input) ([\w,\s]+);", body, re.M):
-        names += re.findall(r"\w+", listed)
-    pins = re.findall(r"\w+", code.partition("(")[2].partition(")")[0])
-    return set(names) - set(pins)
-
-
-@pytest.mark.parametrize("form", FORMS)
-def test_every_name_inside_is_refused_as_a_pin(form):
-    emitted = FORMS[form](full_model(in_reset="hold")).text
-    module = re.sub(r"//.*", "", emitted).partition("module ")[2]
-    names = sorted(declared(module))
-    assert len(names) > 40
-    assert {"continuous": "n_latch", "event": "awaited"}[form] in names
-    for name in names:
-        pins = Pins(inp=name, outn="q")
-        with pytest.raises(ProjectError) as refused:
-            FORMS[form](full_model(in_reset="hold", pins=pins))
-        assert [fault.column for fault in refused.value.faults] == ["cells.latch_full.pins.inp"]
-        assert f"'{name}' is also a name inside" in str(refused.value)
-
-
-def test_all_taken_names_are_told_at_once():
-    pins = Pins(clk="sigma_v", outp="level_p", unresolved="delay_s")
-    with pytest.raises(ProjectError) as refused:
-        verilog_a_event(full_model(pins=pins))
-    columns = [fault.column for fault in refused.value.faults]
-    assert columns == ["cells.latch_full.pins.clk", "cells.latch_full.pins.outp"]
-
-
-@pytest.mark.parametrize("form", FORMS)
-def test_pins_named_like_words_of_the_comments_or_like_other_pins_compile(form, tmp_path):
-    pins = Pins(inp="inn", inn="inp", clk="overdrive", outp="latch", outn="noise", vdd="supply",
-                vss="phase", enable="imbalance")  # fmt: skip
-    text = FORMS[form](full_model(pins=pins)).text
-    compilation = compiled(without_events(text), tmp_path)
-    assert compilation.library is not None, compilation.message
-    assert compilation.warnings == 0, compilation.message
