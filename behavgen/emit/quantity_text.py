@@ -44,12 +44,15 @@ class QuantityText:
         Statements that follow the last of the folds.
     finished_by : str
         Condition that the last statements wait for; "" is the start.
+    only_if : str
+        Without it nothing of this is needed; "": always needed.
     """
 
     comment: str
     folded: tuple[FoldedSurface, ...]
     finish: tuple[str, ...]
     finished_by: str
+    only_if: str = ""
 
     def lines(self, condition: str) -> tuple[str, ...]:
         """Return the statements that belong to a condition, or with "" to the start."""
@@ -58,7 +61,10 @@ class QuantityText:
             for folded in self.folded
             for assignment in folded.assignments.get(condition, ())
         ]
-        return (*folds, *(self.finish if condition == self.finished_by else ()))
+        lines = (*folds, *(self.finish if condition == self.finished_by else ()))
+        if not lines or not self.only_if:
+            return lines
+        return (f"if ({self.only_if}) begin", *(f"  {line}" for line in lines), "end")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -142,8 +148,9 @@ def _mismatch(components: tuple[Surface, ...], folder: SurfaceFolder) -> Quantit
     return QuantityText(
         comment="Mismatch: components in V per sigma, and this instance's offset from the nominal",
         folded=parts,
-        finish=(f"if (mismatch_on != 0) mismatch_v = {total};",),
+        finish=(f"mismatch_v = {total};",),
         finished_by=_fastest(parts),
+        only_if="mismatch_on != 0",
     )
 
 
@@ -183,13 +190,11 @@ def _logarithmic_delay(effect: DelayEffect, folder: SurfaceFolder) -> QuantityTe
 
 def _reset(surface: Surface, folder: SurfaceFolder) -> QuantityText:
     reset = folder("reset", surface, target="reset_ln")
+    reset_s = _exponential("$exp", reset.value)
     return QuantityText(
         comment="Reset: ln of its delay in s",
         folded=(reset,),
-        finish=(
-            f"reset_s = {_exponential('$exp', reset.value)};",
-            "reset_ticks = DELAY_ON != 0 ? $floor(reset_s * TICKS_PER_S + 0.5) : 0.0;",
-        ),
+        finish=(f"reset_ticks = DELAY_ON != 0 ? {reset_s} * TICKS_PER_S : 0.0;",),
         finished_by=reset.changes_with,
     )
 

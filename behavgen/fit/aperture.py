@@ -71,7 +71,7 @@ def fall_between(time_s: Floats, weight: Floats, high: float, low: float) -> flo
 
 
 def _last_crossing(time_s: Floats, weight: Floats, level: float) -> float:
-    k = int(np.flatnonzero(weight >= level)[-1])
+    k = int(np.flatnonzero(weight[:-1] >= level)[-1])
     share = (weight[k] - level) / (weight[k] - weight[k + 1])
     return float(time_s[k] + share * (time_s[k + 1] - time_s[k]))
 
@@ -116,10 +116,10 @@ def _curves(table: ApertureTable, here: Truths) -> list[tuple[float, float]]:
     found = []
     heights = np.nan_to_num(table.step_v, nan=0.0)
     for height in np.unique(heights[here]):
-        rows = np.flatnonzero(here & (heights == height))
-        rows = rows[np.argsort(table.step_time_s[rows], kind="stable")]
-        time_s, weight = table.step_time_s[rows], table.step_weight[rows]
-        if len(rows) > 2 and weight[0] >= _HIGH and weight[-1] <= _LOW:
+        rows = here & (heights == height)
+        time_s, alike = np.unique(table.step_time_s[rows], return_inverse=True)
+        weight = np.bincount(alike, weights=table.step_weight[rows]) / np.bincount(alike)
+        if len(time_s) > 2 and weight[0] >= _HIGH and weight[-1] <= _LOW:
             found.append((weight_centre(time_s, weight), fall_between(time_s, weight, _HIGH, _LOW)))
     return found
 

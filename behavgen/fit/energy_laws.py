@@ -124,9 +124,11 @@ def _fitted(rows: EnergyRows, conditions: int, name: str) -> EnergyLaw | None:
         cost=np.inf,
         static_w=np.nan,
     )
+    if not law.told.any():
+        return None
     basis = _basis(rows, name)
     sites = [_at_site(rows, basis, c) for c in np.flatnonzero(law.told)]
-    if not sites or not all((site.parameters > 0.0).all() for site in sites):
+    if not all((site.parameters > 0.0).all() for site in sites):
         return None
     law.parameters[law.told] = [site.parameters for site in sites]
     static = [site.static_w for site in sites if np.isfinite(site.static_w)]

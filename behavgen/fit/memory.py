@@ -26,6 +26,7 @@ Truths = npt.NDArray[np.bool_]
 _RESOLUTION = 1e-3
 """Share of the largest shift below which differences are not told apart."""
 _NOTABLE_SHORTFALL = 0.05
+_NOTABLE_RMS = 0.1
 _STEP = 1e-5
 
 
@@ -58,11 +59,14 @@ def fit_memory(table: MemoryTable | None, processes: tuple[str, ...]) -> MemoryF
     if largest_v <= 0.0:
         notice = "The memory table shows no shift in favour of the previous decision anywhere."
         return MemoryFit(effect=None, fits=(), notices=(notice,))
-    every, sites = _rows(table, largest_v)
-    _check(table, every)
-    carried = np.bincount(sites.of_row, weights=~every.is_bound) > 0.0
-    rows, sites = _restricted(table, every, carried[sites.of_row])
+    if len(np.unique(table.reset_time_s[~table.censored])) < 2:
+        raise FitError(_too_few_times(table))
+    every = find_sites(table.conditions).of_row
+    carried = np.bincount(every, weights=~table.censored) > 0.0
+    rows, sites = _rows(table, carried[every], largest_v)
     choice = choose_memory(rows, sites.count)
+    if choice is None:
+        raise FitError(_no_curve(table))
     family = centred_family(sites, choice.log_parameters, processes)
     emitted = np.minimum(shift_of(emitted_at(family, sites), choice.shape, rows), largest_v)
     return MemoryFit(
@@ -72,49 +76,43 @@ def fit_memory(table: MemoryTable | None, processes: tuple[str, ...]) -> MemoryF
             *_left_out(carried),
             *_range_words(rows, largest_v),
             *_contradicted(rows, sites, emitted),
+            *_poor(rows, emitted),
         ),
     )
 
 
-def _rows(table: MemoryTable, largest_v: float) -> tuple[MemoryRows, Sites]:
-    sites = find_sites(table.conditions)
+def _too_few_times(table: MemoryTable) -> Fault:
+    times = len(np.unique(table.reset_time_s[~table.censored]))
+    return Fault(
+        file=table.sources[0].file if table.sources else "",
+        what=f"memory shifts are measured at {times} reset time{'' if times == 1 else 's'}, not "
+        "counting those that are only bounded",
+        allowed="how the memory fades cannot be told from fewer than two; measure at three or "
+        "more reset times, over a factor of two or more",
+    )
+
+
+def _no_curve(table: MemoryTable) -> Fault:
+    return Fault(
+        file=table.sources[0].file if table.sources else "",
+        what="memory shifts of both signs, which no fading memory explains",
+        allowed="half the distance between the trip points after a zero and after a one, positive "
+        "where the previous decision is favoured",
+    )
+
+
+def _rows(table: MemoryTable, keep: Truths, largest_v: float) -> tuple[MemoryRows, Sites]:
+    """Return the rows to be fitted and their conditions."""
+    sites = find_sites(table.conditions.taken(keep))
+    shift_v = table.memory_shift_v[keep]
     rows = MemoryRows(
-        reset_time_s=table.reset_time_s,
-        shift_v=table.memory_shift_v,
-        scale_v=np.maximum(np.abs(table.memory_shift_v), _RESOLUTION * largest_v),
-        is_bound=table.censored,
+        reset_time_s=table.reset_time_s[keep],
+        shift_v=shift_v,
+        scale_v=np.maximum(np.abs(shift_v), _RESOLUTION * largest_v),
+        is_bound=table.censored[keep],
         site=sites.of_row,
     )
     return rows, sites
-
-
-def _check(table: MemoryTable, rows: MemoryRows) -> None:
-    times = np.unique(rows.reset_time_s[~rows.is_bound])
-    if len(times) > 1:
-        return
-    raise FitError(
-        Fault(
-            file=table.sources[0].file if table.sources else "",
-            what=f"memory shifts are measured at {len(times)} reset time"
-            f"{'' if len(times) == 1 else 's'}, not counting those that are only bounded",
-            allowed="how the memory fades cannot be told from fewer than two; measure at three "
-            "or more reset times, over a factor of two or more",
-        )
-    )
-
-
-def _restricted(table: MemoryTable, rows: MemoryRows, keep: Truths) -> tuple[MemoryRows, Sites]:
-    """Return the rows of conditions at which something was measured, and these conditions."""
-    given = table.conditions
-    sites = find_sites(given.taken(keep))
-    kept = rows.where(keep)
-    return MemoryRows(
-        reset_time_s=kept.reset_time_s,
-        shift_v=kept.shift_v,
-        scale_v=kept.scale_v,
-        is_bound=kept.is_bound,
-        site=sites.of_row,
-    ), sites
 
 
 def _effect(
@@ -210,6 +208,14 @@ def _range_words(rows: MemoryRows, largest_v: float) -> list[str]:
         f"Memory is measured down to resets of {shortest_s * 1e12:.4g} ps; after shorter ones the "
         f"model shifts the trip point by no more than {largest_v * 1e3:.4g} mV."
     ]
+
+
+def _poor(rows: MemoryRows, emitted: Floats) -> list[str]:
+    measured = ~rows.is_bound
+    rms = float(np.sqrt(np.mean(((emitted - rows.shift_v) / rows.scale_v)[measured] ** 2)))
+    if rms <= _NOTABLE_RMS:
+        return []
+    return [f"The memory follows no simple law: its rows are missed by {rms:.1%} rms."]
 
 
 def _contradicted(rows: MemoryRows, sites: Sites, emitted: Floats) -> list[str]:

@@ -70,8 +70,8 @@ def shift_of(log_parameters: Floats, shape: CurveShape, rows: MemoryRows) -> Flo
     return shift
 
 
-def choose_memory(rows: MemoryRows, conditions: int) -> MemoryChoice:
-    """Choose the curve.
+def choose_memory(rows: MemoryRows, conditions: int) -> MemoryChoice | None:
+    """Choose the curve; None where no part of one would be positive.
 
     Parameters
     ----------
@@ -92,9 +92,9 @@ def choose_memory(rows: MemoryRows, conditions: int) -> MemoryChoice:
         found.append((choice, _cost(rows, conditions, choice)))
         if found[-1][1] <= _NEGLIGIBLE:
             break
-    least = min(cost for _, cost in found)
+    least = min((cost for _, cost in found), default=0.0)
     good = [f for f in found if f[1] <= max(_AS_GOOD * least, least + _NEGLIGIBLE)]
-    return min(good, key=lambda f: (f[0].spent, f[1]))[0]
+    return min(good, key=lambda f: (f[0].spent, f[1]))[0] if good else None
 
 
 def _spent(conditions: int, shape: CurveShape, sharing: Sharing) -> int:

@@ -59,7 +59,7 @@ def list_tools() -> tuple[Tool, ...]:
               openvaf.HOW_TO_GET),
         _tool("VACASK", "simulates compiled Verilog-A", lambda: vacask.find_vacask().version,
               openvaf.HOW_TO_GET),
-        _tool("EVAS", "executes event-driven Verilog-A", lambda: evas.find_evas().version,
+        _tool("evas-sim", "executes event-driven Verilog-A", lambda: evas.find_evas().version,
               evas.HOW_TO_GET),
     )  # fmt: skip
 

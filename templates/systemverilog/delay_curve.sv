@@ -52,7 +52,7 @@
   endtask
 
   task build_segment(input int k);
-    real width, first, last, chord, chord_before, chord_after;
+    real width, width_before, width_after, first, last, chord, chord_before, chord_after;
     real slope_first, slope_last, steepest, bend;
     width = gap[k];
     first = node_delay(k - 1);
@@ -62,19 +62,21 @@
       chord_before = chord;
       slope_first = -regeneration_tau();
     end else begin
-      chord_before = (first - node_delay(k - 2)) / gap[k-1];
-      slope_first = (width * chord_before + gap[k-1] * chord) / (width + gap[k-1]);
+      width_before = gap[k-1];
+      chord_before = (first - node_delay(k - 2)) / width_before;
+      slope_first = (width * chord_before + width_before * chord) / (width + width_before);
     end
     if (k == LAST) begin
       chord_after = chord;
 {% if nodes | length == 2 %}
       slope_last = 2.0 * chord - slope_first;
 {% else %}
-      slope_last = chord + width * (chord - chord_before) / (width + gap[k-1]);
+      slope_last = chord + width * (chord - chord_before) / (width + width_before);
 {% endif %}
     end else begin
-      chord_after = (node_delay(k + 1) - last) / gap[k+1];
-      slope_last = (gap[k+1] * chord + width * chord_after) / (gap[k+1] + width);
+      width_after = gap[k+1];
+      chord_after = (node_delay(k + 1) - last) / width_after;
+      slope_last = (width_after * chord + width * chord_after) / (width_after + width);
     end
     // Limited, so that the curve falls wherever its nodes do
     steepest = 3.0 * (chord_before > chord ? chord_before : chord);
@@ -98,8 +100,8 @@
 
   function real node_delay(input int node);
     case (node)
-{% for node_s in curve.node_s %}
-      {{ "default" if loop.last else loop.index0 }}: return {{ node_s }};
+{% for node in nodes | reverse %}
+      {{ "default" if loop.last else node.number }}: return {{ curve.node_s[node.number] }};
 {% endfor %}
     endcase
   endfunction

@@ -35,8 +35,8 @@
 {% if not holds %}
     return_ticks = 1.0;  // as at power-up if there was nothing to decide
 {% endif %}
-    if (decision_state == DECIDING && (DELAY_ON == 0 || $realtime >= ready_time())) begin
-      show_decision;  // it is ready at this very moment
+    if (decision_state == DECIDING && (DELAY_ON == 0 || ready_by($realtime))) begin
+      show_decision;
       disable show_when_ready;
 {% if not holds %}
       return_ticks = {{ "reset_ticks" if reset else "0.0" }};
@@ -49,8 +49,9 @@
     end
   endtask
 
-  function automatic real ready_time();
-    return edge_time + $floor(delay_s * TICKS_PER_S + 0.5);
+  // Times are rounded to whole ticks
+  function automatic bit ready_by(input real now);
+    return edge_time + delay_s * TICKS_PER_S < now + 0.5;
   endfunction
 
   task leave_unresolved;

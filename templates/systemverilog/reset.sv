@@ -20,7 +20,7 @@
 
   // By a decision edge, unless the reset state is due at this very moment
   task cancel_return;
-    if ($realtime < return_time) begin
+    if ($realtime + 0.5 <= return_time) begin
       returning = 1'b0;
       disable reset_when_due;
     end

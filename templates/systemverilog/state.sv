@@ -31,12 +31,12 @@
 {% endif %}
   real edge_time = 0.0;               // its decision edge, in ticks of the time precision
 {% if reset %}
-  real reset_ticks = 0.0;             // delay of the reset after it, whole
+  real reset_ticks = 0.0;             // delay of the reset after it
 {% endif %}
 {% if not holds %}
   bit returning = 1'b0;               // the reset state is on its way
   real return_time = 0.0;             // when it is there, in ticks
-  real return_ticks = 1.0;            // how long it takes
+  real return_ticks = 1.0;            // how long it takes, rounded where it is waited for
 {% endif %}
 
   // Conditions, and what follows from them
@@ -74,9 +74,6 @@
 {% if delay == "logarithm" %}
   real tau_s = 0.0;                   // regeneration time constant
   real node_s = 0.0;                  // delay at the largest characterised overdrive
-{% endif %}
-{% if reset %}
-  real reset_s = 0.0;                 // reset delay
 {% endif %}
 {% for line in declarations %}
   {{ line }}

@@ -88,8 +88,8 @@ EDITS = {
     "reset state": (r"(returning = 1'b0;\s*outp = )1'b1", r"\g<1>1'b0"),
     "rounding of the delay": (r"#\(delay_s \* TICKS_PER_S\)", "#($floor(delay_s * TICKS_PER_S))"),
     "a phase that is a tick too short": (
-        r"\$realtime >= edge_time",
-        "$realtime + 1.0 >= edge_time",
+        r"\$realtime >= ready_time",
+        "$realtime + 1.0 >= ready_time",
     ),
     "a lower clamp of the supply": (r": x_v_low;", ": vdd_v;"),
     "an upper clamp of the temperature": (
@@ -126,6 +126,7 @@ def must_be_caught(text, tmp_path, monkeypatch):
     shorten(monkeypatch)
     report = checked(MODEL, tmp_path, text)
     assert not report.passed
+    assert "the text compiles" not in {bench.name for bench in report.benches}
     assert [words for words in failures(report) if not words.startswith("short")]
 
 

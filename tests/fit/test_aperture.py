@@ -29,6 +29,17 @@ def test_a_rectangular_weight_is_exact():
     assert fall_between(time_s, weight, 0.9, 0.1) == close(16 * PS)
 
 
+def test_a_weight_that_ends_at_the_lower_level():
+    time_s, weight = np.array([0.0, 10.0, 20.0]) * PS, np.array([0.9, 0.5, 0.1])
+    assert fall_between(time_s, weight, 0.9, 0.1) == close(20 * PS)
+
+
+def test_rows_at_the_same_time_are_averaged():
+    time_s, weight = np.array([0.0, 10.0, 10.0, 20.0]) * PS, [1.0, 0.4, 0.6, 0.0]
+    (fit,) = fit_aperture(aperture_table(time_s, weight), ("nominal",)).fits
+    assert parameters(fit)["aperture_width_s"] == close(16 * PS)
+
+
 def test_weight_beyond_the_rows_is_left_out_of_the_centre():
     time_s, weight = np.array([0.0, 10.0, 20.0]) * PS, np.array([0.95, 0.5, 0.05])
     assert weight_centre(time_s, weight) == close(10 * PS)

@@ -150,6 +150,16 @@ def test_one_reset_time_tells_nothing_and_is_refused():
     assert "two" in str(caught.value)
 
 
+def test_shifts_of_both_signs_are_refused():
+    with pytest.raises(FitError, match="both signs"):
+        fitted(np.arange(1, 5) * 1e-10, [-0.01, -0.01, -0.01, 0.005])
+
+
+def test_shifts_that_follow_no_law_are_said_to():
+    found = fitted(np.arange(1, 7) * 1e-10, [0.01, 0.05, 0.01, 0.05, 0.01, 0.05])
+    assert any("no simple law" in notice for notice in found.notices)
+
+
 def test_a_table_without_any_shift_gives_no_effect_and_says_so():
     found = fitted([1e-10, 2e-10], [0.0, -1e-6])
     assert found.effect is None
