@@ -1,6 +1,6 @@
 """What passes between a check and the benches that it runs inside the simulator.
 
-A session file says which runs a session plays and which its benches drive.
+A batch file says which runs a batch plays and which its benches drive.
 Each played run has its ``<index>.expected.npz``, what it must show, its
 ``<index>.events``, what it showed, written by the harness, and its
 ``<index>.agreement.npz``, the bench's comparison of the two.
@@ -21,23 +21,23 @@ from behavgen.check.runs import Run, Settings
 from behavgen.check.waveform import Expectation, read_record
 
 __all__ = [
-    "SESSION_VARIABLE",
-    "BenchSession",
+    "BATCH_VARIABLE",
+    "BenchBatch",
     "compare_run",
-    "open_session",
+    "open_batch",
     "read_agreement",
+    "write_batch",
     "write_expectation",
-    "write_session",
 ]
 
-SESSION_VARIABLE = "BEHAVGEN_CHECK_SESSION"
-"""Environment variable through which a bench finds its session file."""
+BATCH_VARIABLE = "BEHAVGEN_CHECK_BATCH"
+"""Environment variable through which a bench finds its batch file."""
 MODEL_NAME = "model.json"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class BenchSession:
-    """What a bench knows of its session.
+class BenchBatch:
+    """What a bench knows of its batch.
 
     Parameters
     ----------
@@ -64,16 +64,16 @@ class BenchSession:
         return next(run for run in self.runs if run.decisions == 0 and run.name == name)
 
 
-def write_session(path: Path, runs: Iterable[Run]) -> None:
-    """Write a session file beside the files of its runs."""
+def write_batch(path: Path, runs: Iterable[Run]) -> None:
+    """Write a batch file beside the files of its runs."""
     path.write_text(json.dumps([asdict(run) for run in runs]), encoding="utf-8")
 
 
-def open_session() -> BenchSession:
-    """Return the session that the running simulation belongs to."""
-    path = Path(os.environ[SESSION_VARIABLE])
+def open_batch() -> BenchBatch:
+    """Return the batch that the running simulation belongs to."""
+    path = Path(os.environ[BATCH_VARIABLE])
     runs = tuple(_run(raw) for raw in json.loads(path.read_text(encoding="utf-8")))
-    return BenchSession(folder=path.parent, runs=runs)
+    return BenchBatch(folder=path.parent, runs=runs)
 
 
 def _run(raw: dict[str, object]) -> Run:

@@ -1,11 +1,11 @@
-"""What the benches of all sessions found: one result each, and one a sentence."""
+"""What the benches of all batches found: one result each, and one a sentence."""
 
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 
 from behavgen.check.directed import WARNING_RUN
-from behavgen.check.simulation import SessionOutcome
+from behavgen.check.simulation import BatchOutcome
 from behavgen.check.verdict import BenchResult
 from behavgen.model import ComparatorModel
 from behavgen.simulators.cocotb_benches import BenchOutcome
@@ -16,13 +16,13 @@ Suite = tuple[str, BenchResult]
 """A result and the name of the suite that it belongs to."""
 
 
-def bench_results(model: ComparatorModel, outcomes: Sequence[SessionOutcome]) -> tuple[Suite, ...]:
-    """Return every result of every session, suite by suite.
+def bench_results(model: ComparatorModel, outcomes: Sequence[BatchOutcome]) -> tuple[Suite, ...]:
+    """Return every result of every batch, suite by suite.
 
     Parameters
     ----------
     model : ComparatorModel
-    outcomes : sequence of SessionOutcome
+    outcomes : sequence of BatchOutcome
     """
     found: list[Suite] = [("simulation", _ended(outcome)) for outcome in outcomes]
     for outcome in outcomes:
@@ -31,34 +31,32 @@ def bench_results(model: ComparatorModel, outcomes: Sequence[SessionOutcome]) ->
     return tuple(sorted(found, key=lambda suite: suite[0]))
 
 
-def _result(outcome: SessionOutcome, bench: BenchOutcome) -> BenchResult:
+def _result(outcome: BatchOutcome, bench: BenchOutcome) -> BenchResult:
     function, _, option = bench.name.partition("/")
     sentence = function.replace("_", " ")
     kind, _, value = option.partition("=")
     if kind == "run":
-        run = next(run for run in outcome.session.runs if run.index == int(value))
+        run = next(run for run in outcome.batch.runs if run.index == int(value))
         sentence = f"{sentence}: {run.name}"
     elif option:
         sentence = f"{sentence}: {kind} {value}"
     elif bench.module == "test_agreement":
-        sentence = f"{sentence}: {outcome.session.name}"
+        sentence = f"{sentence}: {outcome.batch.name}"
     return BenchResult(name=sentence, passed=not bench.message, message=bench.message)
 
 
-def _ended(outcome: SessionOutcome) -> BenchResult:
+def _ended(outcome: BatchOutcome) -> BenchResult:
     code, log = outcome.finished.code, outcome.finished.log
     message = ""
     if code is None:
         message = f"did not end in time; see {log.name}"
     elif code != 0 or not outcome.benches:
         message = f"ended with exit code {code}; {log.name} ends with:\n{outcome.finished.tail()}"
-    name = f"the simulation runs to its end: {outcome.session.name}"
+    name = f"the simulation runs to its end: {outcome.batch.name}"
     return BenchResult(name=name, passed=not message, message=message)
 
 
-def _messages(
-    model: ComparatorModel, outcomes: Sequence[SessionOutcome]
-) -> tuple[BenchResult, ...]:
+def _messages(model: ComparatorModel, outcomes: Sequence[BatchOutcome]) -> tuple[BenchResult, ...]:
     """Judge the messages of the silent instances and of the one that warns."""
     lines = [
         line
@@ -66,7 +64,7 @@ def _messages(
         for line in outcome.finished.text.splitlines()
         if "[behavgen]" in line
     ]
-    warning = [run for o in outcomes for run in o.session.runs if run.name == WARNING_RUN]
+    warning = [run for o in outcomes for run in o.batch.runs if run.name == WARNING_RUN]
     told = [line for line in lines if any(f"{run.path} " in line for run in warning)]
     others = len(lines) - len(told)
     causes = 2 + _can_leave_box(model)

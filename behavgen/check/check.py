@@ -15,7 +15,7 @@ from behavgen.check.fatal import fatal_results
 from behavgen.check.harness import harness_macros, top_text
 from behavgen.check.preparation import Block, plan_check, prepare_blocks
 from behavgen.check.results_file import results_xml
-from behavgen.check.simulation import CompiledCheck, simulate_sessions
+from behavgen.check.simulation import CompiledCheck, simulate_batches
 from behavgen.check.strata import PlayedRun, count_strata
 from behavgen.check.verdict import BenchResult, CheckReport, Disagreement, dump_report
 from behavgen.emit.emitted_file import EmittedFile
@@ -119,7 +119,7 @@ def _simulated(
         return _Found(suites=(("compile", refused),))
     blocks = prepare_blocks(model, plan, simulation.work, seed=seed)
     tell(f"simulating {sum(block.run.decisions for block in blocks)} decisions")
-    outcomes = simulate_sessions(simulation, plan.sessions, jobs=jobs)
+    outcomes = simulate_batches(simulation, plan.batches, jobs=jobs)
     suites = [*bench_results(model, outcomes)]
     suites += [("fatal", one) for one in fatal_results(simulation, model, plan.fatal)]
     tell("comparing")

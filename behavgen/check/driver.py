@@ -10,7 +10,7 @@ import numpy as np
 from cocotb.triggers import ReadOnly, Timer
 from cocotb.types import Logic
 
-from behavgen.check.bench_files import open_session
+from behavgen.check.bench_files import open_batch
 from behavgen.check.runs import Run, reference_of
 from behavgen.model import ComparatorModel, load_model
 from behavgen.reference import Trace
@@ -43,9 +43,9 @@ class Driver:
     """
 
     def __init__(self, top: Any, name: str) -> None:
-        session = open_session()
-        self.run: Run = session.driven(name)
-        self.model = _model(session.model_path)
+        batch = open_batch()
+        self.run: Run = batch.driven(name)
+        self.model = _model(batch.model_path)
         self.cell = self.model.cell
         self.pins = self.cell.pins
         self.reference = reference_of(self.model, self.run)

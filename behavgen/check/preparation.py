@@ -9,7 +9,7 @@ from behavgen.check.bench_files import MODEL_NAME, write_expectation
 from behavgen.check.directed import BENCH_MODULES, directed_runs
 from behavgen.check.fatal import fatal_run, fatal_stimulus
 from behavgen.check.harness import write_stimulus
-from behavgen.check.runs import Run, Session, plan_sessions
+from behavgen.check.runs import Batch, Run, plan_batches
 from behavgen.check.simulation import share_out
 from behavgen.check.stimulus import Stimulus, make_stimulus
 from behavgen.check.waveform import Expectation, expect
@@ -24,18 +24,18 @@ class Plan:
 
     Parameters
     ----------
-    sessions : tuple of Session
+    batches : tuple of Batch
     fatal : Run
         The instance that must end its simulation.
     """
 
-    sessions: tuple[Session, ...]
+    batches: tuple[Batch, ...]
     fatal: Run
 
     @property
     def runs(self) -> tuple[Run, ...]:
         """All instances, in the order of their indices."""
-        runs = (run for session in self.sessions for run in session.runs)
+        runs = (run for batch in self.batches for run in batch.runs)
         return tuple(sorted((*runs, self.fatal), key=lambda run: run.index))
 
 
@@ -49,21 +49,21 @@ class Block:
 
 
 def plan_check(model: ComparatorModel, *, seed: int, jobs: int) -> Plan:
-    """Return the whole plan; the shortest session takes the directed benches.
+    """Return the whole plan; the shortest batch takes the directed benches.
 
     Parameters
     ----------
     model : ComparatorModel
     seed : int
     jobs : int
-        Into how many sessions the blocks are shared out.
+        Into how many batches the blocks are shared out.
     """
-    blocks, *others, last = plan_sessions(model, seed=seed)
+    blocks, *others, last = plan_batches(model, seed=seed)
     used = len(blocks.runs) + len(others) + 1
     directed = directed_runs(model, first_index=used)
     last = replace(last, runs=last.runs + directed, benches=last.benches + BENCH_MODULES)
     return Plan(
-        sessions=(*share_out(blocks, jobs), *others, last),
+        batches=(*share_out(blocks, jobs), *others, last),
         fatal=fatal_run(model, index=used + len(directed)),
     )
 

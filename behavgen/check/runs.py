@@ -1,7 +1,7 @@
 """Which runs a check consists of: the settings of each simulated instance.
 
 A run is one instance of the emitted module with its parameters, played one
-block of decisions. A session is one simulator process; what it is given on
+block of decisions. A batch is one simulator process; what it is given on
 its command line reaches all of its instances. The plan spreads processes,
 temperatures, switches and random seeds over runs so that every coefficient of
 the model decides something somewhere.
@@ -22,7 +22,7 @@ from behavgen.model import ComparatorModel, Process
 from behavgen.reference import Reference
 from behavgen.units import ZERO_CELSIUS_K
 
-__all__ = ["MODES", "TOP", "Run", "Session", "Settings", "plan_sessions", "reference_of"]
+__all__ = ["MODES", "TOP", "Batch", "Run", "Settings", "plan_batches", "reference_of"]
 
 TOP = "check_top"
 """Module that holds the instances of all runs."""
@@ -108,7 +108,7 @@ class Run:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Session:
+class Batch:
     """One simulator process.
 
     Parameters
@@ -143,10 +143,10 @@ def reference_of(model: ComparatorModel, run: Run) -> Reference:
     )
 
 
-def plan_sessions(
+def plan_batches(
     model: ComparatorModel, *, seed: int = 1, decisions: int = DECISIONS
-) -> tuple[Session, ...]:
-    """Return all sessions that play blocks.
+) -> tuple[Batch, ...]:
+    """Return all batches that play blocks.
 
     Parameters
     ----------
@@ -169,11 +169,11 @@ def plan_sessions(
             balanced=True)
         for name, settings in _rare_runs(model).items()
     ]  # fmt: skip
-    sessions = [Session(name="parameters", plusargs=(), runs=tuple(runs))]
+    batches = [Batch(name="parameters", plusargs=(), runs=tuple(runs))]
     for name, (given, meant, plusargs) in commanded.items():
         run = Run(index=next(number), name=name, given=given, meant=meant, decisions=each)
-        sessions.append(Session(name=name, plusargs=plusargs, runs=(run,)))
-    return tuple(sessions)
+        batches.append(Batch(name=name, plusargs=plusargs, runs=(run,)))
+    return tuple(batches)
 
 
 def _process_runs(model: ComparatorModel, seed: int) -> dict[str, Settings]:

@@ -1,4 +1,4 @@
-"""Compile the module with its harness once, then run all sessions side by side."""
+"""Compile the module with its harness once, then run all batches side by side."""
 
 from __future__ import annotations
 
@@ -8,8 +8,8 @@ from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-from behavgen.check.bench_files import SESSION_VARIABLE, write_session
-from behavgen.check.runs import TOP, Session
+from behavgen.check.bench_files import BATCH_VARIABLE, write_batch
+from behavgen.check.runs import TOP, Batch
 from behavgen.resources import sim_folder
 from behavgen.simulators.cocotb_benches import (
     BenchOutcome,
@@ -20,7 +20,7 @@ from behavgen.simulators.cocotb_benches import (
 from behavgen.simulators.icarus import Icarus
 from behavgen.simulators.process import Finished
 
-__all__ = ["CompiledCheck", "SessionOutcome", "play", "share_out", "simulate_sessions"]
+__all__ = ["BatchOutcome", "CompiledCheck", "play", "share_out", "simulate_batches"]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -59,41 +59,41 @@ class CompiledCheck:
         """Simulate without benches."""
         return self.icarus.simulate(self.compiled, log=self._log(name), plusargs=plusargs)
 
-    def run_benches(self, session: Session) -> SessionOutcome:
-        """Simulate with the benches of a session."""
-        name = session.name.replace(",", "").replace(" ", "_")
-        session_file = self.work / f"{name}.session.json"
+    def run_benches(self, batch: Batch) -> BatchOutcome:
+        """Simulate with the benches of a batch."""
+        name = batch.name.replace(",", "").replace(" ", "_")
+        batch_file = self.work / f"{name}.batch.json"
         results = self.work / f"{name}.results.xml"
-        write_session(session_file, session.runs)
+        write_batch(batch_file, batch.runs)
         environment = bench_environment(
-            modules=session.benches, folder=sim_folder() / "benches", top=TOP, results=results,
-            variables={SESSION_VARIABLE: str(session_file)},
+            modules=batch.benches, folder=sim_folder() / "benches", top=TOP, results=results,
+            variables={BATCH_VARIABLE: str(batch_file)},
         )  # fmt: skip
         finished = self.icarus.simulate(
             self.compiled, log=self._log(name), library=vpi_library("icarus"),
-            plusargs=session.plusargs, environment=environment,
+            plusargs=batch.plusargs, environment=environment,
         )  # fmt: skip
-        return SessionOutcome(session=session, finished=finished, benches=read_outcomes(results))
+        return BatchOutcome(batch=batch, finished=finished, benches=read_outcomes(results))
 
     def _log(self, name: str) -> Path:
         return self.logs / f"{name}.log"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class SessionOutcome:
-    """What came of a session; no benches when the simulation ended before its time."""
+class BatchOutcome:
+    """What came of a batch; no benches when the simulation ended before its time."""
 
-    session: Session
+    batch: Batch
     finished: Finished
     benches: tuple[BenchOutcome, ...]
 
 
-def simulate_sessions(
-    check: CompiledCheck, sessions: Sequence[Session], *, jobs: int
-) -> tuple[SessionOutcome, ...]:
-    """Run sessions on several processors; outcomes in the order of the sessions."""
+def simulate_batches(
+    check: CompiledCheck, batches: Sequence[Batch], *, jobs: int
+) -> tuple[BatchOutcome, ...]:
+    """Run batches on several processors; outcomes in the order of the batches."""
     with ThreadPoolExecutor(max_workers=max(jobs, 1)) as pool:
-        return tuple(pool.map(check.run_benches, sessions))
+        return tuple(pool.map(check.run_benches, batches))
 
 
 def play(first: int, last: int) -> tuple[str, str]:
@@ -101,10 +101,10 @@ def play(first: int, last: int) -> tuple[str, str]:
     return f"play_from={first}", f"play_to={last}"
 
 
-def share_out(session: Session, parts: int) -> tuple[Session, ...]:
-    """Split a session into several of about the same number of decisions."""
-    parts = max(1, min(parts, len(session.runs)))
+def share_out(batch: Batch, parts: int) -> tuple[Batch, ...]:
+    """Split a batch into several of about the same number of decisions."""
+    parts = max(1, min(parts, len(batch.runs)))
     return tuple(
-        replace(session, name=f"{session.name}_{part + 1}", runs=session.runs[part::parts])
+        replace(batch, name=f"{batch.name}_{part + 1}", runs=batch.runs[part::parts])
         for part in range(parts)
     )

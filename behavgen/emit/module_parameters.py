@@ -6,7 +6,7 @@ every other; a parameter whose effect was not characterised does nothing.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 from behavgen.model import Box, ComparatorModel, Surface
@@ -40,7 +40,9 @@ class ModuleParameter:
     codes : tuple of (int, str)
         Legal values and their meanings, where it is a choice.
     effective : bool
-        False when its effect was not characterised: the parameter does nothing.
+        False when the module has no such effect: the parameter does nothing.
+    reason : str
+        Why it has none.
     """
 
     name: str
@@ -52,12 +54,13 @@ class ModuleParameter:
     high: float | None = None
     codes: tuple[tuple[int, str], ...] = ()
     effective: bool = True
+    reason: str = "not characterised"
 
     @property
     def note(self) -> str:
         """What a comment beside the declaration says of it."""
         text = ": ".join(part for part in (self.description, self.allowed) if part)
-        return text if self.effective else f"{text} (not characterised: does nothing)"
+        return text if self.effective else f"{text} ({self.reason}: does nothing)"
 
     @property
     def allowed(self) -> str:
@@ -78,7 +81,10 @@ def module_parameters(model: ComparatorModel) -> tuple[ModuleParameter, ...]:
         ),
         _switch("NOISE_ON", 1, "noise of each decision", model.noise is not None),
         _switch("MISMATCH_ON", 0, "offset of this instance", model.mismatch is not None),
-        _switch("MEMORY_ON", 1, "memory of the previous decision", False),
+        replace(
+            _switch("MEMORY_ON", 1, "memory of the previous decision", False),
+            reason="not characterised" if model.memory is None else "not modelled here",
+        ),
         _switch("DELAY_ON", 1, "delays; off: one time step", model.delay is not None),
         ModuleParameter(
             name="SEED", kind="word", default=0, low=0.0,

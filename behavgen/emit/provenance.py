@@ -22,10 +22,9 @@ _CONDITIONS = (
     ("vcm_v", "common mode", "V"),
     ("overdrive_v", "overdrive", "V"),
 )
-_NEVER_MODELLED = ("memory of earlier decisions", "aperture", "energy", "kickback")
 _NOISE = "Gaussian, no draws beyond 8.3 sigma where they cannot change a bit"
 _CAUTIONS = (
-    "Fitted to the tables named above and valid inside the stated ranges; outside, conditions "
+    "Fitted to tables and valid inside the stated ranges; outside, conditions "
     "are clamped and results are no predictions.",
     "It replaces neither transistor-level, extracted, timing or reliability sign-off nor your "
     "own safety process, and claims no integrity level.",
@@ -145,8 +144,19 @@ def _absent(model: ComparatorModel) -> tuple[str, ...]:
         "delay": model.delay,
         "reset delay": model.reset,
     }
-    missing = [name for name, effect in effects.items() if effect is None]
-    return (*missing, *_NEVER_MODELLED)
+    never_modelled = {
+        "memory of earlier decisions": model.memory,
+        "aperture": model.aperture,
+        "energy": model.energy,
+        "kickback": model.kickback,
+    }
+    return (
+        *(name for name, effect in effects.items() if effect is None),
+        *(
+            name if effect is None else f"{name} (though characterised)"
+            for name, effect in never_modelled.items()
+        ),
+    )
 
 
 def _value(parameter: Parameter) -> str:
@@ -187,10 +197,11 @@ def _fit(fits: list[ConditionFit], quantity: str) -> str:
         for label, values in errors
         if (known := [value for value in values if value is not None])
     ]
+    word = "condition" if len(fits) == 1 else "conditions"
     goodness = [f.goodness for f in fits if f.goodness is not None]
     if goodness:
         shown.append(f"smallest p-value of the goodness of fit {min(goodness):.2g}")
-    return f"{quantity}: {rows} rows, {len(fits)} conditions; {', '.join(shown)}" if shown else ""
+    return f"{quantity}: {rows} rows, {len(fits)} {word}; {', '.join(shown)}" if shown else ""
 
 
 def _origin(model: ComparatorModel) -> str:

@@ -156,15 +156,15 @@ def _mismatch(components: tuple[Surface, ...], folder: SurfaceFolder) -> Quantit
 
 def _noise(surface: Surface, folder: SurfaceFolder) -> QuantityText:
     sigma = folder("noise", surface, target="noise_ln")
-    if sigma.changes_with:
-        finish = (
-            "noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;",
-            "sigma_known = 1'b0;",
-        )
-    else:
+    if _is_literal(sigma.value):
         finish = (
             f"sigma_v = {_exponential('exact_exp', sigma.value)};",
             "noise_reach_v = noise_on != 0 ? CERTAIN_SIGMAS * sigma_v : 0.0;",
+        )
+    else:
+        finish = (
+            "noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;",
+            "sigma_known = 1'b0;",
         )
     return QuantityText(
         comment="Noise: ln of its sigma in V, and overdrives from which it need not be known",

@@ -2,13 +2,11 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Sequence
-from dataclasses import asdict, replace
 
 from behavgen.emit.coordinates import Coordinate, coordinates
 from behavgen.emit.emitted_file import EmittedFile
-from behavgen.emit.literals import comment_text, real_literal
+from behavgen.emit.literals import real_literal, string_literal
 from behavgen.emit.quantity_text import (
     QuantityText,
     SurfaceFolder,
@@ -25,17 +23,15 @@ from behavgen.emit.systemverilog_conditions import (
     warned_ranges,
 )
 from behavgen.emit.systemverilog_interface import head, parameter_lines, port_lines
+from behavgen.emit.taken_names import refuse_taken_names
 from behavgen.emit.templating import render
-from behavgen.errors import Fault, ProjectError
 from behavgen.formulas.polynomial import quantise
-from behavgen.model import Cell, ComparatorModel, DelayEffect, Pins
+from behavgen.model import Cell, ComparatorModel, DelayEffect
 
 __all__ = ["systemverilog"]
 
 _LEVELS = {"high": "1'b1", "low": "1'b0", "mid": "1'bx", "hold": ""}
-
-VOLTAGE_STEPS_PER_V = 2.0**20
-"""Resolution of supply and common mode."""
+_STEPS_PER_V = 2.0**20
 
 
 def systemverilog(model: ComparatorModel) -> EmittedFile:
@@ -47,7 +43,7 @@ def systemverilog(model: ComparatorModel) -> EmittedFile:
         When a pin has the name of something inside the module.
     """
     text = _text(model)
-    _refuse_taken_names(model)
+    refuse_taken_names(model, _text, language="SystemVerilog")
     return EmittedFile(path=f"{model.cell.name}.sv", text=text)
 
 
@@ -104,15 +100,16 @@ def _is_on(cell: Cell) -> str:
 
 def _effect_facts(model: ComparatorModel) -> dict[str, object]:
     """Return which effects there are."""
-    trip = "trip_v" if model.offset is not None else "OFFSET_SHIFT_V"
     pins = model.cell.pins
+    components = () if model.mismatch is None else model.mismatch.components
+    overdrive = f"({pins.inp} - {pins.inn}) - {'trip_v' if model.offset else 'OFFSET_SHIFT_V'}"
     return {
         "offset": model.offset is not None,
-        "mismatch": [] if model.mismatch is None else range(len(model.mismatch.components)),
+        "mismatch": bool(components),
+        "mismatch_names": [f"mismatch{k}_z" for k in range(len(components))],
         "noise": model.noise is not None,
         "reset": "reset" in surfaces_of(model),
-        "overdrive": f"(({pins.inp} - {pins.inn}) - {trip})"
-        + (" - mismatch_v" if model.mismatch else ""),
+        "overdrive": f"({overdrive}) - mismatch_v" if components else overdrive,
     }
 
 
@@ -142,6 +139,7 @@ def _condition_facts(
         follower(name, points, found, warned.get(name)) for name in CONDITIONS
     )
     values = process_values(points, warned.values(), found)
+    finishing = [line for quantity in found for line in quantity.finish]
     fixed = supply.matters and model.cell.pins.vdd is None
     return {
         "constants": follower("", points, found, None).paragraphs,
@@ -151,8 +149,8 @@ def _condition_facts(
         "fixed_supply": _fixed_supply(model) if fixed else "",
         "declarations": declarations(points, values, found),
         "processes": process_branches(model.processes, values),
-        "known_processes": comment_text(", ".join(f"{p.code} {p.name}" for p in model.processes)),
-        "exact_exp": any("sigma_known" in line for one in found for line in one.finish),
+        "known_processes": string_literal(", ".join(f"{p.code} {p.name}" for p in model.processes)),
+        "sigma_on_demand": any("sigma_known" in line for line in finishing),
     }
 
 
@@ -160,23 +158,4 @@ def _fixed_supply(model: ComparatorModel) -> str:
     """Return the supply of a cell without a supply pin: the middle of its range."""
     span = model.box.vdd_v
     middle = 0.0 if span is None else span.middle
-    return real_literal(float(quantise(middle, VOLTAGE_STEPS_PER_V)))
-
-
-def _refuse_taken_names(model: ComparatorModel) -> None:
-    """Compare the pins' names with all names that the module uses with its usual pins."""
-    pins, usual = model.cell.pins, Pins(enable="enable")
-    text = _text(replace(model, cell=replace(model.cell, pins=usual)))
-    code = re.sub(r'//[^\n]*|"[^"\n]*"', "", text)
-    taken = set(re.findall(r"[A-Za-z_]\w*", code)) - set(asdict(usual).values())
-    faults = [
-        Fault(
-            column=f"cells.{model.cell.name}.pins.{pin}",
-            what=f"'{name}' is also a name inside the emitted module",
-            allowed="choose another pin name",
-        )
-        for pin, name in asdict(pins).items()
-        if name in taken and pin != "vss"
-    ]
-    if faults:
-        raise ProjectError(*faults)
+    return real_literal(float(quantise(middle, _STEPS_PER_V)))

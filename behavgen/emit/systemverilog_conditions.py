@@ -98,13 +98,22 @@ def follower(
 def _paragraphs(
     condition: str, points: Sequence[Coordinate], quantities: Sequence[QuantityText]
 ) -> tuple[Paragraph, ...]:
-    mapped = [line for c in points if c.axis.condition == condition for line in c.statements]
-    found = [Paragraph(comment="Coordinates", lines=_wrapped(mapped))] if mapped else []
+    mapped = _wrapped(_mapped([c for c in points if c.axis.condition == condition]))
+    found = [Paragraph(comment="Coordinates", lines=mapped)] if mapped else []
     for quantity in quantities:
         lines = quantity.lines(condition)
         if lines:
             found.append(Paragraph(comment=quantity.comment, lines=_wrapped(lines)))
     return tuple(found)
+
+
+def _mapped(points: Sequence[Coordinate]) -> list[str]:
+    """Return clamps and maps; coordinates that are clamped alike share their clamp."""
+    by_clamp: dict[str, list[str]] = {}
+    for point in points:
+        clamp, mapping = point.statements
+        by_clamp.setdefault(clamp, []).append(mapping)
+    return [line for clamp, mappings in by_clamp.items() for line in (clamp, *mappings)]
 
 
 def warned_ranges(model: ComparatorModel, points: Sequence[Coordinate]) -> dict[str, WarnedRange]:
@@ -128,7 +137,7 @@ def warned_ranges(model: ComparatorModel, points: Sequence[Coordinate]) -> dict[
 
 def _range(model: ComparatorModel, process: Process, condition: str) -> Range | None:
     cell: Range | None = getattr(model.box, condition)
-    if model.delay is None:
+    if cell is None or model.delay is None:
         return cell
     own: Range | None = getattr(model.delay.tau.variant(process.name).box, condition)
     return own or cell

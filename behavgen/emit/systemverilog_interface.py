@@ -87,10 +87,11 @@ def _default(parameter: ModuleParameter) -> str:
 
 
 def _meaning(parameter: ModuleParameter) -> str:
-    """Write ``unit, range: meaning``."""
-    legal = ", ".join(part for part in (parameter.unit, parameter.allowed) if part)
-    what = parameter.description if parameter.effective else "not characterised, does nothing"
-    return comment_text(f"{legal}: {what}" if legal else what)
+    """Write ``unit, meaning: legal codes``."""
+    if not parameter.effective:
+        return f"does nothing: {parameter.reason}"
+    what = f"{parameter.unit}, {parameter.description}" if parameter.unit else parameter.description
+    return comment_text(f"{what}: {parameter.allowed}" if parameter.codes else what)
 
 
 def _resting(cell: Cell) -> str:

@@ -11,16 +11,16 @@ import numpy as np
 from cocotb.triggers import Combine, RisingEdge, Timer
 
 from behavgen.check.agreement import FAULTS, Agreement
-from behavgen.check.bench_files import compare_run, open_session
+from behavgen.check.bench_files import compare_run, open_batch
 
-SESSION = open_session()
-each_run = cocotb.parametrize(run=[run.index for run in SESSION.played])
+BATCH = open_batch()
+each_run = cocotb.parametrize(run=[run.index for run in BATCH.played])
 
 
 @cache
 def agreement(run: int) -> Agreement:
     """Return what the bench found in a run."""
-    return compare_run(SESSION.folder, run)
+    return compare_run(BATCH.folder, run)
 
 
 def refuse(run: int, fault: str) -> None:
@@ -33,8 +33,8 @@ def refuse(run: int, fault: str) -> None:
 
 @cocotb.test()
 async def every_block_is_played_to_its_end(top) -> None:
-    """Play all blocks of the session side by side."""
-    units = [getattr(top, run.instance) for run in SESSION.played]
+    """Play all blocks of the batch side by side."""
+    units = [getattr(top, run.instance) for run in BATCH.played]
     await Timer(10, "step")
     for unit in units:
         unit.start.value = 1

@@ -1,18 +1,16 @@
 
-  // -- Conditions -------------------------------------------------------------------------------
+  // -- Quantities under the conditions ----------------------------------------------------------
+{% if temperature.maps or supply.maps or common_mode.maps %}
   // Every quantity is a polynomial in coordinates x of the conditions, which are clamped to where
   // it was characterised. t, v, c are temperature, supply and common mode, digits their powers.
   // Polynomials are folded one condition at a time, so that only what has changed is repeated.
+{% endif %}
 {% if constants %}
 
   task take_constants;
 {% set paragraphs = constants %}
 {% include "systemverilog/paragraphs.sv" %}
   endtask
-{% endif %}
-{% if temperature.matters %}
-
-  localparam real STEPS_PER_K = 1024.0;  // to which the temperature is rounded
 {% endif %}
 {% if temperature.matters %}
 
@@ -25,8 +23,8 @@
     if (temperature_k < {{ temperature.warned.low }} - 1.0 / STEPS_PER_K
         || temperature_k > {{ temperature.warned.high }} + 1.0 / STEPS_PER_K) begin
       temperature_warnings = temperature_warnings + 1;
-      warn($sformatf("temperature %g degC outside %g to %g: clamped", temperature_c,
-                     {{ temperature.warned.low }} - 273.15, {{ temperature.warned.high }} - 273.15));
+      warn($sformatf("temperature %g degC is outside %g degC to %g degC and clamped",
+                     temperature_c, {{ temperature.warned.low }} - 273.15, {{ temperature.warned.high }} - 273.15));
     end
 {% endif %}
 {% set paragraphs = temperature.paragraphs %}
@@ -40,7 +38,7 @@
     real clamped;
 {% endif %}
 {% if fixed_supply %}
-    vdd_v = {{ fixed_supply }};  // in the middle, since the cell has no supply pin
+    vdd_v = {{ fixed_supply }};  // the middle of its range, for lack of a pin
 {% else %}
     vdd_changed = 1'b0;
     vdd_v = $floor({{ pins.vdd }} * STEPS_PER_V + 0.5) / STEPS_PER_V;
@@ -50,8 +48,8 @@
         || vdd_v > {{ supply.warned.high }} + 1.0 / STEPS_PER_V) begin
       supply_warnings = supply_warnings + 1;
       if (supply_warnings == 1) begin
-        warn($sformatf("supply %g V outside %g V to %g V: clamped", {{ pins.vdd }},
-                       {{ supply.warned.low }}, {{ supply.warned.high }}));
+        warn($sformatf("supply %g V is outside %g V to %g V and clamped",
+                       vdd_v, {{ supply.warned.low }}, {{ supply.warned.high }}));
       end
     end
 {% endif %}
@@ -73,8 +71,8 @@
         || vcm_v > {{ common_mode.warned.high }} + 1.0 / STEPS_PER_V) begin
       common_mode_warnings = common_mode_warnings + 1;
       if (common_mode_warnings == 1) begin
-        warn($sformatf("common mode %g V outside %g V to %g V: clamped", vcm_v,
-                       {{ common_mode.warned.low }}, {{ common_mode.warned.high }}));
+        warn($sformatf("common mode %g V is outside %g V to %g V and clamped",
+                       vcm_v, {{ common_mode.warned.low }}, {{ common_mode.warned.high }}));
       end
     end
 {% endif %}

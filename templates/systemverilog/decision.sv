@@ -1,14 +1,11 @@
 
   // -- Decision: at a clean step of the clock to its deciding level -----------------------------
 
-{% if noise %}
-  localparam real CERTAIN_SIGMAS = 8.3;  // no draw reaches it, so that none is made beyond
-{% endif %}
 {% if delay %}
-  localparam real FLOOR_V = {{ floor_v }};       // overdrives below are not distinguished
+  localparam real FLOOR_V = {{ floor_v }};  // overdrives below are not distinguished
 {% endif %}
 {% if noise or delay %}
-  real magnitude_v = 0.0;                // of the overdrive
+  real magnitude_v = 0.0;           // of the overdrive
 {% endif %}
 
   task decide;
@@ -20,24 +17,20 @@
         lose_input;
         disable decide;
       end
-{% if supply.matters and pins.vdd %}
+{% if supply.matters and not fixed_supply %}
       if (vdd_changed) fold_supply;
 {% endif %}
       fold_common_mode;
     end
 {% else %}
-    if (({{ pins.inp }} - {{ pins.inp }}) + ({{ pins.inn }} - {{ pins.inn }}) != 0.0) begin  // infinite or not a number
-      lose_input;
+    if (({{ pins.inp }} - {{ pins.inp }}) + ({{ pins.inn }} - {{ pins.inn }}) != 0.0) begin
+      lose_input;  // it is infinite or not a number
       disable decide;
     end
-{% if supply.matters and pins.vdd %}
+{% if supply.matters and not fixed_supply %}
     if (vdd_changed) fold_supply;
 {% endif %}
 {% endif %}
-    decision_state = DECIDING;
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
-    end
     overdrive_v = {{ overdrive }};
 {% if noise or delay %}
     magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
@@ -48,15 +41,27 @@
 {% if delay %}
     if (DELAY_ON != 0) find_delay;
 {% endif %}
+    decision_state = DECIDING;
+    if (FORCE_UNRESOLVED_EVERY > 0) begin
+      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
+    end
   endtask
 
+  task lose_input;
+    lose_outputs(3);
+    input_warnings = input_warnings + 1;
+    if (input_warnings == 1) begin
+      warn($sformatf("the input is not a number: %g V and %g V", {{ pins.inp }}, {{ pins.inn }}));
+    end
+  endtask
 {% if noise %}
+
   task add_noise;
-{% if exact_exp %}
+{% if sigma_on_demand %}
     if (!sigma_known) begin
-      sigma_known = 1'b1;
       sigma_v = exact_exp(noise_ln);
       noise_reach_v = CERTAIN_SIGMAS * sigma_v;
+      sigma_known = 1'b1;
     end
     if (magnitude_v < noise_reach_v) begin
       overdrive_v = overdrive_v + sigma_v * standard_normal(random_bits(noise_key, decision_count));
@@ -67,18 +72,10 @@
     magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
 {% endif %}
   endtask
-
 {% endif %}
-  task lose_input;
-    lose_outputs(3);
-    input_warnings = input_warnings + 1;
-    if (input_warnings == 1) begin
-      warn($sformatf("the input is not a number: %g V and %g V", {{ pins.inp }}, {{ pins.inn }}));
-    end
-  endtask
 {% if delay == "logarithm" %}
 
-  // ln(overdrive) as in linear regeneration; from the largest characterised overdrive on constant
+  // Linear regeneration; from the largest characterised overdrive on constant
   task find_delay;
     delay_s = node_s;
     if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;

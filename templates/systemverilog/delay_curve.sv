@@ -5,7 +5,7 @@
   // of the parabola through three neighbours; from the last node on constant.
   // What an overdrive needs of it is built when it is first needed under the present conditions.
 
-  localparam int LAST = {{ nodes[-1].number }};     // node
+  localparam int LAST = {{ nodes[-1].number }};      // node
   real gap[1:LAST];             // ln of the overdrive at a node over that at the node before
   // Segment k ends at node k: delay = cubic_0 + x (cubic_1 + x (cubic_2 + x cubic_3))
   real cubic_0[1:LAST], cubic_1[1:LAST], cubic_2[1:LAST], cubic_3[1:LAST];
@@ -52,14 +52,22 @@
   endtask
 
   task build_segment(input int k);
-    real width, width_before, width_after, first, last, chord, chord_before, chord_after;
+    real width, first, last, chord, chord_before, chord_after;
     real slope_first, slope_last, steepest, bend;
+{% if nodes | length > 2 %}
+    real width_before, width_after;
+{% endif %}
     width = gap[k];
     first = node_delay(k - 1);
     last = node_delay(k);
     chord = (last - first) / width;
+    chord_before = chord;
+    chord_after = chord;
+{% if nodes | length == 2 %}
+    slope_first = -regeneration_tau();
+    slope_last = 2.0 * chord - slope_first;
+{% else %}
     if (k == 1) begin
-      chord_before = chord;
       slope_first = -regeneration_tau();
     end else begin
       width_before = gap[k-1];
@@ -67,17 +75,13 @@
       slope_first = (width * chord_before + width_before * chord) / (width + width_before);
     end
     if (k == LAST) begin
-      chord_after = chord;
-{% if nodes | length == 2 %}
-      slope_last = 2.0 * chord - slope_first;
-{% else %}
       slope_last = chord + width * (chord - chord_before) / (width + width_before);
-{% endif %}
     end else begin
       width_after = gap[k+1];
       chord_after = (node_delay(k + 1) - last) / width_after;
       slope_last = (width_after * chord + width * chord_after) / (width_after + width);
     end
+{% endif %}
     // Limited, so that the curve falls wherever its nodes do
     steepest = 3.0 * (chord_before > chord ? chord_before : chord);
     if (slope_first < steepest) slope_first = steepest;
@@ -85,7 +89,6 @@
     steepest = 3.0 * (chord_after > chord ? chord_after : chord);
     if (slope_last < steepest) slope_last = steepest;
     if (slope_last > 0.0) slope_last = 0.0;
-
     bend = (slope_first + slope_last - 2.0 * chord) / width;
     cubic_0[k] = first;
     cubic_1[k] = slope_first;

@@ -2,10 +2,10 @@
 {{ line }}
 {% endfor %}
 
-// Waivers. Of parameters: those of effects that are not characterised are there all the same, so
-// that every cell has the same. Of signals: some are there to be read from outside, and some
-// algorithms use a part of a word. Of delays: each is one time step at least. Of nets: the supply
-// both switches the cell and is an operand. Of first values: there is no pin that could give them.
+// Waivers. Parameters: those of effects that are not characterised are there all the same, so that
+// every cell has the same. Signals: some are there to be read from outside, and some algorithms
+// use a part of a word. Delays: some resets take none. Nets: the supply both switches the cell and
+// is an operand. First values: there is no pin that could give them.
 // verilator lint_save
 // verilator lint_off UNUSEDPARAM
 // verilator lint_off UNUSEDSIGNAL
@@ -28,6 +28,8 @@ module {{ cell.name }} #(
 );
   timeunit {{ cell.time_precision }};
   timeprecision {{ cell.time_precision }};
+  localparam real TICKS_PER_S = {{ ticks_per_s }};  // times are whole numbers of ticks
+  localparam real TICK_S = 1.0 / TICKS_PER_S;
 {% include "systemverilog/state.sv" %}
 {% include "systemverilog/start.sv" %}
 {% include "systemverilog/clock.sv" %}

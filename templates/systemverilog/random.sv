@@ -97,7 +97,7 @@
         + 1.0 / 7.0) * square + 1.0 / 5.0) * square + 1.0 / 3.0) * square + 1.0));
   endfunction
 {% endif %}
-{% if exact_exp %}
+{% if sigma_on_demand %}
 
   // exp(k ln 2 + r) = 2^k (1 + r + r^2/2! + r^3/3! + ...); ln 2 in two parts
   function automatic real exact_exp(input real arg);

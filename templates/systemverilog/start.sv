@@ -13,9 +13,7 @@
 {% if mismatch %}
   int mismatch_on;
   logic [63:0] mismatch_key;
-{% for component in mismatch %}
-  real mismatch{{ component }}_z;
-{% endfor %}
+  real {{ mismatch_names | join(", ") }};  // this instance, in sigmas
 {% endif %}
   logic [63:0] coin_key;
 
@@ -59,6 +57,7 @@
     if (!$value$plusargs("behavgen_process=%d", process_code)) process_code = PROCESS;
   endtask
 
+  // One stream of random numbers for each purpose
   task take_keys;
     logic [63:0] seed, run_seed;
     seed = SEED == 64'd0 ? path_seed(instance_path) : SEED;
@@ -68,8 +67,8 @@
 {% endif %}
 {% if mismatch %}
     mismatch_key = stream_key(seed, run_seed, 64'd1);
-{% for component in mismatch %}
-    mismatch{{ component }}_z = standard_normal(random_bits(mismatch_key, 64'd{{ loop.index }}));
+{% for name in mismatch_names %}
+    {{ name }} = standard_normal(random_bits(mismatch_key, 64'd{{ loop.index }}));
 {% endfor %}
 {% endif %}
     coin_key = stream_key(seed, run_seed, 64'd2);
@@ -89,8 +88,9 @@
 {% endif %}
 {% endfor %}
       default: begin
-        $fatal(1, "[behavgen] %s t=0: process code %0d is unknown; known are {{ known_processes }}",
-               instance_path, process_code);
+        $fatal(1, "[behavgen] %s t=0: the process code %0d is unknown; known are %s",
+               instance_path, process_code,
+               {{ known_processes }});
       end
     endcase
   endtask

@@ -1,16 +1,13 @@
 
   // -- Supply and enable ------------------------------------------------------------------------
 
+  always @({{ off_events }}) begin
 {% if pins.vdd and supply.matters %}
-  always @({{ pins.vdd }}) begin
     vdd_changed = 1'b1;
 {% if common_mode.matters %}
-    vcm_step_end = vcm_step;  // an empty range: everything is to be taken in anew
+    vcm_step_end = vcm_step;  // an empty range: all conditions are to be taken in anew
 {% endif %}
-  end
-
 {% endif %}
-  always @({{ off_events }}) begin
     if (is_on != ({{ is_on }})) begin
       is_on = !is_on;
       if (!is_on) lose_outputs(2);

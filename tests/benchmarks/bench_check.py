@@ -1,7 +1,7 @@
 """What a check costs: checked decisions per second, and against the bare simulation.
 
 Run alone: ``python tests/benchmarks/bench_check.py``. The bare simulation plays the same
-stimulus to the same compiled model, without benches, Python or a second session. Both
+stimulus to the same compiled model, without benches, Python or a second batch. Both
 are measured in one run, in seconds of processor time, the best of a few rounds each.
 Bound: a check costs at most 4 times the bare simulation.
 """

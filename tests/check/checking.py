@@ -5,9 +5,8 @@ from __future__ import annotations
 from functools import partial
 from pathlib import Path
 
-from behavgen.check import preparation
+from behavgen.check import preparation, runs
 from behavgen.check.check import check
-from behavgen.check.runs import plan_sessions
 from behavgen.check.verdict import CheckReport
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.emit.systemverilog import systemverilog
@@ -28,9 +27,10 @@ def checked(model: ComparatorModel, folder: Path, text: str = "", **options) -> 
 
 
 def shorten(monkeypatch) -> None:
-    """Let every run have its fewest decisions; strata are short then, disagreements remain."""
-    short = partial(plan_sessions, decisions=1)
-    monkeypatch.setattr(preparation, "plan_sessions", short)
+    """Let every run have few decisions; strata are short then, disagreements remain."""
+    monkeypatch.setattr(runs, "FEWEST_DECISIONS", 200)
+    short = partial(runs.plan_batches, decisions=1)
+    monkeypatch.setattr(preparation, "plan_batches", short)
 
 
 def failures(report: CheckReport) -> list[str]:

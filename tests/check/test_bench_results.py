@@ -1,4 +1,4 @@
-"""What sessions left behind becomes results: their end, their benches, their messages."""
+"""What batches left behind becomes results: their end, their benches, their messages."""
 
 from pathlib import Path
 
@@ -6,8 +6,8 @@ import pytest
 
 from behavgen.check.bench_results import bench_results, summarise
 from behavgen.check.directed import WARNING_RUN
-from behavgen.check.runs import Run, Session, Settings
-from behavgen.check.simulation import SessionOutcome, share_out
+from behavgen.check.runs import Batch, Run, Settings
+from behavgen.check.simulation import BatchOutcome, share_out
 from behavgen.simulators.cocotb_benches import BenchOutcome
 from behavgen.simulators.process import Finished
 from tests.example_models import full_model
@@ -22,8 +22,8 @@ def outcome(tmp_path: Path, *, code=0, log=3 * TOLD, benches=None):
     path = tmp_path / "first.log"
     path.write_text(log)
     passed = BenchOutcome(module="test_agreement", name="all_is_well/run=3", message="")
-    return SessionOutcome(
-        session=Session(name="first", plusargs=(), runs=(BLOCK, WARNING)),
+    return BatchOutcome(
+        batch=Batch(name="first", plusargs=(), runs=(BLOCK, WARNING)),
         finished=Finished(code=code, log=path),
         benches=(passed,) if benches is None else benches,
     )
@@ -83,8 +83,8 @@ def test_sharing_out_keeps_every_run():
     runs = tuple(
         Run(index=n, name=str(n), given=SETTINGS, meant=SETTINGS, decisions=1) for n in range(7)
     )
-    parts = share_out(Session(name="all", plusargs=(), runs=runs), 3)
+    parts = share_out(Batch(name="all", plusargs=(), runs=runs), 3)
     assert sorted(run.index for part in parts for run in part.runs) == list(range(7))
     assert max(len(part.runs) for part in parts) == 3
     assert len({part.name for part in parts}) == 3
-    assert len(share_out(Session(name="all", plusargs=(), runs=runs[:1]), 8)) == 1
+    assert len(share_out(Batch(name="all", plusargs=(), runs=runs[:1]), 8)) == 1

@@ -12,7 +12,7 @@ from pathlib import Path
 import pytest
 
 from behavgen.check import preparation
-from behavgen.check.runs import plan_sessions
+from behavgen.check.runs import plan_batches
 from behavgen.check.verdict import load_report
 from behavgen.errors import ProjectError, ToolError
 from behavgen.model import Process
@@ -172,8 +172,8 @@ def test_a_simulation_that_ends_itself_is_a_verdict(tmp_path):
 
 
 def test_a_stratum_that_was_not_exercised_fails_the_check(tmp_path, monkeypatch):
-    short = partial(plan_sessions, decisions=2000)
-    monkeypatch.setattr(preparation, "plan_sessions", short)
+    short = partial(plan_batches, decisions=2000)
+    monkeypatch.setattr(preparation, "plan_batches", short)
     report = checked(SMALL, tmp_path)
     assert all(bench.passed for bench in report.benches)
     assert report.disagreement_count == 0

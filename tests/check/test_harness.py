@@ -41,7 +41,7 @@ def test_plans_have_unique_names_and_indices_in_a_row():
     plan = plan_check(full_model(), seed=1, jobs=3)
     assert [run.index for run in plan.runs] == list(range(len(plan.runs)))
     assert len({run.name for run in plan.runs}) == len(plan.runs)
-    assert len({session.name for session in plan.sessions}) == len(plan.sessions)
+    assert len({batch.name for batch in plan.batches}) == len(plan.batches)
 
 
 def test_files_hold_big_endian_words(tmp_path):

@@ -87,10 +87,7 @@ EDITS = {
     "deciding on a step from X": (r"2'b01: begin", "2'b01, 2'bx1: begin"),
     "reset state": (r"(returning = 1'b0;\s*outp = )1'b1", r"\g<1>1'b0"),
     "rounding of the delay": (r"#\(delay_s \* TICKS_PER_S\)", "#($floor(delay_s * TICKS_PER_S))"),
-    "a phase that is a tick too short": (
-        r"\$realtime >= ready_time",
-        "$realtime + 1.0 >= ready_time",
-    ),
+    "a phase that is a tick too short": (r"ready_by\(\$realtime\)", "ready_by($realtime + 1.0)"),
     "a lower clamp of the supply": (r": x_v_low;", ": vdd_v;"),
     "an upper clamp of the temperature": (
         r"\? temperature_k : x_t_high",

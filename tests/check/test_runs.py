@@ -4,7 +4,7 @@ from collections import Counter
 
 import pytest
 
-from behavgen.check.runs import plan_sessions, reference_of
+from behavgen.check.runs import plan_batches, reference_of
 from behavgen.formulas.random_stream import path_seed
 from tests.example_models import full_model, minimal_model, renamed_pins_model
 
@@ -12,7 +12,7 @@ MODELS = [full_model(), minimal_model(), renamed_pins_model()]
 
 
 def runs_of(model, **options):
-    return [run for session in plan_sessions(model, **options) for run in session.runs]
+    return [run for batch in plan_batches(model, **options) for run in batch.runs]
 
 
 @pytest.mark.parametrize("model", MODELS, ids=lambda model: model.cell.name)
@@ -53,8 +53,8 @@ def test_the_command_line_changes_everything_that_it_can():
 
 def test_another_seed_gives_other_temperatures_and_the_same_seed_the_same_plan():
     model = full_model()
-    assert plan_sessions(model, seed=3) == plan_sessions(model, seed=3)
-    assert plan_sessions(model, seed=3) != plan_sessions(model, seed=4)
+    assert plan_batches(model, seed=3) == plan_batches(model, seed=3)
+    assert plan_batches(model, seed=3) != plan_batches(model, seed=4)
 
 
 def test_seed_zero_means_the_instance_path():

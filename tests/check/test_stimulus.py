@@ -5,7 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from behavgen.check.runs import Run, Settings, plan_sessions, reference_of
+from behavgen.check.runs import Run, Settings, plan_batches, reference_of
 from behavgen.check.stimulus import BALANCED, NOISY, SMALL, SWEEP, ZERO, make_stimulus
 from tests.example_models import full_model, minimal_model, renamed_pins_model
 
@@ -24,8 +24,8 @@ def overdrive(stimulus):
 
 @pytest.mark.parametrize("model", MODELS, ids=lambda model: model.cell.name)
 def test_no_planned_decision_hangs_on_a_tick(model):
-    for session in plan_sessions(model, decisions=8000):
-        for run in session.runs:
+    for batch in plan_batches(model, decisions=8000):
+        for run in batch.runs:
             found = make_stimulus(model, run, seed=1)
             phase = found.end - found.edge
             if run.meant.delay_on:
@@ -35,8 +35,8 @@ def test_no_planned_decision_hangs_on_a_tick(model):
 
 @pytest.mark.parametrize("model", MODELS, ids=lambda model: model.cell.name)
 def test_times_are_in_order_and_inputs_keep_away_from_edges(model):
-    for session in plan_sessions(model, decisions=8000):
-        for run in session.runs:
+    for batch in plan_batches(model, decisions=8000):
+        for run in batch.runs:
             found = make_stimulus(model, run, seed=1)
             assert np.all(found.end > found.edge)
             assert np.all(found.gap > 1)

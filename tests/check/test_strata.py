@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from behavgen.check.agreement import compare
-from behavgen.check.runs import plan_sessions
+from behavgen.check.runs import plan_batches
 from behavgen.check.stimulus import make_stimulus
 from behavgen.check.strata import PlayedRun, count_strata
 from behavgen.check.waveform import Record, expect
@@ -37,7 +37,7 @@ def played(model, runs, record=ideal):
 
 
 def runs_of(model):
-    return [run for session in plan_sessions(model) for run in session.runs]
+    return [run for batch in plan_batches(model) for run in batch.runs]
 
 
 @pytest.mark.parametrize("model", MODELS, ids=lambda m: f"{m.cell.name} {m.cell.in_reset}")

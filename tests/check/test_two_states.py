@@ -6,7 +6,7 @@ import pytest
 
 from behavgen.check.agreement import compare
 from behavgen.check.harness import harness_macros, top_text, write_stimulus
-from behavgen.check.runs import TOP, plan_sessions
+from behavgen.check.runs import TOP, plan_batches
 from behavgen.check.simulation import play
 from behavgen.check.stimulus import make_stimulus
 from behavgen.check.waveform import expect, read_record
@@ -25,7 +25,7 @@ WITHOUT_X = ("typ, noise off, between", "slow, noise on")
 def built(tmp_path_factory):
     """A folder with a program that plays the runs without X, and these runs."""
     folder = tmp_path_factory.mktemp("two_states")
-    runs = [run for run in plan_sessions(MODEL)[0].runs if run.name in WITHOUT_X]
+    runs = [run for run in plan_batches(MODEL)[0].runs if run.name in WITHOUT_X]
     texts = {"module.sv": emitted_text(MODEL), "top.sv": top_text(MODEL, runs)}
     for name, text in texts.items():
         (folder / name).write_text(text)

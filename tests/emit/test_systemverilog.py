@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+import json
 import re
 from dataclasses import replace
 from pathlib import Path
@@ -11,7 +12,8 @@ import pytest
 
 from behavgen.emit.emit import emit
 from behavgen.emit.systemverilog import systemverilog
-from behavgen.model import Pins
+from behavgen.errors import ProjectError
+from behavgen.model import Pins, dump_model, load_model
 from behavgen.simulators.icarus import find_icarus
 from behavgen.simulators.slang import elaborate
 from behavgen.simulators.verilator import find_verilator
@@ -79,6 +81,39 @@ def test_pins_are_named_as_the_user_wishes_and_may_be_left_out():
     ports = systemverilog(renamed_pins_model()).text.partition(") (")[2].partition(");")[0]
     names = re.findall(r"^\s+(?:input|output)\s+\w+\s+(\w+)", ports, re.MULTILINE)
     assert set(names) == {"vip", "vim", "ck", "q", "en", "unresolved"}
+
+
+def test_a_pin_named_like_something_inside_is_refused():
+    pins = Pins(clk="overdrive_v", outp="q", vdd="task")
+    with pytest.raises(ProjectError) as refused:
+        systemverilog(full_model(pins=pins))
+    columns = [fault.column for fault in refused.value.faults]
+    assert columns == ["cells.latch_full.pins.clk", "cells.latch_full.pins.vdd"]
+
+
+def test_pins_may_swap_their_usual_names(tmp_path):
+    model = full_model(pins=Pins(inp="inn", inn="inp", outp="outn", outn="outp"))
+    source = written(model, tmp_path)
+    assert "overdrive_v = ((inn - inp) - trip_v) - mismatch_v;" in source.read_text()
+    said = elaborate([source], top=model.cell.name)
+    assert (said.errors, said.warnings) == (0, 0), said.text
+
+
+def test_process_names_are_the_words_of_a_user(tmp_path):
+    odd = 'slow, 5 % \\ "corner"'
+    text = dump_model(full_model()).replace('"slow"', json.dumps(odd))
+    (tmp_path / "model.json").write_text(text)
+    model = load_model(tmp_path / "model.json")
+    assert model.processes[1].name == odd
+    source = written(model, tmp_path)
+    said = elaborate([source], top=model.cell.name)
+    assert (said.errors, said.warnings) == (0, 0), said.text
+
+
+@pytest.mark.parametrize("model", [*EXAMPLES, *VARIANTS[:4]], ids=name_of)
+def test_no_array_element_is_assigned_by_a_constant_index(model):
+    """Icarus 11 drops such assignments to reals after a comparison that came out equal."""
+    assert not re.search(r"\w\[\d+\]\s*=[^=]", systemverilog(model).text)
 
 
 def test_the_default_process_is_the_first_one():

@@ -31,14 +31,14 @@
 //   noise: noise.csv, 4 rows, sha256 111111111111
 //
 // Fits the tables:
-//   delay: 3 rows, 1 conditions; rms up to 0.4 %, worst up to 0.9 %
+//   delay: 3 rows, 1 condition; rms up to 0.4 %, worst up to 0.9 %
 //
 // Note:
 //   The noise table covers 1 of 1 conditions.
 //
 // Caution:
-//   Fitted to the tables named above and valid inside the stated ranges; outside, conditions are
-//     clamped and results are no predictions.
+//   Fitted to tables and valid inside the stated ranges; outside, conditions are clamped and
+//     results are no predictions.
 //   It replaces neither transistor-level, extracted, timing or reliability sign-off nor your own
 //     safety process, and claims no integrity level.
 //   Rates far below what was counted rest on a Gaussian and an exponential law. Intervals leave out
@@ -53,10 +53,10 @@
 //   Written by behavgen 0.1.0. This file belongs to you: use, change and pass it on without
 //     condition.
 
-// Waivers. Of parameters: those of effects that are not characterised are there all the same, so
-// that every cell has the same. Of signals: some are there to be read from outside, and some
-// algorithms use a part of a word. Of delays: each is one time step at least. Of nets: the supply
-// both switches the cell and is an operand. Of first values: there is no pin that could give them.
+// Waivers. Parameters: those of effects that are not characterised are there all the same, so that
+// every cell has the same. Signals: some are there to be read from outside, and some algorithms
+// use a part of a word. Delays: some resets take none. Nets: the supply both switches the cell and
+// is an operand. First values: there is no pin that could give them.
 // verilator lint_save
 // verilator lint_off UNUSEDPARAM
 // verilator lint_off UNUSEDSIGNAL
@@ -69,23 +69,21 @@
 `endif
 
 module latch_full #(
-  parameter real       OFFSET_SHIFT_V         = 0.0,    // V: added to the trip point
-  parameter int        NOISE_ON               = 1,      // 0 off, 1 on: noise of each decision
-  parameter int        MISMATCH_ON            = 0,      // 0 off, 1 on: offset of this instance
-  parameter int        MEMORY_ON              = 1,      // 0 off, 1 on: not characterised, does
-                                                        // nothing
-  parameter int        DELAY_ON               = 1,      // 0 off, 1 on: delays; off: one time step
-  parameter bit [63:0] SEED                   = 64'd0,  // from 0: of this instance's random
-                                                        // numbers; 0: from its hierarchical path
-  parameter real       TEMPERATURE_C          = 27.0,   // degC, from -273.15: temperature of the
-                                                        // cell
-  parameter int        PROCESS                = 0,      // 0 typ, 3 slow: process
-  parameter int        UNRESOLVED_MODE        = 0,      // 0 x, 1 coin, 2 hold: outputs after an
-                                                        // unresolved decision
-  parameter int        FORCE_UNRESOLVED_EVERY = 0,      // from 0: one in so many decisions stays
+  parameter real       OFFSET_SHIFT_V         = 0.0,    // V, added to the trip point
+  parameter int        NOISE_ON               = 1,      // noise of each decision: 0 off, 1 on
+  parameter int        MISMATCH_ON            = 0,      // offset of this instance: 0 off, 1 on
+  parameter int        MEMORY_ON              = 1,      // does nothing: not characterised
+  parameter int        DELAY_ON               = 1,      // delays; off: one time step: 0 off, 1 on
+  parameter bit [63:0] SEED                   = 64'd0,  // of this instance's random numbers; 0:
+                                                        // from its hierarchical path
+  parameter real       TEMPERATURE_C          = 27.0,   // degC, temperature of the cell
+  parameter int        PROCESS                = 0,      // process: 0 typ, 3 slow
+  parameter int        UNRESOLVED_MODE        = 0,      // outputs after an unresolved decision: 0
+                                                        // x, 1 coin, 2 hold
+  parameter int        FORCE_UNRESOLVED_EVERY = 0,      // one in so many decisions stays
                                                         // unresolved; 0: none is forced
-  parameter int        WARNINGS               = 1       // 0 silent, 1 once a cause, 2 fatal:
-                                                        // messages
+  parameter int        WARNINGS               = 1       // messages: 0 silent, 1 once a cause, 2
+                                                        // fatal
 ) (
   input  real  inp,         // V, taken at the decision edge
   input  real  inn,         // V
@@ -97,18 +95,17 @@ module latch_full #(
 );
   timeunit 1fs;
   timeprecision 1fs;
+  localparam real TICKS_PER_S = 1e15;  // times are whole numbers of ticks
+  localparam real TICK_S = 1.0 / TICKS_PER_S;
 
   // -- To be read from outside ------------------------------------------------------------------
-
-  localparam real TICKS_PER_S = 1e15;
-  localparam real TICK_S = 1.0 / TICKS_PER_S;
 
   // Why the outputs show no decision: 0 they do, or rest; 1 unresolved; 2 supply or enable;
   // 3 input not a number; 4 clock unknown; 5 before the first decision
   int x_cause = 5;
   bit [63:0] decision_count = 64'd0;  // decision edges so far
   real overdrive_v = 0.0;             // effective overdrive of the last decision, signed
-  real delay_s = TICK_S;                 // its delay, also if it did not resolve
+  real delay_s = TICK_S;              // its delay, also if it did not resolve
   int temperature_warnings = 0;       // how often a condition was outside its range
   int supply_warnings = 0;
   int common_mode_warnings = 0;
@@ -121,30 +118,32 @@ module latch_full #(
   // from resolving; one is shown
   localparam bit [1:0] IDLE = 2'd0, DECIDING = 2'd1, FORCED = 2'd2, DECIDED = 2'd3;
   bit [1:0] decision_state = IDLE;
+  real edge_time = 0.0;               // decision edge, in ticks
   logic clk_level;                    // level of the clock before its last change
   localparam real SUPPLY_OFF_V = 0.54;
   bit is_on;                          // supplied and enabled
-  real edge_time = 0.0;               // its decision edge, in ticks of the time precision
-  real reset_ticks = 0.0;             // delay of the reset after it, whole
   bit returning = 1'b0;               // the reset state is on its way
+  real return_ticks = 1.0;            // how long it takes, rounded where it is waited for
   real return_time = 0.0;             // when it is there, in ticks
-  real return_ticks = 1.0;            // how long it takes
 
-  // Conditions, and what follows from them
+  // -- Conditions and what follows from them ----------------------------------------------------
+
+  localparam real STEPS_PER_K = 1024.0;     // to which the temperature is rounded
   real temperature_k = 0.0;
   localparam real STEPS_PER_V = 1048576.0;  // to which supply and common mode are rounded
-  real vdd_v = 0.0;
   bit vdd_changed = 1'b1;             // since it was last taken in
-  real vcm_v = 0.0;
-  real vcm_steps = 0.0;               // common mode in steps, plus half a step to round it
-  real vcm_step = 0.0;                // range of vcm_steps at the last decision; none yet
+  real vdd_v = 0.0;
+  real vcm_steps = 0.0;               // common mode in steps, plus half a step to round it down
+  real vcm_step = 0.0;                // range of vcm_steps that was last taken in; none yet
   real vcm_step_end = 0.0;
+  real vcm_v = 0.0;
   real trip_v = 0.0;                  // trip point with OFFSET_SHIFT_V
   real mismatch_v = 0.0;              // offset of this instance beyond it
+  localparam real CERTAIN_SIGMAS = 8.3;     // no draw reaches it, so that none is made beyond
   real sigma_v = 0.0;                 // noise of one decision
   real noise_reach_v = 0.0;           // overdrives from which noise changes no bit
-  bit sigma_known = 1'b0;             // else the reach is only an upper bound
-  real reset_s = 0.0;                 // reset delay
+  bit sigma_known = 1'b0;             // if not, the reach is only an upper bound
+  real reset_ticks = 0.0;             // reset delay
   real x_t, x_v, x_c, x_t_low, x_t_high, x_v_low, x_v_high, x_c_low, x_c_high;
   real offset_t0v0c0, offset_v0c0, offset_v1c0, offset_c0, offset_c1, offset_v;
   real noise_t0v0c0, noise_v0c0, noise_c0, noise_ln;
@@ -165,8 +164,7 @@ module latch_full #(
   logic [63:0] noise_key;
   int mismatch_on;
   logic [63:0] mismatch_key;
-  real mismatch0_z;
-  real mismatch1_z;
+  real mismatch0_z, mismatch1_z;  // this instance, in sigmas
   logic [63:0] coin_key;
 
   initial begin
@@ -189,6 +187,7 @@ module latch_full #(
     if (!$value$plusargs("behavgen_process=%d", process_code)) process_code = PROCESS;
   endtask
 
+  // One stream of random numbers for each purpose
   task take_keys;
     logic [63:0] seed, run_seed;
     seed = SEED == 64'd0 ? path_seed(instance_path) : SEED;
@@ -216,8 +215,9 @@ module latch_full #(
         reset_t0v0c0 = -24.31;
       end
       default: begin
-        $fatal(1, "[behavgen] %s t=0: process code %0d is unknown; known are 0 typ, 3 slow",
-               instance_path, process_code);
+        $fatal(1, "[behavgen] %s t=0: the process code %0d is unknown; known are %s",
+               instance_path, process_code,
+               "0 typ, 3 slow");
       end
     endcase
   endtask
@@ -252,9 +252,8 @@ module latch_full #(
 
   // -- Decision: at a clean step of the clock to its deciding level -----------------------------
 
-  localparam real CERTAIN_SIGMAS = 8.3;  // no draw reaches it, so that none is made beyond
-  localparam real FLOOR_V = 1e-15;       // overdrives below are not distinguished
-  real magnitude_v = 0.0;                // of the overdrive
+  localparam real FLOOR_V = 1e-15;  // overdrives below are not distinguished
+  real magnitude_v = 0.0;           // of the overdrive
 
   task decide;
     edge_time = $realtime;
@@ -267,25 +266,13 @@ module latch_full #(
       if (vdd_changed) fold_supply;
       fold_common_mode;
     end
-    decision_state = DECIDING;
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
-    end
     overdrive_v = ((inp - inn) - trip_v) - mismatch_v;
     magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
     if (magnitude_v < noise_reach_v) add_noise;
     if (DELAY_ON != 0) find_delay;
-  endtask
-
-  task add_noise;
-    if (!sigma_known) begin
-      sigma_known = 1'b1;
-      sigma_v = exact_exp(noise_ln);
-      noise_reach_v = CERTAIN_SIGMAS * sigma_v;
-    end
-    if (magnitude_v < noise_reach_v) begin
-      overdrive_v = overdrive_v + sigma_v * standard_normal(random_bits(noise_key, decision_count));
-      magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+    decision_state = DECIDING;
+    if (FORCE_UNRESOLVED_EVERY > 0) begin
+      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
     end
   endtask
 
@@ -297,13 +284,25 @@ module latch_full #(
     end
   endtask
 
+  task add_noise;
+    if (!sigma_known) begin
+      sigma_v = exact_exp(noise_ln);
+      noise_reach_v = CERTAIN_SIGMAS * sigma_v;
+      sigma_known = 1'b1;
+    end
+    if (magnitude_v < noise_reach_v) begin
+      overdrive_v = overdrive_v + sigma_v * standard_normal(random_bits(noise_key, decision_count));
+      magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+    end
+  endtask
+
   // -- Delay over overdrive ---------------------------------------------------------------------
   // A curve over ln(overdrive) through nodes. Below the first node a straight line with slope
   // -tau, which is linear regeneration; between nodes cubics whose slopes at the nodes are those
   // of the parabola through three neighbours; from the last node on constant.
   // What an overdrive needs of it is built when it is first needed under the present conditions.
 
-  localparam int LAST = 3;     // node
+  localparam int LAST = 3;      // node
   real gap[1:LAST];             // ln of the overdrive at a node over that at the node before
   // Segment k ends at node k: delay = cubic_0 + x (cubic_1 + x (cubic_2 + x cubic_3))
   real cubic_0[1:LAST], cubic_1[1:LAST], cubic_2[1:LAST], cubic_3[1:LAST];
@@ -355,23 +354,26 @@ module latch_full #(
   task build_segment(input int k);
     real width, first, last, chord, chord_before, chord_after;
     real slope_first, slope_last, steepest, bend;
+    real width_before, width_after;
     width = gap[k];
     first = node_delay(k - 1);
     last = node_delay(k);
     chord = (last - first) / width;
+    chord_before = chord;
+    chord_after = chord;
     if (k == 1) begin
-      chord_before = chord;
       slope_first = -regeneration_tau();
     end else begin
-      chord_before = (first - node_delay(k - 2)) / gap[k-1];
-      slope_first = (width * chord_before + gap[k-1] * chord) / (width + gap[k-1]);
+      width_before = gap[k-1];
+      chord_before = (first - node_delay(k - 2)) / width_before;
+      slope_first = (width * chord_before + width_before * chord) / (width + width_before);
     end
     if (k == LAST) begin
-      chord_after = chord;
-      slope_last = chord + width * (chord - chord_before) / (width + gap[k-1]);
+      slope_last = chord + width * (chord - chord_before) / (width + width_before);
     end else begin
-      chord_after = (node_delay(k + 1) - last) / gap[k+1];
-      slope_last = (gap[k+1] * chord + width * chord_after) / (gap[k+1] + width);
+      width_after = gap[k+1];
+      chord_after = (node_delay(k + 1) - last) / width_after;
+      slope_last = (width_after * chord + width * chord_after) / (width_after + width);
     end
     // Limited, so that the curve falls wherever its nodes do
     steepest = 3.0 * (chord_before > chord ? chord_before : chord);
@@ -380,7 +382,6 @@ module latch_full #(
     steepest = 3.0 * (chord_after > chord ? chord_after : chord);
     if (slope_last < steepest) slope_last = steepest;
     if (slope_last > 0.0) slope_last = 0.0;
-
     bend = (slope_first + slope_last - 2.0 * chord) / width;
     cubic_0[k] = first;
     cubic_1[k] = slope_first;
@@ -395,10 +396,10 @@ module latch_full #(
 
   function real node_delay(input int node);
     case (node)
-      0: return $exp((0.03 * x_c + node0_c1) * x_c + node0_c0);
-      1: return $exp((0.03 * x_c + node1_c1) * x_c + node1_c0);
+      3: return $exp((0.03 * x_c + node3_c1) * x_c + node3_c0);
       2: return $exp((0.03 * x_c + node2_c1) * x_c + node2_c0);
-      default: return $exp((0.03 * x_c + node3_c1) * x_c + node3_c0);
+      1: return $exp((0.03 * x_c + node1_c1) * x_c + node1_c0);
+      default: return $exp((0.03 * x_c + node0_c1) * x_c + node0_c0);
     endcase
   endfunction
 
@@ -428,8 +429,8 @@ module latch_full #(
 
   task end_undecided;
     return_ticks = 1.0;  // as at power-up if there was nothing to decide
-    if (decision_state == DECIDING && (DELAY_ON == 0 || $realtime >= ready_time())) begin
-      show_decision;  // it is ready at this very moment
+    if (decision_state == DECIDING && (DELAY_ON == 0 || ready_by($realtime))) begin
+      show_decision;
       disable show_when_ready;
       return_ticks = reset_ticks;
     end else if (decision_state != IDLE) begin
@@ -438,8 +439,9 @@ module latch_full #(
     end
   endtask
 
-  function automatic real ready_time();
-    return edge_time + $floor(delay_s * TICKS_PER_S + 0.5);
+  // Times are rounded to whole ticks
+  function automatic bit ready_by(input real now);
+    return edge_time + delay_s * TICKS_PER_S < now + 0.5;
   endfunction
 
   task leave_unresolved;
@@ -487,7 +489,7 @@ module latch_full #(
 
   // By a decision edge, unless the reset state is due at this very moment
   task cancel_return;
-    if ($realtime < return_time) begin
+    if ($realtime + 0.5 <= return_time) begin
       returning = 1'b0;
       disable reset_when_due;
     end
@@ -497,10 +499,7 @@ module latch_full #(
 
   always @(vdd) begin
     vdd_changed = 1'b1;
-    vcm_step_end = vcm_step;  // an empty range: everything is to be taken in anew
-  end
-
-  always @(vdd) begin
+    vcm_step_end = vcm_step;  // an empty range: all conditions are to be taken in anew
     if (is_on != (vdd >= SUPPLY_OFF_V)) begin
       is_on = !is_on;
       if (!is_on) lose_outputs(2);
@@ -508,12 +507,10 @@ module latch_full #(
     end
   end
 
-  // -- Conditions -------------------------------------------------------------------------------
+  // -- Quantities under the conditions ----------------------------------------------------------
   // Every quantity is a polynomial in coordinates x of the conditions, which are clamped to where
   // it was characterised. t, v, c are temperature, supply and common mode, digits their powers.
   // Polynomials are folded one condition at a time, so that only what has changed is repeated.
-
-  localparam real STEPS_PER_K = 1024.0;  // to which the temperature is rounded
 
   task fold_temperature;
     real clamped;
@@ -521,8 +518,8 @@ module latch_full #(
     if (temperature_k < x_t_low - 1.0 / STEPS_PER_K
         || temperature_k > x_t_high + 1.0 / STEPS_PER_K) begin
       temperature_warnings = temperature_warnings + 1;
-      warn($sformatf("temperature %g degC outside %g to %g: clamped", temperature_c,
-                     x_t_low - 273.15, x_t_high - 273.15));
+      warn($sformatf("temperature %g degC is outside %g degC to %g degC and clamped",
+                     temperature_c, x_t_low - 273.15, x_t_high - 273.15));
     end
     // Coordinates
     clamped = temperature_k > x_t_low ? (temperature_k < x_t_high ? temperature_k : x_t_high) :
@@ -532,7 +529,9 @@ module latch_full #(
     offset_v0c0 = 0.0001 * x_t + offset_t0v0c0;
     offset_v1c0 = 5e-5 * x_t - 0.0002;
     // Mismatch: components in V per sigma, and this instance's offset from the nominal
-    mismatch0_v0c0 = 0.0002 * x_t + 0.006;
+    if (mismatch_on != 0) begin
+      mismatch0_v0c0 = 0.0002 * x_t + 0.006;
+    end
     // Noise: ln of its sigma in V, and overdrives from which it need not be known
     noise_v0c0 = 0.1 * x_t + noise_t0v0c0;
     // Delay: ln of the regeneration time constant in s
@@ -559,8 +558,8 @@ module latch_full #(
         || vdd_v > x_v_high + 1.0 / STEPS_PER_V) begin
       supply_warnings = supply_warnings + 1;
       if (supply_warnings == 1) begin
-        warn($sformatf("supply %g V outside %g V to %g V: clamped", vdd,
-                       x_v_low, x_v_high));
+        warn($sformatf("supply %g V is outside %g V to %g V and clamped",
+                       vdd_v, x_v_low, x_v_high));
       end
     end
     // Coordinates
@@ -570,7 +569,9 @@ module latch_full #(
     offset_c0 = offset_v1c0 * x_v + offset_v0c0;
     offset_c1 = 2e-5 * x_v * x_v + 0.0003;
     // Mismatch: components in V per sigma, and this instance's offset from the nominal
-    mismatch0_c0 = -0.0001 * x_v + mismatch0_v0c0;
+    if (mismatch_on != 0) begin
+      mismatch0_c0 = -0.0001 * x_v + mismatch0_v0c0;
+    end
     // Noise: ln of its sigma in V, and overdrives from which it need not be known
     noise_c0 = -0.05 * x_v + noise_v0c0;
     // Delay: ln of the regeneration time constant in s
@@ -587,8 +588,7 @@ module latch_full #(
     node3_c1 = 0.01 * x_v * x_v + 0.1;
     // Reset: ln of its delay in s
     reset_c0 = -0.2 * x_v + reset_v0c0;
-    reset_s = $exp(reset_c0);
-    reset_ticks = DELAY_ON != 0 ? $floor(reset_s * TICKS_PER_S + 0.5) : 0.0;
+    reset_ticks = DELAY_ON != 0 ? $exp(reset_c0) * TICKS_PER_S : 0.0;
   endtask
 
   task fold_common_mode;
@@ -600,8 +600,8 @@ module latch_full #(
         || vcm_v > x_c_high + 1.0 / STEPS_PER_V) begin
       common_mode_warnings = common_mode_warnings + 1;
       if (common_mode_warnings == 1) begin
-        warn($sformatf("common mode %g V outside %g V to %g V: clamped", vcm_v,
-                       x_c_low, x_c_high));
+        warn($sformatf("common mode %g V is outside %g V to %g V and clamped",
+                       vcm_v, x_c_low, x_c_high));
       end
     end
     // Coordinates
@@ -611,8 +611,10 @@ module latch_full #(
     offset_v = (-4e-5 * x_c + offset_c1) * x_c + offset_c0;
     trip_v = offset_v + OFFSET_SHIFT_V;
     // Mismatch: components in V per sigma, and this instance's offset from the nominal
-    mismatch0_v = 0.0003 * x_c + mismatch0_c0;
-    if (mismatch_on != 0) mismatch_v = mismatch0_v * mismatch0_z + 0.0008 * mismatch1_z;
+    if (mismatch_on != 0) begin
+      mismatch0_v = 0.0003 * x_c + mismatch0_c0;
+      mismatch_v = mismatch0_v * mismatch0_z + 0.0008 * mismatch1_z;
+    end
     // Noise: ln of its sigma in V, and overdrives from which it need not be known
     noise_ln = (0.03 * x_c + 0.2) * x_c + noise_c0;
     noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;

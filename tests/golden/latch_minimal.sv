@@ -17,8 +17,8 @@
 //   offset, mismatch, noise, reset delay, memory of earlier decisions, aperture, energy, kickback
 //
 // Caution:
-//   Fitted to the tables named above and valid inside the stated ranges; outside, conditions are
-//     clamped and results are no predictions.
+//   Fitted to tables and valid inside the stated ranges; outside, conditions are clamped and
+//     results are no predictions.
 //   It replaces neither transistor-level, extracted, timing or reliability sign-off nor your own
 //     safety process, and claims no integrity level.
 //   Rates far below what was counted rest on a Gaussian and an exponential law. Intervals leave out
@@ -33,10 +33,10 @@
 //   Written by behavgen 0.1.0. This file belongs to you: use, change and pass it on without
 //     condition.
 
-// Waivers. Of parameters: those of effects that are not characterised are there all the same, so
-// that every cell has the same. Of signals: some are there to be read from outside, and some
-// algorithms use a part of a word. Of delays: each is one time step at least. Of nets: the supply
-// both switches the cell and is an operand. Of first values: there is no pin that could give them.
+// Waivers. Parameters: those of effects that are not characterised are there all the same, so that
+// every cell has the same. Signals: some are there to be read from outside, and some algorithms
+// use a part of a word. Delays: some resets take none. Nets: the supply both switches the cell and
+// is an operand. First values: there is no pin that could give them.
 // verilator lint_save
 // verilator lint_off UNUSEDPARAM
 // verilator lint_off UNUSEDSIGNAL
@@ -49,25 +49,21 @@
 `endif
 
 module latch_minimal #(
-  parameter real       OFFSET_SHIFT_V         = 0.0,    // V: added to the trip point
-  parameter int        NOISE_ON               = 1,      // 0 off, 1 on: not characterised, does
-                                                        // nothing
-  parameter int        MISMATCH_ON            = 0,      // 0 off, 1 on: not characterised, does
-                                                        // nothing
-  parameter int        MEMORY_ON              = 1,      // 0 off, 1 on: not characterised, does
-                                                        // nothing
-  parameter int        DELAY_ON               = 1,      // 0 off, 1 on: delays; off: one time step
-  parameter bit [63:0] SEED                   = 64'd0,  // from 0: of this instance's random
-                                                        // numbers; 0: from its hierarchical path
-  parameter real       TEMPERATURE_C          = 27.0,   // degC, from -273.15: not characterised,
-                                                        // does nothing
-  parameter int        PROCESS                = 0,      // 0 nominal: process
-  parameter int        UNRESOLVED_MODE        = 0,      // 0 x, 1 coin, 2 hold: outputs after an
-                                                        // unresolved decision
-  parameter int        FORCE_UNRESOLVED_EVERY = 0,      // from 0: one in so many decisions stays
+  parameter real       OFFSET_SHIFT_V         = 0.0,    // V, added to the trip point
+  parameter int        NOISE_ON               = 1,      // does nothing: not characterised
+  parameter int        MISMATCH_ON            = 0,      // does nothing: not characterised
+  parameter int        MEMORY_ON              = 1,      // does nothing: not characterised
+  parameter int        DELAY_ON               = 1,      // delays; off: one time step: 0 off, 1 on
+  parameter bit [63:0] SEED                   = 64'd0,  // of this instance's random numbers; 0:
+                                                        // from its hierarchical path
+  parameter real       TEMPERATURE_C          = 27.0,   // does nothing: not characterised
+  parameter int        PROCESS                = 0,      // process: 0 nominal
+  parameter int        UNRESOLVED_MODE        = 0,      // outputs after an unresolved decision: 0
+                                                        // x, 1 coin, 2 hold
+  parameter int        FORCE_UNRESOLVED_EVERY = 0,      // one in so many decisions stays
                                                         // unresolved; 0: none is forced
-  parameter int        WARNINGS               = 1       // 0 silent, 1 once a cause, 2 fatal:
-                                                        // messages
+  parameter int        WARNINGS               = 1       // messages: 0 silent, 1 once a cause, 2
+                                                        // fatal
 ) (
   input  real  inp,         // V, taken at the decision edge
   input  real  inn,         // V
@@ -79,18 +75,17 @@ module latch_minimal #(
 );
   timeunit 1fs;
   timeprecision 1fs;
+  localparam real TICKS_PER_S = 1e15;  // times are whole numbers of ticks
+  localparam real TICK_S = 1.0 / TICKS_PER_S;
 
   // -- To be read from outside ------------------------------------------------------------------
-
-  localparam real TICKS_PER_S = 1e15;
-  localparam real TICK_S = 1.0 / TICKS_PER_S;
 
   // Why the outputs show no decision: 0 they do, or rest; 1 unresolved; 2 supply or enable;
   // 3 input not a number; 4 clock unknown; 5 before the first decision
   int x_cause = 5;
   bit [63:0] decision_count = 64'd0;  // decision edges so far
   real overdrive_v = 0.0;             // effective overdrive of the last decision, signed
-  real delay_s = TICK_S;                 // its delay, also if it did not resolve
+  real delay_s = TICK_S;              // its delay, also if it did not resolve
   int temperature_warnings = 0;       // how often a condition was outside its range
   int supply_warnings = 0;
   int common_mode_warnings = 0;
@@ -103,14 +98,15 @@ module latch_minimal #(
   // from resolving; one is shown
   localparam bit [1:0] IDLE = 2'd0, DECIDING = 2'd1, FORCED = 2'd2, DECIDED = 2'd3;
   bit [1:0] decision_state = IDLE;
+  real edge_time = 0.0;               // decision edge, in ticks
   logic clk_level;                    // level of the clock before its last change
   bit is_on;                          // supplied and enabled
-  real edge_time = 0.0;               // its decision edge, in ticks of the time precision
   bit returning = 1'b0;               // the reset state is on its way
+  real return_ticks = 1.0;            // how long it takes, rounded where it is waited for
   real return_time = 0.0;             // when it is there, in ticks
-  real return_ticks = 1.0;            // how long it takes
 
-  // Conditions, and what follows from them
+  // -- Conditions and what follows from them ----------------------------------------------------
+
   real tau_s = 0.0;                   // regeneration time constant
   real node_s = 0.0;                  // delay at the largest characterised overdrive
 
@@ -136,6 +132,7 @@ module latch_minimal #(
     if (!$value$plusargs("behavgen_process=%d", process_code)) process_code = PROCESS;
   endtask
 
+  // One stream of random numbers for each purpose
   task take_keys;
     logic [63:0] seed, run_seed;
     seed = SEED == 64'd0 ? path_seed(instance_path) : SEED;
@@ -147,8 +144,9 @@ module latch_minimal #(
     case (process_code)
       0: ;  // nominal
       default: begin
-        $fatal(1, "[behavgen] %s t=0: process code %0d is unknown; known are 0 nominal",
-               instance_path, process_code);
+        $fatal(1, "[behavgen] %s t=0: the process code %0d is unknown; known are %s",
+               instance_path, process_code,
+               "0 nominal");
       end
     endcase
   endtask
@@ -183,22 +181,22 @@ module latch_minimal #(
 
   // -- Decision: at a clean step of the clock to its deciding level -----------------------------
 
-  localparam real FLOOR_V = 1e-15;       // overdrives below are not distinguished
-  real magnitude_v = 0.0;                // of the overdrive
+  localparam real FLOOR_V = 1e-15;  // overdrives below are not distinguished
+  real magnitude_v = 0.0;           // of the overdrive
 
   task decide;
     edge_time = $realtime;
-    if ((inp - inp) + (inn - inn) != 0.0) begin  // infinite or not a number
-      lose_input;
+    if ((inp - inp) + (inn - inn) != 0.0) begin
+      lose_input;  // it is infinite or not a number
       disable decide;
     end
+    overdrive_v = (inp - inn) - OFFSET_SHIFT_V;
+    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+    if (DELAY_ON != 0) find_delay;
     decision_state = DECIDING;
     if (FORCE_UNRESOLVED_EVERY > 0) begin
       if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
     end
-    overdrive_v = ((inp - inn) - OFFSET_SHIFT_V);
-    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
-    if (DELAY_ON != 0) find_delay;
   endtask
 
   task lose_input;
@@ -209,7 +207,7 @@ module latch_minimal #(
     end
   endtask
 
-  // ln(overdrive) as in linear regeneration; from the largest characterised overdrive on constant
+  // Linear regeneration; from the largest characterised overdrive on constant
   task find_delay;
     delay_s = node_s;
     if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;
@@ -243,8 +241,8 @@ module latch_minimal #(
 
   task end_undecided;
     return_ticks = 1.0;  // as at power-up if there was nothing to decide
-    if (decision_state == DECIDING && (DELAY_ON == 0 || $realtime >= ready_time())) begin
-      show_decision;  // it is ready at this very moment
+    if (decision_state == DECIDING && (DELAY_ON == 0 || ready_by($realtime))) begin
+      show_decision;
       disable show_when_ready;
       return_ticks = 0.0;
     end else if (decision_state != IDLE) begin
@@ -252,8 +250,9 @@ module latch_minimal #(
     end
   endtask
 
-  function automatic real ready_time();
-    return edge_time + $floor(delay_s * TICKS_PER_S + 0.5);
+  // Times are rounded to whole ticks
+  function automatic bit ready_by(input real now);
+    return edge_time + delay_s * TICKS_PER_S < now + 0.5;
   endfunction
 
   task leave_unresolved;
@@ -301,7 +300,7 @@ module latch_minimal #(
 
   // By a decision edge, unless the reset state is due at this very moment
   task cancel_return;
-    if ($realtime < return_time) begin
+    if ($realtime + 0.5 <= return_time) begin
       returning = 1'b0;
       disable reset_when_due;
     end
@@ -317,10 +316,7 @@ module latch_minimal #(
     end
   end
 
-  // -- Conditions -------------------------------------------------------------------------------
-  // Every quantity is a polynomial in coordinates x of the conditions, which are clamped to where
-  // it was characterised. t, v, c are temperature, supply and common mode, digits their powers.
-  // Polynomials are folded one condition at a time, so that only what has changed is repeated.
+  // -- Quantities under the conditions ----------------------------------------------------------
 
   task take_constants;
     // Delay: ln of the time constant and of the delay at the node, both in s
