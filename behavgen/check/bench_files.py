@@ -10,6 +10,7 @@ from __future__ import annotations
 
 import json
 import os
+import pickle
 from collections.abc import Iterable
 from dataclasses import asdict, dataclass, fields
 from pathlib import Path
@@ -19,6 +20,7 @@ import numpy as np
 from behavgen.check.agreement import Agreement, compare
 from behavgen.check.runs import Run, Settings
 from behavgen.check.waveform import Expectation, read_record
+from behavgen.model import ComparatorModel
 
 __all__ = [
     "BATCH_VARIABLE",
@@ -26,13 +28,15 @@ __all__ = [
     "compare_run",
     "open_batch",
     "read_agreement",
+    "read_model",
     "write_batch",
     "write_expectation",
+    "write_model",
 ]
 
 BATCH_VARIABLE = "BEHAVGEN_CHECK_BATCH"
 """Environment variable through which a bench finds its batch file."""
-MODEL_NAME = "model.json"
+_MODEL_NAME = "model.pickle"  # written by the check itself, and read faster than the model file
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -50,11 +54,6 @@ class BenchBatch:
     runs: tuple[Run, ...]
 
     @property
-    def model_path(self) -> Path:
-        """The model that the benches hold the module against."""
-        return self.folder / MODEL_NAME
-
-    @property
     def played(self) -> tuple[Run, ...]:
         """Runs to which a block is played."""
         return tuple(run for run in self.runs if run.decisions > 0)
@@ -62,6 +61,17 @@ class BenchBatch:
     def driven(self, name: str) -> Run:
         """Return the run that a bench of this name drives."""
         return next(run for run in self.runs if run.decisions == 0 and run.name == name)
+
+
+def write_model(folder: Path, model: ComparatorModel) -> None:
+    """Write the model that the benches hold the module against."""
+    (folder / _MODEL_NAME).write_bytes(pickle.dumps(model))
+
+
+def read_model(folder: Path) -> ComparatorModel:
+    """Return the model that the benches hold the module against."""
+    model: ComparatorModel = pickle.loads((folder / _MODEL_NAME).read_bytes())
+    return model
 
 
 def write_batch(path: Path, runs: Iterable[Run]) -> None:

@@ -2,17 +2,15 @@
 
 from __future__ import annotations
 
-from functools import cache
-from pathlib import Path
+from functools import cache, cached_property
 from typing import Any
 
 import numpy as np
 from cocotb.triggers import ReadOnly, Timer
 from cocotb.types import Logic
 
-from behavgen.check.bench_files import open_batch
+from behavgen.check.bench_files import open_batch, read_model
 from behavgen.check.runs import Run, reference_of
-from behavgen.model import ComparatorModel, load_model
 from behavgen.reference import Trace
 
 __all__ = ["Driver"]
@@ -21,9 +19,7 @@ _UNCHARACTERISED_V = 1.0
 _ENDLESS_TICKS = 2**62
 
 
-@cache
-def _model(path: Path) -> ComparatorModel:
-    return load_model(path)
+_read_model = cache(read_model)
 
 
 class Driver:
@@ -45,11 +41,12 @@ class Driver:
     def __init__(self, top: Any, name: str) -> None:
         batch = open_batch()
         self.run: Run = batch.driven(name)
-        self.model = _model(batch.model_path)
+        self.model = _read_model(batch.folder)
         self.cell = self.model.cell
         self.pins = self.cell.pins
         self.reference = reference_of(self.model, self.run)
         self.unit = getattr(top, self.run.instance)
+        self._delays: dict[float, int] = {}
         box = self.model.box
         self.vcm_v = 0.5 if box.vcm_v is None else box.vcm_v.middle
         self.vdd_v = _UNCHARACTERISED_V if box.vdd_v is None else box.vdd_v.middle
@@ -58,7 +55,7 @@ class Driver:
 
     # What it must do
 
-    @property
+    @cached_property
     def trip_v(self) -> float:
         """Trip point at the nominal condition."""
         return float(self.reference.offset(**self._condition()))
@@ -101,9 +98,11 @@ class Driver:
 
     def delay(self, overdrive_v: float) -> int:
         """Return the expected delay in ticks."""
-        return int(self.trace(overdrive_v).delay_ticks[0])
+        if overdrive_v not in self._delays:
+            self._delays[overdrive_v] = int(self.trace(overdrive_v).delay_ticks[0])
+        return self._delays[overdrive_v]
 
-    @property
+    @cached_property
     def reset_ticks(self) -> int:
         """Expected reset delay in ticks."""
         return int(self.trace(self.large_v).reset_ticks[0])

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-from behavgen.check.bench_files import MODEL_NAME, write_expectation
+from behavgen.check.bench_files import write_expectation, write_model
 from behavgen.check.directed import BENCH_MODULES, directed_runs
 from behavgen.check.fatal import fatal_run, fatal_stimulus
 from behavgen.check.harness import write_stimulus
@@ -13,7 +13,7 @@ from behavgen.check.runs import Batch, Run, plan_batches
 from behavgen.check.simulation import share_out
 from behavgen.check.stimulus import Stimulus, make_stimulus
 from behavgen.check.waveform import Expectation, expect
-from behavgen.model import ComparatorModel, dump_model
+from behavgen.model import ComparatorModel
 
 __all__ = ["Block", "Plan", "plan_check", "prepare_blocks"]
 
@@ -56,14 +56,14 @@ def plan_check(model: ComparatorModel, *, seed: int, jobs: int) -> Plan:
     model : ComparatorModel
     seed : int
     jobs : int
-        Into how many batches the blocks are shared out.
+        Simulations at the same time; one is kept for the short batches.
     """
     blocks, *others, last = plan_batches(model, seed=seed)
     used = len(blocks.runs) + len(others) + 1
     directed = directed_runs(model, first_index=used)
     last = replace(last, runs=last.runs + directed, benches=last.benches + BENCH_MODULES)
     return Plan(
-        batches=(*share_out(blocks, jobs), *others, last),
+        batches=(*share_out(blocks, jobs - 1), *others, last),
         fatal=fatal_run(model, index=used + len(directed)),
     )
 
@@ -80,7 +80,7 @@ def prepare_blocks(
     folder : Path
     seed : int
     """
-    (folder / MODEL_NAME).write_text(dump_model(model), encoding="utf-8")
+    write_model(folder, model)
     write_stimulus(folder, plan.fatal, fatal_stimulus(model, plan.fatal))
     played = (run for run in plan.runs if run.decisions and run is not plan.fatal)
     return tuple(_prepared(model, run, folder, seed) for run in played)
