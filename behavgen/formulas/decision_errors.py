@@ -73,9 +73,15 @@ def log_unresolved_probability(
         log_reach = log_half - np.log(sigma)
         reach = np.exp(log_reach)
         upper, lower = log_ndtr(reach - middle), log_ndtr(-reach - middle)
-        wide = upper + np.log(-np.expm1(np.where(np.isneginf(upper), -1.0, lower - upper)))
+        wide = upper + _log_rest(np.where(np.isneginf(upper), -1.0, lower - upper))
         narrow = _log_share_about(middle, log_reach, np.minimum(reach, 1.0))
     return np.where(log_reach + np.log(np.maximum(middle, 1.0)) < np.log(0.5), narrow, wide)
+
+
+def _log_rest(log_p: Floats) -> Floats:
+    """Return ln(1 - p), keeping its digits for every `p` (M. Maechler, note to Rmpfr, 2012)."""
+    small = np.log1p(-np.exp(np.minimum(log_p, -np.log(2.0))))
+    return np.where(log_p < -np.log(2.0), small, np.log(-np.expm1(log_p)))
 
 
 def _log_share_about(middle: Floats, log_reach: Floats, reach: Floats) -> Floats:
