@@ -10,7 +10,7 @@ import numpy.typing as npt
 from behavgen.model import Box, Condition, Range
 from behavgen.tables.characterisation import Conditions
 
-__all__ = ["CONDITION_NAMES", "Sites", "conditions_of", "find_sites", "range_of"]
+__all__ = ["CONDITION_NAMES", "Sites", "conditions_of", "find_sites", "inside", "range_of"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -83,3 +83,13 @@ def range_of(values: Floats, overdrive_v: Range | None = None) -> Box:
         for column in values.T
     ]
     return Box(temperature_k=spans[0], vdd_v=spans[1], vcm_v=spans[2], overdrive_v=overdrive_v)
+
+
+def inside(box: Box, values: Floats) -> npt.NDArray[np.bool_]:
+    """Return which conditions, shape (C, 3), lie in a box; what either leaves open does."""
+    within = np.ones(len(values), dtype=bool)
+    for name, column in zip(CONDITION_NAMES, values.T, strict=True):
+        span: Range | None = getattr(box, name)
+        if span is not None:
+            within &= np.isnan(column) | ((column >= span.low) & (column <= span.high))
+    return within

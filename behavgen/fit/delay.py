@@ -1,52 +1,43 @@
 """Delay and window tables -> DelayEffect.
 
-The window is the delay read the other way, ``W(t) = 2 delay^-1(t)``: a window
-row is a delay row at half its width, and both share one tau.
+Conditions that resolved over the usual overdrives give the law and its node
+values. Those of which little resolved take the shape that the surfaces through
+the others let expect, and rows that did not resolve bound delays from below.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
 from behavgen.errors import Fault, FitError
-from behavgen.fit.conditions import CONDITION_NAMES, Sites, find_sites
-from behavgen.fit.law import LawFit, fit_law
-from behavgen.fit.law_solution import DelayRows
-from behavgen.fit.process_surfaces import SurfaceFamily, exact_family
+from behavgen.fit.conditions import Sites, find_sites
+from behavgen.fit.delay_laws import LEAST_ROWS, DelayLaws, delay_laws, enough_rows
+from behavgen.fit.delay_rows import (
+    TimedRows,
+    joined,
+    resolved_rows,
+    selected,
+    unresolved_rows,
+)
+from behavgen.fit.delay_surfaces import delay_family, falling_family
+from behavgen.fit.law import LawFit
+from behavgen.fit.outlying_rows import without_outlying
+from behavgen.fit.process_surfaces import SurfaceFamily
+from behavgen.fit.unresolved_delays import violated_bounds
+from behavgen.fit.weak_corners import typical_errors
 from behavgen.model import DelayEffect, Range, significant
-from behavgen.tables.characterisation import Conditions, DelayTable, WindowTable
+from behavgen.tables.characterisation import DelayTable, WindowTable
 
-__all__ = ["DelayFit", "ResolvedRows", "fit_delay", "resolved_rows"]
+__all__ = ["DelayFit", "fit_delay"]
 
 Floats = npt.NDArray[np.float64]
+Mask = npt.NDArray[np.bool_]
 
-_LEAST_ROWS = 3
-_TABLE_PRECISION = 3e-3
-"""Relative error of a delay row that carries no random error: how well any law fits it."""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class ResolvedRows:
-    """Delay rows and window rows as one list, shape (N,) each.
-
-    Parameters
-    ----------
-    conditions : Conditions
-    overdrive_v, delay_s : ndarray
-        Magnitude of the overdrive; windows enter with half their width.
-    weight : ndarray
-        Of the relative error; below 1 where a window was counted.
-    is_window : ndarray of bool
-    """
-
-    conditions: Conditions
-    overdrive_v: Floats
-    delay_s: Floats
-    weight: Floats
-    is_window: npt.NDArray[np.bool_]
+_MOST_ROUNDS = 5
+"""Of holding up delays that unresolved rows bound."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -56,81 +47,24 @@ class DelayFit:
     Parameters
     ----------
     effect : DelayEffect
-    rows : ResolvedRows
+    rows : TimedRows
+        What was fitted: rows that resolved and rows that bound.
     sites : Sites
-        Of the rows that were fitted.
+        Of these rows.
+    short : ndarray of bool, shape (C,)
+        Sites whose law has its shape from the others.
     law : LawFit
     family : SurfaceFamily
     notices : tuple of str
     """
 
     effect: DelayEffect
-    rows: ResolvedRows
+    rows: TimedRows
     sites: Sites
+    short: Mask
     law: LawFit
     family: SurfaceFamily
     notices: tuple[str, ...]
-
-
-def resolved_rows(
-    delay: DelayTable | None, window: WindowTable | None, processes: tuple[str, ...]
-) -> ResolvedRows:
-    """Return the rows that resolved, at overdrives other than zero."""
-    parts = []
-    if delay is not None:
-        use = np.isfinite(delay.delay_s) & (np.abs(delay.overdrive_v) > 0.0)
-        parts.append(
-            ResolvedRows(
-                conditions=_taken(delay.conditions, use),
-                overdrive_v=np.abs(delay.overdrive_v[use]),
-                delay_s=delay.delay_s[use],
-                weight=np.ones(int(use.sum())),
-                is_window=np.zeros(int(use.sum()), dtype=bool),
-            )
-        )
-    if window is not None:
-        use = np.isfinite(window.window_v) & (window.window_v > 0.0)
-        conditions = _taken(window.conditions, use)
-        if delay is not None and (delay.conditions.process != "").any():
-            # A window table that names no process was measured in the default one.
-            named = np.where(conditions.process == "", processes[0], conditions.process)
-            conditions = replace(conditions, process=named)
-        # A relative error of the width moves the time by tau times as much, about t / 10.
-        slack = 0.1 * window.window_relative_error[use] / _TABLE_PRECISION
-        parts.append(
-            ResolvedRows(
-                conditions=conditions,
-                overdrive_v=0.5 * window.window_v[use],
-                delay_s=window.resolve_time_s[use],
-                weight=1.0 / (1.0 + slack * slack),
-                is_window=np.ones(int(use.sum()), dtype=bool),
-            )
-        )
-    return _joined(parts)
-
-
-def _taken(conditions: Conditions, use: npt.NDArray[np.bool_]) -> Conditions:
-    return Conditions(
-        vdd_v=conditions.vdd_v[use],
-        temperature_k=conditions.temperature_k[use],
-        vcm_v=conditions.vcm_v[use],
-        process=conditions.process[use],
-    )
-
-
-def _joined(parts: list[ResolvedRows]) -> ResolvedRows:
-    return ResolvedRows(
-        conditions=Conditions(
-            vdd_v=np.concatenate([p.conditions.vdd_v for p in parts]),
-            temperature_k=np.concatenate([p.conditions.temperature_k for p in parts]),
-            vcm_v=np.concatenate([p.conditions.vcm_v for p in parts]),
-            process=np.concatenate([p.conditions.process for p in parts]),
-        ),
-        overdrive_v=np.concatenate([p.overdrive_v for p in parts]),
-        delay_s=np.concatenate([p.delay_s for p in parts]),
-        weight=np.concatenate([p.weight for p in parts]),
-        is_window=np.concatenate([p.is_window for p in parts]),
-    )
 
 
 def fit_delay(
@@ -156,77 +90,55 @@ def fit_delay(
     """
     if delay is None and window is None:
         return None
-    rows = resolved_rows(delay, window, processes)
-    sites = find_sites(rows.conditions)
-    usable, notices = _usable_sites(rows, sites, windows_alone=delay is None)
-    if not usable.any():
+    rows, lone = _usable(resolved_rows(delay, window, processes), windows_alone=delay is None)
+    if not enough_rows(rows, find_sites(rows.conditions)).any():
         raise FitError(_too_few(delay, window))
-    rows, sites = _restricted(rows, sites, usable)
-    law = fit_law(_padded(rows, sites))
-    span = Range(low=float(rows.overdrive_v.min()), high=float(rows.overdrive_v.max()))
-    family = exact_family(
-        sites,
-        np.log(law.parameters),
-        processes,
-        metric=law.metric,
-        overdrive_v=span,
-        expected_shapes=_expected_shapes(sites, law),
-    )
-    freedom = max(round(float(law.freedom.sum())), 1)
+    rows, named = without_outlying(rows)
+    rows, laws, family = _fitted(rows, delay, processes)
+    family, apart = falling_family(family, laws.sites, laws.law, processes)
     measured = delay.measured if delay is not None else window.measured if window else ""
     return DelayFit(
-        effect=_effect(law, family, measured, freedom),
+        effect=_effect(laws, family, measured),
         rows=rows,
-        sites=sites,
-        law=law,
+        sites=laws.sites,
+        short=laws.short,
+        law=laws.law,
         family=family,
-        notices=(*notices, *_measured_alike(delay, window)),
+        notices=(*lone, *named, *apart, *_measured_alike(delay, window)),
     )
 
 
-def _expected_shapes(sites: Sites, law: LawFit) -> dict[str, str]:
-    """Return how delays are expected to bend along each axis.
+def _fitted(
+    rows: TimedRows, delay: DelayTable | None, processes: tuple[str, ...]
+) -> tuple[TimedRows, DelayLaws, SurfaceFamily]:
+    """Fit laws and surfaces; add rows that did not resolve as long as the model falls short."""
+    span = Range(low=float(rows.overdrive_v.min()), high=float(rows.overdrive_v.max()))
+    bounds = None if delay is None else unresolved_rows(delay)
+    for _ in range(_MOST_ROUNDS):
+        laws = delay_laws(rows, processes)
+        family = delay_family(laws.sites, laws.law, processes, span)
+        broken = None if bounds is None else violated_bounds(bounds, family, laws.law.log_node)
+        if broken is None:
+            break
+        fitted, rows = rows, joined((rows, broken))
+    else:
+        rows = fitted
+    return rows, laws, family
 
-    Common practice: rates grow with a voltage beyond a threshold and mobility
-    falls with temperature, so that delays fall more steeply than in proportion.
-    Where the delay rises with the voltage (inputs of the other polarity), a
-    straight line is taken.
-    """
-    shapes = {"temperature_k": "reciprocal"}
-    slowness = np.log(law.parameters[:, 1:]).mean(axis=-1)
-    for name in ("vdd_v", "vcm_v"):
-        level = sites.values[:, CONDITION_NAMES.index(name)]
-        if np.isfinite(level).all() and np.ptp(level) > 0.0:
-            falls = np.corrcoef(level, slowness)[0, 1] < 0.0
-            shapes[name] = "reciprocal_square" if falls else "plain"
-    return shapes
 
-
-def _usable_sites(
-    rows: ResolvedRows, sites: Sites, *, windows_alone: bool
-) -> tuple[npt.NDArray[np.bool_], list[str]]:
-    """Return which sites can carry a law, and what to say of the others."""
-    usable = np.ones(sites.count, dtype=bool)
-    short, lone = 0, 0
-    for c in range(sites.count):
-        here = sites.of_row == c
-        enough = here.sum() >= _LEAST_ROWS and len(np.unique(rows.overdrive_v[here])) > 1
-        alone = not windows_alone and rows.is_window[here].all()
-        usable[c] = enough and not alone
-        short += not enough
-        lone += enough and alone
-    notices = []
-    if short:
-        notices.append(
-            f"{short} of {sites.count} conditions have fewer than {_LEAST_ROWS} resolved delays at "
-            "distinct overdrives and are left out of the delay fit."
-        )
-    if lone:
-        notices.append(
-            f"{lone} conditions of the window table are not in the delay table; their windows are "
-            "not fitted."
-        )
-    return usable, notices
+def _usable(rows: TimedRows, *, windows_alone: bool) -> tuple[TimedRows, list[str]]:
+    """Return the rows at conditions that can carry a law, and what to say of the others."""
+    if windows_alone:
+        return rows, []
+    sites = find_sites(rows.conditions)
+    delays = np.bincount(sites.of_row, weights=~rows.is_window, minlength=sites.count)
+    lone = int((delays == 0.0).sum())
+    if not lone:
+        return rows, []
+    return selected(rows, delays[sites.of_row] > 0.0), [
+        f"{lone} conditions of the window table are not in the delay table; their windows are "
+        "not fitted."
+    ]
 
 
 def _too_few(delay: DelayTable | None, window: WindowTable | None) -> Fault:
@@ -234,48 +146,17 @@ def _too_few(delay: DelayTable | None, window: WindowTable | None) -> Fault:
     assert table is not None
     return Fault(
         file=table.sources[0].file if table.sources else "",
-        what=f"no condition has {_LEAST_ROWS} resolved delays at two or more distinct overdrives",
+        what=f"no condition has {LEAST_ROWS} resolved delays at two or more distinct overdrives",
         allowed="tau cannot be told from fewer; measure delays at overdrives a decade or more "
         "apart, the lowest well below 1 mV",
     )
 
 
-def _restricted(
-    rows: ResolvedRows, sites: Sites, usable: npt.NDArray[np.bool_]
-) -> tuple[ResolvedRows, Sites]:
-    keep = usable[sites.of_row]
-    kept = ResolvedRows(
-        conditions=_taken(rows.conditions, keep),
-        overdrive_v=rows.overdrive_v[keep],
-        delay_s=rows.delay_s[keep],
-        weight=rows.weight[keep],
-        is_window=rows.is_window[keep],
-    )
-    return kept, find_sites(kept.conditions)
-
-
-def _padded(rows: ResolvedRows, sites: Sites) -> DelayRows:
-    order = np.argsort(sites.of_row, kind="stable")
-    counts = np.bincount(sites.of_row, minlength=sites.count)
-    column = np.arange(len(order)) - np.repeat(np.cumsum(counts) - counts, counts)
-    place = (sites.of_row[order], column)
-
-    def spread(values: Floats, filler: float) -> Floats:
-        padded = np.full((sites.count, int(counts.max())), filler)
-        padded[place] = values[order]
-        return padded
-
-    return DelayRows(
-        overdrive_v=spread(rows.overdrive_v, 1.0),
-        delay_s=spread(rows.delay_s, 1.0),
-        weight=spread(rows.weight, 0.0),
-    )
-
-
-def _effect(law: LawFit, family: SurfaceFamily, measured: str, freedom: int) -> DelayEffect:
+def _effect(laws: DelayLaws, family: SurfaceFamily, measured: str) -> DelayEffect:
+    law, told = laws.law, ~laws.short
     surfaces = [family.surface(k, "s", "log") for k in range(law.parameters.shape[-1])]
     relative = law.covariance / (law.parameters[:, :, None] * law.parameters[:, None, :])
-    scatter = relative.mean(axis=0)
+    scatter = relative[told].mean(axis=0)
     return DelayEffect(
         tau=surfaces[0],
         node_overdrive_v=tuple(significant(float(v)) for v in np.exp(law.log_node)),
@@ -283,15 +164,19 @@ def _effect(law: LawFit, family: SurfaceFamily, measured: str, freedom: int) -> 
         law=law.chosen.name,
         measured=measured,
         scatter=_rounded(scatter),
-        scatter_freedom=freedom,
-        lack_of_fit=_rounded(_lack_of_fit(family, scatter)),
+        scatter_freedom=max(round(float(law.freedom[told].sum())), 1),
+        lack_of_fit=_rounded(_lack_of_fit(family, law, scatter)),
         leverage=_rounded(family.fit.leverage),
     )
 
 
-def _lack_of_fit(family: SurfaceFamily, scatter: Floats) -> Floats:
-    """Return the covariance of left-out errors beyond what scatter explains; (0, 0) if unknown."""
-    errors = family.left_out[np.isfinite(family.left_out).all(axis=-1)]
+def _lack_of_fit(family: SurfaceFamily, law: LawFit, scatter: Floats) -> Floats:
+    """Return the covariance of left-out errors beyond what scatter explains; (0, 0) if unknown.
+
+    A corner that barely decides does not count: what is missed there says nothing
+    of the rest.
+    """
+    errors = typical_errors(family.left_out, law.metric)
     if len(errors) == 0:
         return np.empty((0, 0))
     excess = errors.T @ errors / len(errors) - family.fit.inflation * scatter

@@ -8,6 +8,8 @@ import numpy.typing as npt
 from behavgen.fit.conditions import conditions_of
 from behavgen.fit.delay import DelayFit
 from behavgen.fit.intervals import student_quantile
+from behavgen.fit.unresolved_delays import unresolved_words
+from behavgen.fit.weak_corners import left_out_errors, weak_corners
 from behavgen.fit.wording import condition_words
 from behavgen.formulas.node_law import node_law_delay
 from behavgen.model import Condition, ConditionFit, Estimate, Parameter, significant
@@ -31,10 +33,16 @@ def delay_fits(delay: DelayFit) -> tuple[ConditionFit, ...]:
     for c, condition in enumerate(conditions_of(delay.sites)):
         here = delay.sites.of_row == c
         for quantity, kind in (("delay", False), ("window", True)):
-            rows = here & (delay.rows.is_window == kind)
+            rows = here & _counted(delay) & (delay.rows.is_window == kind)
             if rows.any():
                 fits.append(_condition_fit(delay, quantity, condition, rows, c, smooth, held_out))
     return tuple(fits)
+
+
+def _counted(delay: DelayFit) -> npt.NDArray[np.bool_]:
+    """Return the rows that resolved and were not left out."""
+    counted: npt.NDArray[np.bool_] = ~delay.rows.is_bound & (delay.rows.weight > 0.0)
+    return counted
 
 
 def _surface_parameters(delay: DelayFit) -> Floats:
@@ -102,7 +110,13 @@ def _tau(delay: DelayFit, c: int, condition: Condition) -> Parameter:
 
 def delay_notices(delay: DelayFit, tables: Characterisation) -> tuple[str, ...]:
     """Return what the delay fit wants its reader to know."""
-    return (*_poor_conditions(delay), *_tau_gaps(delay), *_unresolved(tables))
+    return (
+        *_poor_conditions(delay),
+        *_corners(delay),
+        *_borrowed(delay),
+        *_tau_gaps(delay),
+        *(unresolved_words(tables.delay, delay.family, delay.law.log_node) if tables.delay else ()),
+    )
 
 
 def _poor_conditions(delay: DelayFit) -> list[str]:
@@ -123,7 +137,8 @@ def _tau_gaps(delay: DelayFit) -> list[str]:
     first_node_v = float(np.exp(delay.law.log_node[0]))
     notices = []
     for c, condition in enumerate(conditions_of(delay.sites)):
-        tail = (delay.sites.of_row == c) & (delay.rows.overdrive_v <= first_node_v)
+        tail = (delay.sites.of_row == c) & _counted(delay)
+        tail &= delay.rows.overdrive_v <= first_node_v
         slopes = [_slope(delay, tail & (delay.rows.is_window == kind)) for kind in (False, True)]
         if any(slope is None for slope in slopes):
             continue
@@ -151,14 +166,34 @@ def _slope(delay: DelayFit, rows: npt.NDArray[np.bool_]) -> tuple[float, float] 
     return -slope, float(np.sqrt(residual @ residual / (len(x) - 2) / spread))
 
 
-def _unresolved(tables: Characterisation) -> list[str]:
-    table = tables.delay
-    if table is None:
+def _corners(delay: DelayFit) -> list[str]:
+    """Name conditions that the others foresee far worse than they foresee each other."""
+    weak = weak_corners(delay.family.left_out, delay.law.metric)
+    if not weak.any():
         return []
-    open_rows = int(np.isnan(table.delay_s).sum())
-    if not open_rows:
-        return []
+    missed = left_out_errors(delay.family.left_out, delay.law.metric)
+    conditions = conditions_of(delay.sites)
+    worst = int(np.nanargmax(np.where(weak, missed, np.nan)))
+    more = f" and {weak.sum() - 1} more" if weak.sum() > 1 else ""
+    others = float(np.sqrt(np.nanmean(missed[~weak] ** 2)))
     return [
-        f"{open_rows} delay rows did not resolve while they were observed; they are counted and "
-        "not used in the fit."
+        f"{condition_words(conditions[worst])}{more}: predicted from the other conditions, delays "
+        f"are missed by {missed[worst]:.0%} there, by {others:.1%} elsewhere. Near such a corner "
+        "the model is less certain than its intervals say."
+    ]
+
+
+def _borrowed(delay: DelayFit) -> list[str]:
+    """Name conditions whose law is partly that of the others."""
+    if not delay.short.any():
+        return []
+    conditions = conditions_of(delay.sites)
+    rows = np.array(
+        [int(((delay.sites.of_row == c) & _counted(delay)).sum()) for c in range(len(conditions))]
+    )
+    fewest = int(np.argmin(np.where(delay.short, rows, rows.max() + 1)))
+    return [
+        f"At {delay.short.sum()} of {len(conditions)} conditions the rows that resolved do not "
+        f"tell the whole delay law, fewest at {condition_words(conditions[fewest])} "
+        f"({rows[fewest]}); what they do not tell follows the other conditions."
     ]

@@ -8,7 +8,7 @@ generalised cross-validation over the rows.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -18,7 +18,7 @@ from behavgen.fit.law_families import solve_families
 from behavgen.fit.law_solution import DelayRows, LawSolution, inverse_of
 from behavgen.formulas.node_law import node_law_basis
 
-__all__ = ["LawFit", "LawTrial", "fit_law", "solve_nodes"]
+__all__ = ["LawFit", "LawTrial", "fit_law", "scaled_basis", "solve_nodes"]
 
 Floats = npt.NDArray[np.float64]
 
@@ -64,22 +64,34 @@ class LawFit:
         tau, then the delays at the nodes, s; all positive, nodes falling.
     covariance : ndarray, shape (C, K + 1, K + 1)
         Of the parameters, from each condition's own scatter.
+    residual_variance : ndarray, shape (C,)
+        Of the relative errors: that scatter.
     freedom : ndarray, shape (C,)
-        Degrees of freedom of that scatter.
+        Its degrees of freedom.
     metric : ndarray, shape (C, K + 1, K + 1)
         Mean square relative delay error caused by relative errors of the parameters.
-    left_out_rms : ndarray, shape (C,)
     chosen, runner_up : LawTrial
     """
 
     log_node: Floats
     parameters: Floats
     covariance: Floats
+    residual_variance: Floats
     freedom: Floats
     metric: Floats
-    left_out_rms: Floats
     chosen: LawTrial
     runner_up: LawTrial | None
+
+    def at(self, conditions: npt.NDArray[np.bool_]) -> LawFit:
+        """Return the law at some of its conditions."""
+        return replace(
+            self,
+            parameters=self.parameters[conditions],
+            covariance=self.covariance[conditions],
+            residual_variance=self.residual_variance[conditions],
+            freedom=self.freedom[conditions],
+            metric=self.metric[conditions],
+        )
 
 
 def fit_law(rows: DelayRows) -> LawFit:
@@ -98,15 +110,15 @@ def fit_law(rows: DelayRows) -> LawFit:
     solution = (*simple, *free)[chosen]
     others = [i for i in np.argsort(errors) if (*simple, *free)[i].name != solution.name]
     parameters = _monotone(rows, solution)
-    scaled = _scaled_basis(rows, solution.log_node)
+    scaled = scaled_basis(rows, solution.log_node)
     relative = scaled * parameters[:, None, :]
     return LawFit(
         log_node=solution.log_node,
         parameters=parameters,
         covariance=solution.inverse * solution.residual_variance[:, None, None],
+        residual_variance=solution.residual_variance,
         freedom=solution.freedom,
         metric=relative.transpose(0, 2, 1) @ relative / rows.used[:, None, None],
-        left_out_rms=solution.left_out_rms,
         chosen=_trial(solution),
         runner_up=_trial((*simple, *free)[others[0]]) if others else None,
     )
@@ -156,7 +168,7 @@ def _node_sets(rows: DelayRows, counts: tuple[int, ...]) -> list[Floats]:
     ]
 
 
-def _scaled_basis(rows: DelayRows, log_node: Floats) -> Floats:
+def scaled_basis(rows: DelayRows, log_node: Floats) -> Floats:
     """Return relative delays per unit of each parameter, times root weight, (C, R, K + 1)."""
     # Tables repeat their overdrives from condition to condition.
     distinct, index = np.unique(rows.overdrive_v, return_inverse=True)
@@ -176,7 +188,7 @@ def solve_nodes(rows: DelayRows, log_node: Floats, roughness: float = _ROUGHNESS
         Weight of bends, in relative errors.
     """
     root = np.sqrt(rows.weight)
-    scaled = _scaled_basis(rows, log_node)
+    scaled = scaled_basis(rows, log_node)
     fastest = np.where(rows.weight > 0.0, rows.delay_s, np.inf).min(axis=-1)
     bend = roughness * _bends(log_node)
     normal = scaled.transpose(0, 2, 1) @ scaled
@@ -214,7 +226,7 @@ def _monotone(rows: DelayRows, solution: LawSolution) -> Floats:
     bad = (parameters[:, 0] <= 0.0) | (parameters[:, -1] <= 0.0) | (falls <= 0.0).any(axis=-1)
     if not bad.any():
         return parameters
-    scaled = _scaled_basis(rows, solution.log_node)
+    scaled = scaled_basis(rows, solution.log_node)
     bend = _ROUGHNESS * _bends(solution.log_node)
     cumulate = np.eye(parameters.shape[-1])
     cumulate[1:, 1:] = np.triu(np.ones((parameters.shape[-1] - 1,) * 2))

@@ -14,12 +14,13 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.fit.conditions import Sites, range_of
+from behavgen.fit.surface_changes import difference_by_left_out
 from behavgen.fit.surfaces import (
     SurfaceFit,
     choose_by_left_out,
     choose_by_likelihood,
-    difference_by_left_out,
 )
+from behavgen.fit.weak_corners import choose_around_corners
 from behavgen.model import Box, Range, Surface, Variant, significant
 
 __all__ = ["SurfaceFamily", "exact_family", "noisy_family"]
@@ -95,6 +96,7 @@ def exact_family(
     metric: Floats | None = None,
     overdrive_v: Range | None = None,
     expected_shapes: Mapping[str, str] | None = None,
+    highest_order: int | None = None,
 ) -> SurfaceFamily:
     """Fit values without random error.
 
@@ -109,16 +111,20 @@ def exact_family(
     overdrive_v : Range, optional
         Carried into the variants' boxes.
     expected_shapes : mapping of str to str, optional
-        See `surface_forms.candidates`.
+        See `surface_forms.candidates`; with it and a metric, the targets are logarithms of
+        delays, which may depend on the overdrive of the input pair.
+    highest_order : int, optional
+        Highest total power of a term.
     """
     primary = _primary(sites, processes)
     rows = _rows(sites, primary)
-    fit = choose_by_left_out(
-        sites.values[rows],
-        targets[rows],
-        None if metric is None else metric[rows],
-        expected_shapes,
-    )
+    values, own_metric = sites.values[rows], None if metric is None else metric[rows]
+    if own_metric is None or expected_shapes is None or highest_order is not None:
+        fit = choose_by_left_out(
+            values, targets[rows], own_metric, expected_shapes, highest_order=highest_order
+        )
+    else:
+        fit = choose_around_corners(values, targets[rows], own_metric, expected_shapes)
 
     def difference(own: Indices) -> Floats:
         return difference_by_left_out(fit, sites.values[own], targets[own])

@@ -13,7 +13,16 @@ from behavgen.fit.conditions import CONDITION_NAMES
 from behavgen.formulas.polynomial import AXIS_SHAPES, axis_coordinate
 from behavgen.model import Axis, significant
 
-__all__ = ["CONSTANT_SPREAD", "Candidates", "Form", "axis_powers", "candidates", "design"]
+__all__ = [
+    "CONSTANT_SPREAD",
+    "Candidates",
+    "Form",
+    "axes_of",
+    "axis_powers",
+    "candidates",
+    "design",
+    "visible_terms",
+]
 
 Floats = npt.NDArray[np.float64]
 
@@ -74,7 +83,8 @@ def axis_powers(values: Floats) -> dict[str, int]:
     return powers
 
 
-def _axes(values: Floats, shapes: dict[str, str]) -> tuple[Axis, ...]:
+def axes_of(values: Floats, shapes: Mapping[str, str]) -> tuple[Axis, ...]:
+    """Return axes of given shapes, scaled to -1..1 over conditions of shape (C, 3)."""
     axes = []
     for name, shape in shapes.items():
         column = values[:, CONDITION_NAMES.index(name)]
@@ -92,6 +102,8 @@ def candidates(
     decays: tuple[float, ...],
     ratios: tuple[float, ...],
     expected_shapes: Mapping[str, str],
+    highest_powers: Mapping[str, int],
+    highest_order: int | None = None,
 ) -> Candidates:
     """Return all candidates.
 
@@ -105,14 +117,20 @@ def candidates(
     expected_shapes : mapping of str to str
         Shape that physics expects, by condition; plain by default. It is preferred
         among equally good ones; an axis whose two levels cannot tell takes a steeper one.
+    highest_powers : mapping of str to int
+        By condition, where lower than the levels allow.
+    highest_order : int, optional
+        Highest total power of a term.
     """
-    powers = axis_powers(values)
+    levels = axis_powers(values)
+    powers = {name: min(power, highest_powers.get(name, power)) for name, power in levels.items()}
     shapes = [_shapes(values, name, power, expected_shapes) for name, power in powers.items()]
-    exponents = _visible(values, powers)
+    exponents = visible_terms(values, powers)
     order = np.array([sum(term) for term in exponents])
     spread = [
         np.where(order == 0, CONSTANT_SPREAD, ratio * decay ** (order - 1.0)) * (order <= highest)
         for highest in range(max(order) + 1)
+        if highest_order is None or highest <= highest_order
         for decay in decays
         for ratio in ratios
     ]
@@ -122,7 +140,7 @@ def candidates(
         for one in chosen
     ]
     return Candidates(
-        axes=tuple(_axes(values, one) for one in chosen),
+        axes=tuple(axes_of(values, one) for one in chosen),
         surprises=np.array(surprises),
         exponents=exponents,
         spread=np.array(spread),
@@ -139,10 +157,17 @@ def _shapes(
     return AXIS_SHAPES[:3]
 
 
-def _visible(values: Floats, powers: dict[str, int]) -> tuple[tuple[int, ...], ...]:
-    """Return the terms, lowest total power first, that these conditions can tell apart."""
+def visible_terms(values: Floats, powers: Mapping[str, int]) -> tuple[tuple[int, ...], ...]:
+    """Return the terms, lowest total power first, that these conditions can tell apart.
+
+    Parameters
+    ----------
+    values : ndarray, shape (C, 3)
+    powers : mapping of str to int
+        Highest power of each condition.
+    """
     every = itertools.product(*(range(power + 1) for power in powers.values()))
-    axes = _axes(values, dict.fromkeys(powers, "plain"))
+    axes = axes_of(values, dict.fromkeys(powers, "plain"))
     kept: list[tuple[int, ...]] = []
     for term in sorted(every, key=lambda powers: (sum(powers), powers)):
         columns = design(Form(axes=axes, exponents=(*kept, term)), values)

@@ -19,10 +19,17 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from behavgen.fit.surface_forms import CONSTANT_SPREAD, Candidates, Form, candidates, design
+from behavgen.fit.surface_forms import Candidates, Form, candidates, design
 from behavgen.model import Axis
 
-__all__ = ["SurfaceFit", "choose_by_left_out", "choose_by_likelihood", "difference_by_left_out"]
+__all__ = [
+    "SurfaceFit",
+    "choose_by_left_out",
+    "choose_by_likelihood",
+    "left_out_cost",
+    "slack_of",
+    "smoothers",
+]
 
 Floats = npt.NDArray[np.float64]
 
@@ -87,6 +94,8 @@ def choose_by_left_out(
     targets: Floats,
     metric: Floats | None = None,
     expected_shapes: Mapping[str, str] | None = None,
+    highest_powers: Mapping[str, int] | None = None,
+    highest_order: int | None = None,
 ) -> SurfaceFit:
     """Choose shape, order and prior by leaving one condition out at a time.
 
@@ -104,20 +113,27 @@ def choose_by_left_out(
     targets : ndarray, shape (C, L)
     metric : ndarray, shape (C, L, L), optional
         An error `d` at a condition costs ``sqrt(d @ metric @ d)``; identity by default.
-    expected_shapes : mapping of str to str, optional
+    expected_shapes, highest_powers, highest_order : optional
         See `surface_forms.candidates`.
 
     Returns
     -------
     SurfaceFit
     """
-    ways = candidates(values, (0.3,), (30.0, 100.0, 300.0), expected_shapes or {})
+    ways = candidates(
+        values,
+        (0.3,),
+        (30.0, 100.0, 300.0),
+        expected_shapes or {},
+        highest_powers or {},
+        highest_order,
+    )
     weights = np.ones(len(values))
     scaled = _scaled_designs(ways, values, weights)
-    smoother, residual = _smoothers(scaled, targets)
+    smoother, residual = smoothers(scaled, targets)
     if metric is None:
         metric = np.broadcast_to(np.eye(targets.shape[1]), (len(values), *(targets.shape[1],) * 2))
-    single = residual / _slack(smoother)[..., None]
+    single = residual / slack_of(smoother)[..., None]
     oddity = _oddity(ways)
     fitted = _cost(residual, metric).mean(axis=-1)
     best = _simplest(_cost(single, metric).mean(axis=-1) + fitted, oddity)
@@ -145,7 +161,7 @@ def _simplest(cost: Floats, oddity: npt.NDArray[np.intp]) -> int:
     return int(np.argmin(np.where(simplest, cost, np.inf)))
 
 
-def _smoothers(scaled: Floats, targets: Floats) -> tuple[Floats, Floats]:
+def smoothers(scaled: Floats, targets: Floats) -> tuple[Floats, Floats]:
     """Return smoother matrices (B, C, C) and residuals fit - target (B, C, L)."""
     normal = scaled.transpose(0, 2, 1) @ scaled + np.eye(scaled.shape[-1])
     smoother = scaled @ np.linalg.solve(normal, scaled.transpose(0, 2, 1))
@@ -153,7 +169,8 @@ def _smoothers(scaled: Floats, targets: Floats) -> tuple[Floats, Floats]:
     return smoother, residual
 
 
-def _slack(smoother: Floats) -> Floats:
+def slack_of(smoother: Floats) -> Floats:
+    """Return what each target leaves to the others, 1 - leverage, shape (..., C)."""
     slack: Floats = np.maximum(1.0 - np.diagonal(smoother, axis1=-2, axis2=-1), 1e-12)
     return slack
 
@@ -165,12 +182,22 @@ def _cost(error: Floats, metric: Floats) -> Floats:
     return cost
 
 
+def left_out_cost(fit: SurfaceFit, metric: Floats) -> float:
+    """Return the mean over conditions of what their left-out errors cost.
+
+    The worst tenth of the conditions do not count: a corner that barely decides
+    is foreseen by nothing.
+    """
+    cost = np.sort(_cost(fit.left_out, metric))
+    return float(cost[: len(cost) - (len(cost) + 9) // 10].mean())
+
+
 def _nested(
     smoother: Floats, residual: Floats, single: Floats, metric: Floats, oddity: npt.NDArray[np.intp]
 ) -> Floats:
     """Return left-out errors, each of the candidate that the other conditions choose."""
     count = smoother.shape[-1]
-    slack = _slack(smoother)
+    slack = slack_of(smoother)
     left_out = np.empty_like(residual[0])
     for i in range(count):
         across = smoother[:, :, i]
@@ -200,7 +227,7 @@ def choose_by_likelihood(values: Floats, target: Floats, variance: Floats) -> Su
     """
     scale = float(np.mean(variance))
     weights = scale / variance
-    ways = candidates(values, (0.3,), (0.1, 0.5, 2.0, 10.0, 100.0), {})
+    ways = candidates(values, (0.3,), (0.1, 0.5, 2.0, 10.0, 100.0), {}, {})
     scaled = _scaled_designs(ways, values, weights)
     whitened = target * np.sqrt(weights) / np.sqrt(scale)
     spread = np.eye(len(target)) + scaled @ scaled.transpose(0, 2, 1)
@@ -210,42 +237,9 @@ def choose_by_likelihood(values: Floats, target: Floats, variance: Floats) -> Su
     likely = surprise <= surprise.min() + _AS_LIKELY
     oddity = _oddity(ways)
     best = int(np.argmin(np.where(likely & (oddity == oddity[likely].min()), surprise, np.inf)))
-    smoother, residual = _smoothers(scaled[best : best + 1], whitened[:, None])
-    left_out = residual[0] / _slack(smoother)[0][:, None] * np.sqrt(scale / weights)[:, None]
+    smoother, residual = smoothers(scaled[best : best + 1], whitened[:, None])
+    left_out = residual[0] / slack_of(smoother)[0][:, None] * np.sqrt(scale / weights)[:, None]
     return _finished(ways, best, values, target[:, None], weights, left_out)
-
-
-def difference_by_left_out(fit: SurfaceFit, values: Floats, targets: Floats) -> Floats:
-    """Fit what is left at other conditions, in the terms of a finished fit.
-
-    The highest total power is chosen by leaving one condition out; a single
-    condition gives a constant difference.
-
-    Parameters
-    ----------
-    fit : SurfaceFit
-    values : ndarray, shape (C, 3)
-    targets : ndarray, shape (C, L)
-
-    Returns
-    -------
-    ndarray, shape (terms, L)
-        To be added to the fit's coefficients.
-    """
-    gap = targets - fit.predict(values)
-    order = np.array([sum(term) for term in fit.form.exponents])
-    plain = design(fit.form, values)
-    spread = [
-        np.where(order == 0, CONSTANT_SPREAD, 1e2 * 0.3 ** (order - 1.0)) * (order <= highest)
-        for highest in (range(max(order) + 1) if len(values) > 2 else (0,))
-    ]
-    scaled = plain * np.array(spread)[:, None, :]
-    smoother, residual = _smoothers(scaled, gap)
-    cost = np.linalg.norm(residual / _slack(smoother)[..., None], axis=-1).sum(axis=-1)
-    best = scaled[int(np.argmin(cost))]
-    normal = best.T @ best + np.eye(len(order))
-    solution: Floats = np.linalg.solve(normal, best.T @ gap)
-    return solution * spread[int(np.argmin(cost))][:, None]
 
 
 def _finished(
@@ -283,6 +277,6 @@ def _without_idle_axes(axes: tuple[Axis, ...], exponents: tuple[tuple[int, ...],
 
 def _inflation(smoother: Floats) -> float:
     """Return the mean of (sum over the others of S_ij^2 + (1 - S_ii)^2) / (1 - S_ii)^2."""
-    slack = _slack(smoother)
+    slack = slack_of(smoother)
     others = (smoother**2).sum(axis=-1) - np.diag(smoother) ** 2
     return float(np.mean(1.0 + others / slack**2))

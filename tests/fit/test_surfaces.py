@@ -5,12 +5,9 @@ import itertools
 import numpy as np
 import pytest
 
+from behavgen.fit.surface_changes import difference_by_left_out
 from behavgen.fit.surface_forms import axis_powers, design
-from behavgen.fit.surfaces import (
-    choose_by_left_out,
-    choose_by_likelihood,
-    difference_by_left_out,
-)
+from behavgen.fit.surfaces import choose_by_left_out, choose_by_likelihood
 
 GRID = np.array(list(itertools.product((233.15, 300.15, 398.15), (1.08, 1.2, 1.32), (0.5, 0.65))))
 NOWHERE = np.nan
