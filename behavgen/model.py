@@ -4,8 +4,7 @@ The waist of the project: downstream of it nothing sees tables or fits,
 upstream of it nothing sees hardware description languages.
 
 A model is a set of effects, each optional: an effect that was not
-characterised is absent. Effects depend on the operating condition through
-`Surface`, a polynomial that every language evaluates in the same order.
+characterised is absent.
 """
 
 from __future__ import annotations
@@ -16,7 +15,20 @@ from collections.abc import Mapping
 from dataclasses import asdict, dataclass, field
 from pathlib import Path
 
+from behavgen.effects import (
+    ApertureEffect,
+    DelayEffect,
+    EnergyEffect,
+    KickbackEffect,
+    MemoryEffect,
+    MemoryTerm,
+    MismatchEffect,
+    NoiseEffect,
+    OffsetEffect,
+    ResetEffect,
+)
 from behavgen.errors import Fault, ModelFileError
+from behavgen.surface import Axis, Box, Range, Surface, Variant
 
 __all__ = [
     "FORMAT",
@@ -52,8 +64,6 @@ __all__ = [
 
 FORMAT = 1
 """Version of the model file; raised when an old reader would misread a new file."""
-
-Matrix = tuple[tuple[float, ...], ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -101,29 +111,6 @@ class Parameter:
     high: float | None = None
     description: str = ""
     source: str = ""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Range:
-    """A closed interval in SI units."""
-
-    low: float
-    high: float
-
-    @property
-    def middle(self) -> float:
-        """Arithmetic middle."""
-        return 0.5 * (self.low + self.high)
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Box:
-    """The characterised range; None: the condition is not characterised and has no influence."""
-
-    vdd_v: Range | None = None
-    temperature_k: Range | None = None
-    vcm_v: Range | None = None
-    overdrive_v: Range | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -192,275 +179,6 @@ class Cell:
     def ticks_per_second(self) -> float:
         """Inverse of the time precision; exact, unlike its reciprocal."""
         return {"1fs": 1e15, "1ps": 1e12}[self.time_precision]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Axis:
-    """How one condition enters a polynomial: ``(shape(x) - centre) / half_range``.
-
-    Parameters
-    ----------
-    condition : str
-        ``"temperature_k"``, ``"vdd_v"`` or ``"vcm_v"``.
-    shape : str
-        ``"plain"``, ``"reciprocal"``, ``"reciprocal_square"`` or ``"reciprocal_fourth"``.
-    centre, half_range : float
-        In the unit of ``shape(x)``.
-    """
-
-    condition: str
-    shape: str = "plain"
-    centre: float = 0.0
-    half_range: float = 1.0
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Variant:
-    """A surface's polynomial for one process.
-
-    Parameters
-    ----------
-    process : str
-    coefficients : tuple of float
-        One for each of the surface's exponents.
-    box : Box
-        Conditions are clamped to it: where this quantity was measured in this process.
-    scaled_from : str
-        Process whose shape was scaled to this one; empty for a fit of its own.
-    """
-
-    process: str
-    coefficients: tuple[float, ...]
-    box: Box
-    scaled_from: str = ""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Surface:
-    """One number as a function of the operating condition.
-
-    ``value = transform(sum over terms of coefficient * product of coordinate^power)``.
-
-    Parameters
-    ----------
-    unit : str
-        SI unit of the value.
-    transform : str
-        ``"plain"``: the polynomial itself; ``"log"``: its exponential, the
-        polynomial being the natural logarithm of the value in SI units.
-    axes : tuple of Axis
-        Slow conditions first, always in the order temperature, supply, common
-        mode; an axis that the data cannot see is absent.
-    exponents : tuple of tuple of int
-        One tuple a term, one power an axis.
-    variants : tuple of Variant
-        One a process, in the model's order of processes.
-    covariance : Matrix
-        Of the first variant's coefficients, shape (terms, terms); empty when unknown
-        or, for delays, carried by `DelayEffect`.
-    """
-
-    unit: str
-    transform: str
-    axes: tuple[Axis, ...]
-    exponents: tuple[tuple[int, ...], ...]
-    variants: tuple[Variant, ...]
-    covariance: Matrix = ()
-
-    def variant(self, process: str) -> Variant:
-        """Return the polynomial for a process; KeyError when there is none."""
-        for variant in self.variants:
-            if variant.process == process:
-                return variant
-        raise KeyError(process)
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class OffsetEffect:
-    """Nominal trip point in V (transform plain)."""
-
-    surface: Surface
-    source: str = ""
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class MismatchEffect:
-    """Offset differences between instances.
-
-    An instance's mismatch is the sum over components of ``component(condition) * z``
-    with one standard normal `z` a component and instance, drawn once.
-
-    Parameters
-    ----------
-    components : tuple of Surface
-        In V per sigma (transform plain).
-    instances : int
-        How many were measured.
-    """
-
-    components: tuple[Surface, ...]
-    instances: int
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class NoiseEffect:
-    """Input-referred noise sigma of one decision in V (transform log)."""
-
-    surface: Surface
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class DelayEffect:
-    """Delay over overdrive, carried by its values at nodes (see `formulas.node_law`).
-
-    Parameters
-    ----------
-    tau : Surface
-        Regeneration time constant in s (transform log).
-    node_overdrive_v : tuple of float, length K
-        Rising; the last is the largest characterised overdrive.
-    nodes : tuple of Surface, length K
-        Delay at each node in s (transform log), all with the axes and exponents of `tau`.
-    floor_v : float
-        Overdrives below it are not distinguished, so that every delay is finite.
-    law : str
-        Name of the law that gave the nodes their values at each condition.
-    measured : str
-        Reference levels of the delay in the user's words.
-    scatter : Matrix
-        Covariance of ln tau and the nodes' ln delays at one tabulated condition from
-        the scatter of its rows, shape (K+1, K+1); empty when unknown.
-    scatter_freedom : int
-        Degrees of freedom of `scatter`.
-    lack_of_fit : Matrix
-        Covariance of the same between tabulated conditions beyond what scatter
-        explains, shape (K+1, K+1); empty with a single condition.
-    leverage : Matrix
-        Covariance of the surfaces' coefficients for unit scatter, shape (terms, terms).
-
-    Notes
-    -----
-    With `a` the surfaces' terms at a condition, the logarithms of tau and of the
-    node delays there have the covariance ``(a @ leverage @ a) * scatter + lack_of_fit``.
-    """
-
-    tau: Surface
-    node_overdrive_v: tuple[float, ...]
-    nodes: tuple[Surface, ...]
-    floor_v: float = 1e-15
-    law: str = ""
-    measured: str = ""
-    scatter: Matrix = ()
-    scatter_freedom: int = 0
-    lack_of_fit: Matrix = ()
-    leverage: Matrix = ()
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class ResetEffect:
-    """Time from the reset edge to the outputs' reset state in s (transform log)."""
-
-    surface: Surface
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class MemoryTerm:
-    """One decaying part of the memory: ``shift * exp(-t / tau)``.
-
-    Parameters
-    ----------
-    shift : Surface
-        Extrapolated to no reset at all, in V (transform log).
-    tau : Surface
-        In s (transform log).
-    """
-
-    shift: Surface
-    tau: Surface
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class MemoryEffect:
-    """By how much the trip point moves in favour of the previous decision.
-
-    In V, a time `t` after the reset edge: ``min(cap_v, floor + sum of the terms)``.
-
-    Parameters
-    ----------
-    terms : tuple of MemoryTerm
-        The fastest first; none where no reset time removes anything.
-    floor : Surface or None
-        What no reset time removes, in V (transform log); None: nothing.
-    cap_v : float
-        The largest shift that the table vouches for: shorter resets are not extrapolated beyond.
-    """
-
-    terms: tuple[MemoryTerm, ...]
-    floor: Surface | None
-    cap_v: float
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class ApertureEffect:
-    """When, relative to the decision edge, the input counts.
-
-    Parameters
-    ----------
-    centre : Surface
-        Mean of the input's weight over time, in s (transform plain).
-    width : Surface
-        Time in which its share after a step falls from 90 % to 10 %, in s (transform
-        log); reported, of no influence on decisions.
-    """
-
-    centre: Surface
-    width: Surface
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class EnergyEffect:
-    """Energy of one decision and the reset after it, in J.
-
-    Parameters
-    ----------
-    law : str
-        ``"constant"``: `fixed`; ``"delay"``: ``fixed + rise * delay``, a current that
-        flows while the cell decides; ``"overdrive"``: ``fixed + rise * ln(high / magnitude)``
-        with the overdrive's magnitude kept inside `overdrive_v`.
-    fixed : Surface
-        In J (transform log).
-    rise : Surface or None
-        In W or, of the law ``"overdrive"``, in J (transform log).
-    overdrive_v : Range or None
-        Tabulated overdrives; of the law ``"overdrive"`` only.
-    cycle_time_s : float or None
-        Clock period in which the energy was measured; None where the table does not say.
-    """
-
-    law: str
-    fixed: Surface
-    rise: Surface | None = None
-    overdrive_v: Range | None = None
-    cycle_time_s: float | None = None
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class KickbackEffect:
-    """Charge that a decision drives out of the input pins into their sources.
-
-    Parameters
-    ----------
-    common : Surface
-        Mean of both pins, in C (transform plain).
-    differential : Surface
-        Of `inp` less that of `inn` at balanced inputs, in C (transform plain).
-    differential_per_v : Surface or None
-        What a differential input adds to it, in C/V (transform plain); None: nothing.
-    """
-
-    common: Surface
-    differential: Surface
-    differential_per_v: Surface | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
