@@ -17,7 +17,7 @@ from scipy.special import ndtr, ndtri, stdtrit
 
 from behavgen.formulas.node_law import node_law_delay
 from behavgen.model import ComparatorModel, DelayEffect, Surface
-from behavgen.operating_point import surface_terms
+from behavgen.operating_point import OperatingPoint, evaluate, surface_terms
 from behavgen.reference import Reference
 
 __all__ = ["Band", "Bands"]
@@ -56,23 +56,44 @@ class Bands:
     def __init__(self, model: ComparatorModel, level: float = 0.95) -> None:
         self.model = model
         self.level = level
-        self._reference = Reference(model)
+        self.reference = Reference(model)
         self._normal = float(ndtri(0.5 + 0.5 * level))
 
     def offset(self, **condition: npt.ArrayLike) -> Band:
         """Nominal trip point in V."""
-        value = self._reference.offset(**condition)
+        value = self.reference.offset(**condition)
         half = self._normal * np.sqrt(self._offset_variance(condition))
         return Band(value=value, low=value - half, high=value + half)
 
     def noise_sigma(self, **condition: npt.ArrayLike) -> Band:
         """Noise sigma in V."""
-        value = self._reference.noise_sigma(**condition)
+        value = self.reference.noise_sigma(**condition)
         return _logarithmic(value, self._normal * np.sqrt(self._sigma_variance(condition)))
+
+    def tau(self, **condition: npt.ArrayLike) -> Band:
+        """Regeneration time constant in s; NaN where not characterised."""
+        effect = self.model.delay
+        point = self.reference.point((), condition)
+        if effect is None:
+            nothing = np.full(point.shape, np.nan)
+            return Band(value=nothing, low=nothing, high=nothing)
+        value = evaluate(effect.tau, point).reshape(point.shape)
+        alone = np.zeros((value.size, 1 + len(effect.nodes)))
+        alone[:, 0] = 1.0
+        return _logarithmic(value, self._law_error(alone, point).reshape(point.shape))
+
+    def surface(self, surface: Surface, **condition: npt.ArrayLike) -> Band:
+        """Value of any surface of the model, with its interval where it carries a covariance."""
+        point = self.reference.point((), condition)
+        value = evaluate(surface, point).reshape(point.shape)
+        half = self._normal * np.sqrt(self._variance(surface, condition))
+        if surface.transform == "log":
+            return _logarithmic(value, half)
+        return Band(value=value, low=value - half, high=value + half)
 
     def probability(self, vdiff_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
         """Probability of a one over noise; narrowest where the data were."""
-        reference, normal = self._reference, self._normal
+        reference, normal = self.reference, self._normal
         sigma = reference.noise_sigma(**condition)
         if not np.all(sigma > 0.0):
             value = reference.probability(vdiff_v, **condition)
@@ -84,7 +105,7 @@ class Bands:
 
     def delay(self, overdrive_v: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
         """Delay in s at the magnitude of an overdrive in V."""
-        value = self._reference.delay(overdrive_v, **condition)
+        value = self.reference.delay(overdrive_v, **condition)
         effect = self.model.delay
         if effect is None:
             return Band(value=value, low=value, high=value)
@@ -94,9 +115,10 @@ class Bands:
 
     def window(self, resolve_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
         """Width in V of the input interval still unresolved at a time after the edge."""
-        value = self._reference.window(resolve_time_s, **condition)
+        value = self.reference.window(resolve_time_s, **condition)
         log_window = self.log_window(resolve_time_s, **condition)
-        return Band(value=value, low=np.exp(log_window.low), high=np.exp(log_window.high))
+        with np.errstate(over="ignore"):
+            return Band(value=value, low=np.exp(log_window.low), high=np.exp(log_window.high))
 
     def log_window(self, resolve_time_s: npt.ArrayLike, **condition: npt.ArrayLike) -> Band:
         """Natural logarithm of the window in V; finite where the window itself underflows."""
@@ -111,11 +133,11 @@ class Bands:
         return Band(value=value, low=value - half, high=value + half)
 
     def _log_window(self, resolve_time_s: Floats, condition: dict[str, npt.ArrayLike]) -> Floats:
-        width = self._reference.window(resolve_time_s, **condition)
+        width = self.reference.window(resolve_time_s, **condition)
         if self.model.delay is None:
             return width
-        point = self._reference.point(resolve_time_s.shape, condition)
-        log_node, law = self._reference.law(point)
+        point = self.reference.point(resolve_time_s.shape, condition)
+        log_node, law = self.reference.law(point)
         excess_s = np.broadcast_to(resolve_time_s, point.shape).ravel() - law[:, 1]
         tail = np.log(2.0) + log_node[0] - excess_s / law[:, 0]
         with np.errstate(divide="ignore"):
@@ -131,7 +153,7 @@ class Bands:
         return self._variance(effect.surface if effect else None, condition)
 
     def _variance(self, surface: Surface | None, condition: dict[str, npt.ArrayLike]) -> Floats:
-        point = self._reference.point((), condition)
+        point = self.reference.point((), condition)
         if surface is None or not surface.covariance:
             return np.zeros(point.shape)
         terms = surface_terms(surface, point)
@@ -145,18 +167,27 @@ class Bands:
         """Return the delay's half width and the local slope -d(delay)/d(ln overdrive), s."""
         effect = self.model.delay
         assert effect is not None
-        point = self._reference.point(log_magnitude.shape, condition)
+        point = self.reference.point(log_magnitude.shape, condition)
         log_magnitude = np.broadcast_to(log_magnitude, point.shape).ravel()
-        log_node, parameters = self._reference.law(point)
+        log_node, parameters = self.reference.law(point)
         gradient, local_tau_s = _gradient(log_magnitude, log_node, parameters)
+        half_s = self._law_error(gradient, point)
+        return half_s.reshape(point.shape), local_tau_s.reshape(point.shape)
+
+    def _law_error(self, gradient: Floats, point: OperatingPoint) -> Floats:
+        """Return the half width, (N,), of what has this gradient in ln tau and ln node delays."""
+        effect = self.model.delay
+        assert effect is not None
         scatter = _propagated(gradient, effect.scatter)
         if effect.leverage:
             terms = surface_terms(effect.tau, point)
             leverage = np.array(effect.leverage)
             scatter = scatter * np.einsum("nt,tu,nu->n", terms, leverage, terms)
         lack_of_fit = _propagated(gradient, effect.lack_of_fit)
-        half_s = np.sqrt(self._quantile(effect) ** 2 * scatter + self._normal**2 * lack_of_fit)
-        return half_s.reshape(point.shape), local_tau_s.reshape(point.shape)
+        half: Floats = np.sqrt(
+            self._quantile(effect) ** 2 * scatter + self._normal**2 * lack_of_fit
+        )
+        return half
 
     def _quantile(self, effect: DelayEffect) -> float:
         freedom = max(effect.scatter_freedom, 1)
@@ -164,7 +195,8 @@ class Bands:
 
 
 def _logarithmic(value: Floats, half: Floats) -> Band:
-    return Band(value=value, low=value * np.exp(-half), high=value * np.exp(half))
+    with np.errstate(over="ignore"):
+        return Band(value=value, low=value * np.exp(-half), high=value * np.exp(half))
 
 
 def _gradient(log_magnitude: Floats, log_node: Floats, parameters: Floats) -> tuple[Floats, Floats]:

@@ -74,6 +74,11 @@ class DelayEffect:
         Overdrives below it are not distinguished, so that every delay is finite.
     law : str
         Name of the law that gave the nodes their values at each condition.
+    law_error : float or None
+        Its relative error at rows left out: the mean over conditions of the rms.
+    runner_up : str
+        The law that came next; empty when there was none.
+    runner_up_error : float or None
     measured : str
         Reference levels of the delay in the user's words.
     scatter : Matrix
@@ -98,6 +103,9 @@ class DelayEffect:
     nodes: tuple[Surface, ...]
     floor_v: float = 1e-15
     law: str = ""
+    law_error: float | None = None
+    runner_up: str = ""
+    runner_up_error: float | None = None
     measured: str = ""
     scatter: Matrix = ()
     scatter_freedom: int = 0

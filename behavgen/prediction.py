@@ -39,6 +39,8 @@ _OFFSET, _SIGMA, _WINDOW, _SPREAD = range(4)
 _PARTS = (-1.0, -0.5, 0.5, 1.0)
 """Of its half interval, by which a fitted number is moved."""
 _LN_10 = np.log(10.0)
+_LOG_WIDEST = 600.0
+"""ln of a window in V that no input leaves; the exponential of more would overflow."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -223,7 +225,7 @@ def _comparators(numbers: Floats, instances: str) -> Comparators:
         offset_v=numbers[_OFFSET],
         # The mean over normal instances is that of one instance with both variances.
         sigma_v=np.hypot(sigma, spread) if instances == "average" else sigma,
-        log_half_window=numbers[_WINDOW],
+        log_half_window=np.minimum(numbers[_WINDOW], _LOG_WIDEST),
         farthest_v=_FARTHEST_SIGMAS * spread if instances == "3-sigma" else None,
     )
 

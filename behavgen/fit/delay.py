@@ -14,6 +14,7 @@ import numpy.typing as npt
 
 from behavgen.errors import Fault, FitError
 from behavgen.fit.conditions import Sites, find_sites
+from behavgen.fit.delay_direction import rising_faults
 from behavgen.fit.delay_laws import LEAST_ROWS, DelayLaws, delay_laws, enough_rows
 from behavgen.fit.delay_rows import (
     TimedRows,
@@ -86,13 +87,17 @@ def fit_delay(
     Raises
     ------
     FitError
-        When no condition has enough resolved rows at distinct overdrives.
+        When no condition has enough resolved rows at distinct overdrives, or delays do
+        not fall with the overdrive.
     """
     if delay is None and window is None:
         return None
     rows, lone = _usable(resolved_rows(delay, window, processes), windows_alone=delay is None)
     if not enough_rows(rows, find_sites(rows.conditions)).any():
         raise FitError(_too_few(delay, window))
+    rising = rising_faults(rows, _file(delay, window))
+    if rising:
+        raise FitError(*rising)
     rows, named = without_outlying(rows)
     rows, laws, family = _fitted(rows, delay, processes)
     family, apart = falling_family(family, laws.sites, laws.law, processes)
@@ -141,11 +146,14 @@ def _usable(rows: TimedRows, *, windows_alone: bool) -> tuple[TimedRows, list[st
     ]
 
 
-def _too_few(delay: DelayTable | None, window: WindowTable | None) -> Fault:
+def _file(delay: DelayTable | None, window: WindowTable | None) -> str:
     table = delay if delay is not None else window
-    assert table is not None
+    return table.sources[0].file if table is not None and table.sources else ""
+
+
+def _too_few(delay: DelayTable | None, window: WindowTable | None) -> Fault:
     return Fault(
-        file=table.sources[0].file if table.sources else "",
+        file=_file(delay, window),
         what=f"no condition has {LEAST_ROWS} resolved delays at two or more distinct overdrives",
         allowed="tau cannot be told from fewer; measure delays at overdrives a decade or more "
         "apart, the lowest well below 1 mV",
@@ -162,6 +170,9 @@ def _effect(laws: DelayLaws, family: SurfaceFamily, measured: str) -> DelayEffec
         node_overdrive_v=tuple(significant(float(v)) for v in np.exp(law.log_node)),
         nodes=tuple(surfaces[1:]),
         law=law.chosen.name,
+        law_error=significant(law.chosen.left_out, 3),
+        runner_up=law.runner_up.name if law.runner_up else "",
+        runner_up_error=significant(law.runner_up.left_out, 3) if law.runner_up else None,
         measured=measured,
         scatter=_rounded(scatter),
         scatter_freedom=max(round(float(law.freedom[told].sum())), 1),

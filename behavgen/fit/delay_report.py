@@ -5,15 +5,16 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 
-from behavgen.fit.conditions import conditions_of
+from behavgen.fit.conditions import Sites, conditions_of, find_sites
 from behavgen.fit.delay import DelayFit
+from behavgen.fit.delay_direction import asymmetry_words
 from behavgen.fit.intervals import student_quantile
 from behavgen.fit.unresolved_delays import unresolved_words
 from behavgen.fit.weak_corners import left_out_errors, weak_corners
 from behavgen.fit.wording import condition_words
 from behavgen.formulas.node_law import node_law_delay
 from behavgen.model import Condition, ConditionFit, Estimate, Parameter, significant
-from behavgen.tables.characterisation import Characterisation
+from behavgen.tables.characterisation import Characterisation, DelayTable
 
 __all__ = ["delay_fits", "delay_notices"]
 
@@ -115,6 +116,7 @@ def delay_notices(delay: DelayFit, tables: Characterisation) -> tuple[str, ...]:
         *_corners(delay),
         *_borrowed(delay),
         *_tau_gaps(delay),
+        *(_sides(delay, tables.delay) if tables.delay else ()),
         *(unresolved_words(tables.delay, delay.family, delay.law.log_node) if tables.delay else ()),
     )
 
@@ -152,6 +154,27 @@ def _tau_gaps(delay: DelayFit) -> list[str]:
                 f"({abs(gap) / max(error, 1e-9):.0f} standard errors)."
             )
     return notices
+
+
+def _sides(delay: DelayFit, table: DelayTable) -> list[str]:
+    """Compare ones and zeros of the delay table with the model, which knows no difference."""
+    fits = _surface_parameters(delay)
+    error = np.full(len(table.delay_s), np.nan)
+    sites = find_sites(table.conditions)
+    known = {_key(delay.sites, c): fits[c] for c in range(delay.sites.count)}
+    resolved = np.isfinite(table.delay_s) & (np.abs(table.overdrive_v) > 0.0)
+    for c in range(sites.count):
+        parameters = known.get(_key(sites, c))
+        rows = resolved & (sites.of_row == c)
+        if parameters is not None and rows.any():
+            overdrive_v = np.abs(table.overdrive_v[rows])
+            model_s = node_law_delay(overdrive_v, delay.law.log_node, parameters[0], parameters[1:])
+            error[rows] = model_s / table.delay_s[rows] - 1.0
+    return asymmetry_words(table, error)
+
+
+def _key(sites: Sites, c: int) -> tuple[str, ...]:
+    return (sites.process[c], *(repr(value) for value in sites.values[c].tolist()))
 
 
 def _slope(delay: DelayFit, rows: npt.NDArray[np.bool_]) -> tuple[float, float] | None:

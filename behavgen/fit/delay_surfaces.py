@@ -90,6 +90,6 @@ def _expected_shapes(sites: Sites, law: LawFit) -> dict[str, str]:
     for name in ("vdd_v", "vcm_v"):
         level = sites.values[:, CONDITION_NAMES.index(name)]
         if np.isfinite(level).all() and np.ptp(level) > 0.0:
-            falls = np.corrcoef(level, slowness)[0, 1] < 0.0
+            falls = np.cov(level, slowness)[0, 1] < 0.0
             shapes[name] = "reciprocal_square" if falls else "plain"
     return shapes

@@ -172,6 +172,7 @@ def _at_site(rows: EnergyRows, basis: Floats, site: np.intp) -> _Site:
     columns = [basis[here]] + ([extra[:, None]] if np.ptp(extra) > 0.0 else [])
     scaled = np.column_stack(columns) / rows.energy_j[here, None]
     size = np.abs(scaled).max(axis=0)
+    size = np.where(size > 0.0, size, 1.0)
     unit = scaled / size
     inverse = np.linalg.pinv(unit.T @ unit)
     solution = inverse @ unit.sum(axis=0)
@@ -182,7 +183,8 @@ def _at_site(rows: EnergyRows, basis: Floats, site: np.intp) -> _Site:
     if freedom > 0:
         widened = float(student_quantile(0.95, freedom)) ** 2 / normal_quantile(0.95) ** 2
         scatter = float(error @ error) / freedom * widened
-        variance = scatter * np.diag(inverse)[:count] / solution[:count] ** 2
+        with np.errstate(divide="ignore", invalid="ignore"):
+            variance = scatter * np.diag(inverse)[:count] / solution[:count] ** 2
     return _Site(
         parameters=solution[:count] / size[:count],
         static_w=float(solution[count] / size[count]) if len(size) > count else np.nan,

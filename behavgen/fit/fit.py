@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
-from importlib.metadata import PackageNotFoundError, version
 from typing import TypeVar
 
 from behavgen.errors import Fault, FitError
@@ -22,7 +21,9 @@ from behavgen.fit.reset import fit_reset
 from behavgen.fit.table_points import table_points
 from behavgen.model import Box, Cell, ComparatorModel, Pins, Process, Range, Source, Surface
 from behavgen.project import CellSettings
+from behavgen.provenance import mixed_provenance
 from behavgen.tables.characterisation import Characterisation, DelayTable
+from behavgen.version import program_version
 
 __all__ = ["fit"]
 
@@ -93,21 +94,16 @@ def fit(tables: Characterisation, settings: CellSettings | None = None) -> Compa
         notices=(
             *(notice for part in parts if part for notice in part.notices),
             *(delay_notices(delay, tables) if delay else ()),
+            *(f"{text[0].upper()}{text[1:]}."
+              for text in mixed_provenance((s.file, s.provenance) for s in tables.sources)),
         ),
         sources=tuple(
             Source(quantity=s.quantity, file=s.file, sha256=s.sha256, rows=s.rows,
-                   failed_rows=s.failed_rows)
+                   failed_rows=s.failed_rows, provenance=s.provenance)
             for s in tables.sources
         ),
-        generator=f"behavgen {_version()}",
+        generator=f"behavgen {program_version()}",
     )  # fmt: skip
-
-
-def _version() -> str:
-    try:
-        return version("behavgen")
-    except PackageNotFoundError:
-        return "from a source tree"
 
 
 def _all_or_refusals(

@@ -23,12 +23,15 @@ __all__ = ["LawFit", "LawTrial", "fit_law", "scaled_basis", "solve_nodes"]
 Floats = npt.NDArray[np.float64]
 
 _NODE_COUNTS = (2, 3, 4, 5, 6, 8, 10, 12)
-_FIRST_NODE_SHARES = (0.3, 0.1, 0.03, 0.01, 0.003, 0.001, 0.0003)
+_FIRST_NODE_SHARES = (0.3, 0.1, 0.03, 0.01, 0.003, 0.001, 0.0003, 0.0001)
 """Candidates for the first node's overdrive as a share of the largest one."""
+_MOST_NODES_SHARE = 0.75
+"""Of a condition's distinct overdrives."""
 _ROUGHNESS = 1e-3
 """Weight of bends against relative errors: only speaks where no data do."""
-_CHANCE = 6.0
-"""Laws within a factor 1 + 6/rows of the best are as good: selection must not fit the noise."""
+_CHANCE = 12.0
+"""Laws within a factor 1 + 12/rows of the best are as good. A law too flexible, taken by chance,
+understates its errors; with this that happens in fewer than one table of a hundred."""
 _AS_GOOD = 1.05
 """The same for node laws of a long table."""
 _NEGLIGIBLE = 1e-3
@@ -102,9 +105,7 @@ def fit_law(rows: DelayRows) -> LawFit:
     rows : DelayRows
         Every condition has at least two distinct overdrives.
     """
-    simple = [solve_nodes(rows, log_node) for log_node in _node_sets(rows, (1,))]
-    simple += solve_families(rows)
-    free = [solve_nodes(rows, log_node) for log_node in _node_sets(rows, _NODE_COUNTS)]
+    simple, free = _candidates(rows)
     errors = np.array([float(s.left_out_rms.mean()) for s in (*simple, *free)])
     chosen = _preferred(rows, simple, free, errors)
     solution = (*simple, *free)[chosen]
@@ -122,6 +123,13 @@ def fit_law(rows: DelayRows) -> LawFit:
         chosen=_trial(solution),
         runner_up=_trial((*simple, *free)[others[0]]) if others else None,
     )
+
+
+def _candidates(rows: DelayRows) -> tuple[list[LawSolution], list[LawSolution]]:
+    """Return textbook laws, the simplest first, and laws of free node values."""
+    simple = [solve_nodes(rows, log_node) for log_node in _node_sets(rows, (1,))]
+    free = [solve_nodes(rows, log_node) for log_node in _node_sets(rows, _NODE_COUNTS)]
+    return simple + solve_families(rows), free
 
 
 def _trial(solution: LawSolution) -> LawTrial:
@@ -159,7 +167,7 @@ def _node_sets(rows: DelayRows, counts: tuple[int, ...]) -> list[Floats]:
     if counts == (1,):
         return [np.log([highest])]
     distinct = [len(np.unique(v[u])) for v, u in zip(rows.overdrive_v, used, strict=True)]
-    most = int(np.median(distinct)) // 2
+    most = int(_MOST_NODES_SHARE * np.median(distinct))
     return [
         np.linspace(np.log(highest * share), np.log(highest), count)
         for count in counts

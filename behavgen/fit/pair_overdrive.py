@@ -21,9 +21,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
+from behavgen.fit.headroom import Headroom, headroom_of
 from behavgen.fit.surface_changes import ridge_map
 from behavgen.fit.surface_forms import Form, axes_of, axis_powers, design
 from behavgen.fit.surfaces import SurfaceFit, choose_by_left_out, left_out_cost
+from behavgen.fit.two_temperatures import Overdrives, overdrive_views
 from behavgen.formulas.polynomial import AXIS_SHAPES
 
 __all__ = ["choose_through_pair"]
@@ -34,13 +36,10 @@ _TEMPERATURE, _SUPPLY, _COMMON = range(3)
 _DRIFT_V_PER_K = 0.7e-3
 """By how much a threshold falls (common practice: 0.5 to 1 mV/K)."""
 _REFERENCE_K = 300.0
-_THRESHOLD_SHARES = (0.0, 0.2, 0.3, 0.4, 0.5, 0.6)
-"""Candidates for the threshold at 300 K, as shares of the lowest common mode."""
+_THRESHOLD_SHARES = {2: (0.0, 0.2, 0.3, 0.4, 0.5, 0.6), 3: (0.4,)}
+"""Candidates for the threshold at 300 K, as shares of the lowest common mode, by the number
+of common modes: three tell their own bend and little hangs on the threshold."""
 _LEAST_OVERDRIVE_V = 0.04
-_CLEARLY_BETTER = {True: 1.1, False: 1.4}
-"""Left-out errors of the plain surface over those of this one from which on it is taken, by
-whether overdrives count from the supply: nothing else tells how delays rise towards it, whereas
-those that fall have an expected shape to beat."""
 _AS_GOOD = 1.1
 _SITE_WEIGHT = 10.0
 """Of a tabulated condition beside one between them when a surface is written anew."""
@@ -61,16 +60,35 @@ class _Pair:
     threshold_v : float
         At 300 K.
     drift_v_per_k : float
+    common_modes : int
+        Levels in the table.
+    highest_order : int or None
+        Highest total power of a term.
     """
 
     below_supply: bool
     threshold_v: float
     drift_v_per_k: float
+    common_modes: int
+    highest_order: int | None = None
 
     @property
     def powers(self) -> dict[str, int]:
         """Highest powers: what bends, bends with the overdrive."""
-        return {"vdd_v": 1, "vcm_v": 2} if self.below_supply else {"vcm_v": 1}
+        if self.below_supply:
+            return {"vdd_v": 1, "vcm_v": 2}
+        return {"vcm_v": 1} if self.common_modes == 2 else {}
+
+    @property
+    def clearly_better(self) -> float:
+        """Left-out errors of the plain surface over those of this one from which on it is taken.
+
+        Two common modes have `headroom` to beat; of more, nothing else tells how delays rise
+        towards the supply.
+        """
+        if self.common_modes == 2:
+            return 1.4
+        return 1.1 if self.below_supply else 1.0
 
     def seen(self, values: Floats) -> Floats:
         """Return conditions with the overdrive in place of the common mode."""
@@ -96,20 +114,35 @@ def choose_through_pair(
     metric : ndarray, shape (C, L, L)
     expected_shapes : mapping of str to str
     """
-    plain = choose_by_left_out(values, targets, metric, expected_shapes)
+    plain = _over_conditions(values, targets, metric, expected_shapes)
     shapes = {**expected_shapes, "vcm_v": "reciprocal_square"}
+    views: list[Overdrives | _Pair] = [*overdrive_views(values, targets)]
+    views = views or [*_pairs(values, targets)]
     trials = [
-        (pair, choose_by_left_out(pair.seen(values), targets, metric, shapes, pair.powers))
-        for pair in _pairs(values, targets)
+        choose_by_left_out(
+            view.seen(values), targets, metric, shapes, view.powers, view.highest_order
+        )
+        for view in views
     ]
     if not trials:
         return plain
-    costs = np.array([left_out_cost(fit, metric) for _, fit in trials])
-    if costs.min() * _CLEARLY_BETTER[trials[0][0].below_supply] > left_out_cost(plain, metric):
+    costs = np.array([left_out_cost(fit, metric) for fit in trials])
+    if costs.min() * views[0].clearly_better > left_out_cost(plain, metric):
         return plain
-    good = np.flatnonzero(costs <= costs.min() * _AS_GOOD)
-    pair, fit = trials[good[0]]
-    return _written_anew(pair, fit, values, targets)
+    good = int(np.flatnonzero(costs <= costs.min() * _AS_GOOD)[0])
+    return _written_anew(views[good], trials[good], values, targets)
+
+
+def _over_conditions(
+    values: Floats, targets: Floats, metric: Floats, expected_shapes: Mapping[str, str]
+) -> SurfaceFit:
+    """Choose without an overdrive; two common modes take their bend from the supplies."""
+    view = headroom_of(values, targets, metric)
+    if view is None:
+        return choose_by_left_out(values, targets, metric, expected_shapes)
+    shapes = {**expected_shapes, "vcm_v": "plain"}
+    fit = choose_by_left_out(view.seen(values), targets, metric, shapes, view.powers)
+    return _written_anew(view, fit, values, targets)
 
 
 def _pairs(values: Floats, targets: Floats) -> Iterator[_Pair]:
@@ -119,14 +152,16 @@ def _pairs(values: Floats, targets: Floats) -> Iterator[_Pair]:
         return
     if levels[_SUPPLY] > 1 and _rises(values, targets):
         if (values[:, _SUPPLY] - values[:, _COMMON]).min() >= _LEAST_OVERDRIVE_V:
-            yield _Pair(below_supply=True, threshold_v=0.0, drift_v_per_k=0.0)
-    elif levels[_COMMON] == 2 and levels[_TEMPERATURE] > 2:
+            yield _Pair(below_supply=True, threshold_v=0.0, drift_v_per_k=0.0,
+                        common_modes=levels[_COMMON])  # fmt: skip
+    elif levels[_TEMPERATURE] > 2:
         lowest = float(values[:, _COMMON].min())
         cold = _DRIFT_V_PER_K * (_REFERENCE_K - float(values[:, _TEMPERATURE].min()))
-        for share in _THRESHOLD_SHARES:
+        for share in _THRESHOLD_SHARES[min(levels[_COMMON], 3)]:
             if lowest * (1.0 - share) - cold >= _LEAST_OVERDRIVE_V:
                 yield _Pair(below_supply=False, threshold_v=lowest * share,
-                            drift_v_per_k=_DRIFT_V_PER_K)  # fmt: skip
+                            drift_v_per_k=_DRIFT_V_PER_K,
+                            common_modes=levels[_COMMON])  # fmt: skip
 
 
 def _rises(values: Floats, targets: Floats) -> bool:
@@ -137,10 +172,12 @@ def _rises(values: Floats, targets: Floats) -> bool:
     slowness = targets.mean(axis=-1)
     lowest = values[:, _SUPPLY] == values[:, _SUPPLY].min()
     common = values[lowest, _COMMON]
-    return bool(np.ptp(common) > 0.0 and np.corrcoef(common, slowness[lowest])[0, 1] > 0.0)
+    return bool(np.ptp(common) > 0.0 and np.cov(common, slowness[lowest])[0, 1] > 0.0)
 
 
-def _written_anew(pair: _Pair, fit: SurfaceFit, values: Floats, targets: Floats) -> SurfaceFit:
+def _written_anew(
+    view: _Pair | Overdrives | Headroom, fit: SurfaceFit, values: Floats, targets: Floats
+) -> SurfaceFit:
     """Return a surface over overdrives as one over the conditions themselves.
 
     What the new surface misses at the tabulated conditions is fitted on top.
@@ -148,11 +185,11 @@ def _written_anew(pair: _Pair, fit: SurfaceFit, values: Floats, targets: Floats)
     levels = [np.linspace(v.min(), v.max(), _STEPS) for v in values.T]
     at = np.concatenate([values, np.array(list(itertools.product(*levels)))])
     weight = np.where(np.arange(len(at)) < len(values), _SITE_WEIGHT, 1.0)[:, None]
-    wanted = weight * design(fit.form, pair.seen(at))
+    wanted = weight * design(fit.form, view.seen(at))
     form = _closest_form(values, at, weight, wanted @ fit.coefficients)
     renamed, *_ = np.linalg.lstsq(weight * design(form, at), wanted, rcond=None)
     plain = design(form, values)
-    first = renamed @ fit.covariance @ design(fit.form, pair.seen(values)).T
+    first = renamed @ fit.covariance @ design(fit.form, view.seen(values)).T
     rest = ridge_map(form, plain)
     from_targets = first + rest @ (np.eye(len(values)) - plain @ first)
     return replace(

@@ -14,7 +14,7 @@ from simulation), `choose_by_likelihood` for values with known random errors
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -120,6 +120,8 @@ def choose_by_left_out(
     -------
     SurfaceFit
     """
+    centre = targets.mean(axis=0)
+    targets = targets - centre  # the constant's prior is free only beside small values
     ways = candidates(
         values,
         (0.3,),
@@ -140,7 +142,10 @@ def choose_by_left_out(
     left_out = _nested(smoother, residual, single, metric, oddity)
     if len(values) == 1:
         left_out = np.full_like(targets, np.nan)
-    return _finished(ways, best, values, targets, weights, left_out)
+    fit = _finished(ways, best, values, targets, weights, left_out)
+    coefficients = fit.coefficients.copy()
+    coefficients[fit.constant_term] += centre
+    return replace(fit, coefficients=coefficients)
 
 
 def _oddity(ways: Candidates) -> npt.NDArray[np.intp]:
@@ -195,16 +200,25 @@ def left_out_cost(fit: SurfaceFit, metric: Floats) -> float:
 def _nested(
     smoother: Floats, residual: Floats, single: Floats, metric: Floats, oddity: npt.NDArray[np.intp]
 ) -> Floats:
-    """Return left-out errors, each of the candidate that the other conditions choose."""
-    count = smoother.shape[-1]
+    """Return left-out errors, each of the candidate that the other conditions choose.
+
+    With condition i out, errors elsewhere are sums ``a u + b w`` of the residuals u there
+    and w at i; their costs follow from products that are formed once a fold.
+    """
     slack = slack_of(smoother)
+    weighed = (residual.transpose(1, 0, 2) @ metric).transpose(1, 0, 2)
+    own = (weighed * residual).sum(axis=-1)
+    flat = metric.reshape(len(metric), -1)
     left_out = np.empty_like(residual[0])
-    for i in range(count):
-        across = smoother[:, :, i]
-        determinant = np.maximum(slack * slack[:, i : i + 1] - across * smoother[:, i, :], 1e-12)
-        pair = slack[:, i, None, None] * residual + across[..., None] * residual[:, i : i + 1]
-        fitted = residual + across[..., None] * single[:, i : i + 1]
-        cost = _cost(pair / determinant[..., None], metric) + _cost(fitted, metric)
+    for i in range(smoother.shape[-1]):
+        across, here, there = smoother[:, :, i], residual[:, i], slack[:, i : i + 1]
+        determinant = np.maximum(slack * there - across * smoother[:, i, :], 1e-12)
+        mixed = (weighed @ here[..., None])[..., 0]
+        foreign = (here[:, :, None] * here[:, None, :]).reshape(len(here), -1) @ flat.T
+        pair = there * (there * own + 2.0 * across * mixed) + across**2 * foreign
+        share = across / there
+        fitted = own + share * (2.0 * mixed + share * foreign)
+        cost = np.sqrt(np.maximum(pair, 0.0)) / determinant + np.sqrt(np.maximum(fitted, 0.0))
         cost[:, i] = 0.0
         left_out[i] = single[_simplest(cost.sum(axis=-1), oddity), i]
     return left_out

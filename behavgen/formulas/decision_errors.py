@@ -153,10 +153,13 @@ def _mean_share(shorter: Floats, longer: Floats, sigma: Floats) -> Floats:
 
 
 def _mean_share_of_long(shorter: Floats, longer: Floats, sigma: Floats) -> Floats:
-    """Return the same by the integral of Phi, for intervals of many sigmas."""
-    total = _ramp(longer + shorter, sigma) - _ramp(longer - shorter, sigma)
-    total -= _ramp(shorter - longer, sigma) - _ramp(-shorter - longer, sigma)
-    return total / (2.0 * shorter)
+    """Return the same by the integral of Phi, for intervals of many sigmas.
+
+    ``sigma G(x / sigma) = x + sigma G(-x / sigma)`` takes the large terms out, which would
+    cancel where one interval is far shorter than the other.
+    """
+    lost = _ramp(shorter - longer, sigma) - _ramp(-shorter - longer, sigma)
+    return 1.0 - lost / shorter
 
 
 def _ramp(x: Floats, sigma: Floats) -> Floats:

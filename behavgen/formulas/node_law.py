@@ -115,10 +115,8 @@ def node_law_basis(overdrive_v: Floats, log_node: Floats) -> Floats:
         First column for tau. The law is linear in its parameters, so that a
         least-squares fit needs no starting values.
     """
-    x = np.log(overdrive_v)
-    columns = []
-    for unit in np.eye(len(log_node) + 1):
-        tau, node = unit[0], unit[1:]
-        slope = node_slopes(log_node, np.asarray(tau), node, limited=False)
-        columns.append(_hermite(log_node, tau, node, slope, x))
-    return np.stack(columns, axis=-1)
+    unit = np.eye(len(log_node) + 1)[:, None, :]
+    tau, node = unit[..., 0], unit[..., 1:]
+    slope = node_slopes(log_node, tau, node, limited=False)
+    x = np.broadcast_to(np.log(overdrive_v), (len(unit), len(overdrive_v)))
+    return _hermite(log_node, tau, node, slope, x).T

@@ -308,3 +308,28 @@ def test_a_memory_table_alone_gives_a_model_and_a_box(settings):
     assert model.delay is None
     assert (model.box.vdd_v.low, model.box.vdd_v.high) == (1.1, 1.1)
     assert Reference(model).memory_shift(2e-10) == pytest.approx(0.01, rel=1e-6)
+
+
+@pytest.mark.parametrize("process", ["tt", "ss", "ff"])
+def test_delays_fall_and_stay_positive_everywhere_in_the_box(latch, process):
+    box = latch.box
+    vdd, temp_c, vcm = np.meshgrid(
+        np.linspace(box.vdd_v.low, box.vdd_v.high, 11),
+        np.linspace(box.temperature_k.low - 273.15, box.temperature_k.high - 273.15, 11),
+        np.linspace(box.vcm_v.low, box.vcm_v.high, 11),
+    )
+    overdrive_v = np.geomspace(1e-9, 0.5, 60)
+    delay = Reference(latch).delay(
+        overdrive_v, vdd=vdd[..., None], temp_c=temp_c[..., None], vcm=vcm[..., None],
+        process=process,
+    )  # fmt: skip
+    assert (delay > 0.0).all()
+    assert (np.diff(delay, axis=-1) <= 0.0).all()
+
+
+def test_the_law_and_its_runner_up_are_reported_with_their_errors(latch):
+    effect = latch.delay
+    assert effect.runner_up
+    assert effect.runner_up != effect.law
+    assert 0.0 < effect.law_error < 0.01
+    assert effect.law_error < effect.runner_up_error < 0.1

@@ -99,3 +99,11 @@ def test_a_process_measured_everywhere_gets_its_own_slopes():
     change = difference_by_left_out(fit, GRID, other[:, None])
     found = design(fit.form, GRID) @ (fit.coefficients + change)
     assert found[:, 0] == pytest.approx(other, abs=2e-3)
+
+
+def test_two_conditions_foresee_each_other_as_well_as_they_agree():
+    # ln of delays in seconds: far from zero, close to each other.
+    values = np.array([[300.0, 0.9, 0.5], [300.0, 1.1, 0.5]])
+    targets = np.array([[-23.0, -22.0], [-23.1, -22.2]])
+    left_out = choose_by_left_out(values, targets).left_out
+    assert np.abs(left_out) == pytest.approx(np.array([[0.1, 0.2]] * 2), rel=1e-3)

@@ -92,6 +92,13 @@ def test_without_noise_inputs_are_certain() -> None:
     assert float(log_error_probability_uniform(1.0, 0.0, 0.0, 0.1)) == pytest.approx(np.log(0.1))
 
 
+def test_narrow_windows_without_noise_are_their_share_of_the_span() -> None:
+    log_half = np.log([1e-3, 1e-12, 1e-40, 1e-200])
+    found = log_unresolved_probability_uniform(0.6, 0.0, log_half)
+    # W / S (Veendrick 1980), also where span plus window is the span to a double.
+    np.testing.assert_allclose(found, log_half + np.log(2.0 / 0.6), rtol=1e-14)
+
+
 def test_uniform_input_of_many_sigmas() -> None:
     # W / S (Veendrick 1980); sqrt(2/pi) sigma / S, twice the integral of the normal tail.
     window = np.exp(log_unresolved_probability_uniform(1.0, SIGMA_V, np.log(0.5e-9)))
