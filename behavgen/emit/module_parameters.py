@@ -6,7 +6,7 @@ every other; a parameter whose effect was not characterised does nothing.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import Literal
 
 from behavgen.model import Box, ComparatorModel, Surface
@@ -81,10 +81,7 @@ def module_parameters(model: ComparatorModel) -> tuple[ModuleParameter, ...]:
         ),
         _switch("NOISE_ON", 1, "noise of each decision", model.noise is not None),
         _switch("MISMATCH_ON", 0, "offset of this instance", model.mismatch is not None),
-        replace(
-            _switch("MEMORY_ON", 1, "memory of the previous decision", False),
-            reason="not characterised" if model.memory is None else "not modelled here",
-        ),
+        _switch("MEMORY_ON", 1, "memory of the previous decision", model.memory is not None),
         _switch("DELAY_ON", 1, "delays; off: one time step", model.delay is not None),
         ModuleParameter(
             name="SEED", kind="word", default=0, low=0.0,
@@ -151,4 +148,11 @@ def _surfaces(model: ComparatorModel) -> tuple[Surface, ...]:
         found.extend((model.delay.tau, *model.delay.nodes))
     if model.reset is not None:
         found.append(model.reset.surface)
+    if model.memory is not None:
+        found.extend(part for term in model.memory.terms for part in (term.shift, term.tau))
+        found.extend([model.memory.floor] if model.memory.floor else [])
+    if model.aperture is not None:
+        found.append(model.aperture.centre)
+    if model.energy is not None:
+        found.extend(part for part in (model.energy.fixed, model.energy.rise) if part)
     return tuple(found)

@@ -7,7 +7,7 @@ leaves out, and what must not be read into it.
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Iterable
+from collections.abc import Collection, Iterable
 from dataclasses import dataclass
 
 from behavgen.emit.literals import comment_text, range_text
@@ -16,6 +16,8 @@ from behavgen.units import format_si
 
 __all__ = ["HeaderSection", "header_lines", "header_sections"]
 
+_LATER = ("memory", "aperture", "energy", "kickback")
+
 _CONDITIONS = (
     ("vdd_v", "supply", "V"),
     ("temperature_k", "temperature", "K"),
@@ -23,6 +25,11 @@ _CONDITIONS = (
     ("overdrive_v", "overdrive", "V"),
 )
 _NOISE = "Gaussian, no draws beyond 8.3 sigma where they cannot change a bit"
+_ENERGY_LAWS = {
+    "constant": "the same for all",
+    "delay": "grows with the delay",
+    "overdrive": "grows with the logarithm of a falling overdrive",
+}
 _CAUTIONS = (
     "Fitted to tables and valid inside the stated ranges; outside, conditions "
     "are clamped and results are no predictions.",
@@ -47,7 +54,11 @@ class HeaderSection:
 
 
 def header_sections(
-    model: ComparatorModel, *, noise: str = _NOISE, differences: HeaderSection | None = None
+    model: ComparatorModel,
+    *,
+    noise: str = _NOISE,
+    differences: HeaderSection | None = None,
+    left_out: Collection[str] = _LATER,
 ) -> tuple[HeaderSection, ...]:
     """Return the head of an emitted file in reading order; sections without content are absent.
 
@@ -58,11 +69,13 @@ def header_sections(
         How the file models noise.
     differences : HeaderSection or None
         From the models in other languages.
+    left_out : collection of str
+        Effects, by their field in the model, that the file has no equations for.
     """
     candidates = (
         ("Valid for", _ranges(model)),
-        ("Models", _effects(model, noise)),
-        ("Does not model", (", ".join(_absent(model)),)),
+        ("Models", _effects(model, noise, left_out)),
+        ("Does not model", (", ".join(_absent(model, left_out)),)),
         ("Values at the middle of the range", tuple(map(_value, model.parameters))),
         ("Made from", _tables(model)),
         ("Fits the tables", _fits(model)),
@@ -119,7 +132,7 @@ def _span(box: Box, condition: str) -> Range | None:
     return span
 
 
-def _effects(model: ComparatorModel, noise: str) -> tuple[str, ...]:
+def _effects(model: ComparatorModel, noise: str, left_out: Collection[str]) -> tuple[str, ...]:
     lines = []
     if model.offset is not None:
         lines.append(f"offset: {model.offset.source or 'nominal trip point'}")
@@ -133,29 +146,38 @@ def _effects(model: ComparatorModel, noise: str) -> tuple[str, ...]:
         lines.append(law + measured)
     if model.reset is not None:
         lines.append("reset delay")
+    lines += [
+        words
+        for name, words in _laws(model).items()
+        if getattr(model, name) is not None and name not in left_out
+    ]
     return tuple(map(comment_text, lines))
 
 
-def _absent(model: ComparatorModel) -> tuple[str, ...]:
-    effects = {
-        "offset": model.offset,
-        "mismatch": model.mismatch,
-        "noise": model.noise,
-        "delay": model.delay,
-        "reset delay": model.reset,
+def _laws(model: ComparatorModel) -> dict[str, str]:
+    """Say in which form the later effects are modelled."""
+    cap = model.memory.cap_v if model.memory else 0.0
+    law = model.energy.law if model.energy else ""
+    return {
+        "memory": "memory of the previous decision by the length of the reset, "
+        f"up to {format_si(cap, 'V')}",
+        "aperture": "aperture: the input counts as it stands at its centre, not before the edge",
+        "energy": f"energy of each decision and the reset after it: {_ENERGY_LAWS.get(law, law)}",
+        "kickback": "kickback: charge driven out of the inputs at each decision",
     }
-    never_modelled = {
-        "memory of earlier decisions": model.memory,
-        "aperture": model.aperture,
-        "energy": model.energy,
-        "kickback": model.kickback,
-    }
-    return (
-        *(name for name, effect in effects.items() if effect is None),
-        *(
-            name if effect is None else f"{name} (though characterised)"
-            for name, effect in never_modelled.items()
-        ),
+
+
+def _absent(model: ComparatorModel, left_out: Collection[str]) -> tuple[str, ...]:
+    """Name effects that were not characterised, and those that were but have no equations."""
+    names = {
+        "offset": "offset", "mismatch": "mismatch", "noise": "noise", "delay": "delay",
+        "reset": "reset delay", "memory": "memory of earlier decisions",
+        "aperture": "aperture", "energy": "energy", "kickback": "kickback",
+    }  # fmt: skip
+    return tuple(
+        name if getattr(model, field) is None else f"{name} (though characterised)"
+        for field, name in names.items()
+        if getattr(model, field) is None or field in left_out
     )
 
 

@@ -7,13 +7,7 @@ from collections.abc import Sequence
 from behavgen.emit.coordinates import Coordinate, coordinates
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.emit.literals import real_literal, string_literal
-from behavgen.emit.quantity_text import (
-    QuantityText,
-    SurfaceFolder,
-    delay_curve,
-    quantities,
-    surfaces_of,
-)
+from behavgen.emit.quantity_text import QuantityText, SurfaceFolder
 from behavgen.emit.surface_text import CONDITIONS
 from behavgen.emit.systemverilog_conditions import (
     declarations,
@@ -22,13 +16,20 @@ from behavgen.emit.systemverilog_conditions import (
     process_values,
     warned_ranges,
 )
+from behavgen.emit.systemverilog_delay import delay_curve
 from behavgen.emit.systemverilog_interface import head, parameter_lines, port_lines
+from behavgen.emit.systemverilog_quantities import (
+    energy_text,
+    memory_text,
+    quantities,
+    surfaces_of,
+)
 from behavgen.emit.taken_names import refuse_taken_names
 from behavgen.emit.templating import render
 from behavgen.formulas.polynomial import quantise
 from behavgen.model import Cell, ComparatorModel, DelayEffect
 
-__all__ = ["systemverilog"]
+__all__ = ["module_text", "systemverilog"]
 
 _LEVELS = {"high": "1'b1", "low": "1'b0", "mid": "1'bx", "hold": ""}
 _STEPS_PER_V = 2.0**20
@@ -48,12 +49,17 @@ def systemverilog(model: ComparatorModel) -> EmittedFile:
 
 
 def _text(model: ComparatorModel) -> str:
+    return module_text(model, header=head(model))
+
+
+def module_text(model: ComparatorModel, *, header: Sequence[str]) -> str:
+    """Return the module of a cell under lines of comment."""
     points = coordinates(surfaces_of(model), model.processes)
     folder = SurfaceFolder(processes=model.processes, coordinates=points)
     return render(
         "systemverilog/module.sv",
         cell=model.cell,
-        head=head(model),
+        head=header,
         parameters=parameter_lines(model),
         ports=port_lines(model.cell),
         **_cell_facts(model.cell),
@@ -67,15 +73,13 @@ def _cell_facts(cell: Cell) -> dict[str, object]:
     """Return pins, levels and what switches the cell off."""
     pins = cell.pins
     rising = cell.decides_on == "rising"
-    deciding_step, resetting_step = ("2'b01", "2'b10") if rising else ("2'b10", "2'b01")
-    resting = "1'b0" if rising else "1'b1"
+    resting, deciding = ("1'b0", "1'b1") if rising else ("1'b1", "1'b0")
     outputs = [pin for pin in (pins.outp, pins.outn) if pin is not None]
     return {
         "pins": pins,
         "outputs": outputs,
         "resting": resting,
-        "deciding_step": deciding_step,
-        "resetting_step": resetting_step,
+        "deciding": deciding,
         "holds": cell.in_reset == "hold",
         "reset_level": _LEVELS[cell.in_reset],
         "supply_off": None if cell.supply_off_v is None else real_literal(cell.supply_off_v),
@@ -103,13 +107,21 @@ def _effect_facts(model: ComparatorModel) -> dict[str, object]:
     pins = model.cell.pins
     components = () if model.mismatch is None else model.mismatch.components
     overdrive = f"({pins.inp} - {pins.inn}) - {'trip_v' if model.offset else 'OFFSET_SHIFT_V'}"
+    for part, present in (("mismatch_v", components), ("memory_v", model.memory)):
+        overdrive = f"({overdrive}) - {part}" if present else overdrive
+    aperture = "aperture" in surfaces_of(model)
     return {
         "offset": model.offset is not None,
         "mismatch": bool(components),
         "mismatch_names": [f"mismatch{k}_z" for k in range(len(components))],
         "noise": model.noise is not None,
         "reset": "reset" in surfaces_of(model),
-        "overdrive": f"({overdrive}) - mismatch_v" if components else overdrive,
+        "memory": None if model.memory is None else memory_text(model.memory),
+        "aperture": aperture,
+        "energy": None if model.energy is None else energy_text(model.energy),
+        "energy_over_overdrive": model.energy is not None and model.energy.overdrive_v is not None,
+        "overdrive": overdrive,
+        "least_ticks": "aperture_ticks + 1.0" if aperture else "1.0",
     }
 
 
@@ -139,7 +151,7 @@ def _condition_facts(
         follower(name, points, found, warned.get(name)) for name in CONDITIONS
     )
     values = process_values(points, warned.values(), found)
-    finishing = [line for quantity in found for line in quantity.finish]
+    finishing = [line for one in found for lines in one.finish.values() for line in lines]
     fixed = supply.matters and model.cell.pins.vdd is None
     return {
         "constants": follower("", points, found, None).paragraphs,
@@ -151,6 +163,7 @@ def _condition_facts(
         "processes": process_branches(model.processes, values),
         "known_processes": string_literal(", ".join(f"{p.code} {p.name}" for p in model.processes)),
         "sigma_on_demand": any("sigma_known" in line for line in finishing),
+        "needs_exact_exp": model.noise is not None or model.memory is not None,
     }
 
 

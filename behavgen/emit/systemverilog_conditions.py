@@ -23,6 +23,7 @@ __all__ = [
     "process_branches",
     "process_values",
     "warned_ranges",
+    "wrapped",
 ]
 
 _TASK_INDENT = 4
@@ -98,12 +99,12 @@ def follower(
 def _paragraphs(
     condition: str, points: Sequence[Coordinate], quantities: Sequence[QuantityText]
 ) -> tuple[Paragraph, ...]:
-    mapped = _wrapped(_mapped([c for c in points if c.axis.condition == condition]))
+    mapped = wrapped(_mapped([c for c in points if c.axis.condition == condition]))
     found = [Paragraph(comment="Coordinates", lines=mapped)] if mapped else []
     for quantity in quantities:
         lines = quantity.lines(condition)
         if lines:
-            found.append(Paragraph(comment=quantity.comment, lines=_wrapped(lines)))
+            found.append(Paragraph(comment=quantity.comment, lines=wrapped(lines)))
     return tuple(found)
 
 
@@ -202,7 +203,8 @@ def _by_quantity(names: Iterable[str]) -> Iterable[list[str]]:
     return groups.values()
 
 
-def _wrapped(lines: Iterable[str]) -> tuple[str, ...]:
+def wrapped(lines: Iterable[str]) -> tuple[str, ...]:
+    """Return statements of a task in lines that are not too long."""
     return tuple(
         part
         for line in lines

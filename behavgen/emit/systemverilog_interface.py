@@ -18,17 +18,25 @@ WIDTH = 100
 _TYPES = {"real": "real", "integer": "int", "word": "bit [63:0]"}
 
 
-def head(model: ComparatorModel) -> tuple[str, ...]:
-    """Return the comment at the top of the file."""
+def head(model: ComparatorModel, *, what: str = "") -> tuple[str, ...]:
+    """Return the comment at the top of the file; `what` says more of what it is."""
     cell = model.cell
     title = comment_text(f"{cell.name}: {cell.description or 'clocked comparator'}")
-    what = (
+    purpose = (
         "Behavioural model of a clocked comparator for event-driven simulation with real numbers. "
-        f"It decides on the {cell.decides_on} edge of {cell.pins.clk}."
+        f"It decides on the {cell.decides_on} edge of {cell.pins.clk}. "
+        "It states its own time unit; "
+        "IEEE 1800-2017, 3.14.2, then wants one for every other module of a design too."
     )
-    lines = [title, "", *textwrap.wrap(what, WIDTH - 3), ""]
-    lines += header_lines(header_sections(model), WIDTH - 3)
+    lines = [title, "", *textwrap.wrap(purpose, WIDTH - 3), ""]
+    lines += [*textwrap.wrap(what, WIDTH - 3), ""] if what else []
+    lines += header_lines(header_sections(model, left_out=_left_out(model)), WIDTH - 3)
     return tuple(f"// {line}".rstrip() for line in lines)
+
+
+def _left_out(model: ComparatorModel) -> tuple[str, ...]:
+    """Return effects without equations: pins carry no current, and some need delays."""
+    return ("kickback", *(("aperture", "reset") if model.delay is None else ()))
 
 
 def parameter_lines(model: ComparatorModel) -> tuple[str, ...]:
@@ -40,16 +48,16 @@ def parameter_lines(model: ComparatorModel) -> tuple[str, ...]:
     return _aligned(declared)
 
 
-def port_lines(cell: Cell) -> tuple[str, ...]:
-    """Return the port declarations, aligned."""
+def port_lines(cell: Cell, *, analogue: str = "real") -> tuple[str, ...]:
+    """Return the port declarations, aligned; `analogue` is the type of inputs and supply."""
     pins, resting = cell.pins, _resting(cell)
     ports = [
-        ("input", "real", pins.inp, "V, taken at the decision edge"),
-        ("input", "real", pins.inn, "V"),
+        ("input", analogue, pins.inp, "V, taken at the decision edge"),
+        ("input", analogue, pins.inn, "V"),
         ("input", "logic", pins.clk, f"decides on its {cell.decides_on} edge"),
         ("output", "logic", pins.outp, f"the decision; {resting}"),
         ("output", "logic", pins.outn, f"its complement; {resting}"),
-        ("input", "real", pins.vdd, "V"),
+        ("input", analogue, pins.vdd, "V"),
         ("output", "logic", pins.unresolved,
          "1 from the end of an unresolved decision to the next ready"),
         ("input", "logic", pins.enable, "off unless it is 1"),

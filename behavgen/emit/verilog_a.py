@@ -19,12 +19,19 @@ from behavgen.emit.verilog_a_decision import (
     decision_surfaces,
     law_facts,
     law_variables,
+    memory_sum,
     overdrive_statement,
 )
 from behavgen.emit.verilog_a_parameters import continuous_parameters
 from behavgen.emit.verilog_a_ports import outputs, ports, supply
+from behavgen.emit.verilog_a_states import (
+    charge_facts,
+    charge_variables,
+    charge_words,
+    memory_states,
+)
 from behavgen.emit.verilog_a_surfaces import Statements, declaration, surface_statements
-from behavgen.model import Cell, ComparatorModel
+from behavgen.model import Cell, ComparatorModel, MemoryEffect
 
 __all__ = ["verilog_a"]
 
@@ -45,7 +52,8 @@ def verilog_a(model: ComparatorModel) -> EmittedFile:
 
 def _text(model: ComparatorModel) -> str:
     cell = model.cell
-    values = surface_statements(dict(decision_surfaces(model)), model.processes)
+    left_out = tuple(_left_out(model))
+    values = surface_statements(dict(decision_surfaces(model, left_out)), model.processes)
     return render(
         "verilog_a/continuous.va",
         cell=cell,
@@ -66,8 +74,32 @@ def _text(model: ComparatorModel) -> str:
         target=overdrive_statement(model, "target_v"),
         floor_v=real_literal(model.delay.floor_v if model.delay else _FLOOR_WITHOUT_DELAY_V),
         outputs=tuple(outputs(cell)),
+        has_aperture="aperture_s" in values.variables,
+        **_memory_facts(model.memory),
+        **charge_facts(model),
         **law_facts(model.delay),
     )
+
+
+def _left_out(model: ComparatorModel) -> Iterator[str]:
+    """Name the effects that the module has no equations for."""
+    if model.delay is None:
+        yield "aperture"
+    if model.cell.pins.vdd is None:
+        yield "energy"
+
+
+def _memory_facts(memory: MemoryEffect | None) -> dict[str, object]:
+    if memory is None:
+        return {"has_memory": False, "memory_states": ()}
+    states = tuple(memory_states(memory))
+    shares = [f"V({state.node})" for state in states if state.tau]
+    return {
+        "has_memory": True,
+        "memory_states": states,
+        "memory": memory_sum(memory, shares, "memory_floor_v * V(n_remembered)"),
+        "memory_cap_v": real_literal(memory.cap_v),
+    }
 
 
 def _declarations(model: ComparatorModel, values: Statements) -> Iterator[str]:
@@ -75,17 +107,25 @@ def _declarations(model: ComparatorModel, values: Statements) -> Iterator[str]:
     on = ["is_on"] if any(_on(model.cell)) else []
     conditions = [name for name in ("temperature_k", "vcm_v") if name in values.conditions]
     yield from declaration(
-        ["supply_v", "supply_scale_v", "clock_depth", *on, "deciding", "following", *conditions]
+        ["supply_v", "supply_scale_v", "clock_depth", *on, "deciding", "beyond_edge", "resting"]
     )
+    yield from declaration(["settled", *conditions])
     yield from declaration(values.coordinates)
     yield from declaration(values.variables)
     nominal = [name for name in ("tau_s", "reset_s") if name not in values.variables]
     yield from declaration([*nominal, "regeneration_s"])
     density = ["noise_density"] if model.noise else []
-    yield from declaration(["target_v", "filter_s", *density, "magnitude_v"])
-    yield from declaration([*law_variables(model.delay), "start_imbalance"])
-    yield from declaration(["rise_rate", "fall_rate", "taking"])
-    yield from declaration(["latch_state", "since_edge", "taken_state", "growth_rate"])
+    common = ["common_v"] if "vcm_v" in values.conditions else []
+    hold = ["hold_phase"] if "aperture_s" in values.variables else []
+    memory = ["memory_v"] if model.memory else []
+    yield from declaration(
+        ["filter_s", *common, "target_v", *hold, "following", *density, *memory, "overdrive_v"]
+    )
+    yield from declaration(["magnitude_v", *law_variables(model.delay), "start_imbalance"])
+    yield from declaration(["last_phase", "phase_rate", "return_rate"])
+    yield from declaration(["latch_state", "since_edge", "taken_phase", "taking", "taken_state"])
+    storing = ["decided", "storing_rate"] if model.memory else []
+    yield from declaration(["growth_rate", *storing, *charge_variables(model)])
     yield from declaration(["is_one", "is_zero", "is_ending", *_shown_variables(model.cell)])
     yield from declaration(output.level for output in outputs(model.cell))
     yield from declaration(["longest_s"])
@@ -115,14 +155,24 @@ def _header(model: ComparatorModel) -> tuple[str, ...]:
     differences = HeaderSection(
         title="Unlike the event-driven models", lines=tuple(_differences(model))
     )
-    return header_lines(header_sections(model, noise="Gaussian", differences=differences))
+    left_out = tuple(_left_out(model))
+    return header_lines(
+        header_sections(model, noise="Gaussian", differences=differences, left_out=left_out)
+    )
 
 
 def _differences(model: ComparatorModel) -> Iterator[str]:
     follows = "tau/2" if model.noise else "tau/20"
+    aperture = model.aperture is not None and model.delay is not None
+    held = (
+        "and is held when its mean weight lies at the aperture's centre"
+        if aperture
+        else ("and is held at the clock edge")
+    )
     yield (
-        f"the input passes a low-pass of {follows} and is held at the clock edge; conditions act "
-        "at any time, on the overdrive in the first 0.3 tau of a decision, on tau until it is done"
+        f"the input passes a low-pass of {follows} {held}, the common mode at the clock edge; "
+        "other conditions act at any time, on the overdrive until 0.3 tau after that, on tau until "
+        "the decision is done"
     )
     if model.noise is not None:
         yield (
@@ -133,15 +183,25 @@ def _differences(model: ComparatorModel) -> Iterator[str]:
         yield "mismatch enters as parameters MISMATCH_Z, independent standard normal numbers"
     yield (
         "outputs are voltages behind OUTPUT_OHM that follow the supply, half of it apart after "
-        "the delay; inputs draw no current, and the supply gives none"
+        "the delay"
     )
+    yield from charge_words(model)
+    if model.memory is not None:
+        yield (
+            "memory is a state for each of its time constants: any sum of terms is carried, at "
+            "the conditions of the reset; decisions less than tau/4 before the end of their phase "
+            "are half remembered"
+        )
     yield (
         "an unresolved output rests at half the supply from the end of the decision phase until "
         "the reset state returns; there is neither X nor coin"
     )
     yield (
-        "a latch that was reset for less than twice the reset delay may stay as it was; start a "
-        "simulation in reset, in the decision phase it begins balanced and does not resolve"
+        "a decision edge before the reset state has returned shows it at once; a latch that was "
+        "reset for less than tau/2 may stay as it was"
+    )
+    yield (
+        "start a simulation in reset: in the decision phase it begins balanced and does not resolve"
     )
     yield (
         "delays are no shorter than tau/4, and a hundredth with DELAY_ON = 0 or where none was "

@@ -19,14 +19,17 @@ from behavgen.emit.taken_names import refuse_taken_names
 from behavgen.emit.templating import render
 from behavgen.emit.verilog_a_decision import (
     decision_surfaces,
+    energy_law,
+    energy_span,
     law_facts,
     law_variables,
+    memory_sum,
     overdrive_statement,
 )
 from behavgen.emit.verilog_a_parameters import event_parameters
 from behavgen.emit.verilog_a_ports import outputs, ports, supply
-from behavgen.emit.verilog_a_surfaces import Statements, declaration, surface_statements
-from behavgen.model import Cell, ComparatorModel
+from behavgen.emit.verilog_a_surfaces import Statements, declaration, surface_statements, wrapped
+from behavgen.model import Cell, ComparatorModel, EnergyEffect, MemoryEffect
 
 __all__ = ["verilog_a_event"]
 
@@ -57,10 +60,8 @@ def verilog_a_event(model: ComparatorModel) -> EmittedFile:
 
 def _text(model: ComparatorModel) -> str:
     cell = model.cell
-    surfaces = dict(decision_surfaces(model))
-    if model.delay is None:
-        surfaces.pop("reset_s", None)  # without delays, resets have none either
-    values = surface_statements(surfaces, model.processes)
+    left_out = tuple(_left_out(model))
+    values = surface_statements(dict(decision_surfaces(model, left_out)), model.processes)
     switches = tuple(_switches(cell))
     return render(
         "verilog_a/event.va",
@@ -77,14 +78,52 @@ def _text(model: ComparatorModel) -> str:
         on=" * ".join(switch.flag for switch in switches),
         conditions=values.conditions,
         values=values.lines,
-        overdrive=overdrive_statement(model, "overdrive_v"),
+        overdrive=overdrive_statement(
+            model, "overdrive_v", memory=" + memory_v" if model.memory else ""
+        ),
         has_noise=model.noise is not None,
         has_reset="reset_s" in values.variables,
         floor_v=real_literal(model.delay.floor_v) if model.delay else "",
         reset_level=_RESET_LEVELS[cell.in_reset],
+        has_aperture="aperture_s" in values.variables,
+        needs_edge_time=_needs_edge_time(model),
+        **_memory_facts(model.memory),
+        **_energy_facts(model.energy),
         **_clock_facts(cell),
         **law_facts(model.delay),
     )
+
+
+def _needs_edge_time(model: ComparatorModel) -> bool:
+    """Tell whether anything counts from the decision edge that happens at another event."""
+    by_time = model.energy is not None and model.energy.law == "delay"
+    return by_time or (model.aperture is not None and model.delay is not None)
+
+
+def _memory_facts(memory: MemoryEffect | None) -> dict[str, object]:
+    if memory is None:
+        return {"has_memory": False}
+    numbers = range(1, len(memory.terms) + 1)
+    decayed = [f"exp(-memory_age_s / memory_{k}_tau_s)" for k in numbers]
+    return {
+        "has_memory": True,
+        "memory": memory_sum(memory, decayed, "memory_floor_v"),
+        "memory_cap_v": real_literal(memory.cap_v),
+    }
+
+
+def _energy_facts(energy: EnergyEffect | None) -> dict[str, object]:
+    """Return lines that add the energy of a decision to the running total."""
+    if energy is None:
+        return {"energy_span": (), "energy_resolved": (), "energy_unresolved": ()}
+    magnitude = "clamp(abs(overdrive_v), LOW_V, HIGH_V)"
+    resolved = energy_law(energy, time_s="delay_s", overdrive_v=magnitude)
+    unresolved = energy_law(energy, time_s="($abstime - edge_s)", overdrive_v="LOW_V")
+    return {
+        "energy_span": energy_span(energy),
+        "energy_resolved": wrapped(f"energy_j = energy_j + {resolved};"),
+        "energy_unresolved": wrapped(f"energy_j = energy_j + {unresolved};"),
+    }
 
 
 def _clock_facts(cell: Cell) -> dict[str, object]:
@@ -115,15 +154,23 @@ def _declarations(
 ) -> Iterator[str]:
     flags = [switch.flag for switch in switches]
     on = ["is_on"] if switches else []
-    whole = ["random_state", "skipped", "decision_count", "awaited", "is_one", *flags, *on]
-    yield f"integer {', '.join(whole)};"
-    yield from declaration(["unused", "due_s", "ready_s"])
+    sampling = ["is_sampling"] if "aperture_s" in values.variables else []
+    remembered = ["remembered"] if model.memory else []
+    whole = ["random_state", "skipped", "decision_count", *sampling, "awaited", "is_one"]
+    yield from wrapped(f"integer {', '.join([*whole, *remembered, *flags, *on])};")
+    edge = ["edge_s"] if _needs_edge_time(model) else []
+    sample = ["sample_s"] if sampling else []
+    reset_edge = ["reset_edge_s"] if model.memory else []
+    yield from declaration(["unused", *edge, *sample, "due_s", "ready_s", *reset_edge])
+    if model.energy is not None:
+        yield "real energy_j;  // running total of all decisions and the resets after them, J"
     yield from declaration(output.level for output in outputs(model.cell))
     known = {"temperature_k": "temperature_k", "vdd_v": "supply_v", "vcm_v": "vcm_v"}
     yield from declaration(name for key, name in known.items() if key in values.conditions)
     yield from declaration(values.coordinates)
     yield from declaration(values.variables)
-    yield from declaration(["overdrive_v", *(["magnitude_v"] if model.delay else [])])
+    memory = ["memory_age_s", "memory_v"] if model.memory else []
+    yield from declaration([*memory, "overdrive_v", *(["magnitude_v"] if model.delay else [])])
     law = law_variables(model.delay)
     yield from declaration([*law, *(["delay_s"] if "delay_s" not in law else [])])
 
@@ -132,7 +179,16 @@ def _header(model: ComparatorModel) -> tuple[str, ...]:
     differences = HeaderSection(
         title="Unlike the SystemVerilog model", lines=tuple(_differences(model))
     )
-    return header_lines(header_sections(model, differences=differences))
+    return header_lines(
+        header_sections(model, differences=differences, left_out=tuple(_left_out(model)))
+    )
+
+
+def _left_out(model: ComparatorModel) -> Iterator[str]:
+    """Name the effects that the module has no equations for."""
+    yield "kickback"
+    if model.delay is None:  # then nothing takes time
+        yield from ("reset", "aperture")
 
 
 def _differences(model: ComparatorModel) -> Iterator[str]:
@@ -150,5 +206,20 @@ def _differences(model: ComparatorModel) -> Iterator[str]:
         "half the supply stands for X; an unresolved output shows it from the end of the decision "
         "phase until the reset state returns, for EDGE_S at least"
     )
-    yield "inputs draw no current, and the supply gives none"
+    yield from _differences_of_effects(model)
     yield "conditions outside their ranges are clamped without a message"
+
+
+def _differences_of_effects(model: ComparatorModel) -> Iterator[str]:
+    if model.aperture is not None and model.delay is not None:
+        yield "the input is sampled no earlier than STEP_S after the edge"
+    if model.energy is not None:
+        yield "the running total of the energy is the variable energy_j, in J"
+    charges = " and ".join(
+        words
+        for words, effect in (("kickback", model.kickback), ("supply charge", model.energy))
+        if effect is not None
+    )
+    yield "inputs draw no current, and the supply gives none" + (
+        f": {charges} flow in the continuous model only" if charges else ""
+    )

@@ -86,7 +86,9 @@ def _shared(
     for parameter in module_parameters(model):
         if parameter.name in names:
             description = descriptions.get(parameter.name, parameter.description)
-            yield replace(parameter, description=description)
+            is_memory = parameter.name == "MEMORY_ON" and model.memory is not None
+            effective = parameter.effective or is_memory
+            yield replace(parameter, description=description, effective=effective)
 
 
 def _in_event(parameter: ModuleParameter) -> ModuleParameter:

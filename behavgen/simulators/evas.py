@@ -3,8 +3,9 @@
 The Python package ``evas-sim`` executes cross, timer and transition, which free
 compilers of Verilog-A refuse. It is no judge of a text: it takes undeclared nodes
 and missing semicolons, and refuses attributes, currents, ``$finish`` and a second
-``exclude``. It sees crossings only where the ``cross`` event itself names the pins, and its
-circuits are at 27 degrees Celsius.
+``exclude``. It sees crossings only where the ``cross`` event itself names the pins, a timer's
+new time only where the ``timer`` event stands after what sets it, and its circuits are at
+27 degrees Celsius.
 """
 
 from __future__ import annotations

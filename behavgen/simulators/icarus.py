@@ -58,9 +58,10 @@ class Icarus:
         plusargs: Sequence[str] = (),
         library: str = "",
         environment: Mapping[str, str] | None = None,
+        waveforms: bool = False,
         timeout_s: float = 300.0,
     ) -> Finished:
-        """Simulate in the folder of the compiled file, without waveforms.
+        """Simulate in the folder of the compiled file.
 
         Parameters
         ----------
@@ -72,10 +73,13 @@ class Icarus:
             Path of a VPI library to load; "": none.
         environment : mapping or None
             None: that of this process.
+        waveforms : bool
+            Let the simulated text write a VCD file.
         timeout_s : float
         """
+        dumps = "-vcd" if waveforms else "-none"
         load = ("-m", library) if library else ()
-        command = [self.vvp, "-n", *load, compiled, "-none", *(f"+{arg}" for arg in plusargs)]
+        command = [self.vvp, "-n", *load, compiled, dumps, *(f"+{arg}" for arg in plusargs)]
         return run_logged(
             command, log=log, folder=compiled.parent, environment=environment, timeout_s=timeout_s
         )

@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 from behavgen.errors import ToolError
-from behavgen.simulators import evas, icarus, openvaf, slang, vacask, verilator
+from behavgen.simulators import evas, icarus, openvaf, slang, vacask, verible, verilator
 
 __all__ = ["Tool", "list_tools"]
 
@@ -55,6 +55,8 @@ def list_tools() -> tuple[Tool, ...]:
               lambda: verilator.find_verilator().version, verilator.HOW_TO_GET),
         _tool("slang", "judges SystemVerilog by the standard", slang.slang_version,
               slang.HOW_TO_GET),
+        _tool("Verible", "holds SystemVerilog against style rules",
+              lambda: verible.find_verible().version, verible.HOW_TO_GET),
         _tool("OpenVAF-Reloaded", "compiles Verilog-A", lambda: openvaf.find_openvaf().version,
               openvaf.HOW_TO_GET),
         _tool("VACASK", "simulates compiled Verilog-A", lambda: vacask.find_vacask().version,

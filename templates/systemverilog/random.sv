@@ -97,19 +97,16 @@
         + 1.0 / 7.0) * square + 1.0 / 5.0) * square + 1.0 / 3.0) * square + 1.0));
   endfunction
 {% endif %}
-{% if sigma_on_demand %}
+{% if needs_exact_exp %}
 
-  // exp(k ln 2 + r) = 2^k (1 + r + r^2/2! + r^3/3! + ...); ln 2 in two parts
+  // exp(k ln 2 + r) = 2^k (1 + 2 r / (r coth(r/2) - r)), r coth(r/2) = 2 + r^2/6 - r^4/360 + ...
   function automatic real exact_exp(input real arg);
-    real power, rest;
-    longint exponent;
-    power = $floor(arg * 1.4426950408889634 + 0.5);
+    real power, rest, square;
+    power = (arg * 1.4426950408889634 + ROUND) - ROUND;
     rest = (arg - power * 0.6931471803691238) - power * 1.9082149292705877e-10;
-    exponent = longint'(power) + 64'sd1023;
-    return (((((((((((((1.0 / 6227020800.0 * rest + 1.0 / 479001600.0) * rest
-        + 1.0 / 39916800.0) * rest + 1.0 / 3628800.0) * rest + 1.0 / 362880.0) * rest
-        + 1.0 / 40320.0) * rest + 1.0 / 5040.0) * rest + 1.0 / 720.0) * rest + 1.0 / 120.0) * rest
-        + 1.0 / 24.0) * rest + 1.0 / 6.0) * rest + 0.5) * rest + 1.0) * rest + 1.0)
-        * $bitstoreal({1'b0, exponent[10:0], 52'd0});
+    square = rest * rest;
+    return (2.0 * rest / (((((((-691.0 / 653837184000.0 * square + 1.0 / 23950080.0) * square
+        - 1.0 / 604800.0) * square + 1.0 / 15120.0) * square - 1.0 / 360.0) * square + 1.0 / 6.0)
+        * square + 2.0) - rest) + 1.0) * 2.0 ** power;
   endfunction
 {% endif %}

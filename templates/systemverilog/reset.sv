@@ -3,25 +3,28 @@
 
   // With the supply on and the clock at its reset level, but no decision before
   task power_up;
+    reset_time = $realtime;
     return_ticks = 1.0;
-    return_time = $realtime + return_ticks;
     returning = 1'b1;
+    fork : return_after_power_up
+      begin
+        #(return_ticks);
+        if (void_waits == 0) take_reset_state;
+        else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
+        else void_waits = void_waits - 1;
+      end
+    join_none
   endtask
 
-  always begin : reset_when_due
-    wait (returning);
-    #(return_ticks);
+  task take_reset_state;
     returning = 1'b0;
 {% for output in outputs %}
     {{ output }} = {{ reset_level }};
 {% endfor %}
     x_cause = 0;
-  end
+  endtask
 
-  // By a decision edge, unless the reset state is due at this very moment
-  task cancel_return;
-    if ($realtime + 0.5 <= return_time) begin
-      returning = 1'b0;
-      disable reset_when_due;
-    end
+  task call_off_return;
+    if (returning) void_waits = void_waits + 1;
+    returning = 1'b0;
   endtask

@@ -31,9 +31,6 @@
 {% if fixed_supply %}
     fold_supply;
 {% endif %}
-{% if delay == "curve" %}
-    lay_out_curve;
-{% endif %}
     clk_level = {{ pins.clk }};
 {% if is_on %}
     is_on = {{ is_on }};

@@ -12,17 +12,25 @@ import pytest
 
 from behavgen.emit.emit import emit
 from behavgen.emit.systemverilog import systemverilog
+from behavgen.emit.systemverilog_nettype import systemverilog_nettype
 from behavgen.errors import ProjectError
 from behavgen.model import Pins, dump_model, load_model
 from behavgen.simulators.icarus import find_icarus
 from behavgen.simulators.slang import elaborate
+from behavgen.simulators.verible import find_verible
 from behavgen.simulators.verilator import find_verilator
-from tests.example_models import full_model, minimal_model, renamed_pins_model
+from tests.example_models import (
+    complete_model,
+    full_model,
+    minimal_model,
+    renamed_pins_model,
+)
 
 GOLDEN = Path(__file__).parents[1] / "golden"
-EXAMPLES = (full_model(), minimal_model(), renamed_pins_model())
+EXAMPLES = (full_model(), minimal_model(), renamed_pins_model(), complete_model())
 VARIANTS = [
-    full_model(decides_on=edge, in_reset=state, when_unresolved=mode)
+    made(decides_on=edge, in_reset=state, when_unresolved=mode)
+    for made in (full_model, complete_model)
     for edge, state, mode in itertools.product(
         ("rising", "falling"), ("high", "low", "mid", "hold"), ("x", "coin", "hold")
     )
@@ -124,7 +132,7 @@ def test_the_default_process_is_the_first_one():
 
 def test_one_cell_gives_one_file_for_each_language():
     paths = [file.path for file in emit(full_model())]
-    assert paths[:2] == ["latch_full.sv", "latch_full.va"]
+    assert paths[:3] == ["latch_full.sv", "latch_full_nettype.sv", "latch_full.va"]
 
 
 @pytest.mark.parametrize("model", [*EXAMPLES, *VARIANTS], ids=name_of)
@@ -153,6 +161,15 @@ def test_verilator_lint_is_clean(model, tmp_path):
     log = tmp_path / "log"
     done = find_verilator().lint([written(model, tmp_path)], top=model.cell.name, log=log)
     assert done.code == 0, log.read_text()
+
+
+@pytest.mark.parametrize("model", [*EXAMPLES, *VARIANTS[::7]], ids=name_of)
+def test_veribles_default_rules_are_kept(model, tmp_path):
+    nettype = systemverilog_nettype(model)
+    (tmp_path / nettype.path).write_text(nettype.text, encoding="utf-8")
+    sources = [written(model, tmp_path), tmp_path / nettype.path]
+    done = find_verible().lint(sources, log=tmp_path / "log")
+    assert done.code == 0, done.text
 
 
 def test_two_cells_live_in_one_simulation_in_any_order(tmp_path):

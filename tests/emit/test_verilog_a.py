@@ -11,10 +11,11 @@ import pytest
 from behavgen.emit.verilog_a import verilog_a
 from behavgen.emit.verilog_a_surfaces import surface_statements, wrapped
 from behavgen.model import Axis, Box, Process, Range, Surface, Variant
-from tests.example_models import full_model, minimal_model, renamed_pins_model
+from tests.example_models import complete_model, full_model, minimal_model, renamed_pins_model
 
 GOLDEN = Path(__file__).parents[1] / "golden"
 VARIANTS = {
+    "complete": complete_model(),
     "full": full_model(),
     "minimal": minimal_model(),
     "renamed pins": renamed_pins_model(),
@@ -23,7 +24,7 @@ VARIANTS = {
 }
 
 
-@pytest.mark.parametrize("model", [full_model(), minimal_model()], ids=lambda m: m.cell.name)
+@pytest.mark.parametrize("model", [complete_model(), minimal_model()], ids=lambda m: m.cell.name)
 def test_the_text_is_the_one_that_was_approved(model, request):
     emitted = verilog_a(model)
     approved = GOLDEN / emitted.path

@@ -14,13 +14,24 @@ from behavgen.emit.verilog_a import verilog_a
 from behavgen.emit.verilog_a_event import verilog_a_event
 from tests.emit.delay_laws import LAWS, model_with
 from tests.emit.verilog_a_text import compiled, declared
-from tests.example_models import full_model, minimal_model, renamed_pins_model
+from tests.example_models import (
+    complete_model,
+    full_model,
+    minimal_model,
+    renamed_pins_model,
+    with_energy,
+)
 
 GOLDEN = Path(__file__).parents[1] / "golden"
 VARIANTS = {
+    "complete": complete_model(),
     "full": full_model(),
     "minimal": minimal_model(),
     "renamed pins": renamed_pins_model(),
+    "complete, held": complete_model(in_reset="hold", decides_on="falling"),
+    "complete without delay": replace(complete_model(), delay=None),
+    "energy by overdrive": with_energy("overdrive"),
+    "constant energy": with_energy("constant"),
     "low": full_model(in_reset="low"),
     "mid": full_model(in_reset="mid"),
     "hold": full_model(in_reset="hold", decides_on="falling"),
@@ -30,7 +41,7 @@ VARIANTS = {
 }
 
 
-@pytest.mark.parametrize("model", [full_model(), minimal_model()], ids=lambda m: m.cell.name)
+@pytest.mark.parametrize("model", [complete_model(), minimal_model()], ids=lambda m: m.cell.name)
 def test_the_text_is_the_one_that_was_approved(model, request):
     emitted = verilog_a_event(model)
     approved = GOLDEN / emitted.path
@@ -87,7 +98,8 @@ def test_absent_effects_leave_no_trace_in_the_statements():
     statements = text.partition("// -- Constants")[2]
     for trace in (
         "sigma", "offset_v", "mismatch", "slope", "temperature", "vcm", "PROCESS", "$param_given",
-        "clamp", "is_on;", "is_on ", "reset_s", "supply_v",
+        "clamp", "is_on;", "is_on ", "reset_s", "supply_v", "memory", "remembered", "aperture",
+        "sampl", "energy", "edge_s",
     ):  # fmt: skip
         assert trace not in statements, trace
 
@@ -124,3 +136,14 @@ def test_the_head_says_how_noise_is_drawn_in_either_form():
     assert skipped in verilog_a_event(full_model()).text
     assert skipped not in verilog_a(full_model()).text
     assert "noise: Gaussian\n" in verilog_a(full_model()).text
+
+
+def test_the_head_tells_what_is_modelled_and_what_cannot_be():
+    head = verilog_a_event(complete_model()).text.partition("`include")[0].replace("\n//", "")
+    modelled, _, rest = head.partition("Does not model:")
+    absent = rest.partition("Values at")[0]
+    for effect in ("memory of the previous decision", "aperture", "energy"):
+        assert effect in modelled
+        assert effect not in absent
+    assert "kickback (though characterised)" in absent
+    assert "kickback and supply charge flow in the continuous model only" in " ".join(head.split())

@@ -62,17 +62,23 @@ class Played:
 
 @dataclass(frozen=True, kw_only=True)
 class Circuit:
-    """The circuit of a model; evas-sim knows no other temperature than 27 degrees Celsius."""
+    """The circuit of a model; evas-sim knows no other temperature than 27 degrees Celsius.
+
+    With `observed`, an expression of the module's variables, `outn` shows that in V.
+    """
 
     model: ComparatorModel
     folder: Path
     parameters: dict[str, float] = field(default_factory=dict)
+    observed: str = ""
 
     def play(self, cycles: Sequence[Cycle], **sources: Corners) -> Played:
         """Run cycles; a keyword gives a node another source."""
         emitted = verilog_a_event(self.model)
         # evas-sim reads one excluded value at most.
         text = re.sub(r" exclude \d+", "", emitted.text)
+        if self.observed:
+            text = re.sub(r"V\(outn, vss\) <\+ .*;", f"V(outn, vss) <+ {self.observed};", text)
         (self.folder / emitted.path).write_text(text, encoding="utf-8")
         edges = np.cumsum([c.reset_s for c in cycles])
         edges = edges + np.append(0.0, np.cumsum([c.phase_s for c in cycles])[:-1])

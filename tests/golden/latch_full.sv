@@ -1,7 +1,8 @@
 // latch_full: invented example with every effect
 //
 // Behavioural model of a clocked comparator for event-driven simulation with real numbers. It
-// decides on the rising edge of clk.
+// decides on the rising edge of clk. It states its own time unit; IEEE 1800-2017, 3.14.2, then
+// wants one for every other module of a design too.
 //
 // Valid for:
 //   supply 1.08 V to 1.32 V
@@ -56,13 +57,17 @@
 // Waivers. Parameters: those of effects that are not characterised are there all the same, so that
 // every cell has the same. Signals: some are there to be read from outside, and some algorithms
 // use a part of a word. Delays: some resets take none. Nets: the supply both switches the cell and
-// is an operand. First values: there is no pin that could give them.
+// is an operand. First values: there is no pin that could give them. Names: constants are written
+// like parameters. Lifetimes: that of a module, which is static; nothing is kept in a task.
 // verilator lint_save
 // verilator lint_off UNUSEDPARAM
 // verilator lint_off UNUSEDSIGNAL
 // verilator lint_off ZERODLY
 // verilator lint_off SYNCASYNCNET
 // verilator lint_off PROCASSINIT
+// verilog_lint: waive-start parameter-name-style
+// verilog_lint: waive-start explicit-task-lifetime
+// verilog_lint: waive-start explicit-function-lifetime
 `ifdef __slang__
 `pragma diagnostic push
 `pragma diagnostic ignore="-Wunused"
@@ -96,16 +101,16 @@ module latch_full #(
   timeunit 1fs;
   timeprecision 1fs;
   localparam real TICKS_PER_S = 1e15;  // times are whole numbers of ticks
-  localparam real TICK_S = 1.0 / TICKS_PER_S;
+  localparam real ROUND = 6755399441055744.0;  // 1.5 * 2^52: a sum with it is a whole number
 
   // -- To be read from outside ------------------------------------------------------------------
 
   // Why the outputs show no decision: 0 they do, or rest; 1 unresolved; 2 supply or enable;
   // 3 input not a number; 4 clock unknown; 5 before the first decision
   int x_cause = 5;
-  bit [63:0] decision_count = 64'd0;  // decision edges so far
+  logic [63:0] decision_count = 64'd0;  // decision edges so far
   real overdrive_v = 0.0;             // effective overdrive of the last decision, signed
-  real delay_s = TICK_S;              // its delay, also if it did not resolve
+  real delay_s = 1.0 / TICKS_PER_S;   // its delay, also if it did not resolve
   int temperature_warnings = 0;       // how often a condition was outside its range
   int supply_warnings = 0;
   int common_mode_warnings = 0;
@@ -114,17 +119,23 @@ module latch_full #(
 
   // -- State ------------------------------------------------------------------------------------
 
-  // Since the last decision edge: nothing was decided; a decision is on its way; one is kept
-  // from resolving; one is shown
-  localparam bit [1:0] IDLE = 2'd0, DECIDING = 2'd1, FORCED = 2'd2, DECIDED = 2'd3;
-  bit [1:0] decision_state = IDLE;
-  real edge_time = 0.0;               // decision edge, in ticks
+  // Since the last decision edge
+  localparam bit [2:0] IDLE = 3'd0;      // nothing was decided
+  localparam bit [2:0] DECIDING = 3'd2;  // a decision is on its way
+  localparam bit [2:0] FORCED = 3'd3;    // one is kept from resolving
+  localparam bit [2:0] DECIDED = 3'd4;   // one is shown
+  bit [2:0] decision_state = IDLE;
   logic clk_level;                    // level of the clock before its last change
+  // Waits are threads that nobody stops. Those that were called off are counted until they end;
+  // while there are any, a wait that ends looks whether it is the one that is meant.
+  int void_waits = 0;
+  bit input_lost = 1'b0;              // an input was infinite or not a number at the decision edge
+  real edge_time = 0.0;               // last decision edge; all times are in ticks
+  real reset_time = 0.0;              // last end of a decision phase
   localparam real SUPPLY_OFF_V = 0.54;
-  bit is_on;                          // supplied and enabled
+  bit is_on;                            // supplied and enabled
   bit returning = 1'b0;               // the reset state is on its way
-  real return_ticks = 1.0;            // how long it takes, rounded where it is waited for
-  real return_time = 0.0;             // when it is there, in ticks
+  real return_ticks = 1.0;            // how long it takes
 
   // -- Conditions and what follows from them ----------------------------------------------------
 
@@ -143,6 +154,16 @@ module latch_full #(
   real sigma_v = 0.0;                 // noise of one decision
   real noise_reach_v = 0.0;           // overdrives from which noise changes no bit
   bit sigma_known = 1'b0;             // if not, the reach is only an upper bound
+  real delay_ticks = 1.0;             // from the decision edge to the outputs
+  localparam int LAST = 3;      // node
+  real gap[1:LAST];             // ln of the overdrive at a node over that at the node before
+  // Segment k ends at node k: delay = cubic_0 + x (cubic_1 + x (cubic_2 + x cubic_3))
+  real cubic_0[1:LAST], cubic_1[1:LAST], cubic_2[1:LAST], cubic_3[1:LAST];
+  bit [LAST:1] segment_known = '0;
+  real first_s = 0.0;           // delay at the first node
+  real tau_s = 0.0;             // regeneration time constant
+  bit tail_known = 1'b0;
+  real x_ln = 0.0;              // ln of an overdrive over that at the start of its segment
   real reset_ticks = 0.0;             // reset delay
   real x_t, x_v, x_c, x_t_low, x_t_high, x_v_low, x_v_high, x_c_low, x_c_high;
   real offset_t0v0c0, offset_v0c0, offset_v1c0, offset_c0, offset_c1, offset_v;
@@ -225,16 +246,46 @@ module latch_full #(
   // -- Clock: only a clean step from one level to the other counts ------------------------------
 
   always @(clk) begin
-    case ({clk_level, clk})
-      2'b01: begin
-        decision_count = decision_count + 64'd1;
-        if (returning) cancel_return;
-        if (is_on) decide;
+    if (clk === 1'b1 && clk_level === 1'b0) begin
+      decision_count = decision_count + 64'd1;
+      if (is_on) begin
+        edge_time = $realtime;
+        if (returning) begin
+          call_off_return;
+          if (is_due(reset_time + return_ticks)) take_reset_state;
+        end
+        vcm_steps = (inp + inn) * (0.5 * STEPS_PER_V) + 0.5;
+        if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step_end)) take_conditions;
+        if (!input_lost) begin
+          decide;
+          fork : show_when_ready
+            begin
+              #(delay_ticks);
+              if (void_waits == 0) show_decision;
+              else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
+              else void_waits = void_waits - 1;
+            end
+          join_none
+        end
       end
-      2'b10: if (is_on) end_phase;
-      2'b00, 2'b11: ;  // it came back within the same instant
-      default: if (is_on) unclean_step;
-    endcase
+    end else if (clk === 1'b0 && clk_level === 1'b1) begin
+      if (is_on) begin
+        reset_time = $realtime;
+        return_ticks = reset_ticks;
+        if (decision_state != DECIDED) end_undecided;
+        returning = 1'b1;
+        fork : return_when_due
+          begin
+            #(return_ticks);
+            if (void_waits == 0) take_reset_state;
+            else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
+            else void_waits = void_waits - 1;
+          end
+        join_none
+      end
+    end else if (clk !== clk_level) begin  // else it came back within the same instant
+      if (is_on) unclean_step;
+    end
     clk_level = clk;
   end
 
@@ -250,37 +301,107 @@ module latch_full #(
     if (clk === 1'b0) power_up;
   endtask
 
-  // -- Decision: at a clean step of the clock to its deciding level -----------------------------
+  // -- Decision ---------------------------------------------------------------------------------
 
-  localparam real FLOOR_V = 1e-15;  // overdrives below are not distinguished
-  real magnitude_v = 0.0;           // of the overdrive
-
-  task decide;
-    edge_time = $realtime;
-    vcm_steps = (inp + inn) * (0.5 * STEPS_PER_V) + 0.5;
-    if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step_end)) begin
-      if (vcm_steps - vcm_steps != 0.0) begin  // it is infinite or not a number
-        lose_input;
-        disable decide;
-      end
+  task take_conditions;
+    real clamped;
+    input_lost = vcm_steps - vcm_steps != 0.0;
+    if (input_lost) begin
+      vcm_step_end = vcm_step;  // nothing is in this range
+      lose_input;
+    end else begin
       if (vdd_changed) fold_supply;
-      fold_common_mode;
-    end
-    overdrive_v = ((inp - inn) - trip_v) - mismatch_v;
-    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
-    if (magnitude_v < noise_reach_v) add_noise;
-    if (DELAY_ON != 0) find_delay;
-    decision_state = DECIDING;
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
+      vcm_step = $floor(vcm_steps);
+      vcm_step_end = vcm_step + 1.0;
+      vcm_v = vcm_step / STEPS_PER_V;
+      if (vcm_v < x_c_low - 1.0 / STEPS_PER_V
+          || vcm_v > x_c_high + 1.0 / STEPS_PER_V) begin
+        common_mode_warnings = common_mode_warnings + 1;
+        if (common_mode_warnings == 1) begin
+          warn($sformatf("common mode %g V is outside %g V to %g V and clamped",
+                         vcm_v, x_c_low, x_c_high));
+        end
+      end
+      // Coordinates
+      clamped = vcm_v > x_c_low ? (vcm_v < x_c_high ? vcm_v : x_c_high) : x_c_low;
+      x_c = (1.0 / (clamped * clamped) - 2.78) / 1.22;
+      // Offset: the trip point in V
+      offset_v = (-4e-5 * x_c + offset_c1) * x_c + offset_c0;
+      trip_v = offset_v + OFFSET_SHIFT_V;
+      // Mismatch: components in V per sigma, and this instance's offset from the nominal
+      if (mismatch_on != 0) begin
+        mismatch0_v = 0.0003 * x_c + mismatch0_c0;
+        mismatch_v = mismatch0_v * mismatch0_z + 0.0008 * mismatch1_z;
+      end
+      // Noise: ln of its sigma in V, and overdrives from which it need not be known
+      noise_ln = (0.03 * x_c + 0.2) * x_c + noise_c0;
+      noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;
+      sigma_known = 1'b0;
+      // Delay: the curve is to be evaluated anew
+      segment_known = '0;
+      tail_known = 1'b0;
     end
   endtask
 
+  // One of the inputs is infinite or not a number
   task lose_input;
     lose_outputs(3);
     input_warnings = input_warnings + 1;
     if (input_warnings == 1) begin
       warn($sformatf("the input is not a number: %g V and %g V", inp, inn));
+    end
+  endtask
+
+  // Whether a wait that ends is the one that is meant; to half a tick, since the clock may step
+  // between ticks
+  function automatic bit is_meant(input bit [2:0] state, input real moment);
+    return decision_state == state && is_due(moment);
+  endfunction
+
+  function automatic bit is_due(input real moment);
+    return moment < $realtime + 0.5;
+  endfunction
+
+  localparam real FLOOR_V = 1e-15;  // overdrives below are not distinguished
+  real magnitude_v = 0.0;           // of the overdrive
+
+  task decide;
+    overdrive_v = ((inp - inn) - trip_v) - mismatch_v;
+    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+    if (magnitude_v < noise_reach_v) add_noise;
+    if (DELAY_ON != 0) begin
+      if (magnitude_v >= 0.3) begin
+        delay_s = node_delay(LAST);
+      end else if (magnitude_v >= 0.03) begin
+        if (!segment_known[3]) build_segment(3);
+        x_ln = $ln(magnitude_v / 0.03);
+        delay_s = cubic_0[3]
+            + x_ln * (cubic_1[3] + x_ln * (cubic_2[3] + x_ln * cubic_3[3]));
+      end else if (magnitude_v >= 0.005) begin
+        if (!segment_known[2]) build_segment(2);
+        x_ln = $ln(magnitude_v / 0.005);
+        delay_s = cubic_0[2]
+            + x_ln * (cubic_1[2] + x_ln * (cubic_2[2] + x_ln * cubic_3[2]));
+      end else if (magnitude_v >= 0.001) begin
+        if (!segment_known[1]) build_segment(1);
+        x_ln = $ln(magnitude_v / 0.001);
+        delay_s = cubic_0[1]
+            + x_ln * (cubic_1[1] + x_ln * (cubic_2[1] + x_ln * cubic_3[1]));
+      end else begin
+        if (!tail_known) build_tail;
+        x_ln = $ln((magnitude_v < FLOOR_V ? FLOOR_V : magnitude_v) / 0.001);
+        delay_s = first_s - tau_s * x_ln;
+      end
+      delay_ticks = (delay_s * TICKS_PER_S + ROUND) - ROUND;
+      if (delay_ticks < 1.0) delay_ticks = 1.0;
+    end
+    decision_state = DECIDING;
+    if (FORCE_UNRESOLVED_EVERY > 0) begin
+      if (decision_state == DECIDING
+          && decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) begin
+        decision_state = FORCED;
+        void_waits = void_waits + 1;
+      end
     end
   endtask
 
@@ -302,16 +423,6 @@ module latch_full #(
   // of the parabola through three neighbours; from the last node on constant.
   // What an overdrive needs of it is built when it is first needed under the present conditions.
 
-  localparam int LAST = 3;      // node
-  real gap[1:LAST];             // ln of the overdrive at a node over that at the node before
-  // Segment k ends at node k: delay = cubic_0 + x (cubic_1 + x (cubic_2 + x cubic_3))
-  real cubic_0[1:LAST], cubic_1[1:LAST], cubic_2[1:LAST], cubic_3[1:LAST];
-  bit [LAST:1] segment_known = '0;
-  real first_s = 0.0;           // delay at the first node
-  real tau_s = 0.0;             // regeneration time constant
-  bit tail_known = 1'b0;
-  real x_ln = 0.0;              // ln of an overdrive over that at the start of its segment
-
   task lay_out_curve;
     for (int node = 1; node <= LAST; node = node + 1) begin
       case (node)
@@ -320,29 +431,6 @@ module latch_full #(
         default: gap[node] = $ln(0.3 / 0.03);
       endcase
     end
-  endtask
-
-  task find_delay;
-    if (magnitude_v >= 0.3) begin
-      delay_s = node_delay(LAST);
-    end else if (magnitude_v >= 0.03) begin
-      if (!segment_known[3]) build_segment(3);
-      x_ln = $ln(magnitude_v / 0.03);
-      delay_s = cubic_0[3] + x_ln * (cubic_1[3] + x_ln * (cubic_2[3] + x_ln * cubic_3[3]));
-    end else if (magnitude_v >= 0.005) begin
-      if (!segment_known[2]) build_segment(2);
-      x_ln = $ln(magnitude_v / 0.005);
-      delay_s = cubic_0[2] + x_ln * (cubic_1[2] + x_ln * (cubic_2[2] + x_ln * cubic_3[2]));
-    end else if (magnitude_v >= 0.001) begin
-      if (!segment_known[1]) build_segment(1);
-      x_ln = $ln(magnitude_v / 0.001);
-      delay_s = cubic_0[1] + x_ln * (cubic_1[1] + x_ln * (cubic_2[1] + x_ln * cubic_3[1]));
-    end else begin
-      if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;
-      if (!tail_known) build_tail;
-      delay_s = first_s - tau_s * $ln(magnitude_v / 0.001);
-    end
-    if (delay_s < TICK_S) delay_s = TICK_S;
   endtask
 
   task build_tail;
@@ -405,48 +493,34 @@ module latch_full #(
 
   // -- Outputs ----------------------------------------------------------------------------------
 
-  always begin : show_when_ready
-    wait (decision_state == DECIDING);
-    #(delay_s * TICKS_PER_S);
-    show_decision;
-  end
-
   task show_decision;
     decision_state = DECIDED;
-    outp = overdrive_v > 0.0;
-    outn = !(overdrive_v > 0.0);
+    if (overdrive_v > 0.0) begin
+      outp = 1'b1;
+      outn = 1'b0;
+    end else begin
+      outp = 1'b0;
+      outn = 1'b1;
+    end
     unresolved = 1'b0;
     x_cause = 0;
   endtask
 
-  // At a clean step of the clock back to its reset level
-  task end_phase;
-    if (decision_state == DECIDED) return_ticks = reset_ticks;
-    else end_undecided;
-    return_time = $realtime + return_ticks;
-    returning = 1'b1;
-  endtask
-
+  // At the end of a decision phase
   task end_undecided;
-    return_ticks = 1.0;  // as at power-up if there was nothing to decide
-    if (decision_state == DECIDING && (DELAY_ON == 0 || ready_by($realtime))) begin
-      show_decision;
-      disable show_when_ready;
-      return_ticks = reset_ticks;
+    if (decision_state == DECIDING && (DELAY_ON == 0 || is_due(edge_time + delay_ticks))) begin
+      void_waits = void_waits + 1;
+      show_decision;  // at this very moment
     end else if (decision_state != IDLE) begin
       leave_unresolved;
-      if (reset_ticks > 1.0) return_ticks = reset_ticks;
+      if (return_ticks < 1.0) return_ticks = 1.0;
+    end else begin
+      return_ticks = 1.0;  // as at power-up: there was nothing to decide
     end
   endtask
 
-  // Times are rounded to whole ticks
-  function automatic bit ready_by(input real now);
-    return edge_time + delay_s * TICKS_PER_S < now + 0.5;
-  endfunction
-
   task leave_unresolved;
-    decision_state = IDLE;
-    disable show_when_ready;
+    call_off_decision;
     unresolved = 1'b1;
     x_cause = 1;
     if (UNRESOLVED_MODE == 0) begin
@@ -460,39 +534,45 @@ module latch_full #(
 
   // The outputs are unknown at once, whatever was on its way
   task lose_outputs(input int cause);
-    decision_state = IDLE;
-    disable show_when_ready;
-    returning = 1'b0;
-    disable reset_when_due;
+    call_off_decision;
+    call_off_return;
     outp = 1'bx;
     outn = 1'bx;
     x_cause = cause;
+  endtask
+
+  task call_off_decision;
+    if (decision_state == DECIDING) void_waits = void_waits + 1;
+    decision_state = IDLE;
   endtask
 
   // -- Reset ------------------------------------------------------------------------------------
 
   // With the supply on and the clock at its reset level, but no decision before
   task power_up;
+    reset_time = $realtime;
     return_ticks = 1.0;
-    return_time = $realtime + return_ticks;
     returning = 1'b1;
+    fork : return_after_power_up
+      begin
+        #(return_ticks);
+        if (void_waits == 0) take_reset_state;
+        else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
+        else void_waits = void_waits - 1;
+      end
+    join_none
   endtask
 
-  always begin : reset_when_due
-    wait (returning);
-    #(return_ticks);
+  task take_reset_state;
     returning = 1'b0;
     outp = 1'b1;
     outn = 1'b1;
     x_cause = 0;
-  end
+  endtask
 
-  // By a decision edge, unless the reset state is due at this very moment
-  task cancel_return;
-    if ($realtime + 0.5 <= return_time) begin
-      returning = 1'b0;
-      disable reset_when_due;
-    end
+  task call_off_return;
+    if (returning) void_waits = void_waits + 1;
+    returning = 1'b0;
   endtask
 
   // -- Supply and enable ------------------------------------------------------------------------
@@ -588,40 +668,7 @@ module latch_full #(
     node3_c1 = 0.01 * x_v * x_v + 0.1;
     // Reset: ln of its delay in s
     reset_c0 = -0.2 * x_v + reset_v0c0;
-    reset_ticks = DELAY_ON != 0 ? $exp(reset_c0) * TICKS_PER_S : 0.0;
-  endtask
-
-  task fold_common_mode;
-    real clamped;
-    vcm_step = $floor(vcm_steps);
-    vcm_step_end = vcm_step + 1.0;
-    vcm_v = vcm_step / STEPS_PER_V;
-    if (vcm_v < x_c_low - 1.0 / STEPS_PER_V
-        || vcm_v > x_c_high + 1.0 / STEPS_PER_V) begin
-      common_mode_warnings = common_mode_warnings + 1;
-      if (common_mode_warnings == 1) begin
-        warn($sformatf("common mode %g V is outside %g V to %g V and clamped",
-                       vcm_v, x_c_low, x_c_high));
-      end
-    end
-    // Coordinates
-    clamped = vcm_v > x_c_low ? (vcm_v < x_c_high ? vcm_v : x_c_high) : x_c_low;
-    x_c = (1.0 / (clamped * clamped) - 2.78) / 1.22;
-    // Offset: the trip point in V
-    offset_v = (-4e-5 * x_c + offset_c1) * x_c + offset_c0;
-    trip_v = offset_v + OFFSET_SHIFT_V;
-    // Mismatch: components in V per sigma, and this instance's offset from the nominal
-    if (mismatch_on != 0) begin
-      mismatch0_v = 0.0003 * x_c + mismatch0_c0;
-      mismatch_v = mismatch0_v * mismatch0_z + 0.0008 * mismatch1_z;
-    end
-    // Noise: ln of its sigma in V, and overdrives from which it need not be known
-    noise_ln = (0.03 * x_c + 0.2) * x_c + noise_c0;
-    noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;
-    sigma_known = 1'b0;
-    // Delay: the curve is to be evaluated anew
-    segment_known = '0;
-    tail_known = 1'b0;
+    reset_ticks = DELAY_ON != 0 ? $floor($exp(reset_c0) * TICKS_PER_S + 0.5) : 0.0;
   endtask
 
   // -- Random numbers ---------------------------------------------------------------------------
@@ -721,18 +768,15 @@ module latch_full #(
         + 1.0 / 7.0) * square + 1.0 / 5.0) * square + 1.0 / 3.0) * square + 1.0));
   endfunction
 
-  // exp(k ln 2 + r) = 2^k (1 + r + r^2/2! + r^3/3! + ...); ln 2 in two parts
+  // exp(k ln 2 + r) = 2^k (1 + 2 r / (r coth(r/2) - r)), r coth(r/2) = 2 + r^2/6 - r^4/360 + ...
   function automatic real exact_exp(input real arg);
-    real power, rest;
-    longint exponent;
-    power = $floor(arg * 1.4426950408889634 + 0.5);
+    real power, rest, square;
+    power = (arg * 1.4426950408889634 + ROUND) - ROUND;
     rest = (arg - power * 0.6931471803691238) - power * 1.9082149292705877e-10;
-    exponent = longint'(power) + 64'sd1023;
-    return (((((((((((((1.0 / 6227020800.0 * rest + 1.0 / 479001600.0) * rest
-        + 1.0 / 39916800.0) * rest + 1.0 / 3628800.0) * rest + 1.0 / 362880.0) * rest
-        + 1.0 / 40320.0) * rest + 1.0 / 5040.0) * rest + 1.0 / 720.0) * rest + 1.0 / 120.0) * rest
-        + 1.0 / 24.0) * rest + 1.0 / 6.0) * rest + 0.5) * rest + 1.0) * rest + 1.0)
-        * $bitstoreal({1'b0, exponent[10:0], 52'd0});
+    square = rest * rest;
+    return (2.0 * rest / (((((((-691.0 / 653837184000.0 * square + 1.0 / 23950080.0) * square
+        - 1.0 / 604800.0) * square + 1.0 / 15120.0) * square - 1.0 / 360.0) * square + 1.0 / 6.0)
+        * square + 2.0) - rest) + 1.0) * 2.0 ** power;
   endfunction
 
   // -- Messages ---------------------------------------------------------------------------------
@@ -751,3 +795,6 @@ endmodule
 `pragma diagnostic pop
 `endif
 // verilator lint_restore
+// verilog_lint: waive-stop parameter-name-style
+// verilog_lint: waive-stop explicit-task-lifetime
+// verilog_lint: waive-stop explicit-function-lifetime

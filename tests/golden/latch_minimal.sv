@@ -1,7 +1,8 @@
 // latch_minimal: invented example with a delay only
 //
 // Behavioural model of a clocked comparator for event-driven simulation with real numbers. It
-// decides on the rising edge of clk.
+// decides on the rising edge of clk. It states its own time unit; IEEE 1800-2017, 3.14.2, then
+// wants one for every other module of a design too.
 //
 // Valid for:
 //   supply not characterised: has no influence
@@ -36,13 +37,17 @@
 // Waivers. Parameters: those of effects that are not characterised are there all the same, so that
 // every cell has the same. Signals: some are there to be read from outside, and some algorithms
 // use a part of a word. Delays: some resets take none. Nets: the supply both switches the cell and
-// is an operand. First values: there is no pin that could give them.
+// is an operand. First values: there is no pin that could give them. Names: constants are written
+// like parameters. Lifetimes: that of a module, which is static; nothing is kept in a task.
 // verilator lint_save
 // verilator lint_off UNUSEDPARAM
 // verilator lint_off UNUSEDSIGNAL
 // verilator lint_off ZERODLY
 // verilator lint_off SYNCASYNCNET
 // verilator lint_off PROCASSINIT
+// verilog_lint: waive-start parameter-name-style
+// verilog_lint: waive-start explicit-task-lifetime
+// verilog_lint: waive-start explicit-function-lifetime
 `ifdef __slang__
 `pragma diagnostic push
 `pragma diagnostic ignore="-Wunused"
@@ -76,16 +81,16 @@ module latch_minimal #(
   timeunit 1fs;
   timeprecision 1fs;
   localparam real TICKS_PER_S = 1e15;  // times are whole numbers of ticks
-  localparam real TICK_S = 1.0 / TICKS_PER_S;
+  localparam real ROUND = 6755399441055744.0;  // 1.5 * 2^52: a sum with it is a whole number
 
   // -- To be read from outside ------------------------------------------------------------------
 
   // Why the outputs show no decision: 0 they do, or rest; 1 unresolved; 2 supply or enable;
   // 3 input not a number; 4 clock unknown; 5 before the first decision
   int x_cause = 5;
-  bit [63:0] decision_count = 64'd0;  // decision edges so far
+  logic [63:0] decision_count = 64'd0;  // decision edges so far
   real overdrive_v = 0.0;             // effective overdrive of the last decision, signed
-  real delay_s = TICK_S;              // its delay, also if it did not resolve
+  real delay_s = 1.0 / TICKS_PER_S;   // its delay, also if it did not resolve
   int temperature_warnings = 0;       // how often a condition was outside its range
   int supply_warnings = 0;
   int common_mode_warnings = 0;
@@ -94,19 +99,26 @@ module latch_minimal #(
 
   // -- State ------------------------------------------------------------------------------------
 
-  // Since the last decision edge: nothing was decided; a decision is on its way; one is kept
-  // from resolving; one is shown
-  localparam bit [1:0] IDLE = 2'd0, DECIDING = 2'd1, FORCED = 2'd2, DECIDED = 2'd3;
-  bit [1:0] decision_state = IDLE;
-  real edge_time = 0.0;               // decision edge, in ticks
+  // Since the last decision edge
+  localparam bit [2:0] IDLE = 3'd0;      // nothing was decided
+  localparam bit [2:0] DECIDING = 3'd2;  // a decision is on its way
+  localparam bit [2:0] FORCED = 3'd3;    // one is kept from resolving
+  localparam bit [2:0] DECIDED = 3'd4;   // one is shown
+  bit [2:0] decision_state = IDLE;
   logic clk_level;                    // level of the clock before its last change
-  bit is_on;                          // supplied and enabled
+  // Waits are threads that nobody stops. Those that were called off are counted until they end;
+  // while there are any, a wait that ends looks whether it is the one that is meant.
+  int void_waits = 0;
+  bit input_lost = 1'b0;              // an input was infinite or not a number at the decision edge
+  real edge_time = 0.0;               // last decision edge; all times are in ticks
+  real reset_time = 0.0;              // last end of a decision phase
+  bit is_on;                            // supplied and enabled
   bit returning = 1'b0;               // the reset state is on its way
-  real return_ticks = 1.0;            // how long it takes, rounded where it is waited for
-  real return_time = 0.0;             // when it is there, in ticks
+  real return_ticks = 1.0;            // how long it takes
 
   // -- Conditions and what follows from them ----------------------------------------------------
 
+  real delay_ticks = 1.0;             // from the decision edge to the outputs
   real tau_s = 0.0;                   // regeneration time constant
   real node_s = 0.0;                  // delay at the largest characterised overdrive
 
@@ -154,16 +166,46 @@ module latch_minimal #(
   // -- Clock: only a clean step from one level to the other counts ------------------------------
 
   always @(clk) begin
-    case ({clk_level, clk})
-      2'b01: begin
-        decision_count = decision_count + 64'd1;
-        if (returning) cancel_return;
-        if (is_on) decide;
+    if (clk === 1'b1 && clk_level === 1'b0) begin
+      decision_count = decision_count + 64'd1;
+      if (is_on) begin
+        edge_time = $realtime;
+        if (returning) begin
+          call_off_return;
+          if (is_due(reset_time + return_ticks)) take_reset_state;
+        end
+        input_lost = (inp - inp) + (inn - inn) != 0.0;
+        if (input_lost) lose_input;
+        if (!input_lost) begin
+          decide;
+          fork : show_when_ready
+            begin
+              #(delay_ticks);
+              if (void_waits == 0) show_decision;
+              else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
+              else void_waits = void_waits - 1;
+            end
+          join_none
+        end
       end
-      2'b10: if (is_on) end_phase;
-      2'b00, 2'b11: ;  // it came back within the same instant
-      default: if (is_on) unclean_step;
-    endcase
+    end else if (clk === 1'b0 && clk_level === 1'b1) begin
+      if (is_on) begin
+        reset_time = $realtime;
+        return_ticks = 0.0;
+        if (decision_state != DECIDED) end_undecided;
+        returning = 1'b1;
+        fork : return_when_due
+          begin
+            #(return_ticks);
+            if (void_waits == 0) take_reset_state;
+            else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
+            else void_waits = void_waits - 1;
+          end
+        join_none
+      end
+    end else if (clk !== clk_level) begin  // else it came back within the same instant
+      if (is_on) unclean_step;
+    end
     clk_level = clk;
   end
 
@@ -179,26 +221,9 @@ module latch_minimal #(
     if (clk === 1'b0) power_up;
   endtask
 
-  // -- Decision: at a clean step of the clock to its deciding level -----------------------------
+  // -- Decision ---------------------------------------------------------------------------------
 
-  localparam real FLOOR_V = 1e-15;  // overdrives below are not distinguished
-  real magnitude_v = 0.0;           // of the overdrive
-
-  task decide;
-    edge_time = $realtime;
-    if ((inp - inp) + (inn - inn) != 0.0) begin
-      lose_input;  // it is infinite or not a number
-      disable decide;
-    end
-    overdrive_v = (inp - inn) - OFFSET_SHIFT_V;
-    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
-    if (DELAY_ON != 0) find_delay;
-    decision_state = DECIDING;
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) decision_state = FORCED;
-    end
-  endtask
-
+  // One of the inputs is infinite or not a number
   task lose_input;
     lose_outputs(3);
     input_warnings = input_warnings + 1;
@@ -207,57 +232,69 @@ module latch_minimal #(
     end
   endtask
 
-  // Linear regeneration; from the largest characterised overdrive on constant
-  task find_delay;
-    delay_s = node_s;
-    if (magnitude_v < FLOOR_V) magnitude_v = FLOOR_V;
-    if (magnitude_v < 0.5) delay_s = node_s + tau_s * $ln(0.5 / magnitude_v);
-    if (delay_s < TICK_S) delay_s = TICK_S;
+  // Whether a wait that ends is the one that is meant; to half a tick, since the clock may step
+  // between ticks
+  function automatic bit is_meant(input bit [2:0] state, input real moment);
+    return decision_state == state && is_due(moment);
+  endfunction
+
+  function automatic bit is_due(input real moment);
+    return moment < $realtime + 0.5;
+  endfunction
+
+  localparam real FLOOR_V = 1e-15;  // overdrives below are not distinguished
+  real magnitude_v = 0.0;           // of the overdrive
+
+  task decide;
+    overdrive_v = (inp - inn) - OFFSET_SHIFT_V;
+    magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
+    if (DELAY_ON != 0) begin
+      delay_s = node_s;
+      if (magnitude_v < FLOOR_V) delay_s = node_s + tau_s * $ln(0.5 / FLOOR_V);
+      else if (magnitude_v < 0.5) delay_s = node_s + tau_s * $ln(0.5 / magnitude_v);
+      delay_ticks = (delay_s * TICKS_PER_S + ROUND) - ROUND;
+      if (delay_ticks < 1.0) delay_ticks = 1.0;
+    end
+    decision_state = DECIDING;
+    if (FORCE_UNRESOLVED_EVERY > 0) begin
+      if (decision_state == DECIDING
+          && decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) begin
+        decision_state = FORCED;
+        void_waits = void_waits + 1;
+      end
+    end
   endtask
 
   // -- Outputs ----------------------------------------------------------------------------------
 
-  always begin : show_when_ready
-    wait (decision_state == DECIDING);
-    #(delay_s * TICKS_PER_S);
-    show_decision;
-  end
-
   task show_decision;
     decision_state = DECIDED;
-    outp = overdrive_v > 0.0;
-    outn = !(overdrive_v > 0.0);
+    if (overdrive_v > 0.0) begin
+      outp = 1'b1;
+      outn = 1'b0;
+    end else begin
+      outp = 1'b0;
+      outn = 1'b1;
+    end
     unresolved = 1'b0;
     x_cause = 0;
   endtask
 
-  // At a clean step of the clock back to its reset level
-  task end_phase;
-    if (decision_state == DECIDED) return_ticks = 0.0;
-    else end_undecided;
-    return_time = $realtime + return_ticks;
-    returning = 1'b1;
-  endtask
-
+  // At the end of a decision phase
   task end_undecided;
-    return_ticks = 1.0;  // as at power-up if there was nothing to decide
-    if (decision_state == DECIDING && (DELAY_ON == 0 || ready_by($realtime))) begin
-      show_decision;
-      disable show_when_ready;
-      return_ticks = 0.0;
+    if (decision_state == DECIDING && (DELAY_ON == 0 || is_due(edge_time + delay_ticks))) begin
+      void_waits = void_waits + 1;
+      show_decision;  // at this very moment
     end else if (decision_state != IDLE) begin
       leave_unresolved;
+      if (return_ticks < 1.0) return_ticks = 1.0;
+    end else begin
+      return_ticks = 1.0;  // as at power-up: there was nothing to decide
     end
   endtask
 
-  // Times are rounded to whole ticks
-  function automatic bit ready_by(input real now);
-    return edge_time + delay_s * TICKS_PER_S < now + 0.5;
-  endfunction
-
   task leave_unresolved;
-    decision_state = IDLE;
-    disable show_when_ready;
+    call_off_decision;
     unresolved = 1'b1;
     x_cause = 1;
     if (UNRESOLVED_MODE == 0) begin
@@ -271,39 +308,45 @@ module latch_minimal #(
 
   // The outputs are unknown at once, whatever was on its way
   task lose_outputs(input int cause);
-    decision_state = IDLE;
-    disable show_when_ready;
-    returning = 1'b0;
-    disable reset_when_due;
+    call_off_decision;
+    call_off_return;
     outp = 1'bx;
     outn = 1'bx;
     x_cause = cause;
+  endtask
+
+  task call_off_decision;
+    if (decision_state == DECIDING) void_waits = void_waits + 1;
+    decision_state = IDLE;
   endtask
 
   // -- Reset ------------------------------------------------------------------------------------
 
   // With the supply on and the clock at its reset level, but no decision before
   task power_up;
+    reset_time = $realtime;
     return_ticks = 1.0;
-    return_time = $realtime + return_ticks;
     returning = 1'b1;
+    fork : return_after_power_up
+      begin
+        #(return_ticks);
+        if (void_waits == 0) take_reset_state;
+        else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
+        else void_waits = void_waits - 1;
+      end
+    join_none
   endtask
 
-  always begin : reset_when_due
-    wait (returning);
-    #(return_ticks);
+  task take_reset_state;
     returning = 1'b0;
     outp = 1'b1;
     outn = 1'b1;
     x_cause = 0;
-  end
+  endtask
 
-  // By a decision edge, unless the reset state is due at this very moment
-  task cancel_return;
-    if ($realtime + 0.5 <= return_time) begin
-      returning = 1'b0;
-      disable reset_when_due;
-    end
+  task call_off_return;
+    if (returning) void_waits = void_waits + 1;
+    returning = 1'b0;
   endtask
 
   // -- Supply and enable ------------------------------------------------------------------------
@@ -376,3 +419,6 @@ endmodule
 `pragma diagnostic pop
 `endif
 // verilator lint_restore
+// verilog_lint: waive-stop parameter-name-style
+// verilog_lint: waive-stop explicit-task-lifetime
+// verilog_lint: waive-stop explicit-function-lifetime
