@@ -14,11 +14,14 @@ __all__ = ["FAULTS", "INEXACT_SHARE", "Agreement", "compare"]
 Integers = npt.NDArray[np.int64]
 Mask = npt.NDArray[np.bool_]
 
-FAULTS = ("", "bit", "unresolved", "delay", "reset", "x_cause", "stray change")
+FAULTS = ("", "bit", "unresolved", "delay", "reset", "x_cause", "energy", "stray change")
 """What can be wrong with a decision; the first that applies counts."""
 INEXACT_SHARE = 0.01
 """Delays may differ by a tick where a last place decides, which is rare: a larger share
 means that they are rounded otherwise."""
+ENERGY_TOLERANCE = 1e-9
+"""Relative; simulators may use their own logarithms in it."""
+_TOTAL_ROUNDING = 4.0 * 2.0**-52
 
 _SHOWN = slice(0, CAUSE)  # outputs and flag: what pins show
 _OUTPUTS = slice(0, FLAG)
@@ -67,20 +70,21 @@ def compare(expected: Expectation, record: Record) -> Agreement:
     early = ~expected.resolved & _differ(in_time, expected.before, _OUTPUTS)
     wrong_end = ~expected.resolved & _differ(at_end, expected.after, _SHOWN)
     mistimed = expected.resolved & _mistimed(expected, record)
+    timed = expected.resolved & ~expected.excluded & ~other & ~flagged
+    timed &= _differ(expected.before, expected.shown, _SHOWN)
+    seen = record.first_change(expected.edge)
+    error = np.where(timed & (seen >= 0), seen - expected.ready, 0)
     masks = (
         other & ~flagged,
         flagged | early | wrong_end,
         mistimed,
         _reset_wrong(expected, record),
         _cause_wrong(expected, record),
+        _energy_wrong(expected, record, timed, error),
         _strays(expected, record),
     )
     fault = np.select(masks, range(1, len(FAULTS)), default=0).astype(np.int8)
     fault[expected.excluded] = 0
-    timed = expected.resolved & ~expected.excluded & ~other & ~flagged
-    timed &= _differ(expected.before, expected.shown, _SHOWN)
-    seen = record.first_change(expected.edge)
-    error = np.where(timed & (seen >= 0), seen - expected.ready, 0)
     return Agreement(fault=fault, compared=~expected.excluded, delay_error=error, timed=timed)
 
 
@@ -114,6 +118,20 @@ def _cause_wrong(expected: Expectation, record: Record) -> Mask:
     end = wrong(expected.end, expected.after)
     reset = wrong(expected.reset + expected.reset_tolerance, expected.rest)
     return np.where(expected.resolved, ready, end) | (expected.returns & reset)
+
+
+def _energy_wrong(
+    expected: Expectation, record: Record, timed: Mask, delay_error: Integers
+) -> Mask:
+    """Return where the running total grew by another energy; a tick of delay may tell in it."""
+    reached = np.where(expected.resolved, expected.ready + expected.delay_tolerance, expected.end)
+    total = record.energy_at(np.minimum(reached, expected.end))
+    grown = total - record.energy_at(expected.edge)
+    slack = np.where(timed, np.abs(delay_error), expected.delay_tolerance)
+    share = ENERGY_TOLERANCE + np.where(expected.resolved, slack / expected.delay_ticks, 0.0)
+    rounding = _TOTAL_ROUNDING * np.abs(total)
+    off: Mask = np.abs(grown - expected.energy_j) > share * expected.energy_j + rounding
+    return off
 
 
 def _strays(expected: Expectation, record: Record) -> Mask:

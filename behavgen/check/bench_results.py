@@ -1,4 +1,4 @@
-"""What the benches of all batches found: one result each, and one a sentence."""
+"""What all simulations found: one result each, and one a sentence."""
 
 from __future__ import annotations
 
@@ -9,68 +9,66 @@ from behavgen.check.simulation import BatchOutcome
 from behavgen.check.verdict import BenchResult
 from behavgen.model import ComparatorModel
 from behavgen.simulators.cocotb_benches import BenchOutcome
+from behavgen.simulators.process import Finished
 
-__all__ = ["Suite", "bench_results", "summarise"]
+__all__ = ["Suite", "bench_results", "ended", "message_results", "summarise"]
 
 Suite = tuple[str, BenchResult]
 """A result and the name of the suite that it belongs to."""
 
 
-def bench_results(model: ComparatorModel, outcomes: Sequence[BatchOutcome]) -> tuple[Suite, ...]:
-    """Return every result of every batch, suite by suite.
+def bench_results(outcome: BatchOutcome) -> tuple[Suite, ...]:
+    """Return every result of a batch's benches, suite by suite."""
+    found = [(bench.module, _result(bench)) for bench in outcome.benches]
+    simulated = ended(outcome.batch.name, outcome.finished, silent=not outcome.benches)
+    return (("simulation", simulated), *sorted(found, key=lambda suite: suite[0]))
+
+
+def _result(bench: BenchOutcome) -> BenchResult:
+    function, _, option = bench.name.partition("/")
+    sentence = function.replace("_", " ")
+    kind, _, value = option.partition("=")
+    if option:
+        sentence = f"{sentence}: {kind} {value}"
+    return BenchResult(name=sentence, passed=not bench.message, message=bench.message)
+
+
+def ended(name: str, finished: Finished, *, silent: bool = False) -> BenchResult:
+    """Judge how a simulation ended; a silent one has left no results."""
+    message = ""
+    if finished.code is None:
+        message = f"did not end in time; see {finished.log.name}"
+    elif finished.code != 0 or silent:
+        end = f"ended with exit code {finished.code}"
+        message = f"{end}; {finished.log.name} ends with:\n{finished.tail()}"
+    sentence = f"the simulation runs to its end: {name}"
+    return BenchResult(name=sentence, passed=not message, message=message)
+
+
+def message_results(
+    model: ComparatorModel, outcome: BatchOutcome, others: Sequence[Finished]
+) -> tuple[BenchResult, ...]:
+    """Judge the messages of the silent instances and of the one that warns.
 
     Parameters
     ----------
     model : ComparatorModel
-    outcomes : sequence of BatchOutcome
+    outcome : BatchOutcome
+        Of the batch in which an instance warns.
+    others : sequence of Finished
     """
-    found: list[Suite] = [("simulation", _ended(outcome)) for outcome in outcomes]
-    for outcome in outcomes:
-        found += [(bench.module, _result(outcome, bench)) for bench in outcome.benches]
-    found += [("messages", result) for result in _messages(model, outcomes)]
-    return tuple(sorted(found, key=lambda suite: suite[0]))
-
-
-def _result(outcome: BatchOutcome, bench: BenchOutcome) -> BenchResult:
-    function, _, option = bench.name.partition("/")
-    sentence = function.replace("_", " ")
-    kind, _, value = option.partition("=")
-    if kind == "run":
-        run = next(run for run in outcome.batch.runs if run.index == int(value))
-        sentence = f"{sentence}: {run.name}"
-    elif option:
-        sentence = f"{sentence}: {kind} {value}"
-    elif bench.module == "test_agreement":
-        sentence = f"{sentence}: {outcome.batch.name}"
-    return BenchResult(name=sentence, passed=not bench.message, message=bench.message)
-
-
-def _ended(outcome: BatchOutcome) -> BenchResult:
-    code, log = outcome.finished.code, outcome.finished.log
-    message = ""
-    if code is None:
-        message = f"did not end in time; see {log.name}"
-    elif code != 0 or not outcome.benches:
-        message = f"ended with exit code {code}; {log.name} ends with:\n{outcome.finished.tail()}"
-    name = f"the simulation runs to its end: {outcome.batch.name}"
-    return BenchResult(name=name, passed=not message, message=message)
-
-
-def _messages(model: ComparatorModel, outcomes: Sequence[BatchOutcome]) -> tuple[BenchResult, ...]:
-    """Judge the messages of the silent instances and of the one that warns."""
     lines = [
         line
-        for outcome in outcomes
-        for line in outcome.finished.text.splitlines()
+        for finished in (outcome.finished, *others)
+        for line in finished.text.splitlines()
         if "[behavgen]" in line
     ]
-    warning = [run for o in outcomes for run in o.batch.runs if run.name == WARNING_RUN]
+    warning = [run for run in outcome.batch.runs if run.name == WARNING_RUN]
     told = [line for line in lines if any(f"{run.path} " in line for run in warning)]
-    others = len(lines) - len(told)
     causes = 2 + _can_leave_box(model)
     return (
         _counted("each cause is warned of once", causes, len(told)),
-        _counted("a silent instance says nothing", 0, others),
+        _counted("a silent instance says nothing", 0, len(lines) - len(told)),
     )
 
 

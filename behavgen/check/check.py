@@ -1,29 +1,44 @@
-"""Hold an emitted SystemVerilog text against the reference: the whole check of one cell."""
+"""Check one cell's SystemVerilog: three questions, answered separately.
+
+decisions       does it equal the reference, decision by decision?
+tables          characterised anew in simulation, does it give the tables back?
+distribution    is the random part distributed as it must be, for seeds nobody chose?
+"""
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
-from itertools import chain
 from pathlib import Path
 from tempfile import TemporaryDirectory
 
-from behavgen.check.bench_files import read_agreement
-from behavgen.check.bench_results import Suite, bench_results, summarise
-from behavgen.check.disagreements import describe_disagreements
-from behavgen.check.fatal import fatal_results
-from behavgen.check.harness import harness_macros, top_text
-from behavgen.check.preparation import Block, plan_check, prepare_blocks
+from behavgen.check.bench_results import Suite, summarise
+from behavgen.check.closure.closure import closure, closure_csv, closure_results
+from behavgen.check.decisions import Compared, compare_decisions
+from behavgen.check.distribution.distribution import distribution, distribution_results
+from behavgen.check.given import Given, given_text, own_text
+from behavgen.check.power import decision_power, distribution_power
 from behavgen.check.results_file import results_xml
-from behavgen.check.simulation import CompiledCheck, simulate_batches
-from behavgen.check.strata import PlayedRun, count_strata
-from behavgen.check.verdict import BenchResult, CheckReport, Disagreement, dump_report
+from behavgen.check.simulation import (
+    IcarusSimulation,
+    Simulation,
+    VerilatorSimulation,
+)
+from behavgen.check.verdict import (
+    CheckReport,
+    ClosureResult,
+    ClosureRow,
+    DistributionResult,
+    dump_report,
+)
+from behavgen.check.wishes import Wishes
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.errors import Fault, ProjectError
 from behavgen.files import sha256_of_text, write_whole
 from behavgen.model import ComparatorModel, dump_model
 from behavgen.simulators.icarus import find_icarus
-from behavgen.simulators.process import Finished
+from behavgen.simulators.verilator import find_verilator
 
 __all__ = ["check"]
 
@@ -35,12 +50,14 @@ def check(
     folder: Path,
     seed: int = 1,
     jobs: int = 2,
+    wishes: Wishes | None = None,
+    given: bool = False,
     progress: Callable[[str], None] | None = None,
 ) -> CheckReport:
-    """Simulate an emitted text and compare it with the reference, decision by decision.
+    """Simulate a SystemVerilog text and answer three questions about it.
 
-    Writes ``check.json``, ``results.xml`` and the simulations' logs to the
-    folder ``check`` under `folder`.
+    Writes ``check.json``, ``results.xml``, ``closure.csv`` (every row of the
+    tables) and the simulations' logs to the folder ``check`` under `folder`.
 
     Parameters
     ----------
@@ -53,6 +70,10 @@ def check(
         Varies the stimulus; the same seed gives the same check.
     jobs : int
         Simulations that run at the same time.
+    wishes : Wishes or None
+        How it shall differ from the usual check.
+    given : bool
+        The text is the user's own: what it lacks is left out and told.
     progress : callable or None
         Is told in words what happens now.
 
@@ -68,17 +89,33 @@ def check(
     ProjectError
         When the folder cannot be written.
     """
-    icarus = find_icarus()
+    wishes = wishes or Wishes()
+    make = _maker(wishes.simulator)
     tell = progress or (lambda _: None)
     logs = (folder / "check").absolute()
-    _make_folder(logs)
     with TemporaryDirectory(prefix="behavgen-check-") as work:
-        simulation = CompiledCheck(icarus=icarus, work=Path(work).resolve(), logs=logs)
-        found = _simulated(model, systemverilog.text, simulation, seed, jobs, tell)
-    report = _report(model, systemverilog.text, icarus.version, found)
+        made = make(Path(work).resolve(), logs)
+        _make_folder(logs)
+        asked = _Asked(
+            given=given_text(model, systemverilog.text) if given else own_text(model),
+            text=systemverilog.text, make=make, work=Path(work).resolve(),
+            seed=seed, jobs=jobs, wishes=wishes, tell=tell,
+        )  # fmt: skip
+        found = _answers(asked, made)
+    report = _report(model, asked, made.version, found)
     write_whole(logs / "results.xml", results_xml(model.cell.name, found.suites))
+    write_whole(logs / "closure.csv", closure_csv(found.rows))
     write_whole(logs / "check.json", dump_report(report))
     return report
+
+
+def _maker(simulator: str) -> Callable[[Path, Path], Simulation]:
+    """Return what makes a simulation in a working folder, with its logs in another."""
+    if simulator == "verilator":
+        verilator = find_verilator()
+        return lambda work, logs: VerilatorSimulation(verilator=verilator, work=work, logs=logs)
+    icarus = find_icarus()
+    return lambda work, logs: IcarusSimulation(icarus=icarus, work=work, logs=logs)
 
 
 def _make_folder(folder: Path) -> None:
@@ -93,75 +130,101 @@ def _make_folder(folder: Path) -> None:
         raise ProjectError(fault) from error
 
 
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Asked:
+    """What is asked about which text."""
+
+    given: Given
+    text: str
+    make: Callable[[Path, Path], Simulation]
+    work: Path
+    seed: int
+    jobs: int
+    wishes: Wishes
+    tell: Callable[[str], None]
+
+    def bench(self, name: str) -> Simulation:
+        """Return a simulation with a working folder of its own."""
+        folder = self.work / name
+        folder.mkdir()
+        return self.make(folder, folder)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class _Found:
-    """Everything that came of it."""
+    """All answers."""
 
-    suites: tuple[Suite, ...]
-    played: tuple[PlayedRun, ...] = ()
-    disagreements: tuple[Disagreement, ...] = ()
+    compared: Compared
+    closure: tuple[ClosureResult, ...] = ()
+    rows: tuple[ClosureRow, ...] = ()
+    distribution: tuple[DistributionResult, ...] = ()
 
-
-def _simulated(
-    model: ComparatorModel,
-    text: str,
-    simulation: CompiledCheck,
-    seed: int,
-    jobs: int,
-    tell: Callable[[str], None],
-) -> _Found:
-    plan = plan_check(model, seed=seed, jobs=jobs)
-    tell("compiling")
-    top, macros = top_text(model, plan.runs), harness_macros(model, text)
-    compiled = simulation.compile(model.cell.name, text, top, macros)
-    if compiled.code != 0:
-        refused = BenchResult(name="the text compiles", passed=False, message=_complaints(compiled))
-        return _Found(suites=(("compile", refused),))
-    blocks = prepare_blocks(model, plan, simulation.work, seed=seed)
-    tell(f"simulating {sum(block.run.decisions for block in blocks)} decisions")
-    outcomes = simulate_batches(simulation, plan.batches, jobs=jobs)
-    suites = [*bench_results(model, outcomes)]
-    suites += [("fatal", one) for one in fatal_results(simulation, model, plan.fatal)]
-    tell("comparing")
-    played = tuple(_played(blocks, simulation.work))
-    described = [describe_disagreements(model, one, simulation.work) for one in played]
-    return _Found(suites=tuple(suites), played=played, disagreements=tuple(chain(*described)))
+    @property
+    def suites(self) -> tuple[Suite, ...]:
+        """Every result with its suite."""
+        return (
+            *self.compared.suites,
+            *(("tables", result) for result in closure_results(self.closure)),
+            *(("distribution", result) for result in distribution_results(self.distribution)),
+        )
 
 
-def _complaints(compiled: Finished) -> str:
-    """Return what a compiler refused, without its warnings."""
-    lines = [line for line in compiled.text.splitlines() if "warning" not in line]
-    return "compile.log says:\n" + "\n".join(lines[:8] or [compiled.tail()])
+def _answers(asked: _Asked, simulation: Simulation) -> _Found:
+    """Ask what shall be asked; a text that does not compile answers nothing more."""
+    compared = compare_decisions(
+        simulation, asked.given, asked.text, seed=asked.seed, jobs=asked.jobs, tell=asked.tell,
+        only_compile="decisions" not in asked.wishes.questions,
+    )  # fmt: skip
+    if not compared.compiled:
+        return _Found(compared=compared)
+    asked.tell("characterising anew")
+    with ThreadPoolExecutor(max_workers=max(asked.jobs, 1)) as pool:
+        tables = pool.submit(_tables, asked)
+        random = pool.submit(_distribution, asked)
+        results, rows = tables.result()
+        return _Found(compared=compared, closure=results, rows=rows, distribution=random.result())
 
 
-def _played(blocks: Iterable[Block], work: Path) -> Iterator[PlayedRun]:
-    """Return the runs that their benches have compared."""
-    for block in blocks:
-        agreement = read_agreement(work, block.run.index)
-        if agreement is not None:
-            yield PlayedRun(
-                run=block.run, stimulus=block.stimulus, expected=block.expected,
-                agreement=agreement,
-            )  # fmt: skip
+def _tables(asked: _Asked) -> tuple[tuple[ClosureResult, ...], tuple[ClosureRow, ...]]:
+    if "tables" not in asked.wishes.questions:
+        return (), ()
+    return closure(asked.bench("tables"), asked.given.switchable, asked.text, seed=asked.seed)
 
 
-def _report(model: ComparatorModel, text: str, simulator: str, found: _Found) -> CheckReport:
-    strata = count_strata(model, found.played) if found.played else ()
-    benches = summarise(found.suites)
-    agreements = [one.agreement for one in found.played]
-    wrong = sum(int((a.fault != 0).sum()) for a in agreements)
-    sound = all(bench.passed for bench in benches) and not any(s.short for s in strata)
+def _distribution(asked: _Asked) -> tuple[DistributionResult, ...]:
+    if "distribution" not in asked.wishes.questions:
+        return ()
+    fresh = asked.wishes.fresh_seed
+    return distribution(
+        asked.bench("distribution"), asked.given.switchable, asked.text,
+        seed=asked.seed if fresh is None else fresh,
+    )  # fmt: skip
+
+
+def _report(model: ComparatorModel, asked: _Asked, simulator: str, found: _Found) -> CheckReport:
+    compared, benches = found.compared, summarise(found.suites)
+    strata = compared.strata
+    exercised = asked.given.foreign or not any(s.short for s in strata)
+    sound = all(bench.passed for bench in benches) and exercised
     return CheckReport(
         cell=model.cell.name,
-        passed=sound and wrong == 0 and bool(strata),
+        passed=sound and compared.compiled and compared.wrong == 0,
         simulator=simulator,
         model_sha256=sha256_of_text(dump_model(model)),
-        emitted_sha256=sha256_of_text(text),
-        decisions=sum(int(a.compared.sum()) for a in agreements),
+        emitted_sha256=sha256_of_text(asked.text),
+        decisions=compared.decisions,
         strata=strata,
         benches=benches,
-        disagreements=found.disagreements,
-        disagreement_count=wrong,
-        worst_delay_ticks=max((int(abs(a.delay_error).max()) for a in agreements), default=0),
-        excluded=sum(int((~a.compared).sum()) for a in agreements),
+        disagreements=compared.disagreements,
+        disagreement_count=compared.wrong,
+        worst_delay_ticks=max((b.worst_delay_ticks for b in compared.blocks), default=0),
+        excluded=sum(block.excluded for block in compared.blocks),
+        left_out=compared.left_out,
+        closure=found.closure,
+        distribution=found.distribution,
+        power=(
+            *decision_power(b.power for b in compared.blocks if b.power is not None),
+            *distribution_power(found.distribution),
+        ),
+        seed=asked.seed if asked.wishes.fresh_seed is None else asked.wishes.fresh_seed,
     )

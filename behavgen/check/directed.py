@@ -12,7 +12,7 @@ from behavgen.check.runs import MODES, Run, Settings
 from behavgen.model import ComparatorModel
 from behavgen.units import ZERO_CELSIUS_K
 
-__all__ = ["BENCH_MODULES", "FORCED_EVERY", "WARNING_RUN", "directed_runs"]
+__all__ = ["BENCH_MODULES", "FORCED_EVERY", "WARNING_RUN", "directed_runs", "middle_c"]
 
 BENCH_MODULES = ("test_power", "test_clock", "test_inputs", "test_insides")
 FORCED_EVERY = 5
@@ -31,7 +31,7 @@ _PLAIN = (
     "an unknown clock cancels a decision",
     "a decision ready at the reset edge is shown",
     "an early decision edge cancels the reset",
-    "inputs after the edge do not matter",
+    "inputs after the sampling do not matter",
     "the insides can be read",
 )
 _COUNTING = (
@@ -41,10 +41,11 @@ _COUNTING = (
 
 
 def directed_runs(model: ComparatorModel, *, first_index: int) -> tuple[Run, ...]:
-    """Return the instances of the directed benches, in the middle of the range, noise off."""
+    """Return the instances of the directed benches: in the middle of the range, nothing random."""
     base = Settings(
-        process=model.processes[0].name, temperature_c=_middle_c(model), noise_on=False, seed=7
-    )
+        process=model.processes[0].name, temperature_c=middle_c(model), noise_on=False,
+        memory_on=False, seed=7,
+    )  # fmt: skip
     counting = replace(base, force_unresolved_every=FORCED_EVERY, unresolved_mode=1)
     settings = {
         **dict.fromkeys(_PLAIN, base),
@@ -61,6 +62,7 @@ def directed_runs(model: ComparatorModel, *, first_index: int) -> tuple[Run, ...
     )
 
 
-def _middle_c(model: ComparatorModel) -> float:
+def middle_c(model: ComparatorModel) -> float:
+    """Return the middle of the characterised temperatures in degrees Celsius."""
     span = model.box.temperature_k
     return 27.0 if span is None else round(span.middle - ZERO_CELSIUS_K, 3)

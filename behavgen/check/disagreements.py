@@ -2,19 +2,29 @@
 
 from __future__ import annotations
 
-from pathlib import Path
+import shlex
+from collections.abc import Iterable
 
 import numpy as np
 import numpy.typing as npt
 
 from behavgen.check.agreement import FAULTS
-from behavgen.check.strata import PlayedRun
+from behavgen.check.likely_term import likely_term
+from behavgen.check.runs import Settings
+from behavgen.check.slices import PlayedRun
 from behavgen.check.verdict import Disagreement
-from behavgen.check.waveform import ANY, CAUSE, FLAG, OUTN, OUTP, Record, read_record
+from behavgen.check.waveform import ANY, CAUSE, Record
 from behavgen.model import ComparatorModel
 from behavgen.units import ZERO_CELSIUS_K, format_celsius, format_si
 
-__all__ = ["FIRST_ONES", "describe_disagreements"]
+__all__ = [
+    "FIRST_ONES",
+    "condition_words",
+    "describe",
+    "describe_disagreements",
+    "reproduce_options",
+    "state_words",
+]
 
 FIRST_ONES = 5
 """Disagreements of one run that are described; all are counted."""
@@ -23,7 +33,7 @@ State = npt.NDArray[np.int8]
 
 
 def describe_disagreements(
-    model: ComparatorModel, played: PlayedRun, folder: Path
+    model: ComparatorModel, played: PlayedRun, record: Record
 ) -> tuple[Disagreement, ...]:
     """Return the first disagreements of a run.
 
@@ -31,17 +41,15 @@ def describe_disagreements(
     ----------
     model : ComparatorModel
     played : PlayedRun
-    folder : Path
-        Where the run's record is.
+    record : Record
+        What the run showed.
     """
     wrong = np.flatnonzero(played.agreement.fault)[:FIRST_ONES]
-    if len(wrong) == 0:
-        return ()
-    record = read_record(folder / f"{played.run.index}.events")
-    return tuple(_describe(model, played, record, int(n)) for n in wrong)
+    return tuple(describe(model, played, record, int(n)) for n in wrong)
 
 
-def _describe(model: ComparatorModel, played: PlayedRun, record: Record, n: int) -> Disagreement:
+def describe(model: ComparatorModel, played: PlayedRun, record: Record, n: int) -> Disagreement:
+    """Tell of a wrong decision what was expected, what was seen and where it may come from."""
     stimulus = played.stimulus
     what = FAULTS[played.agreement.fault[n]]
     expected, got = _WORDS[what](_Case(model, played, record, n))
@@ -49,21 +57,40 @@ def _describe(model: ComparatorModel, played: PlayedRun, record: Record, n: int)
         run=played.run.name,
         decision=n,
         time_s=float(stimulus.edge[n]) / model.cell.ticks_per_second,
-        conditions=_conditions(played, n),
-        vdiff_v=float(stimulus.vdiff_v[n]),
+        conditions=condition_words(
+            played.run.meant, float(stimulus.vdd_v[n]), float(stimulus.vcm_v[n])
+        ),
+        vdiff_v=float(stimulus.sampled_v[n]),
         overdrive_v=float(stimulus.trace.overdrive_v[n]),
         what=what,
         expected=expected,
         got=got,
+        inputs=_inputs(played, n),
+        term=likely_term(model, played.run, stimulus, record, n),
+        reproduce=reproduce_options(played.run.name, n),
     )
 
 
-def _conditions(played: PlayedRun, n: int) -> str:
-    meant, stimulus = played.run.meant, played.stimulus
+def reproduce_options(run: str, decision: int) -> str:
+    """Return the options by which a check simulates just one decision and those before."""
+    return f"--run {shlex.quote(run)} --decision {decision}"
+
+
+def _inputs(played: PlayedRun, n: int) -> str:
+    stimulus = played.stimulus
+    inp, inn = (format_si(float(v[n]), "V", 9) for v in (stimulus.inp_v, stimulus.inn_v))
+    at_edge = float(stimulus.inp_v[n] - stimulus.inn_v[n])
+    sampled = float(stimulus.sampled_v[n])
+    moved = f", {format_si(sampled, 'V', 9)} apart when sampled" if sampled != at_edge else ""
+    return f"{inp} and {inn}{moved}"
+
+
+def condition_words(meant: Settings, vdd_v: float, vcm_v: float) -> str:
+    """Return operating conditions in words with units."""
     return (
-        f"process {meant.process}, supply {format_si(float(stimulus.vdd_v[n]), 'V', 6)}, "
+        f"process {meant.process}, supply {format_si(vdd_v, 'V', 6)}, "
         f"{format_celsius(meant.temperature_c + ZERO_CELSIUS_K)}, "
-        f"common mode {format_si(float(stimulus.vcm_v[n]), 'V', 6)}"
+        f"common mode {format_si(vcm_v, 'V', 6)}"
     )
 
 
@@ -81,6 +108,7 @@ class _Case:
         self.rest = expected.rest[n]
         self.slack = expected.delay_tolerance
         self.reset_slack = expected.reset_tolerance
+        self.energy_j = float(expected.energy_j[n])
         self.record = record
 
     def at(self, time: int) -> State:
@@ -98,13 +126,18 @@ class _Case:
         return f"{format_si(ticks / self.ticks_per_second, 's', 7)} ({ticks} ticks)"
 
 
-def _levels(state: State) -> str:
-    """Return the pins of a state in words; what is not stated or not there is left out."""
+def state_words(state: Iterable[int]) -> str:
+    """Return a state in words; what is not stated or not there is left out."""
     letters = {0: "0", 1: "1", 2: "X", 3: "Z"}
-    names = ((OUTP, "outp"), (OUTN, "outn"), (FLAG, "unresolved"))
-    return " ".join(
-        f"{name}={letters[int(state[column])]}" for column, name in names if state[column] != ANY
-    )
+    *levels, cause = map(int, state)
+    names = ("outp", "outn", "unresolved")
+    words = [f"{n}={letters[v]}" for n, v in zip(names, levels, strict=True) if v != ANY]
+    return " ".join([*words, *([f"x_cause={cause}"] if cause != ANY else [])])
+
+
+def _levels(state: State) -> str:
+    """Return the pins of a state in words."""
+    return state_words([*state[:CAUSE], ANY])
 
 
 def _bit(case: _Case) -> tuple[str, str]:
@@ -148,6 +181,13 @@ def _cause(case: _Case) -> tuple[str, str]:
     return "", ""
 
 
+def _energy(case: _Case) -> tuple[str, str]:
+    reached = min(case.ready + case.slack, case.end) if case.resolved else case.end
+    total = case.record.energy_at(np.array([case.edge, reached]))
+    grown = format_si(float(total[1] - total[0]), "J", 12)
+    return format_si(case.energy_j, "J", 12), grown
+
+
 def _stray(case: _Case) -> tuple[str, str]:
     changes = case.record.changes(np.array([case.edge]), np.array([case.reset]))[0]
     expected = 1 + int(case.returns)
@@ -160,5 +200,6 @@ _WORDS = {
     "delay": _delay,
     "reset": _reset,
     "x_cause": _cause,
+    "energy": _energy,
     "stray change": _stray,
 }

@@ -107,6 +107,11 @@ class Driver:
         """Expected reset delay in ticks."""
         return int(self.trace(self.large_v).reset_ticks[0])
 
+    @cached_property
+    def aperture_ticks(self) -> int:
+        """Expected ticks from the edge to the sampling of the input."""
+        return int(self.trace(self.large_v).aperture_ticks[0])
+
     def _condition(self) -> dict[str, Any]:
         meant = self.run.meant
         condition = {"temp_c": meant.temperature_c, "process": meant.process, "vcm": self.vcm_v}
@@ -206,6 +211,19 @@ class Driver:
         """Return x_cause; None where it cannot be read."""
         value = self.unit.x_cause.value
         return int(value) if value.is_resolvable else None
+
+    def energy_j(self) -> float:
+        """Return the running total of the energy; 0 where it is not characterised."""
+        return 0.0 if self.model.energy is None else float(self.unit.dut.energy_j.value)
+
+    def must_have_spent(self, before_j: float, overdrive_v: float, when: str) -> None:
+        """Fail unless the total grew by the energy of one decision, to a tick of its delay."""
+        if self.model.energy is None:
+            return
+        one = float(self.trace(overdrive_v).energy_j[0])
+        spent = self.energy_j() - before_j
+        if abs(spent - one) > 1e-3 * one:
+            raise AssertionError(f"{when}: takes {one!r} J, not {spent!r} J")
 
     def must_show(self, outputs: str, when: str) -> None:
         """Fail unless the outputs are as expected."""

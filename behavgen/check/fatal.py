@@ -9,7 +9,7 @@ from dataclasses import replace
 import numpy as np
 
 from behavgen.check.runs import Run, Settings
-from behavgen.check.simulation import CompiledCheck, play
+from behavgen.check.simulation import Simulation, play
 from behavgen.check.stimulus import Stimulus, make_stimulus
 from behavgen.check.verdict import BenchResult
 from behavgen.model import ComparatorModel
@@ -29,11 +29,12 @@ def fatal_run(model: ComparatorModel, *, index: int) -> Run:
 def fatal_stimulus(model: ComparatorModel, run: Run) -> Stimulus:
     """Return a block whose inputs are not numbers."""
     stimulus = make_stimulus(model, run, seed=0)
-    return replace(stimulus, inp_v=np.full(run.decisions, np.nan))
+    never = np.full(len(stimulus.levels.moment), np.nan)
+    return replace(stimulus, levels=replace(stimulus.levels, inp_v=never))
 
 
 def fatal_results(
-    simulation: CompiledCheck, model: ComparatorModel, run: Run
+    simulation: Simulation, model: ComparatorModel, run: Run
 ) -> tuple[BenchResult, ...]:
     """Run both simulations and judge how they ended."""
     unknown = max(process.code for process in model.processes) + 17

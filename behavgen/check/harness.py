@@ -7,12 +7,22 @@ from collections.abc import Iterable
 from pathlib import Path
 
 import numpy as np
+import numpy.typing as npt
 
+from behavgen.check.levels import Levels
 from behavgen.check.runs import TOP, Run, Settings
 from behavgen.check.stimulus import Stimulus
 from behavgen.model import ComparatorModel
 
-__all__ = ["harness_macros", "top_text", "write_stimulus"]
+__all__ = ["harness_macros", "top_text", "write_block", "write_stimulus"]
+
+PARAMETERS = (
+    "OFFSET_SHIFT_V", "NOISE_ON", "MISMATCH_ON", "MEMORY_ON", "DELAY_ON", "SEED", "TEMPERATURE_C",
+    "PROCESS", "UNRESOLVED_MODE", "FORCE_UNRESOLVED_EVERY", "WARNINGS",
+)  # fmt: skip
+"""Of the emitted modules' interface."""
+
+Integers = npt.NDArray[np.int64]
 
 
 def harness_macros(model: ComparatorModel, text: str) -> dict[str, str]:
@@ -22,14 +32,20 @@ def harness_macros(model: ComparatorModel, text: str) -> dict[str, str]:
     ----------
     model : ComparatorModel
     text : str
-        The SystemVerilog under check: what can be read inside it may be missing.
+        The SystemVerilog under check: parameters and what can be read inside may be missing.
     """
     cell = model.cell
     names = ("inp", "inn", "clk", "outp", "outn", "vdd", "unresolved", "enable")
     pins = {f"PIN_{name.upper()}": getattr(cell.pins, name) for name in names}
-    readable = {"READS_X_CAUSE": "1"} if re.search(r"\bx_cause\b", text) else {}
+    readable = {
+        f"READS_{name.upper()}": "1"
+        for name in ("x_cause", "energy_j")
+        if re.search(rf"\b{name}\b", text)
+    }
+    parameters = [name for name in PARAMETERS if re.search(rf"\b{name}\b", text)]
     return {
         "CELL": cell.name,
+        "PARAMETERS": ", ".join(f".{name}({name})" for name in parameters),
         "TICK": cell.time_precision,
         "DECIDING": "1'b1" if cell.decides_on == "rising" else "1'b0",
         **{macro: pin for macro, pin in pins.items() if pin is not None},
@@ -42,13 +58,17 @@ def top_text(model: ComparatorModel, runs: Iterable[Run]) -> str:
     precision = model.cell.time_precision
     instances = "".join(_instance(model, run) for run in runs)
     return (
-        f"`timescale {precision}/{precision}\n\nmodule {TOP};\n{instances}"
+        f"`timescale {precision}/{precision}\n\nmodule {TOP};\n  int playing = 0;\n{instances}"
         f"  // to read the parameters' defaults\n  {model.cell.name} as_declared ();\nendmodule\n"
     )
 
 
 def _instance(model: ComparatorModel, run: Run) -> str:
-    parameters = {"INDEX": str(run.index), **_parameters(model, run.given)}
+    parameters = {
+        "INDEX": str(run.index),
+        "SCRIPTED": str(int(run.scripted)),
+        **_parameters(model, run.given),
+    }
     connections = ",\n".join(f"    .{name}({value})" for name, value in parameters.items())
     return f"  // {run.name}\n  block_harness #(\n{connections}\n  ) {run.instance} ();\n"
 
@@ -59,6 +79,7 @@ def _parameters(model: ComparatorModel, given: Settings) -> dict[str, str]:
         "OFFSET_SHIFT_V": repr(given.offset_shift_v),
         "NOISE_ON": str(int(given.noise_on)),
         "MISMATCH_ON": str(int(given.mismatch_on)),
+        "MEMORY_ON": str(int(given.memory_on)),
         "DELAY_ON": str(int(given.delay_on)),
         "SEED": f"64'h{given.seed:016x}",
         "TEMPERATURE_C": repr(given.temperature_c),
@@ -70,13 +91,33 @@ def _parameters(model: ComparatorModel, given: Settings) -> dict[str, str]:
 
 
 def write_stimulus(folder: Path, run: Run, stimulus: Stimulus) -> None:
-    """Write the files that the block harness plays: big-endian words of 64 bits."""
-    waits = stimulus.edge - np.append(0, stimulus.end[:-1])
-    phases = np.stack([waits, stimulus.end - stimulus.edge], axis=-1)
+    """Write the files that the block harness plays."""
+    write_block(
+        folder, run, edge=stimulus.edge, end=stimulus.end, levels=stimulus.levels,
+        finish=stimulus.finish,
+    )  # fmt: skip
+
+
+def write_block(
+    folder: Path, run: Run, *, edge: Integers, end: Integers, levels: Levels, finish: int
+) -> None:
+    """Write a block's clock and levels: big-endian words of 64 bits.
+
+    Parameters
+    ----------
+    folder : Path
+    run : Run
+    edge, end : ndarray of int, shape (N,)
+        Decision edges and ends of the decision phases, in ticks.
+    levels : Levels
+    finish : int
+        When nothing more can happen.
+    """
+    phases = np.stack([edge - np.append(0, end[:-1])[: len(edge)], end - edge], axis=-1)
     phases.astype(">u8").tofile(folder / f"{run.index}.clock")
-    moments = np.append(stimulus.moment, stimulus.finish)
-    levels = np.stack([stimulus.inp_v, stimulus.inn_v, stimulus.vdd_v], axis=-1)
-    inputs = np.empty((len(moments), 4), dtype=">f8")
-    inputs[:, 1:] = np.append(levels, levels[-1:], axis=0)
-    inputs.view(">u8")[:, 0] = np.diff(moments, prepend=0)
+    volts = np.stack([levels.inp_v, levels.inn_v, levels.vdd_v], axis=-1)
+    inputs = np.empty((len(volts) + 1, 4), dtype=">f8")
+    inputs[:-1, 1:] = volts
+    inputs[-1, 1:] = volts[-1] if len(volts) else 0.0
+    inputs.view(">u8")[:, 0] = np.diff(np.append(levels.moment, finish), prepend=0)
     inputs.tofile(folder / f"{run.index}.inputs")

@@ -1,21 +1,19 @@
-"""Everything that is fixed before the first simulation: runs, stimulus, expectations."""
+"""Everything that is fixed before the first simulation: which runs, in which processes."""
 
 from __future__ import annotations
 
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
-from pathlib import Path
+from itertools import count
 
-from behavgen.check.bench_files import write_expectation, write_model
+from behavgen.check.blocks import share_out
 from behavgen.check.directed import BENCH_MODULES, directed_runs
-from behavgen.check.fatal import fatal_run, fatal_stimulus
-from behavgen.check.harness import write_stimulus
+from behavgen.check.fatal import fatal_run
+from behavgen.check.given import Given, playable
 from behavgen.check.runs import Batch, Run, plan_batches
-from behavgen.check.simulation import share_out
-from behavgen.check.stimulus import Stimulus, make_stimulus
-from behavgen.check.waveform import Expectation, expect
-from behavgen.model import ComparatorModel
+from behavgen.check.script_runs import script_runs
 
-__all__ = ["Block", "Plan", "plan_check", "prepare_blocks"]
+__all__ = ["Plan", "plan_check"]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -24,71 +22,73 @@ class Plan:
 
     Parameters
     ----------
-    batches : tuple of Batch
+    blocks : tuple of Batch
+        Runs to which blocks of decisions are played.
+    scripted : tuple of Run
+        Instances to which scripts are played.
+    directed : Batch
+        Instances that benches drive edge by edge.
     fatal : Run
         The instance that must end its simulation.
+    left_out : tuple of str
+        What a module of the user's own cannot be asked, and why.
     """
 
-    batches: tuple[Batch, ...]
+    blocks: tuple[Batch, ...]
+    scripted: tuple[Run, ...]
+    directed: Batch
     fatal: Run
+    left_out: tuple[str, ...] = ()
+
+    @property
+    def decisions(self) -> int:
+        """How many are planned."""
+        blocks = sum(run.decisions for batch in self.blocks for run in batch.runs)
+        return blocks + sum(run.decisions for run in self.scripted)
+
+    @property
+    def played(self) -> tuple[Run, ...]:
+        """Instances to which files are played, in the order of their indices."""
+        return (*(run for batch in self.blocks for run in batch.runs), *self.scripted)
 
     @property
     def runs(self) -> tuple[Run, ...]:
         """All instances, in the order of their indices."""
-        runs = (run for batch in self.batches for run in batch.runs)
-        return tuple(sorted((*runs, self.fatal), key=lambda run: run.index))
+        return (*self.played, *self.directed.runs, self.fatal)
 
 
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class Block:
-    """What is played to one run and what it must show."""
-
-    run: Run
-    stimulus: Stimulus
-    expected: Expectation
-
-
-def plan_check(model: ComparatorModel, *, seed: int, jobs: int) -> Plan:
-    """Return the whole plan; the shortest batch takes the directed benches.
+def plan_check(given: Given, *, seed: int, jobs: int) -> Plan:
+    """Return the whole plan.
 
     Parameters
     ----------
-    model : ComparatorModel
+    given : Given
+        The module that shall play it.
     seed : int
     jobs : int
-        Simulations at the same time; one is kept for the short batches.
+        Simulations at the same time.
     """
-    blocks, *others, last = plan_batches(model, seed=seed)
-    used = len(blocks.runs) + len(others) + 1
-    directed = directed_runs(model, first_index=used)
-    last = replace(last, runs=last.runs + directed, benches=last.benches + BENCH_MODULES)
+    model = given.model
+    batches, left_out = playable(given, plan_batches(model, seed=seed))
+    plain, *commanded = _numbered(batches)
+    used = sum(len(batch.runs) for batch in batches)
+    scripted = () if given.foreign else script_runs(model, first_index=used, seed=seed)
+    directed = directed_runs(model, first_index=used + len(scripted))
+    fatal = fatal_run(model, index=used + len(scripted) + len(directed))
     return Plan(
-        batches=(*share_out(blocks, jobs - 1), *others, last),
-        fatal=fatal_run(model, index=used + len(directed)),
+        blocks=(*share_out(plain, jobs + 1), *commanded),
+        scripted=scripted,
+        directed=Batch(name="directed", plusargs=(), runs=directed, benches=BENCH_MODULES),
+        fatal=fatal,
+        left_out=left_out + (_FOREIGN if given.foreign else ()),
     )
 
 
-def prepare_blocks(
-    model: ComparatorModel, plan: Plan, folder: Path, *, seed: int
-) -> tuple[Block, ...]:
-    """Write all that the simulations read; return the blocks that benches compare.
-
-    Parameters
-    ----------
-    model : ComparatorModel
-    plan : Plan
-    folder : Path
-    seed : int
-    """
-    write_model(folder, model)
-    write_stimulus(folder, plan.fatal, fatal_stimulus(model, plan.fatal))
-    played = (run for run in plan.runs if run.decisions and run is not plan.fatal)
-    return tuple(_prepared(model, run, folder, seed) for run in played)
+_FOREIGN = ("disturbances, messages and insides: they are those of emitted modules",)
 
 
-def _prepared(model: ComparatorModel, run: Run, folder: Path, seed: int) -> Block:
-    stimulus = make_stimulus(model, run, seed=seed)
-    expected = expect(model, run, stimulus)
-    write_stimulus(folder, run, stimulus)
-    write_expectation(folder, run.index, expected)
-    return Block(run=run, stimulus=stimulus, expected=expected)
+def _numbered(batches: Sequence[Batch]) -> Iterator[Batch]:
+    """Give all runs numbers in a row."""
+    number = count()
+    for batch in batches:
+        yield replace(batch, runs=tuple(replace(r, index=next(number)) for r in batch.runs))

@@ -60,6 +60,7 @@ class Settings:
     temperature_c: float
     noise_on: bool = True
     mismatch_on: bool = False
+    memory_on: bool = True
     delay_on: bool = True
     offset_shift_v: float = 0.0
     seed: int = 1
@@ -87,6 +88,8 @@ class Run:
         0: a bench drives the instance itself.
     balanced : bool
         Every input takes back the noise of its decision.
+    scripted : bool
+        A script is played to it instead of a block.
     """
 
     index: int
@@ -95,6 +98,7 @@ class Run:
     meant: Settings
     decisions: int = 0
     balanced: bool = False
+    scripted: bool = False
 
     @property
     def instance(self) -> str:
@@ -118,13 +122,13 @@ class Batch:
         Without the leading plus sign.
     runs : tuple of Run
     benches : tuple of str
-        Names of the bench modules that look at them.
+        Names of the bench modules that drive them; none: blocks are played.
     """
 
     name: str
     plusargs: tuple[str, ...]
     runs: tuple[Run, ...]
-    benches: tuple[str, ...] = ("test_agreement",)
+    benches: tuple[str, ...] = ()
 
 
 def reference_of(model: ComparatorModel, run: Run) -> Reference:
@@ -136,6 +140,7 @@ def reference_of(model: ComparatorModel, run: Run) -> Reference:
         run_seed=meant.run_seed,
         noise=meant.noise_on,
         mismatch=meant.mismatch_on,
+        memory=meant.memory_on,
         delay_on=meant.delay_on,
         offset_shift_v=meant.offset_shift_v,
         when_unresolved=MODES[meant.unresolved_mode],
@@ -205,7 +210,9 @@ def _special_runs(model: ComparatorModel, seed: int) -> dict[str, Settings]:
     beyond = _OUTSIDE * (high - low) + 5.0
     base = Settings(process=_widest_process(model), temperature_c=middle, seed=seed + 10)
     quiet = replace(base, noise_on=False)
+    forgetful = {"memory off": replace(quiet, memory_on=False)} if model.memory else {}
     return {
+        **forgetful,
         "colder than characterised": replace(quiet, temperature_c=round(low - beyond, 3)),
         "hotter than characterised": replace(base, temperature_c=round(high + beyond, 3)),
         "delay off": replace(base, delay_on=False),

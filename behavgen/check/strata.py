@@ -7,22 +7,22 @@ names how many decisions it must have; a short one fails the check.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator
-from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
-from behavgen.check.agreement import Agreement
-from behavgen.check.runs import MODES, Run
-from behavgen.check.stimulus import BALANCED, LEAST_CUT_TICKS, LEAST_SWEPT_V, NOISY, Stimulus
+from behavgen.check.aims import BALANCED, LEAST_SWEPT_V, NOISY
+from behavgen.check.effect_slices import aperture_slices, energy_slices, memory_slices
+from behavgen.check.phases import LEAST_CUT_TICKS
+from behavgen.check.runs import MODES
+from behavgen.check.slices import PlayedRun, Slice
 from behavgen.check.verdict import Stratum
-from behavgen.check.waveform import Expectation
 from behavgen.model import ComparatorModel, Range
 from behavgen.operating_point import VOLTAGE_STEPS_PER_V
 from behavgen.reference import Reference
 from behavgen.units import ZERO_CELSIUS_K, format_si
 
-__all__ = ["PlayedRun", "count_strata"]
+__all__ = ["count_strata"]
 
 Floats = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
@@ -31,26 +31,6 @@ ALL_DECISIONS = 20_000
 _SMALL_V = 1e-5
 _BALANCED_V = 1e-6
 _CLOSE_TICKS = 60
-
-
-@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
-class PlayedRun:
-    """One run with all that is known of it."""
-
-    run: Run
-    stimulus: Stimulus
-    expected: Expectation
-    agreement: Agreement
-
-
-@dataclass(frozen=True, slots=True)
-class _Slice:
-    """A stratum before counting; `select` may return one bool for a whole run."""
-
-    group: str
-    name: str
-    required: int
-    select: Callable[[PlayedRun], Mask | bool]
 
 
 def count_strata(model: ComparatorModel, played: Iterable[PlayedRun]) -> tuple[Stratum, ...]:
@@ -65,7 +45,7 @@ def count_strata(model: ComparatorModel, played: Iterable[PlayedRun]) -> tuple[S
     return tuple(_counted(one, runs) for one in _slices(model))
 
 
-def _counted(one: _Slice, runs: tuple[PlayedRun, ...]) -> Stratum:
+def _counted(one: Slice, runs: tuple[PlayedRun, ...]) -> Stratum:
     decisions = disagreements = 0
     for played in runs:
         mask = played.agreement.compared & one.select(played)
@@ -77,19 +57,22 @@ def _counted(one: _Slice, runs: tuple[PlayedRun, ...]) -> Stratum:
     )  # fmt: skip
 
 
-def _slices(model: ComparatorModel) -> Iterator[_Slice]:
-    yield _Slice("all", "decisions", ALL_DECISIONS, lambda _: True)
+def _slices(model: ComparatorModel) -> Iterator[Slice]:
+    yield Slice("all", "decisions", ALL_DECISIONS, lambda _: True)
     for process in model.processes:
         share = 8000 // len(model.processes)
-        yield _Slice("process", process.name, share, _in_process(process.name))
+        yield Slice("process", process.name, share, _in_process(process.name))
     yield from _overdrive_slices(model)
     yield from _noise_slices(model)
     yield from _condition_slices(model)
     yield from _phase_slices(model)
-    yield from _switch_slices()
+    yield from aperture_slices(model)
+    yield from memory_slices(model)
+    yield from energy_slices(model)
+    yield from _switch_slices(model)
 
 
-def _overdrive_slices(model: ComparatorModel) -> Iterator[_Slice]:
+def _overdrive_slices(model: ComparatorModel) -> Iterator[Slice]:
     def between(low: float, high: float) -> Callable[[PlayedRun], Mask]:
         return lambda p: p.agreement.timed & (_magnitude(p) >= low) & (_magnitude(p) < high)
 
@@ -98,25 +81,25 @@ def _overdrive_slices(model: ComparatorModel) -> Iterator[_Slice]:
     while low < largest:
         high = 10.0 * low if 30.0 * low <= largest else largest
         name = f"{format_si(low, 'V')} to {format_si(high, 'V')}"
-        yield _Slice("overdrive with visible delay", name, 100, between(low, high))
+        yield Slice("overdrive with visible delay", name, 100, between(low, high))
         low = high
-    yield _Slice("overdrive with visible delay", f"above {format_si(largest, 'V')}", 20,
+    yield Slice("overdrive with visible delay", f"above {format_si(largest, 'V')}", 20,
                  between(largest, np.inf))  # fmt: skip
-    yield _Slice("overdrive", "exactly zero", 100, lambda p: _magnitude(p) == 0.0)
-    yield _Slice("overdrive", f"below {format_si(_SMALL_V, 'V')}, noise off", 4000,
+    yield Slice("overdrive", "exactly zero", 100, lambda p: _magnitude(p) == 0.0)
+    yield Slice("overdrive", f"below {format_si(_SMALL_V, 'V')}, noise off", 4000,
                  lambda p: _noiseless(model, p) & (_magnitude(p) < _SMALL_V))  # fmt: skip
 
 
-def _noise_slices(model: ComparatorModel) -> Iterator[_Slice]:
+def _noise_slices(model: ComparatorModel) -> Iterator[Slice]:
     if model.noise is None:
         return
-    yield _Slice("noise on", "within 10 sigma", 3000,
+    yield Slice("noise on", "within 10 sigma", 3000,
                  lambda p: np.isin(p.stimulus.aim, (NOISY, BALANCED)))  # fmt: skip
-    yield _Slice("noise on", f"taken back to below {format_si(_BALANCED_V, 'V')}", 1500, _balanced)
-    yield _Slice("noise on", "draws beyond 6.7 sigma", 4, lambda p: _first(p) & p.run.balanced)
+    yield Slice("noise on", f"taken back to below {format_si(_BALANCED_V, 'V')}", 1500, _balanced)
+    yield Slice("noise on", "draws beyond 6.7 sigma", 4, lambda p: _first(p) & p.run.balanced)
 
 
-def _condition_slices(model: ComparatorModel) -> Iterator[_Slice]:
+def _condition_slices(model: ComparatorModel) -> Iterator[Slice]:
     box, off = model.box, model.cell.supply_off_v
     if box.temperature_k is not None:
         yield from _range_slices("temperature", box.temperature_k, 1e-3, 400, _temperature)
@@ -131,34 +114,34 @@ def _condition_slices(model: ComparatorModel) -> Iterator[_Slice]:
 
 def _range_slices(
     group: str, span: Range, step: float, required: int, value: Callable[[PlayedRun], Floats]
-) -> Iterator[_Slice]:
+) -> Iterator[Slice]:
     """Return slices of one condition; within `step` of an end it is at the end."""
     low, high = span.low, span.high
-    yield _Slice(group, "below", required, lambda p: value(p) < low - step)
-    yield _Slice(group, "at its low end", required, lambda p: np.abs(value(p) - low) <= step)
+    yield Slice(group, "below", required, lambda p: value(p) < low - step)
+    yield Slice(group, "at its low end", required, lambda p: np.abs(value(p) - low) <= step)
     if low < high:
-        yield _Slice(group, "between", required,
+        yield Slice(group, "between", required,
                      lambda p: (value(p) > low + step) & (value(p) < high - step))  # fmt: skip
-        yield _Slice(group, "at its high end", required, lambda p: np.abs(value(p) - high) <= step)
-    yield _Slice(group, "above", required, lambda p: value(p) > high + step)
+        yield Slice(group, "at its high end", required, lambda p: np.abs(value(p) - high) <= step)
+    yield Slice(group, "above", required, lambda p: value(p) > high + step)
 
 
-def _phase_slices(model: ComparatorModel) -> Iterator[_Slice]:
-    yield _Slice("decision phase", "resolved", 10_000, lambda p: p.expected.resolved)
+def _phase_slices(model: ComparatorModel) -> Iterator[Slice]:
+    yield Slice("decision phase", "resolved", 10_000, lambda p: p.expected.resolved)
     if model.delay is not None:
-        yield _Slice("decision phase", "too short", 2000, _too_short)
-        yield _Slice("decision phase", "ends close to the ready", 200, _close)
+        yield Slice("decision phase", "too short", 2000, _too_short)
+        yield Slice("decision phase", "ends close to the ready", 200, _close)
         for mode, name in enumerate(MODES):
-            yield _Slice("unresolved", name, 300, _unresolved_in(mode))
-    yield _Slice("unresolved", "forced", 300, _forced)
-    yield _Slice("reset", "returns", 10_000, lambda p: p.expected.returns)
+            yield Slice("unresolved", name, 300, _unresolved_in(mode))
+    yield Slice("unresolved", "forced", 300, _forced)
+    yield Slice("reset", "returns", 10_000, lambda p: p.expected.returns)
     reset_ticks = Reference(model).trace(0.0, 0).reset_ticks
     if reset_ticks.min() >= 2 * LEAST_CUT_TICKS:
-        yield _Slice("reset", "cut off by the next edge", 500, lambda p: ~p.expected.returns)
-    yield _Slice("reset", "power-up", 10, _first)
+        yield Slice("reset", "cut off by the next edge", 500, lambda p: ~p.expected.returns)
+    yield Slice("reset", "power-up", 10, _first)
 
 
-def _switch_slices() -> Iterator[_Slice]:
+def _switch_slices(model: ComparatorModel) -> Iterator[Slice]:
     switches: tuple[tuple[str, Callable[[PlayedRun], bool]], ...] = (
         ("NOISE_ON = 0", lambda p: not p.run.meant.noise_on),
         ("MISMATCH_ON = 1", lambda p: p.run.meant.mismatch_on),
@@ -168,8 +151,10 @@ def _switch_slices() -> Iterator[_Slice]:
         ("SEED = 0", lambda p: p.run.meant.seed == 0),
         ("plusargs", lambda p: p.run.meant != p.run.given),
     )
+    if model.memory is not None:
+        switches += (("MEMORY_ON = 0", lambda p: not p.run.meant.memory_on),)
     for name, select in switches:
-        yield _Slice("switch", name, 400, select)
+        yield Slice("switch", name, 400, select)
 
 
 def _in_process(name: str) -> Callable[[PlayedRun], bool]:

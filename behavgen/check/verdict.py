@@ -4,15 +4,24 @@ from __future__ import annotations
 
 import json
 from dataclasses import asdict, dataclass, field
+from functools import cache
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from behavgen.errors import Fault, ModelFileError
+
+if TYPE_CHECKING:
+    from pydantic import TypeAdapter
 
 __all__ = [
     "FORMAT",
     "BenchResult",
     "CheckReport",
+    "ClosureResult",
+    "ClosureRow",
     "Disagreement",
+    "DistributionResult",
+    "PowerResult",
     "Stratum",
     "dump_report",
     "load_report",
@@ -68,6 +77,12 @@ class Disagreement:
         Which observable: ``"bit"``, ``"delay"``, ``"unresolved"``, ``"reset"``...
     expected, got : str
         In words with units.
+    inputs : str
+        Applied levels in words, and the one that was sampled where it moved.
+    term : str
+        Which term it probably comes from; "" where none alone explains it.
+    reproduce : str
+        Options of the command that simulates just this.
     """
 
     run: str
@@ -79,6 +94,9 @@ class Disagreement:
     what: str
     expected: str
     got: str
+    inputs: str = ""
+    term: str = ""
+    reproduce: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -88,6 +106,113 @@ class BenchResult:
     name: str
     passed: bool
     message: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ClosureRow:
+    """One row of a table and what the simulated module gave in its place.
+
+    Parameters
+    ----------
+    quantity, condition : str
+    point : int
+        Number of the row at its condition, from 1.
+    x, table : float
+        As in `CurvePoints` of the model.
+    measured : float or None
+        None where nothing could be measured.
+    relative_error : float or None
+        Of the measured value; of an S-curve the plain difference.
+    z : float or None
+        The error in standard errors, where there is one.
+    told : str
+        Both values in words.
+    """
+
+    quantity: str
+    condition: str
+    point: int
+    x: float
+    table: float
+    measured: float | None
+    relative_error: float | None
+    z: float | None
+    told: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ClosureResult:
+    """How one quantity came back from the simulated module.
+
+    Parameters
+    ----------
+    quantity : str
+    passed : bool
+    rms_relative : float or None
+        Over all rows; None of counts.
+    limit : str
+        What was found and what is allowed, in words.
+    rows : int
+    worst : tuple of ClosureRow
+    """
+
+    quantity: str
+    passed: bool
+    rms_relative: float | None
+    limit: str
+    rows: int
+    worst: tuple[ClosureRow, ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class DistributionResult:
+    """One statistic of the random part against the distribution that it must have.
+
+    Parameters
+    ----------
+    name : str
+    sample : int
+        Decisions, pairs of decisions or instances.
+    p_value : float
+        How often a right model is at least as far off.
+    least_p : float
+        Smaller ones fail: the family's rate shared out among all statistics.
+    told : str
+        What was expected and found, in words.
+    """
+
+    name: str
+    sample: int
+    p_value: float
+    least_p: float
+    told: str
+
+    @property
+    def passed(self) -> bool:
+        """Whether a right model may well look like this."""
+        return self.p_value >= self.least_p
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PowerResult:
+    """The smallest error that this check would have caught with 99 % probability.
+
+    Parameters
+    ----------
+    quantity : str
+        ``"offset"``, ``"sigma"``, ``"tau"``, ``"delay"`` or ``"mismatch"``.
+    error : float
+        Present everywhere in one process, whichever it is.
+    unit : str
+        ``"V"``, ``"sigma"``, or ``"1"`` for a share.
+    how : str
+        ``"decision by decision"`` or ``"by distribution"``.
+    """
+
+    quantity: str
+    error: float
+    unit: str
+    how: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -114,6 +239,16 @@ class CheckReport:
         Largest delay difference seen, in units of the time precision.
     excluded : int
         Decisions left out because a tick decides them.
+    left_out : tuple of str
+        What could not be asked, and why.
+    closure : tuple of ClosureResult
+        Whether the tables come back, one for each quantity.
+    distribution : tuple of DistributionResult
+        Whether the random part is distributed as it must be.
+    power : tuple of PowerResult
+        What would have been caught.
+    seed : int
+        From which the seeds follow whose distribution was judged.
     format : int
         Version of the file format.
     """
@@ -130,6 +265,11 @@ class CheckReport:
     disagreement_count: int = 0
     worst_delay_ticks: int = 0
     excluded: int = 0
+    left_out: tuple[str, ...] = ()
+    closure: tuple[ClosureResult, ...] = ()
+    distribution: tuple[DistributionResult, ...] = ()
+    power: tuple[PowerResult, ...] = ()
+    seed: int = 1
     format: int = field(default=FORMAT)
 
 
@@ -155,14 +295,22 @@ def load_report(path: Path) -> CheckReport:
     found = raw.get("format") if isinstance(raw, dict) else None
     if found != FORMAT:
         raise _unreadable(path, f"check report format {found!r}, this version reads {FORMAT}")
-    from pydantic import TypeAdapter, ValidationError  # noqa: PLC0415  heavy, and only here
+    from pydantic import ValidationError  # noqa: PLC0415  heavy, and only here
 
     try:
-        return TypeAdapter(CheckReport).validate_json(text)
+        return _reader().validate_json(text)
     except ValidationError as error:
         raise ModelFileError(
             *(_fault(path, f["msg"], ".".join(map(str, f["loc"]))) for f in error.errors())
         ) from None
+
+
+@cache
+def _reader() -> TypeAdapter[CheckReport]:
+    """Return what reads reports; building it takes much longer than reading one."""
+    from pydantic import TypeAdapter  # noqa: PLC0415  heavy, and only here
+
+    return TypeAdapter(CheckReport)
 
 
 def _unreadable(path: Path, what: str) -> ModelFileError:

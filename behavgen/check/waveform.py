@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
@@ -23,8 +23,10 @@ __all__ = [
     "Record",
     "expect",
     "read_record",
+    "seen_in_two_states",
 ]
 
+Floats = npt.NDArray[np.float64]
 Integers = npt.NDArray[np.int64]
 States = npt.NDArray[np.int8]
 
@@ -35,8 +37,10 @@ UNKNOWN, HIGH_IMPEDANCE = 2, 3
 KEEP, ANY = -1, -2
 """Expected: as before; not stated, so anything will do."""
 
-_LINE = 24
-"""Characters of a record's line, without the line end."""
+_STATE_END = 24
+"""Where a line of a record says how the outputs stand; the energy may follow."""
+_ENERGY_DIGITS = 16
+_LONGEST_LINE = _STATE_END + _ENERGY_DIGITS + 1
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -58,6 +62,10 @@ class Expectation:
         Ticks by which ready and reset may differ; 0 where they are exact.
     excluded : ndarray of bool
         Decisions so close to a boundary that the tolerance decides them.
+    energy_j : ndarray
+        Of each decision; not a number where it is not characterised.
+    delay_ticks : ndarray of int
+        For how long each decision decides, should it resolve.
     """
 
     edge: Integers
@@ -73,6 +81,8 @@ class Expectation:
     delay_tolerance: int
     reset_tolerance: int
     excluded: npt.NDArray[np.bool_]
+    energy_j: Floats
+    delay_ticks: Integers
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -84,15 +94,25 @@ class Record:
     time : ndarray of int, shape (M,)
         In ticks, rising.
     state : ndarray, shape (M, 4)
+    energy_j : ndarray, shape (M,)
+        Running total; not a number where it cannot be read.
     """
 
     time: Integers
     state: States
+    energy_j: Floats
 
     def at(self, time: Integers) -> States:
         """Return the states at some times, shape (N, 4)."""
-        place = np.searchsorted(self.time, time, side="right") - 1
-        return self.state[np.maximum(place, 0)]
+        return self.state[self._place(time)]
+
+    def energy_at(self, time: Integers) -> Floats:
+        """Return the running totals of the energy at some times in J, shape (N,)."""
+        return self.energy_j[self._place(time)]
+
+    def _place(self, time: Integers) -> Integers:
+        place: Integers = np.searchsorted(self.time, time, side="right") - 1
+        return np.maximum(place, 0)
 
     def changes(self, after: Integers, until: Integers) -> Integers:
         """Return how many instants of change lie in ``after < time <= until``, shape (N,)."""
@@ -137,7 +157,21 @@ def expect(model: ComparatorModel, run: Run, stimulus: Stimulus) -> Expectation:
         resolved=resolved, returns=returns,
         before=states[:, 0], shown=states[:, 1], after=states[:, 2], rest=states[:, 3],
         delay_tolerance=delay_tolerance, reset_tolerance=reset_tolerance, excluded=excluded,
+        energy_j=np.full(len(phase), np.nan) if model.energy is None else trace.energy_j,
+        delay_ticks=trace.delay_ticks,
     )  # fmt: skip
+
+
+def seen_in_two_states(expected: Expectation) -> Expectation:
+    """Return what must be seen where X shows as anything: the flag tells it instead."""
+    return replace(
+        expected, before=_without_x(expected.before), shown=_without_x(expected.shown),
+        after=_without_x(expected.after), rest=_without_x(expected.rest),
+    )  # fmt: skip
+
+
+def _without_x(states: States) -> States:
+    return np.where(states == UNKNOWN, ANY, states).astype(np.int8)
 
 
 def _states(
@@ -195,9 +229,10 @@ def read_record(path: Path) -> Record:
         When the file is not a whole record.
     """
     raw = np.frombuffer(path.read_bytes(), dtype=np.uint8)
-    if len(raw) == 0 or len(raw) % (_LINE + 1):
+    width = 1 + int(np.argmax(raw[:_LONGEST_LINE] == ord("\n"))) if len(raw) else 0
+    if width <= _STATE_END or len(raw) % width:
         raise ValueError(f"{path.name} is not a whole record")
-    lines = raw.reshape(-1, _LINE + 1)
+    lines = raw.reshape(-1, width)
     digits = np.where(lines[:, 1:20] == ord(" "), ord("0"), lines[:, 1:20]).astype(np.int64)
     time = (digits - ord("0")) @ 10 ** np.arange(18, -1, -1, dtype=np.int64)
     letters = lines[:, 20:24]
@@ -206,4 +241,15 @@ def read_record(path: Path) -> Record:
     state = codes[letters]
     for letter, code in (("x", UNKNOWN), ("z", HIGH_IMPEDANCE)):
         state[:, :3][letters[:, :3] == ord(letter)] = code
-    return Record(time=time - time[0], state=state)
+    energy = _energy(lines[:, _STATE_END:-1])
+    grown = np.diff(np.nan_to_num(energy)) != 0.0
+    moved = np.append(True, grown | (state[1:] != state[:-1]).any(axis=1))
+    return Record(time=(time - time[0])[moved], state=state[moved], energy_j=energy[moved])
+
+
+def _energy(digits: npt.NDArray[np.uint8]) -> Floats:
+    """Return what the sixteen hexadecimal digits of each line mean; none: not a number."""
+    if digits.shape[1] != _ENERGY_DIGITS:
+        return np.full(len(digits), np.nan)
+    words = bytes.fromhex(digits.tobytes().decode("ascii", errors="replace"))
+    return np.frombuffer(words, dtype=">f8").astype(float)

@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+import secrets
+import shlex
 from collections.abc import Sequence
 from dataclasses import asdict
 from itertools import groupby
 from pathlib import Path
 
+from behavgen.check.power_words import power_words
 from behavgen.check.verdict import CheckReport, Disagreement, Stratum
+from behavgen.check.wishes import QUESTIONS, SIMULATORS, Wishes
 from behavgen.cli.cells import (
     CellResult,
     CellsDone,
@@ -17,20 +21,32 @@ from behavgen.cli.cells import (
     each_cell,
     number_of,
 )
+from behavgen.cli.languages import compared_too
+from behavgen.cli.mutants import mutated_too
 from behavgen.cli.parser import Options, Parser
 from behavgen.cli.terminal import Terminal, aligned
 from behavgen.cli.verdict import Outcome
 from behavgen.cli.wording import behind, labelled, shown_path, state_text
 from behavgen.errors import Fault, ProjectError
-from behavgen.pipeline import CellPlace, check_cell, check_given_file, emit_cell, fit_cell
+from behavgen.pipeline import (
+    CellPlace,
+    check_cell,
+    check_given_file,
+    decide_again,
+    emit_cell,
+    fit_cell,
+)
 from behavgen.units import format_si
 
 ABOUT = """\
-Simulate the emitted SystemVerilog of each cell, decision by decision, against the
-reference. Exit code 1 means that they disagree. Needs a simulator: see behavgen tools."""
+Simulate the emitted SystemVerilog of each cell and answer three questions: does it equal
+the reference, decision by decision; does it give the tables back when it is characterised
+anew; is its random part distributed as it must be. Exit code 1 means that one answer is no.
+Needs a simulator: see behavgen tools."""
 ARGUMENTS = "[CELL ...]"
 EXAMPLE = """behavgen check latch_a
-  behavgen check latch_a --model edited.sv"""
+  behavgen check latch_a --model edited.sv
+  behavgen check latch_a --only tables --simulator verilator"""
 
 
 def add_arguments(parser: Parser) -> None:
@@ -39,6 +55,32 @@ def add_arguments(parser: Parser) -> None:
     parser.add_argument(
         "--model", metavar="FILE", help="check this SystemVerilog file instead of the emitted one"
     )
+    parser.add_argument(
+        "--run", metavar="NAME", help="simulate one decision of this run again, see --decision"
+    )
+    parser.add_argument("--decision", metavar="N", type=int, help="its number in that run")
+    parser.add_argument("--waveforms", metavar="FILE", help="leave a VCD file of that decision")
+    parser.add_argument(
+        "--simulator", choices=SIMULATORS,
+        help="simulate in this one; what needs X is checked in the first only",
+    )  # fmt: skip
+    parser.add_argument(
+        "--only", choices=QUESTIONS, action="append", metavar="QUESTION",
+        help=f"ask one question, of {', '.join(QUESTIONS)}",
+    )  # fmt: skip
+    parser.add_argument(
+        "--fresh-seeds", metavar="SEED", nargs="?", type=int, const=-1,
+        help="judge the random part for seeds that nobody chose (false alarms: 1 in 1000), "
+        "or for those that follow from SEED",
+    )  # fmt: skip
+    parser.add_argument(
+        "--languages", action="store_true",
+        help="also run all emitted languages side by side, in the simulators there are",
+    )  # fmt: skip
+    parser.add_argument(
+        "--mutants", metavar="N", nargs="?", type=int, const=0,
+        help="also try whether changes of the emitted text are caught, N of them or all",
+    )  # fmt: skip
 
 
 def run(options: Options, terminal: Terminal) -> Outcome:
@@ -46,7 +88,14 @@ def run(options: Options, terminal: Terminal) -> Outcome:
     given = _given_file(options) if options.model else None
 
     def work(place: CellPlace) -> CellResult:
-        return check_one(place, given, options, terminal)
+        if options.run:
+            return one_decision(place, given, options)
+        result = check_one(place, given, options, terminal)
+        if options.languages:
+            result = compared_too(place, result, terminal)
+        if options.mutants is not None:
+            result = mutated_too(place, result, options, terminal)
+        return result
 
     done = each_cell(options, terminal, work)
     return done.outcome(options, done=_verdict_of(done), then=_next_step(done, options))
@@ -59,23 +108,62 @@ def check_one(
     fitted = fit_cell(place)
     with terminal.progress(f"simulating {place.name}") as progress:
         if given is not None:
-            checked = check_given_file(fitted, given, jobs=options.jobs, progress=progress)
+            checked = check_given_file(
+                fitted, given, jobs=options.jobs, wishes=_wishes(options), progress=progress
+            )
         else:
-            checked = check_cell(emit_cell(fitted), jobs=options.jobs, progress=progress)
-    return check_result(checked.report, checked.logs, made=checked.made)
+            checked = check_cell(
+                emit_cell(fitted), jobs=options.jobs, wishes=_wishes(options), progress=progress
+            )
+    again = f"{command_line(options, 'check')} {place.name}"
+    if given is not None:
+        again += f" --model {shlex.quote(options.model)}"
+    return check_result(checked.report, checked.logs, made=checked.made, again=again)
 
 
-def check_result(report: CheckReport, logs: Path, *, made: bool) -> CellResult:
-    """Return what there is to say of a check."""
+def one_decision(place: CellPlace, given: Path | None, options: Options) -> CellResult:
+    """Simulate one decision again."""
+    emitted = emit_cell(fit_cell(place))
+    file = Path(options.waveforms) if options.waveforms else None
+    found = decide_again(
+        emitted, given, run=options.run, decision=options.decision or 0, waveforms=file
+    )
+    told = found.disagreement
+    where = shown_path(found.waveforms) if found.waveforms else ""
+    return CellResult(
+        lines=[
+            *labelled("decision", first_text(told) if told else "agrees"),
+            *(labelled("inputs", told.inputs) if told and told.inputs else []),
+            *(labelled("waveforms", where) if where else []),
+        ],
+        data={"disagreement": asdict(told) if told else None, "waveforms": where},
+        agrees=told is None,
+    )
+
+
+def _wishes(options: Options) -> Wishes:
+    fresh = options.fresh_seeds
+    if fresh == -1:
+        fresh = secrets.randbelow(2**31)
+    asked = tuple(one for one in QUESTIONS if one in (options.only or QUESTIONS))
+    return Wishes(simulator=options.simulator, fresh_seed=fresh, questions=asked)
+
+
+def check_result(report: CheckReport, logs: Path, *, made: bool, again: str = "") -> CellResult:
+    """Return what there is to say of a check; `again` is the command that made it."""
     failed = [bench for bench in report.benches if not bench.passed]
     passed = len(report.benches) - len(failed)
     return CellResult(
         lines=[
             *labelled("simulator", report.simulator + state_text(made=made)),
             *labelled("compared", _compared_text(report)),
-            *(line for d in report.disagreements[:1] for line in labelled("first", first_text(d))),
+            *(line for d in report.disagreements[:1] for line in _first_lines(again, d)),
             *labelled("benches", f"{passed} of {len(report.benches)} passed"),
             *(line for b in failed for line in labelled("failed", f"{b.name}: {b.message}")),
+            *behind("tables", [f"{c.quantity}: {c.rows} rows, {c.limit}" for c in report.closure]),
+            *behind("random", _random_text(report)),
+            *behind("power", power_words(report)),
+            *behind("left out", list(report.left_out)),
             *_stratum_lines("too few", [s for s in report.strata if s.short]),
             *_stratum_lines("thinnest", _thinnest(report.strata)),
             *labelled("logs", shown_path(logs)),
@@ -86,6 +174,11 @@ def check_result(report: CheckReport, logs: Path, *, made: bool) -> CellResult:
     )
 
 
+def _first_lines(again: str, first: Disagreement) -> list[str]:
+    command = f"{again} {first.reproduce} --waveforms window.vcd"
+    return [*labelled("first", first_text(first)), *(behind("again", [command]) if again else [])]
+
+
 def first_text(first: Disagreement) -> str:
     """Tell one disagreement in a sentence."""
     return (
@@ -93,6 +186,7 @@ def first_text(first: Disagreement) -> str:
         f"{format_si(first.time_s, 's', 6)}: expected {first.expected}, got {first.got}, "
         f"with {format_si(first.vdiff_v, 'V', 4)} applied and "
         f"{format_si(first.overdrive_v, 'V', 4)} of overdrive at {first.conditions}"
+        + (f"; {first.term}" if first.term else "")
     )
 
 
@@ -117,6 +211,17 @@ def _compared_text(report: CheckReport) -> str:
     if report.excluded:
         parts.append(f"{report.excluded} left out that hang on one tick")
     return ", ".join(parts)
+
+
+def _random_text(report: CheckReport) -> list[str]:
+    """Return what came of the statistics; nothing where nothing is random."""
+    if not report.distribution:
+        return []
+    worst = min(report.distribution, key=lambda one: one.p_value / one.least_p)
+    return [
+        f"{len(report.distribution)} statistics for the seeds of {report.seed}",
+        f"smallest p-value {worst.p_value:.2g}, at least {worst.least_p:.2g}: {worst.name}",
+    ]
 
 
 def _thinnest(strata: Sequence[Stratum]) -> list[Stratum]:

@@ -66,6 +66,7 @@ async def a_decision_ready_at_the_reset_edge_is_shown(top) -> None:
     for value in (1, 0):
         overdrive = cell.large_v if value else -cell.large_v
         delay = await measured_delay(cell, overdrive, value)
+        spent = cell.energy_j()
         cell.edge()
         await cell.wait(delay)
         cell.release()
@@ -76,6 +77,7 @@ async def a_decision_ready_at_the_reset_edge_is_shown(top) -> None:
             cell.must_show(cell.bit(value), "ready at the reset edge")
         await cell.wait(cell.reset_ticks + 20)
         cell.must_rest("after a decision that was ready at the reset edge")
+        cell.must_have_spent(spent, overdrive, "a decision that was ready at the reset edge")
         if delay > 1:
             await cell.decide(overdrive, phase=delay - 1)
             cell.must_flag("1", "reset edge a tick before the ready")

@@ -41,15 +41,15 @@ async def decisions_count_without_a_number_at_the_input(top) -> None:
 
 
 @cocotb.test()
-async def inputs_after_the_edge_do_not_matter(top) -> None:
-    cell = Driver(top, "inputs after the edge do not matter")
+async def inputs_after_the_sampling_do_not_matter(top) -> None:
+    cell = Driver(top, "inputs after the sampling do not matter")
     await cell.power_up()
     delay = cell.delay(cell.large_v)
     cell.edge()
-    await cell.wait(1)
+    await cell.wait(cell.aperture_ticks + 1)
     cell.apply(-cell.large_v)
     await cell.wait(delay + 5)
-    cell.must_show(cell.bit(1), "input reversed a tick after the edge")
+    cell.must_show(cell.bit(1), "input reversed a tick after it was sampled")
     cell.unit.inp.value = float("nan")
     cell.release()
     await cell.wait(cell.reset_ticks + 5)

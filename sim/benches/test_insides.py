@@ -9,13 +9,15 @@ import cocotb
 from behavgen.check.driver import Driver
 from behavgen.check.runs import MODES
 
+ROOM_K = 300.15
 READABLE = ("x_cause", "decision_count", "overdrive_v", "delay_s")
 
 
 @cocotb.test()
 async def the_insides_can_be_read(top) -> None:
     cell = Driver(top, "the insides can be read")
-    missing = [name for name in READABLE if not hasattr(cell.unit.dut, name)]
+    readable = [*READABLE, *(["energy_j"] if cell.model.energy is not None else [])]
+    missing = [name for name in readable if not hasattr(cell.unit.dut, name)]
     assert not missing, f"the module has nothing to read of the name {', '.join(missing)}"
     await cell.power_up()
     await cell.decide(cell.large_v)
@@ -38,11 +40,14 @@ async def the_insides_can_be_read(top) -> None:
 async def the_parameters_are_those_of_the_interface(top) -> None:
     model = Driver(top, "the insides can be read").model
     declared, first = top.as_declared, model.processes[0]
+    span = model.box.temperature_k
+    room = span is None or span.low <= ROOM_K <= span.high
     mode = MODES.index(model.cell.when_unresolved)
     defaults = {
         "OFFSET_SHIFT_V": 0.0, "NOISE_ON": 1, "MISMATCH_ON": 0, "MEMORY_ON": 1, "DELAY_ON": 1,
-        "SEED": 0, "TEMPERATURE_C": None, "PROCESS": first.code, "UNRESOLVED_MODE": mode,
-        "FORCE_UNRESOLVED_EVERY": 0, "WARNINGS": None,
+        "SEED": 0, "TEMPERATURE_C": 27.0 if room else None, "PROCESS": first.code,
+        "UNRESOLVED_MODE": mode,
+        "FORCE_UNRESOLVED_EVERY": 0, "WARNINGS": 1,
     }  # fmt: skip
     missing = [name for name in defaults if not hasattr(declared, name)]
     assert not missing, f"the module has no parameter {', '.join(missing)}"

@@ -143,6 +143,10 @@ async def losing_the_supply_cancels_a_reset(top) -> None:
     cell.switch_off()
     await stays_unknown(cell, 2, "after losing the supply in a reset")
     cell.switch_on()
+    await cell.wait(1)
+    cell.switch_off()
+    await stays_unknown(cell, 2, "after a supply of one tick")
+    cell.switch_on()
     await powers_up_a_tick_later(cell, "supply back")
     await resolves(cell)
 

@@ -3,19 +3,25 @@
 // A run plays two files of the working folder side by side, in big-endian words of 64 bits:
 //   <index>.clock    pairs    ticks at the reset level, ticks at the deciding level
 //   <index>.inputs   fours    ticks to wait, then inp, inn and vdd as IEEE 754 doubles
+// or, with SCRIPTED = 1, a single one that knows all pins:
+//   <index>.script   fives    ticks to wait, clock + 4 enable (0 1 2 = X 3 = Z), inp, inn, vdd
 // and records every instant at which an output changed, after it has settled, as a line of
-// 24 characters: time in ticks (20), outp, outn, unresolved (0 1 x z), x_cause.
+// 24 characters: time in ticks (20), outp, outn, unresolved (0 1 x z), x_cause; and where there is
+// an energy 16 more, the bits of its running total.
 //
-// `start` begins a run, `done` ends it. A bench may instead drive the inputs of an idle unit.
-// Without benches, +play_from=<index> +play_to=<index> plays these runs side by side.
-// Macros: CELL names the module, PIN_* its pins (a pin without macro is left out), DECIDING the
-// clock's deciding level, TICK the unit of all times; READS_X_CAUSE says that x_cause is there.
+// +play_from=<index> +play_to=<index> plays these runs side by side, each says when it is played.
+// Benches may instead drive the inputs of idle units.
+// Macros: CELL names the module, PARAMETERS connects those that it has, PIN_* names its pins (a
+// pin without macro is left out), DECIDING the
+// clock's deciding level, TICK the unit of all times; READS_X_CAUSE and READS_ENERGY_J say that
+// x_cause and energy_j are there to be read.
 
 `resetall
 `timescale `TICK/`TICK
 
 module block_harness #(
   parameter int INDEX = 0,
+  parameter int SCRIPTED = 0,
   parameter real OFFSET_SHIFT_V = 0.0,
   parameter int NOISE_ON = 1,
   parameter int MISMATCH_ON = 0,
@@ -42,19 +48,7 @@ module block_harness #(
   logic inputs_done;
   wire done = clock_done & inputs_done;
 
-  `CELL #(
-    .OFFSET_SHIFT_V(OFFSET_SHIFT_V),
-    .NOISE_ON(NOISE_ON),
-    .MISMATCH_ON(MISMATCH_ON),
-    .MEMORY_ON(MEMORY_ON),
-    .DELAY_ON(DELAY_ON),
-    .SEED(SEED),
-    .TEMPERATURE_C(TEMPERATURE_C),
-    .PROCESS(PROCESS),
-    .UNRESOLVED_MODE(UNRESOLVED_MODE),
-    .FORCE_UNRESOLVED_EVERY(FORCE_UNRESOLVED_EVERY),
-    .WARNINGS(WARNINGS)
-  ) dut (
+  `CELL #(`PARAMETERS) dut (
 `ifdef PIN_OUTN
     .`PIN_OUTN(outn),
 `endif
@@ -79,6 +73,16 @@ module block_harness #(
   wire [3:0] x_cause = 4'bxxxx;
 `endif
 
+`ifdef READS_ENERGY_J
+  logic [63:0] energy = 64'd0;
+  always @(dut.energy_j) energy = $realtobits(dut.energy_j);
+  `define RECORD $fstrobe(record, "%20d%b%b%b%h%h", $time, outp, outn, unresolved, x_cause, energy)
+  `define RECORDED outp or outn or unresolved or x_cause or energy
+`else
+  `define RECORD $fstrobe(record, "%20d%b%b%b%h", $time, outp, outn, unresolved, x_cause)
+  `define RECORDED outp or outn or unresolved or x_cause
+`endif
+
   string record_name;
   int record;
   time recorded_at;
@@ -95,7 +99,10 @@ module block_harness #(
     inn = 0.0;
     vdd = 0.0;
     if ($value$plusargs("play_from=%d", first) && $value$plusargs("play_to=%d", last)) begin
-      if (INDEX >= first && INDEX <= last) #1 start = 1'b1;
+      if (INDEX >= first && INDEX <= last) begin
+        check_top.playing = check_top.playing + 1;
+        #1 start = 1'b1;
+      end
     end
   end
 
@@ -103,13 +110,13 @@ module block_harness #(
     $sformat(record_name, "%0d.events", INDEX);
     record = $fopen(record_name, "w");
     recorded_at = $time;
-    $fstrobe(record, "%20d%b%b%b%h", $time, outp, outn, unresolved, x_cause);
+    `RECORD;
   end
 
-  always @(outp or outn or unresolved or x_cause) begin : record_change
+  always @(`RECORDED) begin : record_change
     if (start === 1'b1 && $time != recorded_at) begin
       recorded_at = $time;
-      $fstrobe(record, "%20d%b%b%b%h", $time, outp, outn, unresolved, x_cause);
+      `RECORD;
     end
   end
 
@@ -117,7 +124,7 @@ module block_harness #(
   int clock_file;
   logic [127:0] phases;
 
-  always @(posedge start) begin : play_clock
+  always @(posedge start) if (SCRIPTED == 0) begin : play_clock
     clk = ~`DECIDING;
     $sformat(clock_name, "%0d.clock", INDEX);
     clock_file = $fopen(clock_name, "rb");
@@ -133,7 +140,7 @@ module block_harness #(
   int inputs_file;
   logic [255:0] levels;
 
-  always @(posedge start) begin : play_inputs
+  always @(posedge start) if (SCRIPTED == 0) begin : play_inputs
     $sformat(inputs_name, "%0d.inputs", INDEX);
     inputs_file = $fopen(inputs_name, "rb");
     while ($fread(levels, inputs_file) == 32) begin
@@ -146,7 +153,52 @@ module block_harness #(
     inputs_done = 1'b1;
   end
 
+  string script_name;
+  int script_file;
+  logic [319:0] pins;
+
+  always @(posedge start) if (SCRIPTED != 0) begin : play_script
+    $sformat(script_name, "%0d.script", INDEX);
+    script_file = $fopen(script_name, "rb");
+    while ($fread(pins, script_file) == 40) begin
+      #(pins[319:256]);
+      inp = $bitstoreal(pins[191:128]);
+      inn = $bitstoreal(pins[127:64]);
+      vdd = $bitstoreal(pins[63:0]);
+      enable = level_of(pins[195:194]);
+      clk = level_of(pins[193:192]);
+    end
+    $fclose(script_file);
+    clock_done = 1'b1;
+    inputs_done = 1'b1;
+  end
+
+  function automatic logic level_of(input logic [1:0] code);
+    case (code)
+      2'd0: return 1'b0;
+      2'd1: return 1'b1;
+      2'd2: return 1'bx;
+      default: return 1'bz;
+    endcase
+  endfunction
+
+  // +dump_from=<ticks> +dump_to=<ticks>, counted from the start, leave a window of the waveforms
+  time dump_from;
+  time dump_to;
+
+  always @(posedge start) begin : dump_window
+    if ($value$plusargs("dump_from=%d", dump_from) && $value$plusargs("dump_to=%d", dump_to)) begin
+      $dumpfile("window.vcd");
+      #(dump_from) $dumpvars(0, clk, inp, inn, vdd, enable, outp, outn, unresolved, x_cause, dut);
+      #(dump_to - dump_from) $dumpoff;
+    end
+  end
+
+  // The last run to end ends the simulation
   always @(posedge done) begin : close_record
-    $fclose(record);
+    #1 $fclose(record);
+    $display("[block] %0d played", INDEX);
+    check_top.playing = check_top.playing - 1;
+    if (check_top.playing == 0) $finish(0);
   end
 endmodule

@@ -8,6 +8,7 @@ from pathlib import Path
 from behavgen.check import preparation, runs
 from behavgen.check.check import check
 from behavgen.check.verdict import CheckReport
+from behavgen.check.wishes import Wishes
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.emit.systemverilog import systemverilog
 from behavgen.model import ComparatorModel
@@ -20,10 +21,14 @@ def emitted_text(model: ComparatorModel) -> str:
     return systemverilog(model).text
 
 
-def checked(model: ComparatorModel, folder: Path, text: str = "", **options) -> CheckReport:
-    """Check a text, by default the one that the model emits."""
+def checked(
+    model: ComparatorModel, folder: Path, text: str = "", *, questions=("decisions",),
+    wishes=None, **options,
+) -> CheckReport:  # fmt: skip
+    """Check a text, by default the one that the model emits, and by default decisions alone."""
     file = EmittedFile(path=f"{model.cell.name}.sv", text=text or emitted_text(model))
-    return check(model, file, folder=folder, **options)
+    wishes = Wishes(questions=questions, **(wishes or {}))
+    return check(model, file, folder=folder, wishes=wishes, **options)
 
 
 def shorten(monkeypatch) -> None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from behavgen.check.levels import Levels
 from behavgen.check.runs import Run, Settings
 from behavgen.check.stimulus import Stimulus
 from behavgen.check.waveform import Record
@@ -45,10 +46,12 @@ def three_decisions() -> Stimulus:
         memory_v=np.zeros(3),
         energy_j=np.zeros(3),
     )
+    inp, inn, vdd = np.array([0.601, 0.6, 0.599]), np.full(3, 0.6), np.full(3, 1.2)
+    levels = Levels(moment=np.array([0, 250, 450]), inp_v=inp, inn_v=inn, vdd_v=vdd)
     return Stimulus(
-        inp_v=np.array([0.601, 0.6, 0.599]), inn_v=np.full(3, 0.6), vdd_v=np.full(3, 1.2),
-        moment=np.array([0, 250, 450]), edge=np.array([100, 300, 500]),
-        end=np.array([200, 350, 600]), finish=620, aim=np.zeros(3, dtype=np.int64), trace=trace,
+        inp_v=inp, inn_v=inn, vdd_v=vdd, sampled_v=inp - inn, levels=levels,
+        edge=np.array([100, 300, 500]), end=np.array([200, 350, 600]), finish=620,
+        aim=np.zeros(3, dtype=np.int64), trace=trace,
     )  # fmt: skip
 
 

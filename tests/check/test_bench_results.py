@@ -4,16 +4,16 @@ from pathlib import Path
 
 import pytest
 
-from behavgen.check.bench_results import bench_results, summarise
+from behavgen.check.bench_results import bench_results, message_results, summarise
 from behavgen.check.directed import WARNING_RUN
 from behavgen.check.runs import Batch, Run, Settings
-from behavgen.check.simulation import BatchOutcome, share_out
+from behavgen.check.simulation import BatchOutcome
 from behavgen.simulators.cocotb_benches import BenchOutcome
 from behavgen.simulators.process import Finished
 from tests.example_models import full_model
 
 SETTINGS = Settings(process="typ", temperature_c=27.0)
-BLOCK = Run(index=3, name="typ, noise on", given=SETTINGS, meant=SETTINGS, decisions=10)
+SILENT = Run(index=3, name="says nothing", given=SETTINGS, meant=SETTINGS)
 WARNING = Run(index=4, name=WARNING_RUN, given=SETTINGS, meant=SETTINGS)
 TOLD = "[behavgen] check_top.run_4.dut t=5 decision 1: it happened\n"
 
@@ -21,26 +21,28 @@ TOLD = "[behavgen] check_top.run_4.dut t=5 decision 1: it happened\n"
 def outcome(tmp_path: Path, *, code=0, log=3 * TOLD, benches=None):
     path = tmp_path / "first.log"
     path.write_text(log)
-    passed = BenchOutcome(module="test_agreement", name="all_is_well/run=3", message="")
+    passed = BenchOutcome(module="test_clock", name="all_is_well/mode=x", message="")
     return BatchOutcome(
-        batch=Batch(name="first", plusargs=(), runs=(BLOCK, WARNING)),
+        batch=Batch(name="first", plusargs=(), runs=(SILENT, WARNING), benches=("test_clock",)),
         finished=Finished(code=code, log=path),
         benches=(passed,) if benches is None else benches,
     )
 
 
 def failing(tmp_path, **changed):
-    suites = bench_results(full_model(), [outcome(tmp_path, **changed)])
-    return {result.name: result.message for _, result in suites if not result.passed}
+    found = outcome(tmp_path, **changed)
+    results = [result for _, result in bench_results(found)]
+    results += message_results(full_model(), found, [])
+    return {result.name: result.message for result in results if not result.passed}
 
 
 def test_all_is_well(tmp_path):
     assert failing(tmp_path) == {}
 
 
-def test_a_failed_bench_names_its_run(tmp_path):
-    bad = BenchOutcome(module="test_agreement", name="all_is_well/run=3", message="it is not")
-    assert failing(tmp_path, benches=(bad,)) == {"all is well: typ, noise on": "it is not"}
+def test_a_failed_bench_names_its_option(tmp_path):
+    bad = BenchOutcome(module="test_clock", name="all_is_well/mode=x", message="it is not")
+    assert failing(tmp_path, benches=(bad,)) == {"all is well: mode x": "it is not"}
 
 
 @pytest.mark.parametrize(
@@ -70,21 +72,10 @@ def test_a_silent_instance_says_nothing(tmp_path):
 
 def test_the_summary_has_a_result_for_each_sentence(tmp_path):
     runs = [
-        BenchOutcome(module="m", name=f"all_is_well/run={run}", message=message)
-        for run, message in ((3, ""), (4, "it is not"))
+        BenchOutcome(module="m", name=f"all_is_well/mode={mode}", message=message)
+        for mode, message in (("x", ""), ("coin", "it is not"))
     ]
-    suites = bench_results(full_model(), [outcome(tmp_path, benches=tuple(runs))])
+    suites = bench_results(outcome(tmp_path, benches=tuple(runs)))
     summary = {result.name: result for result in summarise(suites)}
-    assert summary["all is well"].message == f"1 of 2 fail, first {WARNING_RUN}: it is not"
+    assert summary["all is well"].message == "1 of 2 fail, first mode coin: it is not"
     assert summary["the simulation runs to its end"].passed
-
-
-def test_sharing_out_keeps_every_run():
-    runs = tuple(
-        Run(index=n, name=str(n), given=SETTINGS, meant=SETTINGS, decisions=1) for n in range(7)
-    )
-    parts = share_out(Batch(name="all", plusargs=(), runs=runs), 3)
-    assert sorted(run.index for part in parts for run in part.runs) == list(range(7))
-    assert max(len(part.runs) for part in parts) == 3
-    assert len({part.name for part in parts}) == 3
-    assert len(share_out(Batch(name="all", plusargs=(), runs=runs[:1]), 8)) == 1

@@ -17,7 +17,7 @@ from behavgen.check.verdict import load_report
 from behavgen.errors import ProjectError, ToolError
 from behavgen.model import Process
 from tests.check.checking import checked, emitted_text, failures
-from tests.example_models import full_model, minimal_model, renamed_pins_model
+from tests.example_models import complete_model, full_model, minimal_model, renamed_pins_model
 from tests.simulators.mock_tools import put_on_path
 
 SMALL = minimal_model()
@@ -29,6 +29,7 @@ def without(model, *effects):
 
 
 MODELS = {
+    "memory, aperture and energy": complete_model(),
     "every effect": full_model(),
     "falling edge, reset low, coin": full_model(
         decides_on="falling", in_reset="low", when_unresolved="coin"
@@ -68,11 +69,12 @@ def test_a_check_leaves_its_report_its_results_and_its_logs(small_check):
     folder, report, told = small_check
     names = {path.name for path in (folder / "check").iterdir()}
     assert {"check.json", "results.xml", "compile.log"} <= names
-    assert {path.suffix for path in (folder / "check").iterdir()} == {".json", ".xml", ".log"}
+    suffixes = {path.suffix for path in (folder / "check").iterdir()}
+    assert suffixes == {".csv", ".json", ".log", ".xml"}
     assert [path.name for path in folder.iterdir()] == ["check"]
     assert load_report(folder / "check" / "check.json") == report
     assert told[0] == "compiling"
-    assert any(f"{report.decisions} decisions" in words for words in told)
+    assert any("decisions" in words for words in told)
 
 
 def test_sentences_name_what_was_checked(small_check):
@@ -140,9 +142,9 @@ def test_a_text_that_does_not_compile_is_a_verdict_with_the_place(tmp_path):
 def test_insides_that_cannot_be_read_are_told_and_the_rest_is_checked(tmp_path):
     text = re.sub(r"\bx_cause\b", "hidden", emitted_text(SMALL))
     report = checked(SMALL, tmp_path, text)
-    assert [bench.name for bench in report.benches if not bench.passed] == [
-        "the insides can be read"
-    ]
+    failed = {bench.name for bench in report.benches if not bench.passed}
+    assert "the insides can be read" in failed
+    assert all("insides" in name or name.startswith("overdrives") for name in failed)
     assert report.decisions >= 20_000
     assert report.disagreement_count == 0
 
@@ -151,9 +153,9 @@ def test_insides_that_cannot_be_read_are_told_and_the_rest_is_checked(tmp_path):
 def test_a_parameter_that_is_missing_is_told(tmp_path):
     text = re.sub(r"\bMEMORY_ON\b", "REMEMBERS", emitted_text(SMALL))
     report = checked(SMALL, tmp_path, text)
-    (failed,) = [bench for bench in report.benches if not bench.passed]
-    assert failed.name == "the parameters are those of the interface"
-    assert failed.message == "the module has no parameter MEMORY_ON"
+    failed = {bench.name: bench.message for bench in report.benches if not bench.passed}
+    message = failed["the parameters are those of the interface"]
+    assert message == "the module has no parameter MEMORY_ON"
 
 
 def test_another_module_is_a_verdict(tmp_path):

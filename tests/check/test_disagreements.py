@@ -4,7 +4,7 @@ import pytest
 
 from behavgen.check.agreement import compare
 from behavgen.check.disagreements import describe_disagreements
-from behavgen.check.strata import PlayedRun
+from behavgen.check.slices import PlayedRun
 from behavgen.check.waveform import expect
 from tests.check.hand_made import honest, record_of, run_with, three_decisions
 from tests.example_models import full_model
@@ -13,9 +13,10 @@ from tests.example_models import full_model
 def told(lie, tmp_path):
     run, stimulus = run_with(), three_decisions()
     expected = expect(full_model(), run, stimulus)
-    agreement = compare(expected, record_of(honest(**lie), tmp_path))
+    record = record_of(honest(**lie), tmp_path)
+    agreement = compare(expected, record)
     one = PlayedRun(run=run, stimulus=stimulus, expected=expected, agreement=agreement)
-    return describe_disagreements(full_model(), one, tmp_path)
+    return describe_disagreements(full_model(), one, record)
 
 
 @pytest.mark.parametrize(

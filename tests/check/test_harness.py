@@ -2,6 +2,7 @@
 
 import struct
 
+from behavgen.check.given import own_text
 from behavgen.check.harness import harness_macros, top_text, write_stimulus
 from behavgen.check.preparation import plan_check
 from tests.check.hand_made import run_with, three_decisions
@@ -9,9 +10,10 @@ from tests.example_models import full_model, minimal_model, renamed_pins_model
 
 
 def test_macros_name_the_pins_that_there_are():
-    macros = harness_macros(renamed_pins_model(decides_on="falling"), "int x_cause;")
+    macros = harness_macros(renamed_pins_model(decides_on="falling"), "bit SEED; int x_cause;")
     assert macros == {
-        "CELL": "latch_renamed", "TICK": "1fs", "DECIDING": "1'b0", "READS_X_CAUSE": "1",
+        "CELL": "latch_renamed", "PARAMETERS": ".SEED(SEED)", "TICK": "1fs",
+        "DECIDING": "1'b0", "READS_X_CAUSE": "1",
         "PIN_INP": "vip", "PIN_INN": "vim", "PIN_CLK": "ck", "PIN_OUTP": "q",
         "PIN_UNRESOLVED": "unresolved", "PIN_ENABLE": "en",
     }  # fmt: skip
@@ -26,7 +28,7 @@ def test_what_cannot_be_read_is_not_read():
 
 def test_every_run_is_an_instance_with_all_parameters():
     model = full_model()
-    plan = plan_check(model, seed=1, jobs=2)
+    plan = plan_check(own_text(model), seed=1, jobs=2)
     text = top_text(model, plan.runs)
     assert text.count("block_harness #(") == len(plan.runs)
     assert text.count("  latch_full as_declared ();") == 1
@@ -38,10 +40,14 @@ def test_every_run_is_an_instance_with_all_parameters():
 
 
 def test_plans_have_unique_names_and_indices_in_a_row():
-    plan = plan_check(full_model(), seed=1, jobs=3)
+    plan = plan_check(own_text(full_model()), seed=1, jobs=3)
     assert [run.index for run in plan.runs] == list(range(len(plan.runs)))
     assert len({run.name for run in plan.runs}) == len(plan.runs)
-    assert len({batch.name for batch in plan.batches}) == len(plan.batches)
+    names = [batch.name for batch in (*plan.blocks, plan.directed)]
+    assert len(set(names)) == len(names)
+    for batch in plan.blocks:
+        indices = [run.index for run in batch.runs]
+        assert indices == list(range(indices[0], indices[-1] + 1))
 
 
 def test_files_hold_big_endian_words(tmp_path):

@@ -5,14 +5,19 @@ import pytest
 
 from behavgen.check.agreement import compare
 from behavgen.check.runs import plan_batches
+from behavgen.check.slices import PlayedRun
 from behavgen.check.stimulus import make_stimulus
-from behavgen.check.strata import PlayedRun, count_strata
+from behavgen.check.strata import count_strata
 from behavgen.check.waveform import Record, expect
-from tests.example_models import full_model, minimal_model, renamed_pins_model
+from tests.example_models import complete_model, full_model, minimal_model, renamed_pins_model
 
-EMPTY = Record(time=np.array([0]), state=np.array([[2, 2, 0, 5]], dtype=np.int8))
+EMPTY = Record(
+    time=np.array([0]), state=np.array([[2, 2, 0, 5]], dtype=np.int8), energy_j=np.array([0.0])
+)
 MODELS = [
     full_model(),
+    complete_model(),
+    complete_model(time_precision="1ps", in_reset="low"),
     full_model(time_precision="1ps", in_reset="hold"),
     minimal_model(),
     renamed_pins_model(in_reset="mid"),
@@ -21,11 +26,14 @@ MODELS = [
 
 def ideal(expected):
     """Return the record of a module that does everything right."""
-    times = np.stack([expected.edge - 5, expected.ready, expected.end, expected.reset], axis=1)
+    times = np.stack([expected.edge, expected.ready, expected.end, expected.reset], axis=1)
     states = np.stack([expected.before, expected.shown, expected.after, expected.rest], axis=1)
     states = np.maximum(states, 0).reshape(-1, 4)
-    changed = np.append(True, np.any(states[1:] != states[:-1], axis=1))
-    return Record(time=times.ravel()[changed], state=states[changed])
+    own = np.nan_to_num(expected.energy_j)
+    energy = np.cumsum(np.stack([np.zeros_like(own), own,
+                                 *np.zeros((2, len(expected.edge)))], axis=1))  # fmt: skip
+    changed = np.append(True, np.any(states[1:] != states[:-1], axis=1) | (np.diff(energy) != 0.0))
+    return Record(time=times.ravel()[changed], state=states[changed], energy_j=energy[changed])
 
 
 def played(model, runs, record=ideal):

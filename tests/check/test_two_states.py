@@ -1,4 +1,4 @@
-"""The same harness and stimulus in Verilator: the same bits and delays, to the last place."""
+"""Two instances side by side, in Icarus and in Verilator: the same decisions to the last place."""
 
 from pathlib import Path
 
@@ -11,6 +11,7 @@ from behavgen.check.simulation import play
 from behavgen.check.stimulus import make_stimulus
 from behavgen.check.waveform import expect, read_record
 from behavgen.resources import sim_folder
+from behavgen.simulators.icarus import find_icarus
 from behavgen.simulators.process import run_logged
 from behavgen.simulators.verilator import find_verilator
 from tests.check.checking import emitted_text
@@ -22,37 +23,51 @@ WITHOUT_X = ("typ, noise off, between", "slow, noise on")
 
 
 @pytest.fixture(scope="module")
-def built(tmp_path_factory):
-    """A folder with a program that plays the runs without X, and these runs."""
+def prepared(tmp_path_factory):
+    """The runs without X, a folder with their texts and stimulus, the sources and macros."""
     folder = tmp_path_factory.mktemp("two_states")
     runs = [run for run in plan_batches(MODEL)[0].runs if run.name in WITHOUT_X]
     texts = {"module.sv": emitted_text(MODEL), "top.sv": top_text(MODEL, runs)}
     for name, text in texts.items():
         (folder / name).write_text(text)
+    for run in runs:
+        write_stimulus(folder, run, make_stimulus(MODEL, run, seed=1))
     sources = [folder / "module.sv", sim_folder() / "tops" / "block_harness.sv", folder / "top.sv"]
-    done = find_verilator().build(
-        sources, top=TOP, output=folder / "simulation", log=folder / "build.log",
-        macros=harness_macros(MODEL, texts["module.sv"]),
-    )  # fmt: skip
+    return runs, folder, sources, harness_macros(MODEL, texts["module.sv"])
+
+
+def plusargs(runs) -> list[str]:
+    """Return what makes one simulation play all runs at once."""
+    indices = [run.index for run in runs]
+    return [f"+{arg}" for arg in play(min(indices), max(indices))]
+
+
+def in_icarus(runs, folder: Path, sources, macros) -> None:
+    icarus, compiled = find_icarus(), folder / "compiled"
+    done = icarus.compile(sources, top=TOP, output=compiled, log=folder / "i.log", macros=macros)
     assert done.code == 0, done.tail(20)
-    return folder, {run.name: run for run in runs}
+    command = ["vvp", "-n", compiled, *plusargs(runs)]
+    assert run_logged(command, log=folder / "icarus.log", folder=folder).code == 0
 
 
-def agreement(folder: Path, run):
-    stimulus = make_stimulus(MODEL, run, seed=1)
-    write_stimulus(folder, run, stimulus)
-    plusargs = [f"+{arg}" for arg in play(run.index, run.index)]
-    program = [folder / "simulation", *plusargs]
-    assert run_logged(program, log=folder / "run.log", folder=folder).code == 0
-    record = read_record(folder / f"{run.index}.events")
-    return compare(expect(MODEL, run, stimulus), record)
+def in_verilator(runs, folder: Path, sources, macros) -> None:
+    program = folder / "simulation"
+    done = find_verilator().build(
+        sources, top=TOP, output=program, log=folder / "v.log", macros=macros
+    )
+    assert done.code == 0, done.tail(20)
+    command = [program, *plusargs(runs)]
+    assert run_logged(command, log=folder / "verilator.log", folder=folder).code == 0
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("name", WITHOUT_X)
-def test_a_two_state_simulator_agrees_in_every_decision(name, built):
-    folder, runs = built
-    found = agreement(folder, runs[name])
-    assert not found.fault.any()
-    assert not found.delay_error.any()
-    assert found.compared.sum() > 1000
+@pytest.mark.parametrize("simulate", [in_icarus, in_verilator])
+def test_instances_side_by_side_agree_in_every_decision(simulate, prepared):
+    runs, folder, *build = prepared
+    simulate(runs, folder, *build)
+    for run in runs:
+        record = read_record(folder / f"{run.index}.events")
+        found = compare(expect(MODEL, run, make_stimulus(MODEL, run, seed=1)), record)
+        assert not found.fault.any()
+        assert not found.delay_error.any()
+        assert found.compared.sum() > 1000

@@ -1,0 +1,1 @@
+"""Mutants of an emitted text, and whether the check catches them."""

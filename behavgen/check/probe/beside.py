@@ -1,0 +1,168 @@
+"""Decisions close beside what divides the model: nodes of the delay, the reach of the noise."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from itertools import count, cycle, pairwise
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from behavgen.check.directed import middle_c
+from behavgen.check.phases import memory_taus_s
+from behavgen.check.probe.insides import Insides, expected_insides
+from behavgen.check.runs import Run, Settings, reference_of
+from behavgen.check.script import HIGH, LOW, Change, Script, script_of
+from behavgen.check.script_decisions import decisions_of
+from behavgen.formulas.random_stream import path_seed
+from behavgen.model import ComparatorModel
+from behavgen.operating_point import VOLTAGE_STEPS_PER_V
+from behavgen.reference import Reference
+
+__all__ = ["Beside", "beside_instances"]
+
+NEAR = 0.004
+"""Relative distance from a node or from the reach: half of what a mutant moves it by."""
+_CERTAIN_SIGMAS = 8.3
+_SETTLE_TICKS = 40
+_STEPS_APART = 3
+_UNCHARACTERISED_V = 1.0
+_RESETS_TAUS = (0.3, 0.3, 0.8, 0.8, 0.3, 2.0, 0.8, 0.5)
+"""Resets over the longest time constant of the memory: some repeat the one before."""
+_SAME_RESETS = "the same resets"
+_REMEMBERING = 24
+"""Decisions under the same conditions."""
+
+Floats = npt.NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Beside:
+    """One instance, what is played to it and what must stand inside."""
+
+    run: Run
+    script: Script
+    insides: Insides
+
+
+def beside_instances(model: ComparatorModel, *, first_index: int) -> tuple[Beside, ...]:
+    """Return all instances: noise off beside the nodes, noise on beside its reach, all forced.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+    first_index : int
+        Names their records.
+    """
+    number = count(first_index)
+    found = []
+    for name, settings in _settings(model):
+        run = Run(index=next(number), name=name, given=settings, meant=settings, scripted=True)
+        script = _script(model, run)
+        decided = decisions_of(model, run, script)
+        row = np.searchsorted(script.time, decided.edge)
+        vcm_v = (script.inp_v[row] + script.inn_v[row]) * 0.5
+        vdd_v = script.vdd_v[row] if model.cell.pins.vdd is not None else np.full(len(row), np.nan)
+        endless = np.full(len(row), np.iinfo(np.int64).max)
+        insides = expected_insides(model, run, decided.trace, endless, vcm_v, vdd_v)
+        found.append(Beside(run=run, script=script, insides=insides))
+    return tuple(found)
+
+
+def _settings(model: ComparatorModel) -> Iterator[tuple[str, Settings]]:
+    for process in model.processes:
+        base = Settings(process=process.name, temperature_c=middle_c(model), noise_on=False,
+                        memory_on=False, seed=path_seed(f"beside {process.name}"))  # fmt: skip
+        yield f"beside the nodes, {process.name}", base
+        if model.noise is not None:
+            noisy = Settings(process=process.name, temperature_c=middle_c(model), memory_on=False,
+                             seed=base.seed)  # fmt: skip
+            yield f"beside the reach of the noise, {process.name}", noisy
+        if model.memory is not None:
+            remembering = Settings(process=process.name, temperature_c=middle_c(model),
+                                   noise_on=False, seed=base.seed)  # fmt: skip
+            yield f"the same conditions, {process.name}", remembering
+            yield f"{_SAME_RESETS}, {process.name}", remembering
+
+
+def _script(model: ComparatorModel, run: Run) -> Script:
+    reference = reference_of(model, run)
+    resting = LOW if model.cell.decides_on == "rising" else HIGH
+    phase = _phase_ticks(reference, model)
+    vdd_v = _UNCHARACTERISED_V if model.box.vdd_v is None else model.box.vdd_v.middle
+    remembers = run.meant.memory_on
+    resets = _RESETS_TAUS if not run.name.startswith(_SAME_RESETS) else _RESETS_TAUS[:1]
+    longest = _memory_ticks(model, run, reference, vdd_v) if remembers else phase
+    changes, now = [Change(time=0, pin="vdd", level=vdd_v)], _SETTLE_TICKS
+    changes.append(Change(time=_SETTLE_TICKS // 2, pin="clk", level=resting))
+    inputs = _inputs(model, run, reference, vdd_v)
+    for (inp, inn), reset in zip(inputs, cycle(resets), strict=False):
+        now += int(reset * longest)
+        changes.append(Change(time=now, pin="inputs", level=(inp, inn)))
+        changes.append(Change(time=now + _SETTLE_TICKS, pin="clk", level=1 - resting))
+        changes.append(Change(time=now + _SETTLE_TICKS + phase, pin="clk", level=resting))
+        now += phase + 2 * _SETTLE_TICKS
+    return script_of(changes, after_last=_SETTLE_TICKS)
+
+
+def _memory_ticks(model: ComparatorModel, run: Run, reference: Reference, vdd_v: float) -> int:
+    """Return the longest time constant of the memory."""
+    taus_s = memory_taus_s(
+        model, reference, vdd=vdd_v, vcm=0.5, temp_c=run.meant.temperature_c,
+        process=run.meant.process,
+    )  # fmt: skip
+    return int(np.max(taus_s, initial=1e-10) * model.cell.ticks_per_second)
+
+
+def _phase_ticks(reference: Reference, model: ComparatorModel) -> int:
+    slowest = 0.0 if model.delay is None else float(np.max(reference.delay(1e-15)))
+    return max(1000, int(8.0 * slowest * model.cell.ticks_per_second))
+
+
+def _inputs(
+    model: ComparatorModel, run: Run, reference: Reference, vdd_v: float
+) -> Iterator[tuple[float, float]]:
+    """Return inputs, each with a common mode of its own, so that all is worked out anew."""
+    middle = 0.5 if model.box.vcm_v is None else model.box.vcm_v.middle
+    first = np.floor(middle * VOLTAGE_STEPS_PER_V)
+    condition: dict[str, Any] = {
+        "vdd": vdd_v,
+        "temp_c": run.meant.temperature_c,
+        "process": run.meant.process,
+    }
+    for n, overdrive in enumerate(_overdrives(model, run, reference, middle, condition)):
+        stays = run.meant.memory_on and not run.name.startswith(_SAME_RESETS)
+        apart = 0 if stays else _STEPS_APART
+        vcm = float((first + apart * n) / VOLTAGE_STEPS_PER_V)
+        vdiff = float(reference.offset(vcm=vcm, **condition)) + overdrive
+        yield vcm + 0.5 * vdiff, vcm - 0.5 * vdiff
+
+
+def _overdrives(
+    model: ComparatorModel, run: Run, reference: Reference, vcm_v: float, condition: dict[str, Any]
+) -> list[float]:
+    if run.meant.memory_on:
+        levels = _between_nodes(model)
+        return [levels[n % len(levels)] * (-1.0) ** (n // 3) for n in range(_REMEMBERING)]
+    if run.meant.noise_on:
+        reach = _CERTAIN_SIGMAS * float(reference.noise_sigma(vcm=vcm_v, **condition))
+        centres, shares = [reach], (5e-4, 2e-3, NEAR)
+    else:
+        centres = [] if model.delay is None else list(model.delay.node_overdrive_v)
+        shares = (NEAR / 4, NEAR, 1.7 * NEAR)
+    return [
+        sign * centre * (1.0 + side * share)
+        for centre in centres
+        for share in shares
+        for side in (-1.0, 1.0)
+        for sign in (-1.0, 1.0)
+    ]
+
+
+def _between_nodes(model: ComparatorModel) -> list[float]:
+    """Return overdrives of every part of the delay's curve, the largest first."""
+    nodes = (1e-3, 1e-1) if model.delay is None else model.delay.node_overdrive_v
+    between = [float(np.sqrt(a * b)) for a, b in pairwise(nodes)]
+    return [2.0 * nodes[-1], *reversed(between), 0.5 * nodes[0]]
