@@ -73,6 +73,10 @@ class BehavgenError(Exception):
         self.faults = tuple(f if isinstance(f, Fault) else Fault(what=f) for f in faults)
         super().__init__("\n".join(str(fault) for fault in self.faults))
 
+    def __reduce__(self) -> tuple[type[BehavgenError], tuple[Fault, ...]]:
+        """Keep the faults on the way from another process."""
+        return type(self), self.faults
+
 
 class ProjectError(BehavgenError):
     """The command line or the project file is wrong."""

@@ -4,11 +4,31 @@ from __future__ import annotations
 
 import hashlib
 import os
+from glob import glob, has_magic
 from pathlib import Path
 
 from behavgen.errors import Fault, ProjectError
 
-__all__ = ["sha256_of_file", "sha256_of_text", "write_whole"]
+__all__ = ["files_named", "sha256_of_file", "sha256_of_text", "write_whole"]
+
+
+def files_named(folder: Path, pattern: str) -> tuple[Path, ...]:
+    """Return the file of that name, else the files that match it as a glob, sorted.
+
+    Parameters
+    ----------
+    folder : Path
+        Where relative patterns begin.
+    pattern : str
+        A path or a glob; absolute ones too.
+    """
+    literal = folder / pattern
+    if literal.is_file():
+        return (literal,)
+    if not has_magic(pattern):
+        return ()
+    names = sorted(glob(pattern, root_dir=folder, recursive=True))  # noqa: PTH207  absolute ones
+    return tuple(folder / name for name in names if (folder / name).is_file())
 
 
 def write_whole(path: Path, content: str | bytes) -> None:

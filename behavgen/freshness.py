@@ -8,15 +8,16 @@ when both still hold; times of files play no part.
 from __future__ import annotations
 
 import json
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, fields, is_dataclass
 from functools import cache
+from importlib.metadata import version
 from pathlib import Path
 
 from behavgen.files import sha256_of_file, sha256_of_text, write_whole
 from behavgen.resources import PACKAGE, sim_folder, template_folder
 
-__all__ = ["RECORD_FILE", "Step", "code_version", "content_hash"]
+__all__ = ["RECORD_FILE", "Step", "code_version", "content_hash", "recorded_steps"]
 
 RECORD_FILE = ".steps.json"
 RECORD_FORMAT = 1
@@ -81,11 +82,21 @@ def content_hash(*parts: object) -> str:
     return sha256_of_text(json.dumps(parts, sort_keys=True, default=_plain))
 
 
+def recorded_steps(record: bytes, folder: Path) -> Iterator[tuple[Step, tuple[str, ...]]]:
+    """Yield the steps that a record notes, and the files of each, relative to the folder."""
+    for name, noted in _parsed(record).items():
+        outputs = noted.get("outputs") if isinstance(noted, dict) else None
+        if isinstance(noted, dict) and isinstance(outputs, dict):
+            step = Step(folder=folder, name=name, inputs=str(noted.get("inputs", "")))
+            yield step, tuple(outputs)
+
+
 @cache
 def code_version() -> str:
-    """Return the hash of the program itself: its code, templates and benches.
+    """Return the hash of the program itself: its code, templates and benches, its libraries.
 
-    A version number would not notice a changed line in a checkout.
+    A version number would not notice a changed line in a checkout. The version of
+    Python is left out: it does not change results.
     """
     folders = {"code": PACKAGE, "templates": template_folder(), "sim": sim_folder()}
     return content_hash(
@@ -94,15 +105,27 @@ def code_version() -> str:
             for name, folder in folders.items()
             for file in sorted(folder.rglob("*"))
             if file.is_file() and "__pycache__" not in file.parts
-        }
+        },
+        {name: version(name) for name in _LIBRARIES},
     )
+
+
+_LIBRARIES = ("cocotb", "jinja2", "numpy", "polars", "scipy")
+"""Those whose versions may change the last digit of a number, or a line of text."""
 
 
 def _read_records(folder: Path) -> dict[str, object]:
     """Return what is noted; a record that cannot be read has noted nothing."""
     try:
-        raw = json.loads((folder / RECORD_FILE).read_text(encoding="utf-8"))
-    except (OSError, ValueError):
+        return _parsed((folder / RECORD_FILE).read_bytes())
+    except OSError:
+        return {}
+
+
+def _parsed(record: bytes) -> dict[str, object]:
+    try:
+        raw = json.loads(record)
+    except ValueError:
         return {}
     steps = raw.get("steps") if isinstance(raw, dict) else None
     known = isinstance(raw, dict) and raw.get("format") == RECORD_FORMAT

@@ -13,7 +13,9 @@ import json
 import math
 from collections.abc import Mapping
 from dataclasses import asdict, dataclass, field
+from functools import cache
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from behavgen.effects import (
     ApertureEffect,
@@ -28,7 +30,11 @@ from behavgen.effects import (
     ResetEffect,
 )
 from behavgen.errors import Fault, ModelFileError
+from behavgen.provenance import NOT_SAID, Provenance
 from behavgen.surface import Axis, Box, Range, Surface, Variant
+
+if TYPE_CHECKING:
+    from pydantic import TypeAdapter, ValidationError
 
 __all__ = [
     "FORMAT",
@@ -212,6 +218,10 @@ class CurvePoints:
     x, y : tuple of float
     trials : tuple of int
         Only for noise.
+    files : tuple of str
+        Files in which the points stand: one for all, or one a point; empty when unknown.
+    lines : tuple of int
+        Line of each point in its file, 1-based, header included.
     """
 
     quantity: str
@@ -219,6 +229,14 @@ class CurvePoints:
     x: tuple[float, ...]
     y: tuple[float, ...]
     trials: tuple[int, ...] = ()
+    files: tuple[str, ...] = ()
+    lines: tuple[int, ...] = ()
+
+    def place(self, index: int) -> tuple[str, int | None]:
+        """Return file and line of a point; ("", None) when unknown."""
+        if not self.files or not self.lines:
+            return "", None
+        return self.files[index if len(self.files) > 1 else 0], self.lines[index]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -253,13 +271,14 @@ class ConditionFit:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Source:
-    """A table file that went into the model."""
+    """A table file that went into the model, and what the user says of it."""
 
     quantity: str
     file: str
     sha256: str
     rows: int
     failed_rows: int = 0
+    provenance: Provenance = NOT_SAID
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -346,43 +365,59 @@ def load_model(path: Path) -> ComparatorModel:
         When the file cannot be read, has another format version, or is not a
         model; names every fault with its place in the file.
     """
+    from pydantic import ValidationError  # noqa: PLC0415  heavy, and only here
+
     try:
         text = path.read_text(encoding="utf-8")
+        model = _reader().validate_json(text)
+    except (OSError, UnicodeDecodeError) as error:
+        raise ModelFileError(_unreadable(path, error)) from None
+    except ValidationError as error:
+        raise ModelFileError(*_faults(path, text, error)) from None
+    if model.format != FORMAT:
+        raise ModelFileError(_of_format(path, model.format))
+    return model
+
+
+@cache
+def _reader() -> TypeAdapter[ComparatorModel]:
+    """Return what reads models; building it takes much longer than reading one."""
+    from pydantic import TypeAdapter  # noqa: PLC0415  heavy, and only here
+
+    return TypeAdapter(ComparatorModel)
+
+
+def _faults(path: Path, text: str, error: ValidationError) -> list[Fault]:
+    """Return what is wrong with a file; where it has another format, nothing else counts."""
+    try:
         raw = json.loads(text)
-    except (OSError, ValueError) as error:
-        raise ModelFileError(
-            Fault(
-                file=str(path),
-                what=f"cannot be read as a model file: {error}",
-                allowed="make it anew with: behavgen fit",
-            )
-        ) from None
+    except ValueError as reason:
+        return [_unreadable(path, reason)]
     found = raw.get("format") if isinstance(raw, dict) else None
     if found != FORMAT:
-        raise ModelFileError(
-            Fault(
-                file=str(path),
-                what=f"model file format {found!r}",
-                allowed=f"this version reads format {FORMAT}; make it anew with: behavgen fit",
-            )
+        return [_of_format(path, found)]
+    return [
+        Fault(
+            file=str(path),
+            column=".".join(str(part) for part in fault["loc"]),
+            what=fault["msg"],
+            allowed="make it anew with: behavgen fit",
         )
-    return _validated(path, text)
+        for fault in error.errors()
+    ]
 
 
-def _validated(path: Path, text: str) -> ComparatorModel:
-    from pydantic import TypeAdapter, ValidationError  # noqa: PLC0415  heavy, and only here
+def _unreadable(path: Path, error: Exception) -> Fault:
+    return Fault(
+        file=str(path),
+        what=f"cannot be read as a model file: {error}",
+        allowed="make it anew with: behavgen fit",
+    )
 
-    try:
-        return TypeAdapter(ComparatorModel).validate_json(text)
-    except ValidationError as error:
-        raise ModelFileError(
-            *(
-                Fault(
-                    file=str(path),
-                    column=".".join(str(part) for part in fault["loc"]),
-                    what=fault["msg"],
-                    allowed="make it anew with: behavgen fit",
-                )
-                for fault in error.errors()
-            )
-        ) from None
+
+def _of_format(path: Path, found: object) -> Fault:
+    return Fault(
+        file=str(path),
+        what=f"model file format {found!r}",
+        allowed=f"this version reads format {FORMAT}; make it anew with: behavgen fit",
+    )

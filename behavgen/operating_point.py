@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import math
+from collections.abc import Iterator
 from dataclasses import dataclass
+from typing import TypeVar
 
 import numpy as np
 import numpy.typing as npt
@@ -41,6 +44,8 @@ __all__ = [
 ]
 
 Floats = npt.NDArray[np.float64]
+_Any = TypeVar("_Any", bound=np.generic)
+_Rows = slice | npt.NDArray[np.bool_]
 
 VOLTAGE_STEPS_PER_V = 2.0**20
 TEMPERATURE_STEPS_PER_K = 2.0**10
@@ -57,6 +62,11 @@ class OperatingPoint:
     process : ndarray of str, shape (N,)
     shape : tuple of int
         Shape that the conditions had when broadcast.
+
+    Notes
+    -----
+    A condition that was given as one number, or one name, is repeated without being
+    copied (a stride of 0): surfaces then fold it once.
     """
 
     vdd_v: Floats
@@ -91,24 +101,38 @@ def operating_point(
     if unknown:
         raise TypeError(f"unknown condition {sorted(unknown)}; use vdd, temp_c, vcm, process")
     middle_c = _middle(model.box.temperature_k, 300.0) - _ZERO_CELSIUS_K
-    vdd, temp_c, vcm, process, _ = np.broadcast_arrays(
-        np.asarray(condition.get("vdd", _middle(model.box.vdd_v)), dtype=float),
-        np.asarray(condition.get("temp_c", middle_c), dtype=float),
-        np.asarray(condition.get("vcm", _middle(model.box.vcm_v)), dtype=float),
-        np.asarray(condition.get("process", model.processes[0].name), dtype=str),
-        np.empty(shape),
-    )
+    vdd, temp_c, vcm = (
+        np.asarray(condition.get(name, otherwise), dtype=float)
+        for name, otherwise in (
+            ("vdd", _middle(model.box.vdd_v)), ("temp_c", middle_c),
+            ("vcm", _middle(model.box.vcm_v)),
+        )
+    )  # fmt: skip
+    process = np.asarray(condition.get("process", model.processes[0].name), dtype=str)
     known = {process.name for process in model.processes}
-    if not set(process.ravel().tolist()) <= known:
+    if not set(np.unique(process).tolist()) <= known:
         raise ValueError(f"unknown process; this model knows {sorted(known)}")
-    temperature_k = temp_c.ravel() + _ZERO_CELSIUS_K
+    shape = np.broadcast_shapes(vdd.shape, temp_c.shape, vcm.shape, process.shape, shape)
+    temperature_k = temp_c + _ZERO_CELSIUS_K
     return OperatingPoint(
-        vdd_v=quantise(vdd.ravel(), VOLTAGE_STEPS_PER_V),
-        temperature_k=quantise(temperature_k, TEMPERATURE_STEPS_PER_K),
-        vcm_v=quantise(vcm.ravel(), VOLTAGE_STEPS_PER_V),
-        process=process.ravel(),
-        shape=vdd.shape,
+        vdd_v=_repeated(quantise(vdd, VOLTAGE_STEPS_PER_V), shape),
+        temperature_k=_repeated(quantise(temperature_k, TEMPERATURE_STEPS_PER_K), shape),
+        vcm_v=_repeated(quantise(vcm, VOLTAGE_STEPS_PER_V), shape),
+        process=_repeated(process, shape),
+        shape=shape,
     )
+
+
+def _repeated(value: npt.NDArray[_Any], shape: tuple[int, ...]) -> npt.NDArray[_Any]:
+    """Broadcast and flatten; what is the same everywhere is not copied."""
+    if value.size == 1:
+        return np.broadcast_to(value.reshape(()), (math.prod(shape),))
+    return np.broadcast_to(value, shape).ravel()
+
+
+def _distinct(value: npt.NDArray[_Any]) -> npt.NDArray[_Any]:
+    """Return one value for all where they are known to be the same, else all."""
+    return value[:1] if value.strides == (0,) else value
 
 
 def _middle(span: Range | None, otherwise: float = 0.0) -> float:
@@ -118,33 +142,40 @@ def _middle(span: Range | None, otherwise: float = 0.0) -> float:
 def evaluate(surface: Surface, point: OperatingPoint) -> Floats:
     """Evaluate a surface, shape (N,): clamp, normalise, fold slow conditions first."""
     result = np.empty(len(point.vdd_v))
-    for name in np.unique(point.process):
-        rows = point.process == name
-        variant = surface.variant(str(name))
+    for name, rows in _rows_of_processes(point):
+        variant = surface.variant(name)
         dense = dense_coefficients(surface.exponents, variant.coefficients)
-        result[rows] = nested_horner(dense, _coordinates(surface, variant, point, rows))
-    return exact_exp(result) if surface.transform == "log" else result
+        value = nested_horner(dense, _coordinates(surface, variant, point, rows))
+        result[rows] = exact_exp(value) if surface.transform == "log" else value
+    return result
+
+
+def _rows_of_processes(point: OperatingPoint) -> Iterator[tuple[str, _Rows]]:
+    """Return each process that occurs with its rows."""
+    names = np.unique(_distinct(point.process)).tolist()
+    for name in names:
+        yield name, slice(None) if len(names) == 1 else point.process == name
 
 
 def surface_terms(surface: Surface, point: OperatingPoint) -> Floats:
     """Return the value of each term of a surface's polynomial, shape (N, terms)."""
     terms = np.ones((len(point.vdd_v), len(surface.exponents)))
     powers = np.array(surface.exponents, dtype=float).reshape(len(surface.exponents), -1)
-    for name in np.unique(point.process):
-        rows = point.process == name
-        variant = surface.variant(str(name))
+    for name, rows in _rows_of_processes(point):
+        variant = surface.variant(name)
         for k, coordinate in enumerate(_coordinates(surface, variant, point, rows)):
             terms[rows] *= coordinate[:, None] ** powers[:, k]
     return terms
 
 
 def _coordinates(
-    surface: Surface, variant: Variant, point: OperatingPoint, rows: npt.NDArray[np.bool_]
+    surface: Surface, variant: Variant, point: OperatingPoint, rows: _Rows
 ) -> tuple[Floats, ...]:
+    """Return one coordinate an axis, of one element where the condition is the same everywhere."""
     coordinates = []
     for axis in surface.axes:
         span: Range = getattr(variant.box, axis.condition)
-        value = getattr(point, axis.condition)[rows]
+        value = _distinct(getattr(point, axis.condition)[rows])
         clamped = np.minimum(np.maximum(value, span.low), span.high)
         coordinates.append(axis_coordinate(clamped, axis.shape, axis.centre, axis.half_range))
     return tuple(coordinates)
@@ -153,7 +184,7 @@ def _coordinates(
 def delay_law(effect: DelayEffect, point: OperatingPoint) -> tuple[Floats, Floats, Floats]:
     """Return ln of the node overdrives (K,), tau (N,) and node delays (N, K), s."""
     log_node = np.log(np.array(effect.node_overdrive_v))
-    nodes = np.stack([evaluate(node, point) for node in effect.nodes], axis=-1)
+    nodes = np.stack([evaluate(node, point) for node in effect.nodes]).T
     return log_node, evaluate(effect.tau, point), nodes
 
 

@@ -15,20 +15,34 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
-from glob import glob, has_magic
 from itertools import count
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from behavgen.check.verdict import CheckReport, load_report
+from behavgen.cell_place import CHECK_FILE, CellPlace
+from behavgen.cell_state import (
+    STEP_NAMES,
+    check_step,
+    current_check,
+    emit_step,
+    fit_step,
+    is_of_present_simulator,
+    known_codes,
+    report_step,
+    step_states,
+)
+from behavgen.check.verdict import CheckReport
+from behavgen.check.wishes import Wishes
 from behavgen.emit.emitted_file import EmittedFile
-from behavgen.errors import Fault, ModelFileError, ProjectError
-from behavgen.files import sha256_of_file
-from behavgen.freshness import Step, code_version, content_hash
+from behavgen.errors import Fault, ProjectError, TableError
+from behavgen.files import write_whole
 from behavgen.model import ComparatorModel, dump_model, load_model
 
 if TYPE_CHECKING:
-    from behavgen.project import CellSettings, Project
+    from behavgen.check.languages import LanguageComparison
+    from behavgen.check.mutation.summary import MutationSummary
+    from behavgen.check.reproduce import Reproduced
+    from behavgen.project import CellSettings
 
 __all__ = [
     "STEP_NAMES",
@@ -39,59 +53,19 @@ __all__ = [
     "ReportedCell",
     "check_cell",
     "check_given_file",
+    "compare_cell",
     "current_check",
+    "decide_again",
     "emit_cell",
     "fit_cell",
     "report_cell",
     "step_states",
 ]
 
-STEP_NAMES = ("fit", "emit", "check", "report")
-CHECK_FILE = "check/check.json"
-
 GIVEN_FOLDER = "given-file"
-CHECK_OUTPUTS = (CHECK_FILE, "check/results.xml")
+CHECK_OUTPUTS = (CHECK_FILE, "check/closure.csv", "check/results.xml")
 
 Progress = Callable[[str], None] | None
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class CellPlace:
-    """A cell of a project, and where its results lie."""
-
-    project: Project
-    settings: CellSettings
-
-    @property
-    def name(self) -> str:
-        """The cell's name."""
-        return self.settings.name
-
-    @property
-    def folder(self) -> Path:
-        """The cell's output folder."""
-        return self.project.out / self.name
-
-    @property
-    def model_file(self) -> Path:
-        """The model file."""
-        return self.folder / f"{self.name}.model.json"
-
-    @property
-    def check_file(self) -> Path:
-        """What the check of the emitted model said."""
-        return self.folder / CHECK_FILE
-
-    @property
-    def report_file(self) -> Path:
-        """The report page."""
-        return self.folder / "report.html"
-
-    def step(self, name: str, *inputs: object) -> Step:
-        """Return a step whose result is determined by `inputs` and the program itself."""
-        return Step(
-            folder=self.folder, name=name, inputs=content_hash(name, code_version(), *inputs)
-        )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -151,7 +125,7 @@ def fit_cell(place: CellPlace) -> FittedCell:
     FitError
         When the data cannot identify a model.
     """
-    step = _fit_step(place)
+    step = fit_step(place)
     if step.is_current():
         return FittedCell(place=place, model=load_model(place.model_file), made=False)
     from behavgen.fit.fit import fit  # noqa: PLC0415  scipy
@@ -159,6 +133,8 @@ def fit_cell(place: CellPlace) -> FittedCell:
 
     tables = read_tables(place.project, place.name)
     model = fit(tables, _with_frozen_codes(place, tables.processes))
+    if fit_step(place) != step:
+        raise _changed_meanwhile(place)
     step.write({place.model_file.name: dump_model(model)})
     return FittedCell(place=place, model=model, made=True)
 
@@ -166,7 +142,7 @@ def fit_cell(place: CellPlace) -> FittedCell:
 def emit_cell(fitted: FittedCell) -> EmittedCell:
     """Write the behavioural models, unless they are current."""
     place, model = fitted.place, fitted.model
-    step = _emit_step(place)
+    step = emit_step(place)
     if step.is_current():
         files = tuple(
             EmittedFile(path=name, text=(place.folder / name).read_bytes().decode("utf-8"))
@@ -180,7 +156,9 @@ def emit_cell(fitted: FittedCell) -> EmittedCell:
     return EmittedCell(place=place, model=model, files=files, made=True)
 
 
-def check_cell(emitted: EmittedCell, *, jobs: int = 2, progress: Progress = None) -> CheckedCell:
+def check_cell(
+    emitted: EmittedCell, *, jobs: int = 2, wishes: Wishes | None = None, progress: Progress = None
+) -> CheckedCell:
     """Simulate the emitted model against the reference, unless the verdict is current.
 
     Parameters
@@ -188,6 +166,9 @@ def check_cell(emitted: EmittedCell, *, jobs: int = 2, progress: Progress = None
     emitted : EmittedCell
     jobs : int
         Simulations at a time.
+    wishes : Wishes, optional
+        How it shall differ from the usual check: then it is no step of the cell, leaves its
+        results in a folder of its own and is done whenever it is asked for.
     progress : callable, optional
         Told in words what happens now.
 
@@ -197,26 +178,42 @@ def check_cell(emitted: EmittedCell, *, jobs: int = 2, progress: Progress = None
         When no simulator is found.
     """
     place = emitted.place
+    if wishes is not None and wishes.folder:
+        return _check_as_wished(emitted, wishes, jobs=jobs, progress=progress)
     logs = place.check_file.parent
     known = current_check(place)
-    if known is not None:
+    if known is not None and is_of_present_simulator(known):
         return CheckedCell(place=place, report=known, logs=logs, made=False)
     from behavgen.check.check import check  # noqa: PLC0415  cocotb
 
     report = check(
         emitted.model, emitted.systemverilog, folder=place.folder, jobs=jobs, progress=progress
     )
-    _check_step(place).note(CHECK_OUTPUTS)
+    check_step(place).note(CHECK_OUTPUTS)
     return CheckedCell(place=place, report=report, logs=logs, made=True)
 
 
-def current_check(place: CellPlace) -> CheckReport | None:
-    """Return what the last check said, or None when it was not about the present files."""
-    return load_report(place.check_file) if _check_step(place).is_current() else None
+def _check_as_wished(
+    emitted: EmittedCell, wishes: Wishes, *, jobs: int, progress: Progress
+) -> CheckedCell:
+    from behavgen.check.check import check  # noqa: PLC0415  cocotb
+
+    place = emitted.place
+    folder = place.folder / wishes.folder
+    report = check(
+        emitted.model, emitted.systemverilog, folder=folder, jobs=jobs, wishes=wishes,
+        progress=progress,
+    )  # fmt: skip
+    return CheckedCell(place=place, report=report, logs=folder / "check", made=True)
 
 
 def check_given_file(
-    fitted: FittedCell, file: Path, *, jobs: int = 2, progress: Progress = None
+    fitted: FittedCell,
+    file: Path,
+    *,
+    jobs: int = 2,
+    wishes: Wishes | None = None,
+    progress: Progress = None,
 ) -> CheckedCell:
     """Simulate a SystemVerilog file of the user's against the reference.
 
@@ -235,8 +232,31 @@ def check_given_file(
     place = fitted.place
     folder = place.folder / GIVEN_FOLDER
     given = EmittedFile(path=file.name, text=_read_given(file))
-    report = check(fitted.model, given, folder=folder, jobs=jobs, progress=progress)
+    report = check(
+        fitted.model, given, folder=folder, jobs=jobs, wishes=wishes, progress=progress, given=True
+    )
     return CheckedCell(place=place, report=report, logs=folder / "check", made=True)
+
+
+def decide_again(
+    emitted: EmittedCell, file: Path | None, *, run: str, decision: int, waveforms: Path | None
+) -> Reproduced:
+    """Simulate one decision of a check again, of the emitted text or of a user's file.
+
+    Raises
+    ------
+    ProjectError
+        When there is no such run or decision, or the file cannot be read.
+    ToolError
+        When no simulator is found.
+    """
+    from behavgen.check.reproduce import reproduce  # noqa: PLC0415  numpy
+
+    text = emitted.systemverilog.text if file is None else _read_given(file)
+    return reproduce(
+        emitted.model, text, run=run, decision=decision, given=file is not None,
+        waveforms=waveforms,
+    )  # fmt: skip
 
 
 def _read_given(file: Path) -> str:
@@ -253,71 +273,73 @@ def _read_given(file: Path) -> str:
 def report_cell(emitted: EmittedCell, checked: CheckReport | None) -> ReportedCell:
     """Write the report page, with what the check said where there is a check."""
     place = emitted.place
-    step = _report_step(place, with_check=checked is not None)
+    step = report_step(place, with_check=checked is not None)
     if step.is_current():
         return ReportedCell(place=place, made=False)
+    from behavgen.check.languages import load_languages  # noqa: PLC0415  simulators
+    from behavgen.check.mutation.summary import load_summary  # noqa: PLC0415
     from behavgen.report.page import report_page  # noqa: PLC0415  jinja2
 
-    step.write({place.report_file.name: report_page(emitted.model, checked)})
+    languages = load_languages(place.folder, emitted.model)
+    mutants = load_summary(place.folder, emitted.model)
+    step.write({place.report_file.name: report_page(emitted.model, checked, languages, mutants)})
     return ReportedCell(place=place, made=True)
 
 
-def step_states(place: CellPlace) -> dict[str, str]:
-    """Return for each step whether its result is ``"current"``, ``"stale"`` or ``"missing"``.
+def compare_cell(emitted: EmittedCell, *, progress: Progress = None) -> LanguageComparison:
+    """Run all emitted languages side by side on a few decisions, in the simulators there are."""
+    from behavgen.check.languages import compare_languages  # noqa: PLC0415  simulators
 
-    What follows from a stale result is stale.
+    return compare_languages(emitted.model, folder=emitted.place.folder, progress=progress)
+
+
+def mutate_cell(
+    emitted: EmittedCell, *, sample: int | None = None, jobs: int = 2, progress: Progress = None
+) -> MutationSummary:
+    """Try the check on mutants of the emitted SystemVerilog, and keep what came of it.
+
+    Parameters
+    ----------
+    emitted : EmittedCell
+    sample : int or None
+        How many, drawn at random; None: all.
+    jobs : int
+        Simulations at a time.
+    progress : callable, optional
+        Told in words what happens now.
+
+    Raises
+    ------
+    ToolError
+        When no simulator is found.
     """
-    with_check = _check_step(place).is_current()
-    steps = (_fit_step(place), _emit_step(place), _check_step(place))
-    states = [step.state() for step in (*steps, _report_step(place, with_check=with_check))]
-    for index, upstream in enumerate(_UPSTREAM):
-        if states[index] == "current" and any(states[i] != "current" for i in upstream):
-            states[index] = "stale"
-    return dict(zip(STEP_NAMES, states, strict=True))
+    from behavgen.check.mutation.mutation import try_mutants  # noqa: PLC0415  cocotb
+    from behavgen.check.mutation.summary import (  # noqa: PLC0415
+        MUTANTS_FILE,
+        dump_summary,
+        summary,
+    )
+
+    text = emitted.systemverilog.text
+    report = try_mutants(emitted.model, text, sample=sample, jobs=jobs, tell=progress)
+    found = summary(emitted.model, text, report)
+    folder = emitted.place.check_file.parent
+    folder.mkdir(parents=True, exist_ok=True)
+    write_whole(folder / MUTANTS_FILE, dump_summary(found))
+    return found
 
 
-_UPSTREAM = ((), (0,), (0, 1), (0, 1))
-"""For each step the steps it follows from; a page is fine without a check."""
-
-
-def _fit_step(place: CellPlace) -> Step:
-    root = place.project.file.parent
-    tables = {
-        name: sha256_of_file(root / name)
-        for table in place.settings.tables
-        for name in (table.file, *_matches(root, table.file))
-    }
-    return place.step("fit", place.settings, place.project.corners, tables)
-
-
-def _matches(root: Path, pattern: str) -> list[str]:
-    """Return the files of a glob; the table reader, which knows more, is slow to import."""
-    if not has_magic(pattern):
-        return []
-    return glob(pattern, root_dir=root, recursive=True)  # noqa: PTH207  absolute ones too
-
-
-def _emit_step(place: CellPlace) -> Step:
-    return place.step("emit", sha256_of_file(place.model_file))
-
-
-def _check_step(place: CellPlace) -> Step:
-    emitted = place.folder / f"{place.name}.sv"
-    return place.step("check", sha256_of_file(place.model_file), sha256_of_file(emitted))
-
-
-def _report_step(place: CellPlace, *, with_check: bool) -> Step:
-    checked = sha256_of_file(place.check_file) if with_check else None
-    return place.step("report", sha256_of_file(place.model_file), checked)
+def _changed_meanwhile(place: CellPlace) -> TableError:
+    what = f"the tables of {place.name} changed while they were read"
+    return TableError(Fault(what=what, allowed="run it again once they are written"))
 
 
 def _with_frozen_codes(place: CellPlace, processes: tuple[str, ...]) -> CellSettings:
     """Let processes keep the codes of the model that is there: others have built on them."""
     if place.settings.process_codes or not processes:
         return place.settings
-    try:
-        known = {process.name: process.code for process in load_model(place.model_file).processes}
-    except ModelFileError:
+    known = known_codes(place)
+    if not known:
         return place.settings
     fresh = count(1 + max(known.values()))
     codes = {name: known[name] if name in known else next(fresh) for name in processes}

@@ -15,6 +15,8 @@ from pathlib import Path
 from typing import Any
 
 from behavgen.errors import Fault, ProjectError
+from behavgen.limits import DriftLimit, Limit
+from behavgen.provenance import NOT_SAID, Provenance
 
 __all__ = [
     "FAILED_TOKENS",
@@ -22,6 +24,7 @@ __all__ = [
     "CellSettings",
     "Corner",
     "Project",
+    "SymbolSettings",
     "TableSettings",
     "find_project_file",
     "load_project",
@@ -55,6 +58,8 @@ class TableSettings:
         The user's words on how it was measured.
     default_columns, default_at : frozenset of str
         Names whose entry comes from ``[defaults]``: a file need not have them.
+    provenance : Provenance
+        The user's words on where it comes from.
     line : int
         Line of the entry in the project file, 0 when unknown.
     """
@@ -69,6 +74,7 @@ class TableSettings:
     measured: str
     default_columns: frozenset[str] = frozenset()
     default_at: frozenset[str] = frozenset()
+    provenance: Provenance = NOT_SAID
     line: int = 0
 
 
@@ -81,6 +87,25 @@ class Corner:
     temperature_k: float | None
     vdd_v: float | None
     vcm_v: float | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SymbolSettings:
+    """The cell's schematic symbol, whose pins the hand-off's wrapper has.
+
+    Parameters
+    ----------
+    name : str
+        Of the wrapper's module.
+    pins : tuple of (str, str)
+        Name and role, in the symbol's order; roles as in `project_symbol.SYMBOL_ROLES`.
+    supply_v : float or None
+        Behind a logic 1 of the supply, V; None: the middle of the characterised range.
+    """
+
+    name: str
+    pins: tuple[tuple[str, str], ...]
+    supply_v: float | None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -98,16 +123,35 @@ class CellSettings:
     time_precision: str
     pins: Mapping[str, str | None]
     tables: tuple[TableSettings, ...]
+    symbol: SymbolSettings | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Project:
-    """A project file, read and judged."""
+    """A project file, read and judged.
+
+    Parameters
+    ----------
+    file, out : Path
+        The project file, and where results go.
+    cells : tuple of CellSettings
+    corners : tuple of Corner
+    baseline : Path
+        The folder of the recorded models.
+    limits : tuple of Limit
+    drift_limits : tuple of DriftLimit
+    vendor : str
+        Whose name stands in IP-XACT descriptions, such as a domain.
+    """
 
     file: Path
     out: Path
+    baseline: Path
     cells: tuple[CellSettings, ...]
     corners: tuple[Corner, ...]
+    limits: tuple[Limit, ...] = ()
+    drift_limits: tuple[DriftLimit, ...] = ()
+    vendor: str = "local"
 
 
 def find_project_file(start: Path) -> Path:

@@ -8,6 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from behavgen.errors import ProjectError
+from behavgen.limits import DriftLimit, Limit
 from behavgen.nearest import did_you_mean
 from behavgen.project import (
     FAILED_TOKENS,
@@ -16,6 +17,7 @@ from behavgen.project import (
     Project,
     TableSettings,
 )
+from behavgen.project_limits import LimitReader
 from behavgen.project_rules import (
     ProjectFaults,
     check_cell_names,
@@ -34,12 +36,14 @@ from behavgen.project_schema import (
     TablePart,
     checked,
 )
+from behavgen.project_symbol import read_symbol
+from behavgen.provenance import Provenance
 from behavgen.quantities import columns_of
 from behavgen.toml_lines import KeyPath, key_lines, line_of
 
 __all__ = ["read_project"]
 
-_TOP = ("project", "defaults", "cells", "corners")
+_TOP = ("project", "defaults", "cells", "corners", "limits", "drift")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -77,9 +81,35 @@ def read_project(file: Path, text: str, content: Mapping[str, Any]) -> Project:
     corners = _corners(_table(content, ("corners",), faults), faults)
     shared = _Shared(defaults=defaults or DefaultsPart(), corners=corners)
     cells = _cells(content, shared, faults)
+    limits, drift_limits = _limits(content, shared.corners, faults)
     if faults.found or project is None:
         raise ProjectError(*sorted(faults.found, key=lambda fault: fault.row or 0))
-    return Project(file=file, out=file.parent / project.out, cells=cells, corners=corners)
+    return Project(
+        file=file,
+        out=file.parent / project.out,
+        baseline=file.parent / project.baseline,
+        cells=cells,
+        corners=corners,
+        limits=limits,
+        drift_limits=drift_limits,
+        vendor=project.vendor,
+    )
+
+
+def _limits(
+    content: Mapping[str, Any], corners: Iterable[Corner], faults: ProjectFaults
+) -> tuple[tuple[Limit, ...], tuple[DriftLimit, ...]]:
+    """Return the bounds and drift limits of all cells, then those of each."""
+    reader = LimitReader(corners={corner.name: corner for corner in corners}, faults=faults)
+    limits, drift_limits = [*reader.limits(content, ())], [*reader.drift(content, ())]
+    cells = content.get("cells")
+    for name, cell in cells.items() if isinstance(cells, dict) else ():
+        if isinstance(cell, dict):
+            processes, path = cell.get("processes"), ("cells", name)
+            known = processes if isinstance(processes, dict) else ()
+            limits += reader.limits(cell, path, cell=name, processes=known)
+            drift_limits += reader.drift(cell, path, cell=name)
+    return tuple(limits), tuple(drift_limits)
 
 
 def _cells(
@@ -117,6 +147,8 @@ def _cell(
     check_process_codes(processes, (*path, "processes"), faults)
     if len(tables) == len(part.tables):
         check_measured(tables, (*path, "tables"), faults)
+    pins = named_pins(part.pins, (*path, "pins"), faults)
+    symbol = (*path, "symbol")
     return CellSettings(
         name=name,
         description=part.description,
@@ -127,8 +159,9 @@ def _cell(
         reset_delay_s=part.reset_delay,
         supply_off_v=part.supply_off,
         time_precision=part.time_precision,
-        pins=named_pins(part.pins, (*path, "pins"), faults),
+        pins=pins,
         tables=tables,
+        symbol=read_symbol(part.symbol, symbol, pins, name, faults) if part.symbol else None,
     )
 
 
@@ -179,7 +212,17 @@ def _merged(part: TablePart, defaults: DefaultsPart, line: int) -> TableSettings
         measured=measured or "",
         default_columns=frozenset(columns),
         default_at=frozenset(at),
+        provenance=_provenance(part, defaults),
         line=line,
+    )
+
+
+def _provenance(part: TablePart, defaults: DefaultsPart) -> Provenance:
+    def said(name: str) -> str:
+        return getattr(part, name) or getattr(defaults, name) or ""
+
+    return Provenance(
+        stage=said("stage"), kit=said("kit"), netlist_hash=said("netlist_hash"), date=said("date")
     )
 
 

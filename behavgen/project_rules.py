@@ -22,6 +22,7 @@ if TYPE_CHECKING:
 
 __all__ = [
     "DEFAULT_PINS",
+    "OTHER_MODULES",
     "ProjectFaults",
     "check_cell_names",
     "check_defaults",
@@ -44,6 +45,9 @@ DEFAULT_PINS: Mapping[str, str | None] = {
     "vss": "vss",
 }
 """Pin names of the emitted modules; None: not there unless asked for."""
+
+OTHER_MODULES = ("_event", "_nettype", "_nettype_core")
+"""Endings of the modules that are written for a cell beside the one of its own name."""
 
 _OPTIONAL_PINS = ("vdd", "outn", "unresolved", "enable")
 _LARGEST_CODE = 2**31 - 1  # Verilog-A integers have 32 bits
@@ -91,6 +95,19 @@ def check_cell_names(names: Iterable[str], faults: ProjectFaults) -> None:
                 f"differs from '{twin}' in capitals only",
                 "names that stay apart where file names ignore capitals",
             )
+    _check_modules_differ(seen, faults)
+
+
+def _check_modules_differ(names: Mapping[str, str], faults: ProjectFaults) -> None:
+    """Refuse a cell that has the name of another module of a cell beside it."""
+    for lower, name in names.items():
+        for ending in OTHER_MODULES:
+            if (owner := names.get(lower.removesuffix(ending))) and lower.endswith(ending):
+                faults.add(
+                    ("cells", name),
+                    f"is also the name of a module that is written for the cell '{owner}'",
+                    f"a name that is not '{owner}' with one of {', '.join(OTHER_MODULES)}",
+                )
 
 
 def check_process_codes(codes: Mapping[str, int], path: KeyPath, faults: ProjectFaults) -> None:

@@ -6,6 +6,7 @@ Imported only when a project file is read, since pydantic is slow to load.
 from __future__ import annotations
 
 import copy
+import datetime
 import functools
 import json
 import operator
@@ -22,7 +23,10 @@ __all__ = [
     "CellPart",
     "CornerPart",
     "DefaultsPart",
+    "DriftPart",
+    "LimitPart",
     "ProjectPart",
+    "SymbolPart",
     "TablePart",
     "checked",
 ]
@@ -59,11 +63,28 @@ def _pin(value: object) -> str | bool:
     raise ValueError("a name in quotes is needed, or false to leave the pin out")
 
 
+def _hertz(value: object) -> float:
+    return _in_si("Hz")(str(_text_or_number(value)).strip().removesuffix("Hz"))
+
+
+def _iso_date(value: object) -> str:
+    """Return a date, which TOML may give as one or as a text, in ISO 8601."""
+    if isinstance(value, datetime.date):  # one with a time of day too
+        return value.isoformat()
+    try:
+        return datetime.date.fromisoformat(str(value)).isoformat()
+    except ValueError:
+        raise ValueError("a date such as 2026-01-31 is needed") from None
+
+
 TextOrNumber = Annotated[str | float, BeforeValidator(_text_or_number)]
 TextsOrNumbers = Annotated[tuple[str | float, ...], BeforeValidator(_texts_or_numbers)]
 Volts = Annotated[float, BeforeValidator(_in_si("V"))]
 Seconds = Annotated[float, BeforeValidator(_in_si("s"))]
 Kelvin = Annotated[float, BeforeValidator(_in_si("K"))]
+Hertz = Annotated[float, BeforeValidator(_hertz)]
+Number = Annotated[float, BeforeValidator(_in_si("1"))]
+Date = Annotated[str, BeforeValidator(_iso_date)]
 Pin = Annotated[str | bool, BeforeValidator(_pin)]
 
 
@@ -75,6 +96,8 @@ class ProjectPart(_Part):
     """``[project]``."""
 
     out: str = Field("build", min_length=1)
+    baseline: str = Field("baseline", min_length=1)
+    vendor: str = Field("local", pattern=r"^[A-Za-z_][A-Za-z0-9_.-]*$")
 
 
 class DefaultsPart(_Part):
@@ -86,6 +109,10 @@ class DefaultsPart(_Part):
     at: dict[str, TextOrNumber] = {}
     failed: list[str] | None = None
     measured: str | None = None
+    stage: Literal["estimated", "schematic", "extracted", "measured"] | None = None
+    kit: str | None = None
+    netlist_hash: str | None = None
+    date: Date | None = None
 
 
 class TablePart(DefaultsPart):
@@ -108,6 +135,52 @@ class CellPart(_Part):
     time_precision: Literal["1fs", "1ps"] = "1fs"
     pins: dict[str, Pin] = {}
     tables: list[dict[str, Any]] = []
+    limits: list[dict[str, Any]] = []
+    drift: dict[str, Any] = {}
+    symbol: dict[str, Any] = {}
+
+
+class SymbolPart(_Part):
+    """``[cells.NAME.symbol]``; the order of its pins is that of the symbol."""
+
+    name: str | None = None
+    pins: dict[str, str]
+    supply: Volts | None = Field(None, gt=0)
+
+
+class LimitPart(_Part):
+    """``[[limits]]`` and ``[[cells.NAME.limits]]``."""
+
+    of: str
+    below: TextOrNumber | None = None
+    above: TextOrNumber | None = None
+    sigmas: Number | None = Field(None, ge=0)
+    overdrive: Volts | None = Field(None, gt=0)
+    input: Volts | None = None
+    span: Volts | None = Field(None, gt=0)
+    resolve_time: Seconds | None = Field(None, gt=0)
+    clock: Hertz | None = Field(None, gt=0)
+    reset_time: Seconds | None = Field(None, ge=0)
+    corner: str | None = None
+    process: str | None = None
+    temp: Kelvin | None = Field(None, gt=0)
+    vdd: Volts | None = Field(None, gt=0)
+    vcm: Volts | None = None
+
+
+class DriftPart(_Part):
+    """``[drift]`` and ``[cells.NAME.drift]``: a share as in "5 %", or an amount."""
+
+    offset: TextOrNumber | None = None
+    mismatch: TextOrNumber | None = None
+    noise: TextOrNumber | None = None
+    tau: TextOrNumber | None = None
+    delay: TextOrNumber | None = None
+    reset_delay: TextOrNumber | None = None
+    memory: TextOrNumber | None = None
+    aperture: TextOrNumber | None = None
+    energy: TextOrNumber | None = None
+    kickback: TextOrNumber | None = None
 
 
 class CornerPart(_Part):

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import shlex
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
+from functools import partial
 from pathlib import Path
 
+from behavgen.cell_state import is_current
 from behavgen.cli.parser import Options, Parser
 from behavgen.cli.terminal import Terminal
 from behavgen.cli.verdict import Outcome
@@ -14,6 +16,7 @@ from behavgen.errors import BehavgenError, Fault, ProjectError, ToolError
 from behavgen.nearest import did_you_mean
 from behavgen.pipeline import CellPlace
 from behavgen.project import CellSettings, Project, load_project
+from behavgen.regress.spread import CELLS_OF_A_WORKER, spread
 
 __all__ = [
     "CellResult",
@@ -112,19 +115,57 @@ def chosen_places(options: Options) -> list[CellPlace]:
 
 
 def each_cell(
-    options: Options, terminal: Terminal, work: Callable[[CellPlace], CellResult]
+    options: Options,
+    terminal: Terminal,
+    work: Callable[[CellPlace], CellResult],
+    *,
+    at_once: bool = False,
 ) -> CellsDone:
-    """Do the work on each cell and print its lines; the fault of one does not stop the others."""
+    """Do the work on each cell and print its lines; the fault of one does not stop the others.
+
+    Parameters
+    ----------
+    options, terminal
+    work : callable
+        Returns what there is to say of a cell.
+    at_once : bool
+        Work on several cells at a time, where many have no current model; `work` is then
+        a function of a module, which other processes can find.
+    """
     results: dict[str, CellResult] = {}
     errors: list[BehavgenError] = []
-    for place in chosen_places(options):
-        try:
-            result = results[place.name] = work(place)
-        except BehavgenError as error:
-            errors.append(error)
+    places = chosen_places(options)
+    jobs = _worthwhile_jobs(places, options) if at_once else 1
+    tasks = map(_by_itself, places) if jobs > 1 else places
+    outcomes = spread(partial(_attempted, work), tasks, jobs=jobs)
+    for place, outcome in zip(places, outcomes, strict=True):
+        if isinstance(outcome, BehavgenError):
+            errors.append(outcome)
             continue
-        _print_block(place.settings, result, terminal)
+        results[place.name] = outcome
+        _print_block(place.settings, outcome, terminal)
     return CellsDone(results=results, errors=tuple(errors))
+
+
+def _attempted(
+    work: Callable[[CellPlace], CellResult], place: CellPlace
+) -> CellResult | BehavgenError:
+    try:
+        return work(place)
+    except BehavgenError as error:
+        return error
+
+
+def _worthwhile_jobs(places: Sequence[CellPlace], options: Options) -> int:
+    if options.jobs == 1 or len(places) < 2 * CELLS_OF_A_WORKER:
+        return 1
+    open_cells = sum(not is_current(place) for place in places)
+    return min(options.jobs, max(open_cells // CELLS_OF_A_WORKER, 1))
+
+
+def _by_itself(place: CellPlace) -> CellPlace:
+    """Return the place without the project's other cells, to be light on the way."""
+    return replace(place, project=replace(place.project, cells=(place.settings,)))
 
 
 def command_line(options: Options, command: str) -> str:

@@ -33,6 +33,8 @@ report pages. Nothing in it describes a real circuit. Needs a simulator for the 
 ARGUMENTS = ""
 EXAMPLE = "behavgen demo --out look_at_this"
 
+CONVERTER_PAGE = "converter.html"
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class _Walked:
@@ -64,7 +66,24 @@ def run(options: Options, terminal: Terminal) -> Outcome:
     walked, missing = _check_all(emitted, options, terminal)
     pages = [report_cell(cell.emitted, cell.check).place.report_file for cell in walked]
     _tell(terminal, "report", [shown_path(page) for page in pages])
-    return _outcome(walked, missing)
+    converter_agrees = missing != () or _show_converter(walked[0].emitted, terminal)
+    return _outcome(walked, missing, converter_agrees=converter_agrees)
+
+
+def _show_converter(emitted: EmittedCell, terminal: Terminal) -> bool:
+    """Place a cell in a converter; tell and return whether it does what its closed form says."""
+    from behavgen.handoff.examples.show import show_converter  # noqa: PLC0415  scipy
+
+    page = emitted.place.folder / CONVERTER_PAGE
+    with terminal.progress("simulating a converter"):
+        found = show_converter(emitted.model, page)
+    agrees = "agrees with" if found.agrees else "DISAGREES with"
+    text = (
+        f"{emitted.place.name} in a SAR converter: {found.measured[0]:.2f} effective bits without "
+        f"noise, {found.measured[-1]:.2f} with a sigma of one LSB; {agrees} its closed form"
+    )
+    _tell(terminal, "converter", [text, shown_path(page)])
+    return found.agrees
 
 
 def _check_all(
@@ -84,13 +103,18 @@ def _check_all(
     return walked, ()
 
 
-def _outcome(walked: Sequence[_Walked], missing: tuple[ToolError, ...]) -> Outcome:
+def _outcome(
+    walked: Sequence[_Walked], missing: tuple[ToolError, ...], *, converter_agrees: bool
+) -> Outcome:
     against = tuple(c.place.name for c in walked if c.check is not None and not c.check.passed)
     said = f"{number_of(len(walked), 'cell')} from tables to report"
     if missing:
         said += ", but unchecked"
     if against:
         said += f"; the check fails for {', '.join(against)}"
+    if not converter_agrees:
+        said += "; the converter disagrees with its closed form"
+        against = (*against, "converter")
     return Outcome(
         said=said,
         next_step=_next_step(walked[0].place, missing=bool(missing), failed=bool(against)),

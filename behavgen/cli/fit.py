@@ -46,7 +46,7 @@ def add_arguments(parser: Parser) -> None:
 
 def run(options: Options, terminal: Terminal) -> Outcome:
     """Fit the cells asked for."""
-    done = each_cell(options, terminal, _fit)
+    done = each_cell(options, terminal, _fit, at_once=True)
     return done.outcome(options, done="fitted", then=command_line(options, "emit"))
 
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 
 from behavgen.cli.cells import chosen_places, command_line, number_of
@@ -13,6 +12,7 @@ from behavgen.cli.wording import shown_path
 from behavgen.errors import ProjectError
 from behavgen.pipeline import STEP_NAMES, CellPlace, current_check, step_states
 from behavgen.project import find_project_file
+from behavgen.version import program_version
 
 _STYLES = {"current": "good", "stale": "careful", "missing": "quiet", "disagrees": "bad"}
 
@@ -48,10 +48,7 @@ def run(options: Options, terminal: Terminal) -> Outcome:
 
 
 def _version(terminal: Terminal) -> Outcome:
-    try:
-        found = version("behavgen")
-    except PackageNotFoundError:
-        found = "from a source tree"
+    found = program_version()
     terminal.conclude(f"behavgen {found}")
     return Outcome(data={"version": found})
 

@@ -29,6 +29,10 @@ COMMANDS = {
     "report": "write the report page",
     "predict": "predict error rates, waits and delays to decide with",
     "plan": "say what to measure next",
+    "baseline": "record the present models",
+    "regress": "hold all cells against the baseline and the limits",
+    "compare": "say what changed between two model files",
+    "pack": "write the package that others verify with",
     "tools": "list simulators and compilers, found and missing",
     "completion": "print a script that completes commands in a shell",
 }
@@ -82,6 +86,24 @@ class Options(argparse.Namespace):
     mismatch: str = ""
     confidence: str = ""
     csv: str = ""
+    check: bool = False
+    languages: bool = False
+    mutants: int | None = None
+    simulator: str = "icarus"
+    run: str = ""
+    decision: int | None = None
+    waveforms: str = ""
+    only: Sequence[str] | None = None
+    fresh_seeds: int | None = None
+    since: str = ""
+    trends: bool = False
+    keep_runs: str = ""
+    scheduler: str = ""
+    old: str = ""
+    new: str = ""
+    unchecked: bool = False
+    disclose: bool = False
+    ipxact: str = "2022"
 
 
 class Parser(argparse.ArgumentParser):
@@ -157,7 +179,7 @@ def _add_common_options(parser: Parser) -> None:
     )
     loudness.add_argument("-v", "--verbose", action="store_true", help="print more detail")
     add("--strict", action="store_true", help="let warnings fail the command")
-    add("--jobs", type=_at_least_one, metavar="N", help="simulations at a time")
+    add("--jobs", type=_at_least_one, metavar="N", help="cells or simulations at a time")
     add("--color", choices=("auto", "always", "never"), help="when to use colour")
     add("-h", "--help", action="help", help="show this help")
 

@@ -23,7 +23,7 @@ def add_arguments(parser: Parser) -> None:
 
 def run(options: Options, terminal: Terminal) -> Outcome:
     """Write the pages of the cells asked for."""
-    done = each_cell(options, terminal, _report)
+    done = each_cell(options, terminal, _report, at_once=True)
     unchecked = any(not result.data["checked"] for result in done.results.values())
     then = command_line(options, "check") if unchecked else "look at the page"
     return done.outcome(options, done="reported", then=then)

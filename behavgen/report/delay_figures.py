@@ -6,15 +6,17 @@ from collections.abc import Sequence
 
 import numpy as np
 
+from behavgen.bands import Bands
 from behavgen.model import ComparatorModel, Condition
 from behavgen.reference import Reference
 from behavgen.report.axes import PlotAxis, spanning
-from behavgen.report.charts import Chart, Dots, Layer, Line, Panel, draw_chart
+from behavgen.report.charts import Band, Chart, Dots, Layer, Line, Panel, draw_chart
 from behavgen.report.conditions import (
     FIELD_TITLES,
     FIELDS,
     condition_words,
     field_text,
+    reference_keywords,
     shared_words,
     varying_fields,
 )
@@ -28,6 +30,8 @@ from behavgen.report.figure import (
 )
 from behavgen.report.numbers import percent_text, si_text
 from behavgen.report.overlay import (
+    CurveBand,
+    band_legend,
     drawn_curves,
     overlay_legend,
     overlay_panels,
@@ -41,8 +45,13 @@ _MOST_SERIES = 6
 _Panels = dict[tuple[object, ...], list[Curve]]
 
 
-def delay_overview(members: Sequence[Curve], middle: Condition) -> Figure:
-    """Return the chart of all conditions with the model's errors under it."""
+def delay_overview(
+    members: Sequence[Curve], middle: Condition, bands: Bands | None = None
+) -> Figure:
+    """Return the chart of all conditions with the model's errors under it.
+
+    With `bands` the conditions that stand out have their intervals.
+    """
     drawn = drawn_curves(members)
     chosen = spotlights(drawn, middle, [float(c.model_y.max()) for c in drawn])
     x = _overdrive_axis(*_overdrive_span(drawn), most_ticks=7)
@@ -53,10 +62,16 @@ def delay_overview(members: Sequence[Curve], middle: Condition) -> Figure:
         title="Delay over overdrive",
         description=f"{len(drawn)} conditions: markers are table rows, lines the emitted model; "
         f"below, the model's error in per cent, at most {percent_text(worst(drawn))}.",
-        panels=overlay_panels(drawn, chosen, x, y, "Model against table"),
+        panels=overlay_panels(drawn, chosen, x, y, "Model against table", _curve_band(bands)),
     )
-    return Figure(svg=draw_chart(chart), caption=_overview_caption(members, drawn),
-                  legend=overlay_legend(drawn, chosen))  # fmt: skip
+    legend = overlay_legend(drawn, chosen) + ((band_legend(bands.level),) if bands else ())
+    return Figure(svg=draw_chart(chart), caption=_overview_caption(members, drawn), legend=legend)
+
+
+def _curve_band(bands: Bands | None) -> CurveBand | None:
+    if bands is None:
+        return None
+    return lambda curve: bands.delay(curve.line_x, **reference_keywords(curve.condition))
 
 
 def _overview_caption(members: Sequence[Curve], drawn: Sequence[Curve]) -> str:
@@ -71,22 +86,27 @@ def _overview_caption(members: Sequence[Curve], drawn: Sequence[Curve]) -> str:
     return f"{text} All at {shared}." if shared else text
 
 
-def delay_alone(model: ComparatorModel, reference: Reference, middle: Condition) -> Figure:
+def delay_alone(
+    model: ComparatorModel, reference: Reference, middle: Condition, bands: Bands | None = None
+) -> Figure:
     """Return the emitted delay at the middle of the range, for a model without table points."""
     overdrive_v = drawn_overdrives(model)
     delay_s = reference.delay(overdrive_v)
     low, high = spanning(overdrive_v, logarithmic=True)
     x = _overdrive_axis(low, high, most_ticks=7)
     y = PlotAxis(label="Delay", unit="s", low=0.0, high=spanning(delay_s)[1])
+    interval = bands.delay(overdrive_v) if bands else None
+    under = (Band(x=overdrive_v, low=interval.low, high=interval.high),) if interval else ()
     chart = Chart(
         name="delay", title="Delay over overdrive of the emitted model",
         description=f"At most {si_text(float(delay_s[0]), 's')}, at least "
         f"{si_text(float(delay_s[-1]), 's')}.",
-        panels=(Panel(x=x, y=y, layers=(Line(x=overdrive_v, y=delay_s),), height=250.0),),
+        panels=(Panel(x=x, y=y, layers=(*under, Line(x=overdrive_v, y=delay_s)), height=250.0),),
     )  # fmt: skip
     where = condition_words(middle)
     caption = "The model file carries no table rows to compare with. The line is the emitted model"
-    return Figure(svg=draw_chart(chart), caption=f"{caption}{', at ' + where if where else ''}.")
+    return Figure(svg=draw_chart(chart), caption=f"{caption}{', at ' + where if where else ''}.",
+                  legend=(band_legend(bands.level),) if bands else ())  # fmt: skip
 
 
 def delay_multiples(members: Sequence[Curve]) -> Multiples | None:

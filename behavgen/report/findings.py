@@ -5,13 +5,20 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from behavgen.check.mutation.summary import MutationSummary
+from behavgen.check.power_words import power_words
 from behavgen.check.verdict import CheckReport, Disagreement, Stratum
 from behavgen.files import sha256_of_text
 from behavgen.model import ComparatorModel, dump_model
+from behavgen.report.closure_tables import (
+    closure_table,
+    distribution_table,
+    left_out_table,
+)
 from behavgen.report.numbers import ABSENT, count_text, si_text
 from behavgen.report.tabulation import Column, Row, Table
 
-__all__ = ["Findings", "findings"]
+__all__ = ["Findings", "findings", "findings_of"]
 
 _MOST_SHOWN = 24
 
@@ -38,26 +45,44 @@ class Findings:
     hashes: tuple[tuple[str, str], ...] = ()
 
 
-def findings(model: ComparatorModel, check: CheckReport | None) -> Findings:
-    """Return the outcome; a check of another model file does not speak for this one."""
+def findings(
+    model: ComparatorModel, check: CheckReport | None, mutants: MutationSummary | None = None
+) -> Findings:
+    """Return the outcome; a check of another model file does not speak for this one.
+
+    Parameters
+    ----------
+    model : ComparatorModel
+    check : CheckReport or None
+    mutants : MutationSummary or None
+        Of the emitted text.
+    """
     if check is None:
         return Findings(
             status="absent", headline="Not checked yet",
             sentence="No emitted text of this model has been compared with the reference in a "
             "simulator yet. Next: behavgen check.",
         )  # fmt: skip
-    tables = _tables(check)
-    hashes = (("model file", check.model_sha256), ("emitted text", check.emitted_sha256))
     if check.model_sha256 != sha256_of_text(dump_model(model)):
         return Findings(
-            status="stale", headline="Check is out of date", tables=tables,
-            hashes=hashes,
+            status="stale", headline="Check is out of date", tables=_tables(check),
+            hashes=_hashes(check),
             sentence="The last check was made with another version of this model file, so that its "
             f"result ({_outcome(check)}) says nothing about this one. Next: behavgen check.",
         )  # fmt: skip
-    status = "passed" if check.passed else "failed"
-    return Findings(status=status, headline=f"Check {status}", sentence=_sentence(check),
-                    tables=tables, hashes=hashes)  # fmt: skip
+    return findings_of(check, mutants)
+
+
+def findings_of(check: CheckReport, mutants: MutationSummary | None = None) -> Findings:
+    """Return the outcome of a check that is known to speak for the model at hand."""
+    tried = "" if mutants is None else f" {_capital(mutants.words)}."
+    return Findings(status=_outcome(check), headline=f"Check {_outcome(check)}",
+                    sentence=_sentence(check) + tried, tables=_tables(check),
+                    hashes=_hashes(check))  # fmt: skip
+
+
+def _hashes(check: CheckReport) -> tuple[tuple[str, str], ...]:
+    return (("model file", check.model_sha256), ("emitted text", check.emitted_sha256))
 
 
 def _outcome(check: CheckReport) -> str:
@@ -71,7 +96,7 @@ def _sentence(check: CheckReport) -> str:
             f"{compared} agree with the reference; the largest delay difference is "
             f"{check.worst_delay_ticks} units of the time precision. "
             f"{_count(len(check.benches), 'bench', 'benches')} passed and every stratum of the "
-            "stimulus was exercised as often as required."
+            "stimulus was exercised as often as required." + _answers(check)
         )
     faults = [
         _count(sum(not b.passed for b in check.benches), "bench failed", "benches failed"),
@@ -80,6 +105,22 @@ def _sentence(check: CheckReport) -> str:
     ]
     real = [fault for fault in faults if not fault.startswith("0 ")]
     return f"{compared} were compared with the reference: {', '.join(real) or 'it did not pass'}."
+
+
+def _answers(check: CheckReport) -> str:
+    """Return what else was asked, of a check that passed."""
+    words = ""
+    if check.closure:
+        rows = _count(sum(one.rows for one in check.closure), "table row", "table rows")
+        words += f" Characterised anew in simulation, the model gives {rows} back."
+    if check.distribution:
+        statistics = _count(len(check.distribution), "statistic", "statistics")
+        words += f" {statistics} of its random part are as they must be."
+    return words + "".join(f" {_capital(one)}." for one in power_words(check))
+
+
+def _capital(words: str) -> str:
+    return words[:1].upper() + words[1:]
 
 
 def _count(number: int, one: str, many: str) -> str:
@@ -93,6 +134,9 @@ def _short(stratum: Stratum) -> bool:
 def _tables(check: CheckReport) -> tuple[Table, ...]:
     candidates = (
         _disagreement_table(check),
+        closure_table(check),
+        distribution_table(check),
+        left_out_table(check),
         _bench_table(check),
         *(_stratum_table(group, [s for s in check.strata if s.group == group])
           for group in dict.fromkeys(s.group for s in check.strata)),

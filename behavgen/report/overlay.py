@@ -7,15 +7,16 @@ the others stay in the background, so that thirty conditions remain legible.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
+from behavgen.bands import Band as Interval
 from behavgen.model import Condition
 from behavgen.report.axes import PlotAxis, symmetric
-from behavgen.report.charts import Dots, Layer, Line, Panel, swatch
+from behavgen.report.charts import Band, Dots, Layer, Line, Panel, swatch
 from behavgen.report.conditions import condition_words, varying_fields
 from behavgen.report.curves import Curve, worst
 from behavgen.report.figure import LegendEntry, series_legend, series_marker, series_style
@@ -23,7 +24,9 @@ from behavgen.report.numbers import percent_text
 
 __all__ = [
     "MOST_DRAWN",
+    "CurveBand",
     "Spotlight",
+    "band_legend",
     "drawn_curves",
     "overlay_legend",
     "overlay_panels",
@@ -35,6 +38,9 @@ Floats = npt.NDArray[np.float64]
 MOST_DRAWN = 48
 """More conditions than this in one chart are neither legible nor small."""
 _MOST_IN_FULL = 4
+
+CurveBand = Callable[[Curve], Interval]
+"""Returns the interval of the emitted model along a curve's line."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -92,14 +98,19 @@ def overlay_panels(
     x: PlotAxis,
     y: PlotAxis,
     error_label: str,
+    band: CurveBand | None = None,
 ) -> tuple[Panel, Panel]:
-    """Return the panel of the quantity and the panel of the model's errors in per cent."""
+    """Return the panel of the quantity and the panel of the model's errors in per cent.
+
+    With `band` the interval of each condition that stands out lies under its curve.
+    """
     front = {id(s.curve) for s in chosen}
     back = [c for c in members if id(c) not in front]
     low, high = symmetric(*(100.0 * c.error for c in members))
     error = PlotAxis(label=error_label, unit="%", low=low, high=high, most_ticks=5)
+    under = [_band_layer(s.curve, band) for s in chosen] if band else []
     return (
-        Panel(x=x, y=y, layers=_curve_layers(back, chosen), height=280.0),
+        Panel(x=x, y=y, layers=(*under, *_curve_layers(back, chosen)), height=280.0),
         Panel(x=x, y=error, layers=_residual_layers(back, chosen), height=104.0, zero_line=True),
     )
 
@@ -115,6 +126,17 @@ def overlay_legend(
         sample = swatch("faint", "speck")
         entries.append(LegendEntry(sample=sample, text=f"the other {others} conditions"))
     return tuple(entries)
+
+
+def band_legend(level: float) -> LegendEntry:
+    """Return what the shading stands for."""
+    text = f"where the model's curve may lie, {percent_text(level)}"
+    return LegendEntry(sample=swatch("band-sample"), text=text)
+
+
+def _band_layer(curve: Curve, band: CurveBand) -> Band:
+    interval = band(curve)
+    return Band(x=curve.line_x, low=interval.low, high=interval.high)
 
 
 def _legend_text(spotlight: Spotlight, names: tuple[str, ...]) -> str:

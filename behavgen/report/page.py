@@ -2,15 +2,13 @@
 
 from __future__ import annotations
 
-import base64
-import hashlib
 from dataclasses import dataclass
-from functools import cache
 
-from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from markupsafe import Markup
 
 from behavgen.bands import Bands
+from behavgen.check.languages import LanguageComparison
+from behavgen.check.mutation.summary import MutationSummary
 from behavgen.check.verdict import CheckReport
 from behavgen.model import ComparatorModel
 from behavgen.reference import Reference
@@ -22,7 +20,9 @@ from behavgen.report.delay_figures import delay_alone, delay_multiples, delay_ov
 from behavgen.report.energy_figures import energy_figure, energy_law_words
 from behavgen.report.figure import Figure, Multiples
 from behavgen.report.findings import Findings, findings
+from behavgen.report.html import csp_hash, html_environment, shipped_text
 from behavgen.report.key_numbers import KeyNumber, key_numbers, middle_numbers
+from behavgen.report.language_table import language_sentence, language_table
 from behavgen.report.memory_figures import memory_figure
 from behavgen.report.noise_figures import (
     observed_sigmas,
@@ -44,7 +44,6 @@ from behavgen.report.tabulation import (
 from behavgen.report.timing import draw_timing, timing_words
 from behavgen.report.validity import ValidityRow, validity_rows
 from behavgen.report.window_figures import window_figure, window_from_delay
-from behavgen.resources import template_folder
 
 __all__ = ["report_page"]
 
@@ -88,9 +87,16 @@ class _Content:
     sources: Table | None
     effects: tuple[Effect, ...]
     cautions: tuple[str, ...]
+    languages: Table | None
+    languages_agree: str
 
 
-def report_page(model: ComparatorModel, check: CheckReport | None) -> str:
+def report_page(
+    model: ComparatorModel,
+    check: CheckReport | None,
+    languages: LanguageComparison | None = None,
+    mutants: MutationSummary | None = None,
+) -> str:
     """Return the report of a cell as one self-contained HTML page.
 
     Parameters
@@ -98,6 +104,10 @@ def report_page(model: ComparatorModel, check: CheckReport | None) -> str:
     model : ComparatorModel
     check : CheckReport or None
         None: not checked yet, which the page says.
+    languages : LanguageComparison or None
+        None: the languages were not compared.
+    mutants : MutationSummary or None
+        None: no mutants of the emitted text were tried.
 
     Returns
     -------
@@ -105,20 +115,26 @@ def report_page(model: ComparatorModel, check: CheckReport | None) -> str:
         HTML with its own style and drawings; no script, and a content security
         policy that lets the page load nothing.
     """
-    style = _style_sheet()
-    template = _environment().get_template("page.html")
+    style = shipped_text("report/style.css").strip()
+    template = html_environment().get_template("report/page.html")
     return template.render(
-        content=_content(model, check), style=Markup(style), style_hash=_csp_hash(style)
-    )
+        content=_content(model, check, languages, mutants), style=Markup(style),
+        style_hash=csp_hash(style),
+    )  # fmt: skip
 
 
-def _content(model: ComparatorModel, check: CheckReport | None) -> _Content:
+def _content(
+    model: ComparatorModel,
+    check: CheckReport | None,
+    languages: LanguageComparison | None,
+    mutants: MutationSummary | None,
+) -> _Content:
     reference = Reference(model)
     middle = middle_condition(model)
     return _Content(
         model=model,
         invented=is_invented(model),
-        findings=findings(model, check),
+        findings=findings(model, check, mutants),
         fit_sentences=fit_sentences(model),
         key_numbers=key_numbers(model.parameters),
         middle_numbers=middle_numbers(model, Bands(model), middle),
@@ -133,6 +149,8 @@ def _content(model: ComparatorModel, check: CheckReport | None) -> _Content:
         sources=source_table(model.sources),
         effects=effects(model),
         cautions=cautions(model, observed_sigmas(curves(model, reference, "noise"))),
+        languages=language_table(languages) if languages else None,
+        languages_agree=language_sentence(languages) if languages else "",
     )
 
 
@@ -172,29 +190,3 @@ def _window(model: ComparatorModel, reference: Reference) -> Figure | None:
     if windows:
         return window_figure(windows, middle)
     return window_from_delay(model, reference, middle)
-
-
-def _style_sheet() -> str:
-    return (template_folder() / "report" / "style.css").read_text(encoding="utf-8").strip()
-
-
-def _csp_hash(text: str) -> str:
-    """Return the source expression that lets a page use exactly this inline text.
-
-    W3C, Content Security Policy Level 3, 2.3.1: ``'sha256-'`` and the base64 of the digest.
-    """
-    digest = hashlib.sha256(text.encode("utf-8")).digest()
-    return f"'sha256-{base64.b64encode(digest).decode('ascii')}'"
-
-
-@cache
-def _environment() -> Environment:
-    environment = Environment(
-        loader=FileSystemLoader(template_folder() / "report"),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
-    environment.filters["drawing"] = Markup  # our own SVG, whose texts are escaped where drawn
-    return environment

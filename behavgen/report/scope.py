@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from behavgen.model import ComparatorModel
+from behavgen.model import ComparatorModel, DelayEffect
 from behavgen.report.numbers import count_text, volts_text
 
 __all__ = ["Effect", "effects"]
@@ -82,8 +82,19 @@ def _memory_words(model: ComparatorModel) -> str:
     return f"the trip point moves in its favour: {law} over the reset time"
 
 
+def _choice_words(effect: DelayEffect) -> str:
+    """Return by how much the law and the next best one miss rows left out."""
+    if effect.law_error is None:
+        return ""
+    words = f"{effect.law_error:.2%} rms at rows left out"
+    if effect.runner_up and effect.runner_up_error is not None:
+        words += f"; next best: {effect.runner_up}, {effect.runner_up_error:.2%}"
+    return f" ({words})"
+
+
 def _delay_words(model: ComparatorModel) -> str:
     if model.delay is None:
         return ""
-    text = f"law: {model.delay.law}" if model.delay.law else "over overdrive"
+    law = model.delay.law
+    text = f"law: {law}{_choice_words(model.delay)}" if law else "over overdrive"
     return f"{text}; measured from {model.delay.measured}" if model.delay.measured else text

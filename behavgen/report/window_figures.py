@@ -7,15 +7,18 @@ from collections.abc import Sequence
 import numpy as np
 import numpy.typing as npt
 
+from behavgen.bands import Bands
 from behavgen.model import ComparatorModel, Condition
 from behavgen.reference import Reference
 from behavgen.report.axes import PlotAxis, spanning
-from behavgen.report.charts import Chart, Line, Panel, draw_chart
-from behavgen.report.conditions import condition_words, shared_words
+from behavgen.report.charts import Band, Chart, Line, Panel, draw_chart
+from behavgen.report.conditions import condition_words, reference_keywords, shared_words
 from behavgen.report.curves import Curve, drawn_overdrives, rms, worst
 from behavgen.report.figure import Figure
 from behavgen.report.numbers import percent_text
 from behavgen.report.overlay import (
+    CurveBand,
+    band_legend,
     drawn_curves,
     overlay_legend,
     overlay_panels,
@@ -27,8 +30,13 @@ Floats = npt.NDArray[np.float64]
 __all__ = ["window_figure", "window_from_delay"]
 
 
-def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
-    """Return table and model over the resolve time, with the errors in time under them."""
+def window_figure(
+    members: Sequence[Curve], middle: Condition, bands: Bands | None = None
+) -> Figure:
+    """Return table and model over the resolve time, with the errors in time under them.
+
+    With `bands` the conditions that stand out have their intervals.
+    """
     drawn = drawn_curves(members)
     chosen = spotlights(drawn, middle, [float(c.x.max()) for c in drawn])
     x = _time_axis(*(c.x for c in drawn))
@@ -36,7 +44,8 @@ def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
     chart = Chart(
         name="window", title="Unresolved window over resolve time",
         description=f"{len(drawn)} conditions: markers are table rows, lines the emitted model.",
-        panels=overlay_panels(drawn, chosen, x, y, "Model against table, in time"),
+        panels=overlay_panels(drawn, chosen, x, y, "Model against table, in time",
+                              _curve_band(bands)),
     )  # fmt: skip
     caption = (
         "Width of the input interval that is still unresolved at a time after the decision edge: "
@@ -46,22 +55,34 @@ def window_figure(members: Sequence[Curve], middle: Condition) -> Figure:
     )
     shared = shared_words([c.condition for c in members])
     caption += f" All at {shared}." if shared else ""
-    return Figure(svg=draw_chart(chart), caption=caption, legend=overlay_legend(drawn, chosen))
+    legend = overlay_legend(drawn, chosen) + ((band_legend(bands.level),) if bands else ())
+    return Figure(svg=draw_chart(chart), caption=caption, legend=legend)
 
 
-def window_from_delay(model: ComparatorModel, reference: Reference, middle: Condition) -> Figure:
+def _curve_band(bands: Bands | None) -> CurveBand | None:
+    if bands is None:
+        return None
+    return lambda curve: bands.window(curve.line_x, **reference_keywords(curve.condition))
+
+
+def window_from_delay(
+    model: ComparatorModel, reference: Reference, middle: Condition, bands: Bands | None = None
+) -> Figure:
     """Return the window that the delay alone implies, at the middle of the range."""
     overdrive = drawn_overdrives(model)[::-1]
     time_s = reference.delay(overdrive)
     x, y = _time_axis(time_s), _window_axis(2.0 * overdrive)
     where = condition_words(middle)
+    interval = bands.window(time_s) if bands else None
+    under = (Band(x=time_s, low=interval.low, high=interval.high),) if interval else ()
     chart = Chart(
         name="window", title="Unresolved window over resolve time, from the delay alone",
         description="No window table; the line is the emitted delay read the other way.",
-        panels=(Panel(x=x, y=y, layers=(Line(x=time_s, y=2.0 * overdrive),), height=250.0),),
+        panels=(Panel(x=x, y=y, layers=(*under, Line(x=time_s, y=2.0 * overdrive)), height=250.0),),
     )  # fmt: skip
     caption = "No window table was given. The line is the emitted delay read the other way"
-    return Figure(svg=draw_chart(chart), caption=f"{caption}{', at ' + where if where else ''}.")
+    return Figure(svg=draw_chart(chart), caption=f"{caption}{', at ' + where if where else ''}.",
+                  legend=(band_legend(bands.level),) if bands else ())  # fmt: skip
 
 
 def _time_axis(*times_s: Floats) -> PlotAxis:

@@ -25,11 +25,13 @@ from behavgen.tables.characterisation import (
     OffsetStatistics,
     OffsetTable,
     ResetTable,
+    RowOrigin,
     TableSource,
     Texts,
     WindowTable,
 )
 from behavgen.tables.parts import Part
+from behavgen.tables.readers import LINE
 
 __all__ = ["ASSEMBLERS", "conditions_of"]
 
@@ -55,6 +57,7 @@ def offset_tables(parts: Sequence[Part]) -> dict[str, OffsetTable | OffsetStatis
             offset_low_v=_numbers(instances, "offset_low"),
             offset_high_v=_numbers(instances, "offset_high"),
             sources=_sources(instances),
+            origin=_origin(instances),
         )
     if statistics := _in_form(parts, "statistics"):
         tables["offset_statistics"] = OffsetStatistics(
@@ -82,6 +85,7 @@ def noise_tables(parts: Sequence[Part]) -> dict[str, NoiseTable]:
             sigma_v=_numbers(sigmas, "sigma"),
             sigma_error_v=_numbers(sigmas, "sigma_error"),
             sources=_sources(parts),
+            origin=_origin(curves),
         )
     }
 
@@ -90,12 +94,11 @@ def delay_tables(parts: Sequence[Part]) -> dict[str, DelayTable]:
     """Return delays; overdrive is input less trip point where the table gives these instead."""
     offset_v = _numbers(parts, "offset")
     overdrive_v = _numbers(parts, "overdrive")
-    from_input = np.isnan(overdrive_v)
-    if from_input.any():
+    if not _is_in_all(parts, "overdrive"):
+        from_input = np.isnan(overdrive_v)
         vdiff_v = _numbers(parts, "vdiff")[from_input]
         overdrive_v = np.array(overdrive_v)
         overdrive_v[from_input] = vdiff_v - np.nan_to_num(offset_v[from_input])
-    decision = _numbers(parts, "decision")
     return {
         "delay": DelayTable(
             conditions=conditions_of(parts),
@@ -103,9 +106,10 @@ def delay_tables(parts: Sequence[Part]) -> dict[str, DelayTable]:
             delay_s=_numbers(parts, "delay"),
             observed_for_s=_numbers(parts, "observed_for"),
             offset_v=offset_v,
-            decision=np.where(np.isnan(decision), -1, np.nan_to_num(decision)).astype(np.int64),
+            decision=_decisions(parts),
             measured=_measured(parts),
             sources=_sources(parts),
+            origin=_origin(parts),
         )
     }
 
@@ -135,6 +139,7 @@ def window_tables(parts: Sequence[Part]) -> dict[str, WindowTable]:
             searched_span_v=np.concatenate([_numbers(searched, "searched_span"), span_v]),
             measured=_measured(parts),
             sources=_sources([*searched, *counted]),
+            origin=_origin([*searched, *counted]),
         )
     }
 
@@ -146,6 +151,7 @@ def reset_tables(parts: Sequence[Part]) -> dict[str, ResetTable]:
             conditions=conditions_of(parts),
             reset_delay_s=_numbers(parts, "reset_delay"),
             sources=_sources(parts),
+            origin=_origin(parts),
         )
     }
 
@@ -159,6 +165,7 @@ def memory_tables(parts: Sequence[Part]) -> dict[str, MemoryTable]:
             memory_shift_v=_numbers(parts, "memory_shift"),
             censored=_numbers(parts, "censored") == 1.0,
             sources=_sources(parts),
+            origin=_origin(parts),
         )
     }
 
@@ -172,6 +179,7 @@ def aperture_tables(parts: Sequence[Part]) -> dict[str, ApertureTable]:
             step_weight=_numbers(parts, "step_weight"),
             step_v=_numbers(parts, "step"),
             sources=_sources(parts),
+            origin=_origin(parts),
         )
     }
 
@@ -186,6 +194,7 @@ def energy_tables(parts: Sequence[Part]) -> dict[str, EnergyTable]:
             energy_j=_numbers(parts, "energy"),
             cycle_time_s=_numbers(parts, "cycle_time"),
             sources=_sources(parts),
+            origin=_origin(parts),
         )
     }
 
@@ -200,6 +209,7 @@ def kickback_tables(parts: Sequence[Part]) -> dict[str, KickbackTable]:
             vdiff_v=_numbers(parts, "vdiff"),
             source_resistance_ohm=_numbers(parts, "source_resistance"),
             sources=_sources(parts),
+            origin=_origin(parts),
         )
     }
 
@@ -230,6 +240,24 @@ def _sources(parts: Iterable[Part]) -> tuple[TableSource, ...]:
     return tuple(part.source for part in parts)
 
 
+def _origin(parts: Sequence[Part]) -> RowOrigin:
+    """Return where the rows of all parts stand, one after another."""
+    files = tuple(dict.fromkeys(part.source.file for part in parts))
+    numbers = [
+        np.broadcast_to(np.int64(files.index(part.source.file)), part.frame.height)
+        for part in parts
+    ]
+    lines = [part.frame[LINE].to_numpy() for part in parts]
+    if len(parts) == 1:
+        return RowOrigin(files=files, file=numbers[0], line=lines[0])
+    nothing = np.empty(0, dtype=np.int64)
+    return RowOrigin(
+        files=files,
+        file=np.concatenate([nothing, *numbers]),
+        line=np.concatenate([nothing, *lines]),
+    )
+
+
 def _measured(parts: Iterable[Part]) -> str:
     return next((part.source.measured for part in parts if part.source.measured), "")
 
@@ -245,6 +273,18 @@ def _numbers(parts: Sequence[Part], name: str) -> Floats:
     if len(arrays) == 1:
         return arrays[0]
     return np.concatenate([np.empty(0), *arrays])
+
+
+def _is_in_all(parts: Iterable[Part], name: str) -> bool:
+    return all(name in part.frame.columns or name in part.fixed for part in parts)
+
+
+def _decisions(parts: Sequence[Part]) -> Integers:
+    """Return what was decided, -1 where no table says."""
+    if not any(_is_in_all([part], "decision") for part in parts):
+        return np.broadcast_to(np.int64(-1), _rows(parts))
+    decision = _numbers(parts, "decision")
+    return np.where(np.isnan(decision), -1.0, decision).astype(np.int64)
 
 
 def _integers(parts: Sequence[Part], name: str) -> Integers:

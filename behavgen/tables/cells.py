@@ -134,15 +134,18 @@ def _scan_plain(
         )
         return [
             judged.filter(_PLAIN).select(LINE, *names),
-            judged.filter(~pl.col(_PLAIN)).select(LINE),
-            judged.filter(last.is_null()).select(LINE),
+            # The others and the open ends in one: every further query costs a pass.
+            judged.filter(~pl.col(_PLAIN) | last.is_null()).select(
+                LINE, _PLAIN, last.is_null().alias(_OPEN)
+            ),
             *([raw.select(pl.len())] if layout.filters else []),
         ]
 
     collected = collect(table, plan, faults, numbers=numbers - layout.filters.keys())
     if collected is None:
         return None
-    plain, other, open_ended, *counted = collected.frames
+    plain, notable, *counted = collected.frames
+    other, open_ended = notable.filter(~pl.col(_PLAIN)), notable.filter(_OPEN)
     rows = counted[0].item() if counted else plain.height + other.height
     return _Scanned(
         plain=plain,
@@ -154,6 +157,7 @@ def _scan_plain(
 
 
 _PLAIN = "@plain"
+_OPEN = "@open"
 
 
 def _texts_of(

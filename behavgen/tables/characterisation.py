@@ -2,7 +2,8 @@
 
 Each quantity is one frozen table of equally long numpy arrays. A condition
 that a table neither has nor fixes holds everywhere: its array is NaN (or ""
-for the process) throughout.
+for the process) throughout. A table's `origin` says where its rows stand; it is
+None where no file was read, and that of the S-curves in the table of the noise.
 """
 
 from __future__ import annotations
@@ -13,6 +14,7 @@ import numpy as np
 import numpy.typing as npt
 
 from behavgen.project import CellSettings
+from behavgen.provenance import NOT_SAID, Provenance
 
 __all__ = [
     "ApertureTable",
@@ -26,6 +28,7 @@ __all__ = [
     "OffsetStatistics",
     "OffsetTable",
     "ResetTable",
+    "RowOrigin",
     "TableSource",
     "WindowTable",
 ]
@@ -53,6 +56,8 @@ class TableSource:
         Rows dropped because a cell held a failed-run token.
     measured : str
         The user's words on how it was measured; may be empty.
+    provenance : Provenance
+        The user's words on what was characterised.
     """
 
     quantity: str
@@ -61,6 +66,25 @@ class TableSource:
     rows: int
     failed_rows: int = 0
     measured: str = ""
+    provenance: Provenance = NOT_SAID
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class RowOrigin:
+    """In which line of which file each row of a table stands.
+
+    Parameters
+    ----------
+    files : tuple of str
+    file : ndarray of int, shape (N,)
+        Index into `files`.
+    line : ndarray of int, shape (N,)
+        1-based, header included.
+    """
+
+    files: tuple[str, ...]
+    file: Integers
+    line: Integers
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -103,6 +127,7 @@ class OffsetTable:
     offset_low_v: Floats
     offset_high_v: Floats
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -146,6 +171,7 @@ class NoiseTable:
     sigma_v: Floats
     sigma_error_v: Floats
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -176,6 +202,7 @@ class DelayTable:
     decision: Integers
     measured: str
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -205,6 +232,7 @@ class WindowTable:
     searched_span_v: Floats
     measured: str
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -214,6 +242,7 @@ class ResetTable:
     conditions: Conditions
     reset_delay_s: Floats
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -235,6 +264,7 @@ class MemoryTable:
     memory_shift_v: Floats
     censored: npt.NDArray[np.bool_]
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -256,6 +286,7 @@ class ApertureTable:
     step_weight: Floats
     step_v: Floats
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -277,6 +308,7 @@ class EnergyTable:
     energy_j: Floats
     cycle_time_s: Floats
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -297,6 +329,7 @@ class KickbackTable:
     vdiff_v: Floats
     source_resistance_ohm: Floats
     sources: tuple[TableSource, ...]
+    origin: RowOrigin | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

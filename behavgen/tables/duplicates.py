@@ -21,7 +21,8 @@ _HASH = "@hash"
 def check_duplicates(parts: Sequence[Part], faults: TableFaults) -> None:
     """Note every row that repeats an earlier one, in whatever file of the same form.
 
-    Hashes find the candidates, since nearly always there are none; equality decides.
+    Rows in the order of a sweep repeat none. In others hashes find the candidates,
+    since nearly always there are none; equality decides.
 
     Parameters
     ----------
@@ -30,6 +31,8 @@ def check_duplicates(parts: Sequence[Part], faults: TableFaults) -> None:
     faults : TableFaults
         Takes what is wrong.
     """
+    if len(parts) == 1 and _only_grows(parts[0].frame):
+        return
     names = sorted({name for part in parts for name in (*part.frame.columns, *part.fixed)})
     names.remove(LINE)
     frames = [_widened(part, names) for part in parts]
@@ -44,6 +47,16 @@ def check_duplicates(parts: Sequence[Part], faults: TableFaults) -> None:
         rows.append(frame.with_columns(pl.lit(index).alias(_FILE)).collect().filter(here))
         offset += part.frame.height
     _note_repeats(pl.concat(rows), names, parts, faults)
+
+
+def _only_grows(frame: pl.DataFrame) -> bool:
+    """Tell whether each row comes after the one before it, compared column by column."""
+    grows = pl.lit(value=False)
+    for name in reversed([name for name in frame.columns if name != LINE]):
+        here, before = pl.col(name), pl.col(name).shift(1)
+        grows = (here > before) | ((here == before) & grows)
+    test = grows.fill_null(value=False).slice(1).all()
+    return bool(frame.lazy().select(test).collect().item())
 
 
 def _widened(part: Part, names: Sequence[str]) -> pl.LazyFrame:

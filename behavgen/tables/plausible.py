@@ -12,27 +12,38 @@ from behavgen.units import format_celsius, format_si
 
 __all__ = ["plausible_notices", "zero_overdrive_dropped"]
 
+_ANYTHING = (0.0, float("inf"))
 _RESOLUTION = 1e-15  # relative; a difference this small is rounding of the file's numbers
 
 
 def plausible_notices(part: Part) -> list[str]:
     """Return a word on every column with numbers of an unusual size."""
-    notices = []
     known = columns_of(part.source.quantity)
-    for name in part.frame.columns:
-        column = known.get(name)
-        if column is None or column.is_text or column.usual == (0.0, float("inf")):
-            continue
-        low, high = column.usual
-        size = part.frame[name].abs()
-        odd = size.filter((size > high) | ((size < low) & (size > 0.0)))
-        if not odd.is_empty():
-            header = part.headers.get(name, name)
+    judged = {
+        name: known[name]
+        for name in part.frame.columns
+        if name in known and not known[name].is_text and known[name].usual != _ANYTHING
+    }
+    if not judged:
+        return []
+    counting = part.frame.lazy().select(_is_odd(c).sum() for c in judged.values())
+    counts = counting.collect(engine="streaming").row(0, named=True)
+    notices = []
+    for name, column in judged.items():
+        if counts[name]:
+            odd = part.frame[name].abs().filter(part.frame.select(_is_odd(column)).to_series())
             notices.append(
-                f"{part.source.file} column '{header}' of unusual size in {odd.len()} of "
-                f"{size.len()} rows, {_range(odd, column)}; is the unit right?"
+                f"{part.source.file} column '{part.headers.get(name, name)}' of unusual size in "
+                f"{counts[name]} of {part.frame.height} rows, {_range(odd, column)}; "
+                "is the unit right?"
             )
     return notices
+
+
+def _is_odd(column: Column) -> pl.Expr:
+    low, high = column.usual
+    size = pl.col(column.name).abs()
+    return ((size > high) | ((size < low) & (size > 0.0))).alias(column.name)
 
 
 def zero_overdrive_dropped(part: Part, notices: list[str]) -> Part:

@@ -6,17 +6,18 @@ by the line (or spreadsheet row) on which they stand, the header being line 1.
 
 from __future__ import annotations
 
-import glob
 import hashlib
 import warnings
 from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass
+from glob import has_magic
 from pathlib import Path
 from types import MappingProxyType
 from typing import Protocol
 
 import polars as pl
 
+from behavgen.files import files_named
 from behavgen.nearest import did_you_mean
 from behavgen.tables.csv_lines import (
     LINE,
@@ -78,15 +79,13 @@ class RawTable:
 
 def find_files(folder: Path, pattern: str, faults: TableFaults) -> tuple[Path, ...]:
     """Return the files that a path or glob names, sorted, or note that there are none."""
-    literal = folder / pattern
-    if literal.is_file():
-        return (literal,)
-    if glob.has_magic(pattern):
-        names = sorted(glob.glob(pattern, root_dir=folder, recursive=True))  # noqa: PTH207
-        files = tuple(folder / name for name in names if (folder / name).is_file())
-        if not files:
-            faults.add(pattern, "no file matches", f"a pattern relative to {folder.name}/")
+    files = files_named(folder, pattern)
+    if files:
         return files
+    if has_magic(pattern):
+        faults.add(pattern, "no file matches", f"a pattern relative to {folder.name}/")
+        return ()
+    literal = folder / pattern
     around = literal.parent
     siblings = sorted(item.name for item in around.iterdir()) if around.is_dir() else []
     hint = did_you_mean(literal.name, siblings)

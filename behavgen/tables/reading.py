@@ -124,6 +124,7 @@ def _part(table: RawTable, layout: Layout, cells: Cells, settings: TableSettings
         rows=frame.height,
         failed_rows=cells.failed_rows,
         measured=settings.measured,
+        provenance=settings.provenance,
     )
     return Part(
         form=layout.form,

@@ -31,7 +31,9 @@ def test_the_way_from_step_to_step(project: Path, capsys: pytest.CaptureFixture[
         assert ran.stderr == ""
         assert ran.stdout.splitlines()[-1].endswith(f"Next: behavgen {following}")
     names = {path.name for path in (project / "build" / "latch").iterdir()}
-    models = {"latch.model.json", "latch.sv", "latch.va", "latch_event.va"}
+    models = {
+        "latch.model.json", "latch.sv", "latch_nettype.sv", "latch.va", "latch_event.va"
+    }  # fmt: skip
     assert names == {".steps.json", "report.html", *models}
 
 
@@ -70,7 +72,7 @@ def test_fit_in_json_is_the_model_file(project: Path, capsys: pytest.CaptureFixt
 
 def test_what_is_current_says_so(project: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert "current already" not in run(capsys, "emit").stdout
-    assert run(capsys, "emit").stdout.count("current already") == 3
+    assert run(capsys, "emit").stdout.count("current already") == 4
 
 
 def test_quiet_is_one_line(project: Path, capsys: pytest.CaptureFixture[str]) -> None:

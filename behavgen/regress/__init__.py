@@ -1,0 +1,1 @@
+"""Many cells against what they were: what moved, and whether it matters."""
