@@ -31,7 +31,7 @@ bench: develop
 	done; exit $$failed
 
 golden: develop
-	$(BIN)/python -m pytest -m "not slow" --update-golden tests/emit tests/report
+	$(BIN)/python -m pytest -m "not slow" --update-golden tests/emit tests/report tests/handoff
 
 clean:
 	rm -rf .venv build dist behavgen-demo sim_build

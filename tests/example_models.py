@@ -208,6 +208,18 @@ def complete_model(**cell: object) -> ComparatorModel:
     )
 
 
+def with_energy(law: str) -> ComparatorModel:
+    """Return the complete model with another law of the energy."""
+    model = complete_model()
+    assert model.energy is not None
+    rise = constant_surface("J", "log", -33.5, "typ", "slow")
+    changes = {
+        "constant": {"rise": None},
+        "overdrive": {"rise": rise, "overdrive_v": Range(low=1e-5, high=0.1)},
+    }
+    return replace(model, energy=replace(model.energy, law=law, **changes.get(law, {})))
+
+
 def minimal_model(**cell: object) -> ComparatorModel:
     """Return a model of one process with nothing but a two-parameter delay law."""
     return ComparatorModel(
@@ -221,6 +233,24 @@ def minimal_model(**cell: object) -> ComparatorModel:
             law="logarithmic", measured="clk 50 % to outp-outn at half supply",
         ),
         generator="behavgen 0.1.0",
+    )  # fmt: skip
+
+
+def noisy_model() -> ComparatorModel:
+    """Return a fast model of one process: a delay, and everything that is random."""
+    model = minimal_model()
+    return replace(
+        model,
+        cell=replace(model.cell, name="latch_noisy", description="invented example of noise",
+                     pins=replace(model.cell.pins, vdd=None)),
+        offset=OffsetEffect(
+            surface=constant_surface("V", "plain", 1.3e-3, "nominal"),
+            source="trip points of the S-curves",
+        ),
+        noise=NoiseEffect(surface=constant_surface("V", "log", -7.6, "nominal")),
+        mismatch=MismatchEffect(
+            components=(constant_surface("V", "plain", 4e-3, "nominal"),), instances=60
+        ),
     )  # fmt: skip
 
 

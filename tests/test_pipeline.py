@@ -7,11 +7,14 @@ from pathlib import Path
 
 import pytest
 
-from behavgen import pipeline
+from behavgen import cell_place, pipeline
+from behavgen.errors import TableError
+from behavgen.files import files_named
 from behavgen.freshness import RECORD_FILE
 from behavgen.model import load_model
 from behavgen.pipeline import CellPlace, emit_cell, fit_cell, report_cell, step_states
 from behavgen.project import load_project
+from behavgen.tables.read import read_tables
 from tests.small_project import DELAY_ROWS, PROJECT_TEXT, write_small_project
 
 ALL_CURRENT = {"fit": "current", "emit": "current", "check": "missing", "report": "current"}
@@ -101,7 +104,7 @@ def test_all_that_follows_from_a_changed_input_is_stale(
 def test_a_changed_program_makes_everything_stale(
     walked: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(pipeline, "code_version", lambda: "another")
+    monkeypatch.setattr(cell_place, "code_version", lambda: "another")
     assert step_states(place_in(walked))["fit"] == "stale"
 
 
@@ -182,3 +185,36 @@ def test_declared_process_codes_win_over_those_of_an_old_model(tmp_path: Path) -
     )
     codes = {process.name: process.code for process in fit_cell(place).model.processes}
     assert codes == {"typ": 3, "slow": 7}
+
+
+def test_a_table_that_changes_while_it_is_read_is_told(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    place = place_in(write_small_project(tmp_path))
+
+    def read_and_disturb(*given: object) -> object:
+        tables = read_tables(*given)  # type: ignore[arg-type]
+        with (tmp_path / "delay.csv").open("a", encoding="utf-8") as file:
+            file.write("1.2,0.2,5e-11\n")
+        return tables
+
+    monkeypatch.setattr("behavgen.tables.read.read_tables", read_and_disturb)
+    with pytest.raises(TableError, match="latch changed while they were read"):
+        fit_cell(place)
+    assert not place.model_file.exists()
+
+
+def test_files_are_named_by_path_or_glob_and_sorted(tmp_path: Path) -> None:
+    for name in ("b.csv", "a.csv", "c[1].csv", "deep/d.csv"):
+        (tmp_path / name).parent.mkdir(exist_ok=True)
+        (tmp_path / name).touch()
+
+    def named(pattern: str) -> list[str]:
+        return [file.relative_to(tmp_path).as_posix() for file in files_named(tmp_path, pattern)]
+
+    assert named("?.csv") == ["a.csv", "b.csv"]
+    assert named("c[1].csv") == ["c[1].csv"]
+    assert named("**/d.csv") == ["deep/d.csv"]
+    assert named(f"{tmp_path}/a.csv") == ["a.csv"]
+    assert named("deep") == []
+    assert named("none*.csv") == []

@@ -219,6 +219,18 @@ def test_all_faults_are_reported_at_once_each_at_its_line_and_nothing_else(fault
             "cells.a.tables[0].at.vdd",
             "one of the two",
         ),
+        (
+            f"{TABLE}[cells.a_event]\n{TABLE.replace('.a.', '.a_event.')}",
+            4,
+            "cells.a_event",
+            "a module that is written for the cell 'a'",
+        ),
+        (
+            f"{TABLE}[cells.A_nettype]\n{TABLE.replace('.a.', '.A_nettype.')}",
+            4,
+            "cells.A_nettype",
+            "a module that is written for the cell 'a'",
+        ),
         (f"{TABLE}units.vdd = 'ps'\n", 4, "cells.a.tables[0].units.vdd", "unknown unit"),
         (f"{TABLE}at.corner = 'hot'\n", 4, "cells.a.tables[0].at.corner", "[corners.hot]"),
         (f"[cells.a]\npins.inp = 'SEED'\n{TABLE}", 2, "cells.a.pins.inp", "taken"),

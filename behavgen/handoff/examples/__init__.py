@@ -1,0 +1,1 @@
+"""Converters built from a packed model, and what they say about it."""
