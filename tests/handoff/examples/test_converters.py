@@ -71,14 +71,14 @@ def logarithmic_model(full_scale_v: float, tau_s: float) -> ComparatorModel:
     )
 
 
-@pytest.mark.parametrize("bits", [6, 8, 10])
+@pytest.mark.parametrize("bits", range(6, 15))
 def test_the_published_regeneration_time_of_a_sar_converter(bits, tmp_path):
     published = json.loads(PUBLISHED.read_text())["sar_easy_regeneration_tau"][str(bits)]
     assert round(sar_easy_regeneration_taus(bits)) == published
     full_scale_v, tau_s, conversions = 1.0, 10e-12, 4000
     model = logarithmic_model(full_scale_v, tau_s)
     converter = Converter(kind="sar", model=model, bits=bits, parameters={"NOISE_ON": "0"})
-    x = (np.arange(conversions) + 0.5) / conversions - 0.5
+    x = (np.arange(conversions) + 0.37) / conversions - 0.5  # never at a trip point
     phase_s = np.full(conversions, 1e-9)  # a hundred tau: all decisions resolve
     found = converter.build(tmp_path).convert(
         np.random.default_rng(4).permutation(x) * full_scale_v,
@@ -89,6 +89,9 @@ def test_the_published_regeneration_time_of_a_sar_converter(bits, tmp_path):
     mean = found.easy_s.mean() / tau_s
     assert mean == pytest.approx(sar_easy_regeneration_taus(bits), rel=0.01)
     assert abs(mean - published) < 0.5 + 0.01 * published
+    # All decisions: ln2 B (B + 1) / 2 + B, from E[-ln u] = 1 of a uniform u at each decision.
+    every = (found.easy_s + found.slowest_s).mean() / tau_s
+    assert every == pytest.approx(0.5 * np.log(2.0) * bits * (bits + 1) + bits, rel=0.01)
 
 
 def test_a_quiet_converter_is_ideal_in_every_code(tmp_path):
