@@ -26,13 +26,18 @@ __all__ = ["Headroom", "headroom_of"]
 Floats = npt.NDArray[np.float64]
 
 _SUPPLY, _COMMON = (CONDITION_NAMES.index(name) for name in ("vdd_v", "vcm_v"))
-_POWER = -3.0
+_POWERS = {"n": -3.0, "p": -1.5}
 """Of the common mode, to which the pair's share of a delay's logarithm is taken as proportional.
-Six invented circuits had their best between -2 and -4."""
+Of ten invented circuits, n-channel pairs had their best between -2 and -4, p-channel ones, whose
+overdrive counts from the supply and so is in the headroom already, between 0 and -2."""
+_P_CHANNEL_BELOW = 0.5
+"""Common mode over supply: a pair needs its overdrive, so that n-channel ones are not used nearer
+to ground than to the supply (common practice)."""
 _SHARES = np.linspace(0.0, 1.0, 9)
 _SHARPNESS = 4.0
 """Shares are averaged with their cost to the power -4: tables that differ little get surfaces
 that differ little."""
+_NO_COST = 1e-9
 _NEGLIGIBLE_SHARE = 0.02
 _SHAPES = ("plain", "reciprocal", "reciprocal_square")
 """How delays may bend with the headroom."""
@@ -47,9 +52,12 @@ class Headroom:
     Parameters
     ----------
     share : float
+    power : float
+        Of the common mode in the pair's law.
     """
 
     share: float
+    power: float
 
     @property
     def powers(self) -> dict[str, int]:
@@ -59,7 +67,7 @@ class Headroom:
     def seen(self, values: Floats) -> Floats:
         """Return conditions with the headroom for the supply and the pair's law."""
         seen = _with_headroom(values, self.share)
-        seen[:, _COMMON] = values[:, _COMMON] ** _POWER
+        seen[:, _COMMON] = values[:, _COMMON] ** self.power
         return seen
 
 
@@ -77,14 +85,21 @@ def headroom_of(values: Floats, targets: Floats, metric: Floats) -> Headroom | N
     levels = [0 if np.isnan(v).any() else len(np.unique(v)) for v in values.T]
     if levels[_COMMON] != 2 or levels[_SUPPLY] < 3 or values[:, _COMMON].min() < _LEAST_V:
         return None
+    supplies = [values[values[:, _COMMON] == v, _SUPPLY] for v in np.unique(values[:, _COMMON])]
+    if min(np.ptp(supply) for supply in supplies) == 0.0:
+        return None  # nothing shows how the common mode's influence changes
     shares = np.array(
         [s for s in _SHARES if _with_headroom(values, s)[:, _SUPPLY].min() >= _LEAST_V]
     )
     if len(shares) < 2:
         return None
     costs = np.array([_missed_apart(_with_headroom(values, s), targets, metric) for s in shares])
+    costs = np.maximum(costs, _NO_COST)
     share = float(np.average(shares, weights=(costs / costs.min()) ** -_SHARPNESS))
-    return Headroom(share=share) if share > _NEGLIGIBLE_SHARE else None
+    if share <= _NEGLIGIBLE_SHARE:
+        return None
+    is_low = values[:, _COMMON].mean() < _P_CHANNEL_BELOW * values[:, _SUPPLY].mean()
+    return Headroom(share=share, power=_POWERS["p" if is_low else "n"])
 
 
 def _with_headroom(values: Floats, share: float) -> Floats:

@@ -87,7 +87,7 @@ class _Pair:
         towards the supply.
         """
         if self.common_modes == 2:
-            return 1.4
+            return 2.5
         return 1.1 if self.below_supply else 1.0
 
     def seen(self, values: Floats) -> Floats:

@@ -32,6 +32,8 @@ _MOST_SHARE = 0.08
 """Of all conditions, up to which corners are looked for: one or two of a usual table."""
 _SUSPECTS = 3
 """A corner also spoils how its neighbours are foreseen: the worst of them are tried."""
+_TABULATED = 0.005
+"""Relative; a surface that misses more at a tabulated condition is led through them."""
 _NOTABLE = 0.05
 """Relative; smaller left-out errors are no corner's."""
 
@@ -97,6 +99,9 @@ def choose_around_corners(
         left_out = fit.predict(values) - targets
         left_out[rest] = fit.left_out
         best = replace(touched_up(fit, values, targets), left_out=left_out)
+    missed = left_out_errors(best.predict(values) - targets, metric)
+    if missed.max() > _TABULATED:
+        best = replace(touched_up(best, values, targets), left_out=best.left_out)
     return best
 
 

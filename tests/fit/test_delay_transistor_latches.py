@@ -14,11 +14,12 @@ from tests.fit.transistor_latches import FOLDER, LATCHES
 from tests.fit.weak_latches import delay_table
 
 THREE_LEVELS = {"shorted_p": (0.015, 0.04), "loaded_n": (0.008, 0.02), "two_stages": (0.015, 0.055),
-                "two_supplies": (0.015, 0.04)}  # fmt: skip
+                "two_supplies": (0.015, 0.04), "two_levels": (0.018, 0.06)}  # fmt: skip
 """Required at healthy points: 1.5 % rms, 4 % at worst; what is reached, where it is more or less.
 
-Of `two_stages` the one point beyond 4 % lies beside a common mode at which its first stage
-starves: a kink that three levels do not show.
+Of `two_levels` all points count, those beside its weakest corner too. Of `two_stages` the one
+point beyond 4 % lies beside a common mode at which its first stage starves: a kink that three
+levels do not show.
 """
 
 
@@ -70,12 +71,14 @@ def test_delays_hold_between_the_tabulated_conditions(name):
     assert np.abs(error).max() < THREE_LEVELS[name][1]
 
 
-@pytest.mark.parametrize("name", ["weak_n", "shorted_n"])
-def test_common_modes_near_threshold_and_two_temperatures_cost_accuracy(name):
-    # Delays grow sevenfold over the box and a two-level axis does not show how: 4 % rms.
+@pytest.mark.parametrize(
+    ("name", "most_rms", "worst"), [("weak_n", 0.025, 0.05), ("shorted_n", 0.035, 0.09)]
+)
+def test_common_modes_near_threshold_and_two_temperatures_cost_accuracy(name, most_rms, worst):
+    # Delays grow sevenfold over the box and a two-level axis shows only part of how.
     error = between_errors(fitted(name), name)
-    assert rms(error) < 0.04
-    assert np.abs(error).max() < 0.11
+    assert rms(error) < most_rms
+    assert np.abs(error).max() < worst
 
 
 @pytest.mark.parametrize("name", ["shorted_p", "weak_n", "loaded_n", "two_supplies", "two_stages"])

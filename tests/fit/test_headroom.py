@@ -50,24 +50,30 @@ def test_a_common_mode_that_takes_nothing_off_the_supply_has_none():
 )
 def test_tables_that_cannot_tell_have_none(levels):
     values = grid(*levels)
-    targets = log_delay(np.nan_to_num(values, nan=0.5), 0.5)
+    targets = np.log(values[:, :1] / values[:, 1:2])
     assert headroom_of(values, targets, unit_metric(values)) is None
+
+
+def test_a_star_of_conditions_tells_nothing_of_both():
+    star = [(300, 0.95, 0.4), (233, 0.95, 0.4), (300, 0.8, 0.4), (300, 1.1, 0.4), (300, 0.95, 0.6)]
+    values = np.array(star, dtype=float)
+    assert headroom_of(values, log_delay(values, 0.5), unit_metric(values)) is None
 
 
 @pytest.mark.parametrize("share", [0.5, 1.0])
 def test_delays_between_two_common_modes_are_foreseen(share):
-    # The straight line that a two-level axis shows by itself misses them by 4 % and more.
+    # At most half of what the straight line misses that a two-level axis shows by itself.
     values = grid(TEMPERATURE_K, VDD_V, VCM_V)
     between = grid((240.0, 270.0, 350.0), (0.84, 1.0), (0.45, 0.5, 0.55))
     truth = log_delay(between, share)
     targets = log_delay(values, share)
     fit = choose_through_pair(values, targets, unit_metric(values), SHAPES)
-    assert np.abs(fit.predict(between) - truth).max() < 0.02
     straight = [
         np.interp(v, VCM_V, log_delay(np.array([[t, s, c] for c in VCM_V]), share)[:, 0])
         for t, s, v in between
     ]
-    assert np.abs(np.array(straight) - truth[:, 0]).max() > 0.04
+    missed = np.abs(fit.predict(between) - truth).max()
+    assert missed < 0.5 * np.abs(np.array(straight) - truth[:, 0]).max()
     np.testing.assert_allclose(fit.predict(values), targets, atol=0.003)
 
 

@@ -251,6 +251,11 @@ LATCHES = {
         temperature_c=(-40.0, 125.0), vcm_v=(0.5, 0.6, 0.75),
         width_um={"tail": 2.0, "pair": 2.0, "latch": 1.5, "pull": 1.5, "reset": 0.8}, seed=3,
     ),
+    "two_levels": TransistorLatch(
+        netlist=SHORTED_N, falling=True, load_f=4e-15, threshold_v=0.36, lost_mobility_per_v=1.5,
+        vcm_v=(0.55, 0.75),
+        width_um={"tail": 2.0, "pair": 3.0, "latch": 2.0, "pull": 1.0, "reset": 0.8}, seed=52,
+    ),
     "weak_n": TransistorLatch(
         netlist=STRONG_ARM, load_f=3e-15, threshold_v=0.44, vcm_v=(0.5, 0.7),
         width_um={"tail": 2.0, "pair": 2.0, "latch": 1.5, "pull": 1.0, "reset": 0.7}, seed=4,
