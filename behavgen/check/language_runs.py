@@ -142,6 +142,10 @@ def _printed(text: str, cases: Sequence[LanguageCase]) -> tuple[Found, ...]:
     return tuple(found)
 
 
+_LEAST_SHOWN = 0.25
+"""Share of the supply by which outputs that show a bit are apart at the end of the phase."""
+
+
 def _measured(
     model: ComparatorModel,
     cases: Sequence[LanguageCase],
@@ -157,6 +161,9 @@ def _measured(
         apart = waves[f"outp_{index}"] - waves[f"outn_{index}"]
         span = sources.edges_s[-1], sources.ends_s[-1]
         before, after = np.interp(span, waves["time"], apart)
+        if abs(after) < _LEAST_SHOWN * case.vdd_v:
+            found.append(Found(bit=-1, delay_s=0.0))  # a coin's edge may begin here
+            continue
         middle = 0.5 * (before + after) * np.sign(after)
         level = float(middle) if by_middle else 0.5 * case.vdd_v
         found.append(_ready(waves["time"], apart, level, *span))
