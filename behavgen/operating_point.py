@@ -4,15 +4,15 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
-from dataclasses import dataclass
-from typing import TypeVar
+from dataclasses import dataclass, field
+from typing import Any, TypeVar
 
 import numpy as np
 import numpy.typing as npt
 
 from behavgen.formulas.exact_math import exact_exp
 from behavgen.formulas.memory import memory_shift
-from behavgen.formulas.node_law import node_law_delay
+from behavgen.formulas.node_law import node_law_delay, node_slopes
 from behavgen.formulas.polynomial import (
     axis_coordinate,
     dense_coefficients,
@@ -50,6 +50,7 @@ _Rows = slice | npt.NDArray[np.bool_]
 VOLTAGE_STEPS_PER_V = 2.0**20
 TEMPERATURE_STEPS_PER_K = 2.0**10
 _ZERO_CELSIUS_K = 273.15
+_PORTION = 8192
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -62,6 +63,8 @@ class OperatingPoint:
     process : ndarray of str, shape (N,)
     shape : tuple of int
         Shape that the conditions had when broadcast.
+    known : dict
+        What surfaces are worth here, as far as it was asked: by the surface's identity.
 
     Notes
     -----
@@ -74,6 +77,24 @@ class OperatingPoint:
     vcm_v: Floats
     process: npt.NDArray[np.str_]
     shape: tuple[int, ...]
+    known: dict[int, tuple[Surface | DelayEffect, Any]] = field(default_factory=dict, repr=False)
+
+    def at(self, rows: npt.NDArray[np.intp]) -> OperatingPoint:
+        """Return some of the conditions."""
+        return OperatingPoint(
+            vdd_v=_at(self.vdd_v, rows), temperature_k=_at(self.temperature_k, rows),
+            vcm_v=_at(self.vcm_v, rows), process=_at(self.process, rows), shape=rows.shape,
+        )  # fmt: skip
+
+    def equals(self, other: OperatingPoint) -> bool:
+        """Return whether conditions and their shape are the same."""
+        return self.shape == other.shape and all(
+            np.array_equal(_distinct(mine), _distinct(others))
+            for mine, others in (
+                (self.vdd_v, other.vdd_v), (self.temperature_k, other.temperature_k),
+                (self.vcm_v, other.vcm_v), (self.process, other.process),
+            )
+        )  # fmt: skip
 
 
 def operating_point(
@@ -130,6 +151,11 @@ def _repeated(value: npt.NDArray[_Any], shape: tuple[int, ...]) -> npt.NDArray[_
     return np.broadcast_to(value, shape).ravel()
 
 
+def _at(value: npt.NDArray[_Any], rows: npt.NDArray[np.intp]) -> npt.NDArray[_Any]:
+    same = value.strides == (0,) and len(value) > 0
+    return np.broadcast_to(value[0], rows.shape) if same else value[rows]
+
+
 def _distinct(value: npt.NDArray[_Any]) -> npt.NDArray[_Any]:
     """Return one value for all where they are known to be the same, else all."""
     return value[:1] if value.strides == (0,) else value
@@ -140,21 +166,39 @@ def _middle(span: Range | None, otherwise: float = 0.0) -> float:
 
 
 def evaluate(surface: Surface, point: OperatingPoint) -> Floats:
-    """Evaluate a surface, shape (N,): clamp, normalise, fold slow conditions first."""
-    result = np.empty(len(point.vdd_v))
-    for name, rows in _rows_of_processes(point):
-        variant = surface.variant(name)
-        dense = dense_coefficients(surface.exponents, variant.coefficients)
-        value = nested_horner(dense, _coordinates(surface, variant, point, rows))
-        result[rows] = exact_exp(value) if surface.transform == "log" else value
-    return result
+    """Evaluate a surface, shape (N,): clamp, normalise, fold slow conditions first.
+
+    The result is kept with the point and must not be written to.
+    """
+    if id(surface) not in point.known:
+        value = np.empty(len(point.vdd_v))
+        for name, rows in _rows_of_processes(point):
+            value[rows] = _values(surface, surface.variant(name), point, rows)
+        value.flags.writeable = False
+        point.known[id(surface)] = (surface, value)
+    known: Floats = point.known[id(surface)][1]
+    return known
+
+
+def _values(surface: Surface, variant: Variant, point: OperatingPoint, rows: _Rows) -> Floats:
+    dense = dense_coefficients(surface.exponents, variant.coefficients)
+    value = nested_horner(dense, _coordinates(surface, variant, point, rows))
+    return exact_exp(value) if surface.transform == "log" else value
 
 
 def _rows_of_processes(point: OperatingPoint) -> Iterator[tuple[str, _Rows]]:
-    """Return each process that occurs with its rows."""
+    """Return each process that occurs with its rows, some at a time where there is only one."""
     names = np.unique(_distinct(point.process)).tolist()
     for name in names:
-        yield name, slice(None) if len(names) == 1 else point.process == name
+        if len(names) > 1:
+            yield name, point.process == name
+        else:
+            yield from ((name, rows) for rows in _some_at_a_time(len(point.vdd_v)))
+
+
+def _some_at_a_time(count: int) -> Iterator[slice]:
+    """Return the rows in portions that stay in the processor's cache."""
+    return (slice(first, first + _PORTION) for first in range(0, count, _PORTION))
 
 
 def surface_terms(surface: Surface, point: OperatingPoint) -> Floats:
@@ -188,11 +232,50 @@ def delay_law(effect: DelayEffect, point: OperatingPoint) -> tuple[Floats, Float
     return log_node, evaluate(effect.tau, point), nodes
 
 
+@dataclass(frozen=True, slots=True)
+class _KnownLaw:
+    """Node delays and slopes, (N, K) each, in s, where they are known."""
+
+    known: npt.NDArray[np.bool_]
+    nodes_s: Floats
+    slopes_s: Floats
+
+
+def _law_at(effect: DelayEffect, point: OperatingPoint, rows: npt.NDArray[np.intp]) -> _KnownLaw:
+    """Return the law, known at least at these rows; it is kept with the point."""
+    count, nodes = len(point.vdd_v), len(effect.nodes)
+    if id(effect) not in point.known:
+        empty = _KnownLaw(np.full(count, False), *np.empty((2, nodes, count)).transpose(0, 2, 1))
+        point.known[id(effect)] = (effect, empty)
+    law: _KnownLaw = point.known[id(effect)][1]
+    missing = rows[~law.known[rows]]
+    for some in (missing[part] for part in _some_at_a_time(len(missing))):
+        log_node, tau_s, nodes_s = delay_law(effect, point.at(some))
+        law.nodes_s[some] = nodes_s
+        law.slopes_s[some] = node_slopes(log_node, tau_s, nodes_s)
+        law.known[some] = True
+    return law
+
+
 def delay_s(effect: DelayEffect, overdrive_v: Floats, point: OperatingPoint) -> Floats:
-    """Return the delay in s at overdrives of shape (..., N)."""
-    log_node, tau, nodes = delay_law(effect, point)
+    """Return the delay in s at overdrives of shape (..., N).
+
+    Most are so small that they lie on the straight line below the first node; only where
+    one does not are the other nodes evaluated.
+    """
+    log_node, tau_s = np.log(np.array(effect.node_overdrive_v)), evaluate(effect.tau, point)
     overdrive = np.maximum(np.abs(overdrive_v), effect.floor_v)
-    return node_law_delay(overdrive, log_node, tau, nodes)
+    delay = node_law_delay(
+        overdrive, log_node[:1], tau_s, evaluate(effect.nodes[0], point)[:, None]
+    )
+    curved = ~(np.log(overdrive) < log_node[0])
+    rows = np.flatnonzero(curved.any(axis=tuple(range(curved.ndim - 1))))
+    law = _law_at(effect, point, rows)
+    for some in (rows[part] for part in _some_at_a_time(len(rows))):
+        delay[..., some] = node_law_delay(
+            overdrive[..., some], log_node, tau_s[some], law.nodes_s[some], law.slopes_s[some]
+        )
+    return delay
 
 
 def overdrive_at(effect: DelayEffect, delay: Floats, point: OperatingPoint) -> Floats:

@@ -92,6 +92,9 @@ class Reference:
         self.offset_shift_v = offset_shift_v
         self.when_unresolved = when_unresolved or model.cell.when_unresolved
         self.force_unresolved_every = force_unresolved_every
+        self._drawn: tuple[Integers, Floats] | None = None
+        self._last_point: OperatingPoint | None = None
+        """Much is asked at the same conditions in a row; a point knows what surfaces are worth."""
         self._keys = tuple(random_stream.stream_key(seed, run_seed, c) for c in range(3))
 
     def offset(self, **condition: npt.ArrayLike) -> Floats:
@@ -266,11 +269,17 @@ class Reference:
             return e
         sigma = self._sigma(point)
         uncertain = np.abs(e) < CERTAIN_SIGMAS * sigma
-        drawn = uncertain.any(axis=0)
-        z = np.zeros(len(sigma))
-        bits = random_stream.random_bits(self._keys[random_stream.NOISE], number[drawn])
-        z[drawn] = random_stream.standard_normal(bits)
-        return np.where(uncertain, e + sigma * z, e)
+        return np.where(uncertain, e + sigma * self._noise_draws(number), e)
+
+    def _noise_draws(self, number: Integers) -> Floats:
+        """Return the standard normal number of each decision; the last ones are kept."""
+        last = self._drawn
+        if last is not None and np.array_equal(last[0], number):
+            return last[1]
+        bits = random_stream.random_bits(self._keys[random_stream.NOISE], number)
+        drawn = random_stream.standard_normal(bits)
+        self._drawn = (number, drawn)
+        return drawn
 
     def _unresolved(self, delay: Integers, phase: Integers, number: Integers) -> Truths:
         unresolved = self.delay_on & (delay > phase)
@@ -345,7 +354,12 @@ class Reference:
 
     def point(self, shape: tuple[int, ...], condition: dict[str, npt.ArrayLike]) -> OperatingPoint:
         """Return an operating condition given by keyword, broadcast against a shape."""
-        return operating_point(self.model, shape, condition)
+        point = operating_point(self.model, shape, condition)
+        last = self._last_point
+        if last is not None and last.equals(point):
+            return last
+        self._last_point = point
+        return point
 
 
 def _met(e: Floats, unresolved: Truths, sign_before: int) -> tuple[Integers, Integers]:

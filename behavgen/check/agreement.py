@@ -91,7 +91,10 @@ def compare(expected: Expectation, record: Record) -> Agreement:
 def _differ(observed: States, expected: States, columns: slice) -> Mask:
     """Return where a state is not as expected; what is `ANY` on either side fits."""
     a, b = observed[:, columns], expected[:, columns]
-    wrong: Mask = ((a != b) & (a != ANY) & (b != ANY)).any(axis=1)
+    differ: Mask = (a != b) & (a != ANY) & (b != ANY)
+    wrong = differ[:, 0]
+    for column in range(1, differ.shape[1]):
+        wrong = wrong | differ[:, column]
     return wrong
 
 

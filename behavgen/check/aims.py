@@ -55,7 +55,7 @@ class Aimed:
         self.vdd_v, self.vcm_v = spread_conditions(model, run.decisions, start=start)
         self.aim = _aims(run, reference, rng)
         self._centre_zeros()
-        self.vdiff_v = self._trip() + self._distance(model, rng)
+        self.vdiff_v = self._trip(self.conditions) + self._distance(model, rng)
 
     @property
     def conditions(self) -> dict[str, Any]:
@@ -83,12 +83,13 @@ class Aimed:
     def _centre_zeros(self) -> None:
         """Let the common mode be half the trip point, so that inn is exactly 0."""
         zero = self.aim == ZERO
+        conditions = self.conditions | {"vdd": self.vdd_v[zero]}
         for _ in range(5):
-            self.vcm_v[zero] = 0.5 * self._trip()[zero]
+            self.vcm_v[zero] = 0.5 * self._trip(conditions | {"vcm": self.vcm_v[zero]})
 
-    def _trip(self) -> Floats:
-        shifted = self._reference.offset(**self.conditions) + self._run.meant.offset_shift_v
-        return shifted + self._reference.mismatch_v(**self.conditions)
+    def _trip(self, conditions: dict[str, Any]) -> Floats:
+        shifted = self._reference.offset(**conditions) + self._run.meant.offset_shift_v
+        return shifted + self._reference.mismatch_v(**conditions)
 
     def _distance(self, model: ComparatorModel, rng: np.random.Generator) -> Floats:
         """Return the signed distance of the input from the trip point, V."""

@@ -113,7 +113,9 @@ def _maker(simulator: str) -> Callable[[Path, Path], Simulation]:
     """Return what makes a simulation in a working folder, with its logs in another."""
     if simulator == "verilator":
         verilator = find_verilator()
-        return lambda work, logs: VerilatorSimulation(verilator=verilator, work=work, logs=logs)
+        return lambda work, logs: VerilatorSimulation(
+            verilator=verilator, work=work, logs=logs, brief=True
+        )
     icarus = find_icarus()
     return lambda work, logs: IcarusSimulation(icarus=icarus, work=work, logs=logs)
 

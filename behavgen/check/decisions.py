@@ -128,7 +128,7 @@ def compare_decisions(
     )
 
 
-_TWO_STATES = ("X, and inputs or supplies that are no numbers: not in this simulator",)
+_TWO_STATES = ("X, and supplies that are no numbers: not in this simulator",)
 
 
 def _driven(simulation: Simulation, given: Given, plan: Plan) -> BatchOutcome | None:

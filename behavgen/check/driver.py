@@ -6,7 +6,7 @@ from functools import cache, cached_property
 from typing import Any
 
 import numpy as np
-from cocotb.triggers import ReadOnly, Timer
+from cocotb.triggers import ReadOnly, ReadWrite, Timer
 from cocotb.types import Logic
 
 from behavgen.check.bench_files import open_batch, read_model
@@ -126,6 +126,11 @@ class Driver:
     async def wait(self, ticks: int) -> None:
         """Let time pass."""
         await Timer(max(int(ticks), 1), "step")
+
+    async def same_instant(self) -> None:
+        """Let what was applied happen, to apply more in the same instant."""
+        await ReadWrite()
+        await ReadWrite()
 
     async def settle(self) -> None:
         """Wait until everything of this instant has happened, to read and not to drive."""

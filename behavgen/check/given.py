@@ -19,8 +19,9 @@ __all__ = ["LEAST_OVERDRIVE_V", "Given", "given_text", "own_text", "playable"]
 _STREAM = re.compile("9e3779b97f4a7c15", re.IGNORECASE)
 """The step of the reference's random stream: what has it may draw the same numbers."""
 _OPTIONAL_PINS = ("outn", "vdd", "unresolved", "enable")
-LEAST_OVERDRIVE_V = 1e-12
-"""Smaller ones are left out: a module of the user's own may round otherwise."""
+LEAST_OVERDRIVE_V = 1e-15
+"""Smaller ones are left out: some last places of a volt, 2.2e-16 V, in which a module of the
+user's own may round otherwise."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

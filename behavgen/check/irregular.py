@@ -83,18 +83,21 @@ def kinds_of(model: ComparatorModel, *, two_states: bool) -> dict[str, _Kind]:
             kinds |= {f"supply lost {name}": _lost("vdd", None, s) for name, s in _SPANS.items()}
     if pins.enable is not None:
         kinds |= {f"disabled {name}": _lost("enable", LOW, s) for name, s in _SPANS.items()}
-    return kinds if two_states else kinds | _unknown_kinds(model)
-
-
-def _unknown_kinds(model: ComparatorModel) -> dict[str, _Kind]:
-    """Return what needs X, or inputs that are no numbers: two-state simulators hang on these."""
-    kinds: dict[str, _Kind] = {
-        **_UNKNOWN_CLOCKS,
+    kinds |= {
         "input not a number at the edge": _no_number_at_edge,
         "input not a number in reset": _no_number_in_reset,
     }
     if model.aperture is not None:
         kinds["input not a number when sampled"] = _no_number_sampled
+    return kinds if two_states else kinds | _unknown_kinds(model)
+
+
+def _unknown_kinds(model: ComparatorModel) -> dict[str, _Kind]:
+    """Return what needs X, or a supply that is no number.
+
+    Verilator takes a real that is not a number for a change of itself, for ever.
+    """
+    kinds: dict[str, _Kind] = dict(_UNKNOWN_CLOCKS)
     if model.cell.pins.vdd is not None:
         kinds["supply not a number"] = _lost("vdd", float("nan"), _in_decision)
     if model.cell.pins.enable is not None:

@@ -76,8 +76,9 @@ class Away:
         phase : ndarray of int, shape (N,)
             Decisions that end before they sample hold their levels.
         """
-        moving = self.moving & (phase > self.aperture)
-        late = moving & (self.aperture >= 2)
+        disturbed = self.moving & (phase > self.aperture)
+        sampled_late = disturbed & (self.aperture >= 2)
+        moving, late = np.flatnonzero(disturbed), np.flatnonzero(sampled_late)
         apart = np.stack([0.5 * self.differential_v, -0.5 * self.differential_v], axis=1)
         level = np.repeat(wanted_v[:, None], 3, axis=1)
         level[late, 0, :2] += apart[late]
@@ -85,7 +86,7 @@ class Away:
         level[moving, 2, :2] += apart[moving] - self.common_v[moving, None]
         level[late, 1, 2] *= self.supply_factor[late]
         level[moving, 2, 2] *= self.supply_factor[moving]
-        return Moves(level_v=level, sampled_late=late, disturbed=moving)
+        return Moves(level_v=level, sampled_late=sampled_late, disturbed=disturbed)
 
 
 def draw_away(

@@ -23,7 +23,7 @@ from behavgen.check.runs import reference_of
 from behavgen.check.slices import PlayedRun
 from behavgen.check.verdict import DistributionResult, PowerResult
 from behavgen.model import ComparatorModel
-from behavgen.operating_point import delay_law
+from behavgen.operating_point import evaluate
 
 __all__ = [
     "PROBABILITY",
@@ -142,11 +142,11 @@ def _tail(model: ComparatorModel, played: PlayedRun) -> tuple[Floats, Floats]:
         return (np.zeros(len(stimulus.edge)),) * 2
     reference = reference_of(model, played.run)
     point = reference.point(stimulus.edge.shape, _condition(model, played))
-    log_node, tau_s, _ = delay_law(model.delay, point)
-    tau_ticks = np.broadcast_to(tau_s * model.cell.ticks_per_second, stimulus.edge.shape)
+    log_node_v = np.log(model.delay.node_overdrive_v[0])
+    tau_ticks = evaluate(model.delay.tau, point) * model.cell.ticks_per_second
     overdrive_v = np.abs(stimulus.trace.overdrive_v)
     known = np.log(np.maximum(overdrive_v, model.delay.floor_v))
-    below = np.where(overdrive_v > model.delay.floor_v, log_node[0] - known, 0.0)
+    below = np.where(overdrive_v > model.delay.floor_v, log_node_v - known, 0.0)
     return tau_ticks, np.asarray(tau_ticks * np.maximum(below, 0.0))
 
 

@@ -22,7 +22,16 @@ from behavgen.model import ComparatorModel, Process
 from behavgen.reference import Reference
 from behavgen.units import ZERO_CELSIUS_K
 
-__all__ = ["MODES", "TOP", "Batch", "Run", "Settings", "plan_batches", "reference_of"]
+__all__ = [
+    "FEWEST_DECISIONS",
+    "MODES",
+    "TOP",
+    "Batch",
+    "Run",
+    "Settings",
+    "plan_batches",
+    "reference_of",
+]
 
 TOP = "check_top"
 """Module that holds the instances of all runs."""

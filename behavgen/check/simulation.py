@@ -122,11 +122,18 @@ class IcarusSimulation:
 
 @dataclass(slots=True, kw_only=True)
 class VerilatorSimulation:
-    """A harness built by Verilator, fast and without X."""
+    """A harness built by Verilator, fast and without X.
+
+    Parameters
+    ----------
+    brief : bool
+        Whether so few decisions are played that a quick build matters more than speed.
+    """
 
     verilator: Verilator
     work: Path
     logs: Path
+    brief: bool = False
 
     @property
     def two_states(self) -> bool:
@@ -147,8 +154,9 @@ class VerilatorSimulation:
         """Build a program of the text under check, the harness and the top."""
         sources = [self.work / source for source in _sources(self.work, module, text, top)]
         return self.verilator.build(
-            sources, top=TOP, output=self.program, log=self.logs / "compile.log", macros=macros
-        )
+            sources, top=TOP, output=self.program, log=self.logs / "compile.log", macros=macros,
+            brief=self.brief,
+        )  # fmt: skip
 
     def simulate(self, name: str, *plusargs: str) -> Finished:
         """Simulate; the log has this name."""

@@ -14,7 +14,7 @@ import numpy.typing as npt
 from behavgen.check.aims import BALANCED, LEAST_SWEPT_V, NOISY
 from behavgen.check.effect_slices import aperture_slices, energy_slices, memory_slices
 from behavgen.check.phases import LEAST_CUT_TICKS
-from behavgen.check.runs import MODES
+from behavgen.check.runs import FEWEST_DECISIONS, MODES
 from behavgen.check.slices import PlayedRun, Slice
 from behavgen.check.verdict import Stratum
 from behavgen.model import ComparatorModel, Range
@@ -31,6 +31,10 @@ ALL_DECISIONS = 20_000
 _SMALL_V = 1e-5
 _BALANCED_V = 1e-6
 _CLOSE_TICKS = 60
+_OF_ONE_RUN = 3 * FEWEST_DECISIONS // 4
+"""Where a single run has to do, however many there are: a few hang on a tick and are left out."""
+_OF_ONE_MODE = 200
+"""Unresolved decisions: a cell of one process has one run that holds, a quarter unresolved."""
 
 
 def count_strata(model: ComparatorModel, played: Iterable[PlayedRun]) -> tuple[Stratum, ...]:
@@ -49,8 +53,9 @@ def _counted(one: Slice, runs: tuple[PlayedRun, ...]) -> Stratum:
     decisions = disagreements = 0
     for played in runs:
         mask = played.agreement.compared & one.select(played)
-        decisions += int(mask.sum())
-        disagreements += int((mask & (played.agreement.fault != 0)).sum())
+        decisions += int(np.count_nonzero(mask))
+        if played.agreement.fault.any():
+            disagreements += int(np.count_nonzero(mask & (played.agreement.fault != 0)))
     return Stratum(
         group=one.group, name=one.name, required=one.required,
         decisions=decisions, disagreements=disagreements,
@@ -102,7 +107,7 @@ def _noise_slices(model: ComparatorModel) -> Iterator[Slice]:
 def _condition_slices(model: ComparatorModel) -> Iterator[Slice]:
     box, off = model.box, model.cell.supply_off_v
     if box.temperature_k is not None:
-        yield from _range_slices("temperature", box.temperature_k, 1e-3, 400, _temperature)
+        yield from _range_slices("temperature", box.temperature_k, 1e-3, _OF_ONE_RUN, _temperature)
     if box.vdd_v is not None and model.cell.pins.vdd is not None:
         for one in _range_slices("supply", box.vdd_v, 0.0, 100, lambda p: p.stimulus.vdd_v):
             if one.name != "below" or off is None or off < box.vdd_v.low:
@@ -132,8 +137,8 @@ def _phase_slices(model: ComparatorModel) -> Iterator[Slice]:
         yield Slice("decision phase", "too short", 2000, _too_short)
         yield Slice("decision phase", "ends close to the ready", 200, _close)
         for mode, name in enumerate(MODES):
-            yield Slice("unresolved", name, 300, _unresolved_in(mode))
-    yield Slice("unresolved", "forced", 300, _forced)
+            yield Slice("unresolved", name, _OF_ONE_MODE, _unresolved_in(mode))
+    yield Slice("unresolved", "forced", _OF_ONE_MODE, _forced)
     yield Slice("reset", "returns", 10_000, lambda p: p.expected.returns)
     reset_ticks = Reference(model).trace(0.0, 0).reset_ticks
     if reset_ticks.min() >= 2 * LEAST_CUT_TICKS:
@@ -154,7 +159,7 @@ def _switch_slices(model: ComparatorModel) -> Iterator[Slice]:
     if model.memory is not None:
         switches += (("MEMORY_ON = 0", lambda p: not p.run.meant.memory_on),)
     for name, select in switches:
-        yield Slice("switch", name, 400, select)
+        yield Slice("switch", name, _OF_ONE_RUN, select)
 
 
 def _in_process(name: str) -> Callable[[PlayedRun], bool]:

@@ -233,18 +233,25 @@ def read_record(path: Path) -> Record:
     if width <= _STATE_END or len(raw) % width:
         raise ValueError(f"{path.name} is not a whole record")
     lines = raw.reshape(-1, width)
-    digits = np.where(lines[:, 1:20] == ord(" "), ord("0"), lines[:, 1:20]).astype(np.int64)
-    time = (digits - ord("0")) @ 10 ** np.arange(18, -1, -1, dtype=np.int64)
-    letters = lines[:, 20:24]
-    codes = np.full(256, ANY, dtype=np.int8)
-    codes[[ord("0"), ord("1"), ord("2"), ord("3"), ord("4"), ord("5")]] = range(6)
-    state = codes[letters]
-    for letter, code in (("x", UNKNOWN), ("z", HIGH_IMPEDANCE)):
-        state[:, :3][letters[:, :3] == ord(letter)] = code
+    time = _times(lines[:, 1:20])
+    levels, causes = np.full((2, 256), ANY, dtype=np.int8)
+    causes[ord("0") : ord("6")] = levels[ord("0") : ord("6")] = range(6)
+    levels[[ord("x"), ord("z")]] = UNKNOWN, HIGH_IMPEDANCE
+    state = levels[lines[:, 20:24]]
+    state[:, CAUSE] = causes[lines[:, 20 + CAUSE]]
     energy = _energy(lines[:, _STATE_END:-1])
-    grown = np.diff(np.nan_to_num(energy)) != 0.0
-    moved = np.append(True, grown | (state[1:] != state[:-1]).any(axis=1))
+    shown = state.view(np.uint32)[:, 0]  # a whole state as one number
+    total = energy.view(np.uint64)  # its bits: even what is no number is the same as before
+    moved = np.append(True, (total[1:] != total[:-1]) | (shown[1:] != shown[:-1]))
     return Record(time=(time - time[0])[moved], state=state[moved], energy_j=energy[moved])
+
+
+def _times(characters: npt.NDArray[np.uint8]) -> Integers:
+    """Return what nineteen decimal digits with leading blanks mean, shape (M,)."""
+    digits = (characters & 15).astype(float)  # a blank is a zero, too
+    high = digits[:, :4] @ 10.0 ** np.arange(3, -1, -1)
+    low = digits[:, 4:] @ 10.0 ** np.arange(14, -1, -1)  # below 2^53, so that it is exact
+    return high.astype(np.int64) * 10**15 + low.astype(np.int64)
 
 
 def _energy(digits: npt.NDArray[np.uint8]) -> Floats:

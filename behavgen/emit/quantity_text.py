@@ -13,11 +13,19 @@ import numpy as np
 
 from behavgen.emit.coordinates import Coordinate, coordinate_names
 from behavgen.emit.literals import real_literal
-from behavgen.emit.surface_text import CONDITIONS, FoldedSurface, fold
+from behavgen.emit.surface_text import CONDITIONS, FoldedSurface, fold, horner_text
 from behavgen.formulas.exact_math import exact_exp
 from behavgen.model import Process, Surface
 
-__all__ = ["QuantityText", "SurfaceFolder", "exponential", "fastest", "is_literal"]
+__all__ = [
+    "QuantityText",
+    "SurfaceFolder",
+    "exponential",
+    "fastest",
+    "is_literal",
+    "last_folded",
+    "left_polynomial",
+]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -66,6 +74,28 @@ class SurfaceFolder:
         """Fold a surface; see `surface_text.fold`."""
         names = coordinate_names(surface, self.processes, self.coordinates)
         return fold(name, surface, self.processes, names, target=target, lazy=lazy)
+
+
+def last_folded(
+    folder: SurfaceFolder, name: str, surface: Surface, *, target: str
+) -> tuple[FoldedSurface, str, str]:
+    """Return the folds of all but the common mode, the value, and the fastest condition it needs.
+
+    The value is an expression: one that is used once needs no variable of its own.
+    """
+    folded = folder(name, surface, target=target, lazy="vcm_v")
+    names = coordinate_names(surface, folder.processes, folder.coordinates)
+    common = "".join(name for axis, name in names.items() if axis.condition == "vcm_v")
+    varies = any(powers[-1:] > (0,) for powers in folded.coefficients)
+    value = left_polynomial(folded.coefficients, common)
+    return folded, value, "vcm_v" if varies else folded.changes_with
+
+
+def left_polynomial(coefficients: Mapping[tuple[int, ...], str], coordinate: str) -> str:
+    """Write what is left of a polynomial when all but the common mode is folded."""
+    if () in coefficients:
+        return coefficients[()]
+    return horner_text({powers[0]: text for powers, text in coefficients.items()}, coordinate)
 
 
 def fastest(folded: Iterable[FoldedSurface]) -> str:

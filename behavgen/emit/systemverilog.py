@@ -18,6 +18,7 @@ from behavgen.emit.systemverilog_conditions import (
 )
 from behavgen.emit.systemverilog_delay import delay_curve
 from behavgen.emit.systemverilog_interface import head, parameter_lines, port_lines
+from behavgen.emit.systemverilog_noise import noise_text
 from behavgen.emit.systemverilog_quantities import (
     energy_text,
     memory_text,
@@ -63,7 +64,7 @@ def module_text(model: ComparatorModel, *, header: Sequence[str]) -> str:
         parameters=parameter_lines(model),
         ports=port_lines(model.cell),
         **_cell_facts(model.cell),
-        **_effect_facts(model),
+        **_effect_facts(model, folder),
         **_delay_facts(model.delay, folder),
         **_condition_facts(model, points, quantities(model, folder)),
     )
@@ -73,13 +74,13 @@ def _cell_facts(cell: Cell) -> dict[str, object]:
     """Return pins, levels and what switches the cell off."""
     pins = cell.pins
     rising = cell.decides_on == "rising"
-    resting, deciding = ("1'b0", "1'b1") if rising else ("1'b1", "1'b0")
     outputs = [pin for pin in (pins.outp, pins.outn) if pin is not None]
     return {
         "pins": pins,
         "outputs": outputs,
-        "resting": resting,
-        "deciding": deciding,
+        "resting": "1'b0" if rising else "1'b1",
+        "deciding_step": "2'b01" if rising else "2'b10",
+        "resetting_step": "2'b10" if rising else "2'b01",
         "holds": cell.in_reset == "hold",
         "reset_level": _LEVELS[cell.in_reset],
         "supply_off": None if cell.supply_off_v is None else real_literal(cell.supply_off_v),
@@ -102,7 +103,7 @@ def _is_on(cell: Cell) -> str:
     return " && ".join(parts)
 
 
-def _effect_facts(model: ComparatorModel) -> dict[str, object]:
+def _effect_facts(model: ComparatorModel, folder: SurfaceFolder) -> dict[str, object]:
     """Return which effects there are."""
     pins = model.cell.pins
     components = () if model.mismatch is None else model.mismatch.components
@@ -114,7 +115,7 @@ def _effect_facts(model: ComparatorModel) -> dict[str, object]:
         "offset": model.offset is not None,
         "mismatch": bool(components),
         "mismatch_names": [f"mismatch{k}_z" for k in range(len(components))],
-        "noise": model.noise is not None,
+        "noise": None if model.noise is None else noise_text(model.noise, folder),
         "reset": "reset" in surfaces_of(model),
         "memory": None if model.memory is None else memory_text(model.memory),
         "aperture": aperture,
@@ -151,7 +152,6 @@ def _condition_facts(
         follower(name, points, found, warned.get(name)) for name in CONDITIONS
     )
     values = process_values(points, warned.values(), found)
-    finishing = [line for one in found for lines in one.finish.values() for line in lines]
     fixed = supply.matters and model.cell.pins.vdd is None
     return {
         "constants": follower("", points, found, None).paragraphs,
@@ -162,7 +162,6 @@ def _condition_facts(
         "declarations": declarations(points, values, found),
         "processes": process_branches(model.processes, values),
         "known_processes": string_literal(", ".join(f"{p.code} {p.name}" for p in model.processes)),
-        "sigma_on_demand": any("sigma_known" in line for line in finishing),
         "needs_exact_exp": model.noise is not None or model.memory is not None,
     }
 

@@ -8,20 +8,27 @@ which the distances of the nodes are numbers.
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 from behavgen.emit.coordinates import coordinate_names
 from behavgen.emit.literals import real_literal
-from behavgen.emit.quantity_text import QuantityText, SurfaceFolder, exponential, fastest
-from behavgen.emit.surface_text import FoldedSurface, horner_text
+from behavgen.emit.quantity_text import (
+    QuantityText,
+    SurfaceFolder,
+    exponential,
+    fastest,
+    left_polynomial,
+)
+from behavgen.emit.surface_text import FoldedSurface
 from behavgen.emit.systemverilog_conditions import wrapped
 from behavgen.model import DelayEffect
 from behavgen.units import format_si
 
 __all__ = ["DelayCurveText", "SegmentText", "delay_curve", "delay_quantities"]
 
-_UNDO_CURVE = ("segment_known = '0;", "tail_known = 1'b0;")
+_UNDO_CURVE = ("segment_known = '0;",)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -67,7 +74,7 @@ def delay_curve(effect: DelayEffect, folder: SurfaceFolder) -> DelayCurveText:
     names = coordinate_names(effect.tau, folder.processes, folder.coordinates)
     common = "".join(name for axis, name in names.items() if axis.condition == "vcm_v")
     tau_s, *node_s = (
-        exponential("$exp", _left_polynomial(folded.coefficients, common))
+        exponential("$exp", left_polynomial(folded.coefficients, common))
         for folded in _curve_folds(effect, folder)
     )
     return DelayCurveText(
@@ -83,7 +90,7 @@ def _segment(
     k: int, overdrive_v: Sequence[float], tau_s: str, node_s: Sequence[str]
 ) -> SegmentText:
     """Return the segment that ends at node `k`; see `formulas.node_law` for the slopes."""
-    width = [math.log(high / low) for low, high in zip(overdrive_v, overdrive_v[1:], strict=False)]
+    width = [math.log(high / low) for low, high in pairwise(overdrive_v)]
     before, here = (width[k - 2] if k > 1 else 0.0), width[k - 1]
     after = width[k] if k < len(width) else 0.0
     lines = [f"begin_s = {node_s[k - 1]};", f"end_s = {node_s[k]};"]
@@ -150,10 +157,3 @@ def _curve_folds(effect: DelayEffect, folder: SurfaceFolder) -> tuple[FoldedSurf
         folder(name, surface, target=f"{name}_ln", lazy="vcm_v")
         for name, surface in surfaces.items()
     )
-
-
-def _left_polynomial(coefficients: Mapping[tuple[int, ...], str], coordinate: str) -> str:
-    """Write what is left of a polynomial when all but the common mode is folded."""
-    if () in coefficients:
-        return coefficients[()]
-    return horner_text({powers[0]: text for powers, text in coefficients.items()}, coordinate)

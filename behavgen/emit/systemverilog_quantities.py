@@ -11,10 +11,11 @@ from behavgen.emit.quantity_text import (
     SurfaceFolder,
     exponential,
     fastest,
-    is_literal,
+    last_folded,
 )
 from behavgen.emit.surface_text import FoldedSurface
 from behavgen.emit.systemverilog_delay import delay_quantities
+from behavgen.emit.systemverilog_noise import noise_quantity
 from behavgen.formulas.memory import LONGEST_RESET_TAUS
 from behavgen.model import ComparatorModel, EnergyEffect, MemoryEffect, Surface
 
@@ -124,7 +125,7 @@ def quantities(model: ComparatorModel, folder: SurfaceFolder) -> tuple[QuantityT
     if "aperture" in surfaces:
         found.append(_aperture(surfaces["aperture"], folder))
     if model.noise is not None:
-        found.append(_noise(model.noise.surface, folder))
+        found.append(noise_quantity(model.noise, folder))
     if model.delay is not None:
         found.extend(delay_quantities(model.delay, folder))
     if "reset" in surfaces:
@@ -135,11 +136,11 @@ def quantities(model: ComparatorModel, folder: SurfaceFolder) -> tuple[QuantityT
 
 
 def _offset(surface: Surface, folder: SurfaceFolder) -> QuantityText:
-    offset = folder("offset", surface, target="offset_v")
+    offset, offset_v, condition = last_folded(folder, "offset", surface, target="offset_v")
     return QuantityText(
         comment="Offset: the trip point in V",
         folded=(offset,),
-        finish={offset.changes_with: (f"trip_v = {offset.value} + OFFSET_SHIFT_V;",)},
+        finish={condition: (f"trip_v = ({offset_v}) + OFFSET_SHIFT_V;",)},
     )
 
 
@@ -162,12 +163,14 @@ def _memory(effect: MemoryEffect, folder: SurfaceFolder) -> QuantityText:
     folds: list[FoldedSurface] = []
     finish: dict[str, tuple[str, ...]] = {}
     for part in _memory_parts(effect):
-        one = folder(part.stem, part.surface, target=f"{part.stem}_ln")
+        one, value, condition = last_folded(
+            folder, part.stem, part.surface, target=f"{part.stem}_ln"
+        )
         folds.append(one)
-        lines = [f"{part.variable} = {exponential('exact_exp', one.value)};"]
-        if one.changes_with in ("vdd_v", "vcm_v"):
+        lines = [f"{part.variable} = {exponential('exact_exp', value)};"]
+        if condition in ("vdd_v", "vcm_v"):
             lines += [*([f"{part.known} = 1'b0;"] if part.known else []), "shift_ticks = -1.0;"]
-        finish[one.changes_with] = tuple(dict.fromkeys([*finish.get(one.changes_with, ()), *lines]))
+        finish[condition] = tuple(dict.fromkeys([*finish.get(condition, ()), *lines]))
     return QuantityText(
         comment="Memory: ln of the shifts in V and of their time constants in s",
         folded=tuple(folds),
@@ -177,58 +180,45 @@ def _memory(effect: MemoryEffect, folder: SurfaceFolder) -> QuantityText:
 
 
 def _aperture(surface: Surface, folder: SurfaceFolder) -> QuantityText:
-    centre = folder("aperture", surface, target="aperture_s")
-    ticks = f"$floor({centre.value} * TICKS_PER_S + 0.5)"
-    later = f"DELAY_ON != 0 && {centre.value} > 0.0"
+    centre, centre_s, condition = last_folded(folder, "aperture", surface, target="aperture_s")
+    ticks = f"$floor(({centre_s}) * TICKS_PER_S + 0.5)"
     return QuantityText(
-        comment="Aperture: its centre in s after the decision edge",
+        comment="Aperture: its centre in ticks after the decision edge, never before",
         folded=(centre,),
-        finish={centre.changes_with: (f"aperture_ticks = {later} ? {ticks} : 0.0;",)},
-    )
-
-
-def _noise(surface: Surface, folder: SurfaceFolder) -> QuantityText:
-    sigma = folder("noise", surface, target="noise_ln")
-    if is_literal(sigma.value):
-        finish = (
-            f"sigma_v = {exponential('exact_exp', sigma.value)};",
-            "noise_reach_v = noise_on != 0 ? CERTAIN_SIGMAS * sigma_v : 0.0;",
-        )
-    else:
-        finish = (
-            "noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;",
-            "sigma_known = 1'b0;",
-        )
-    return QuantityText(
-        comment="Noise: ln of its sigma in V, and overdrives from which it need not be known",
-        folded=(sigma,),
-        finish={sigma.changes_with: finish},
+        finish={
+            condition: (
+                f"aperture_ticks = DELAY_ON != 0 ? {ticks} : 0.0;",
+                "if (aperture_ticks < 0.0) aperture_ticks = 0.0;",
+            )
+        },
     )
 
 
 def _reset(surface: Surface, folder: SurfaceFolder) -> QuantityText:
-    reset = folder("reset", surface, target="reset_ln")
-    ticks = f"$floor({exponential('$exp', reset.value)} * TICKS_PER_S + 0.5)"
+    reset, reset_ln, condition = last_folded(folder, "reset", surface, target="reset_ln")
+    ticks = f"$floor({exponential('$exp', reset_ln)} * TICKS_PER_S + 0.5)"
     return QuantityText(
         comment="Reset: ln of its delay in s",
         folded=(reset,),
-        finish={reset.changes_with: (f"reset_ticks = DELAY_ON != 0 ? {ticks} : 0.0;",)},
+        finish={condition: (f"reset_ticks = DELAY_ON != 0 ? {ticks} : 0.0;",)},
     )
 
 
 def _energy(effect: EnergyEffect, folder: SurfaceFolder) -> QuantityText:
-    fixed = folder("energy_fixed", effect.fixed, target="energy_fixed_ln")
-    folds = {"energy_fixed_j": fixed}
+    parts = {"energy_fixed_j": ("energy_fixed", effect.fixed)}
     if effect.rise is not None:
-        folds["energy_rise"] = folder("energy_rise", effect.rise, target="energy_rise_ln")
+        parts["energy_rise"] = ("energy_rise", effect.rise)
+    folds: list[FoldedSurface] = []
     finish: dict[str, tuple[str, ...]] = {}
-    for variable, fold in folds.items():
-        line = f"{variable} = {exponential('$exp', fold.value)};"
-        finish[fold.changes_with] = (*finish.get(fold.changes_with, ()), line)
+    for variable, (name, surface) in parts.items():
+        fold, value, condition = last_folded(folder, name, surface, target=f"{name}_ln")
+        folds.append(fold)
+        line = f"{variable} = {exponential('$exp', value)};"
+        finish[condition] = (*finish.get(condition, ()), line)
     unit = "" if effect.rise is None else f", and of its rise in {effect.rise.unit}"
     return QuantityText(
         comment=f"Energy: ln of its fixed part in J{unit}",
-        folded=tuple(folds.values()),
+        folded=tuple(folds),
         finish=finish,
     )
 

@@ -66,7 +66,10 @@ def signs_before(signs_after: Signs, first: int) -> Signs:
     distance = 1
     while distance < left.shape[1] and not (left[0] == left[1:]).all():
         composed = left.copy()
-        composed[:, distance:] = np.choose(left[:, :-distance], left[:, distance:])
+        found, after = left[:, :-distance], left[:, distance:]
+        composed[:, distance:] = np.where(
+            found == 0, after[0], np.where(found == 1, after[1], after[2])
+        )
         left, distance = composed, 2 * distance
-    found = np.append(first, left[first + 1, :-1] - 1)
-    return found.astype(np.int8)
+    signs = np.append(first, left[first + 1, :-1] - 1)
+    return signs.astype(np.int8)

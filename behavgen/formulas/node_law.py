@@ -61,14 +61,16 @@ def _limited(slope: Floats, secant: Floats) -> Floats:
 
 
 def _hermite(log_node: Floats, tau_s: Floats, node_s: Floats, slope: Floats, x: Floats) -> Floats:
-    tail = node_s[..., 0] + tau_s * (log_node[0] - x)
+    tail: Floats = node_s[..., 0] + tau_s * (log_node[0] - x)
     if len(log_node) == 1:
         return np.where(x < log_node[0], tail, node_s[..., 0])
+    above = np.nonzero(~(x < log_node[0]))
+    x = x[above]
     k = np.clip(np.searchsorted(log_node, x, side="right") - 1, 0, len(log_node) - 2)
 
     def at(values: Floats, index: npt.NDArray[np.intp]) -> Floats:
-        full = np.broadcast_to(values, (*x.shape, len(log_node)))
-        return np.take_along_axis(full, index[..., None], axis=-1)[..., 0]
+        full = np.broadcast_to(values, (*tail.shape, len(log_node)))
+        return full[(*above, index)]
 
     h = log_node[k + 1] - log_node[k]
     s = np.minimum((x - log_node[k]) / h, 1.0)
@@ -78,10 +80,17 @@ def _hermite(log_node: Floats, tau_s: Floats, node_s: Floats, slope: Floats, x: 
         + at(node_s, k + 1) * s * s * (3.0 - 2.0 * s)
         + h * s * r * (at(slope, k) * r - at(slope, k + 1) * s)
     )
-    return np.where(x < log_node[0], tail, curve)
+    tail[above] = curve
+    return tail
 
 
-def node_law_delay(overdrive_v: Floats, log_node: Floats, tau_s: Floats, node_s: Floats) -> Floats:
+def node_law_delay(
+    overdrive_v: Floats,
+    log_node: Floats,
+    tau_s: Floats,
+    node_s: Floats,
+    slope_s: Floats | None = None,
+) -> Floats:
     """Return the delay at each overdrive.
 
     Parameters
@@ -92,12 +101,14 @@ def node_law_delay(overdrive_v: Floats, log_node: Floats, tau_s: Floats, node_s:
         ln of the nodes' overdrives in V, rising.
     tau_s : ndarray, shape (N,) or ()
     node_s : ndarray, shape (N, K) or (K,)
+    slope_s : ndarray or None
+        From `node_slopes`, where they are known already.
 
     Returns
     -------
     ndarray, shape (N,), in s
     """
-    slope = node_slopes(log_node, tau_s, node_s)
+    slope = node_slopes(log_node, tau_s, node_s) if slope_s is None else slope_s
     return _hermite(log_node, tau_s, node_s, slope, np.log(overdrive_v))
 
 

@@ -43,6 +43,16 @@ async def a_clock_from_x_to_the_reset_level_powers_up(top) -> None:
     await cell.settle()
     cell.must_show(cell.reset_state or cell.unknown, "a tick after the clock is known again")
     await cell.wait(1)
+    cell.clock("X")
+    await cell.wait(20)
+    cell.release()
+    await cell.same_instant()
+    cell.edge()
+    for _ in range(2):
+        await cell.wait(1)
+        await cell.settle()
+        cell.must_show(cell.unknown, "an edge in the instant of power-up leaves no reset state")
+    await cell.wait(1)
 
 
 @cocotb.test()

@@ -2,30 +2,38 @@
   // -- Clock: only a clean step from one level to the other counts ------------------------------
 
   always @({{ pins.clk }}) begin
-    if ({{ pins.clk }} === {{ deciding }} && clk_level === {{ resting }}) begin
-      decision_count = decision_count + 64'd1;
+    case ({clk_level, {{ pins.clk }}})
+      {{ deciding_step }}: begin
+        decision_count = decision_count + 64'd1;
 {% if is_on %}
-      if (is_on) begin
+        if (is_on) begin
+{% filter indent(4, first=true) %}
+{% include "systemverilog/decision_edge.sv" %}
+{% endfilter %}
+        end
+{% else %}
 {% filter indent(2, first=true) %}
 {% include "systemverilog/decision_edge.sv" %}
 {% endfilter %}
-      end
-{% else %}
-{% include "systemverilog/decision_edge.sv" %}
 {% endif %}
-    end else if ({{ pins.clk }} === {{ resting }} && clk_level === {{ deciding }}) begin
+      end
+      {{ resetting_step }}: begin
 {% if is_on %}
-      if (is_on) begin
+        if (is_on) begin
+{% filter indent(4, first=true) %}
+{% include "systemverilog/reset_edge.sv" %}
+{% endfilter %}
+        end
+{% else %}
 {% filter indent(2, first=true) %}
 {% include "systemverilog/reset_edge.sv" %}
 {% endfilter %}
-      end
-{% else %}
-{% include "systemverilog/reset_edge.sv" %}
 {% endif %}
-    end else if ({{ pins.clk }} !== clk_level) begin  // else it came back within the same instant
-      {{ "if (is_on) " if is_on }}unclean_step;
-    end
+      end
+      default: begin
+        if ({{ "is_on && " if is_on }}{{ pins.clk }} !== clk_level) unclean_step;  // else it came back at once
+      end
+    endcase
     clk_level = {{ pins.clk }};
   end
 

@@ -18,8 +18,8 @@
       vcm_step_end = vcm_step + 1.0;
       vcm_v = vcm_step / STEPS_PER_V;
 {% if common_mode.warned %}
-      if (vcm_v < {{ common_mode.warned.low }} - 1.0 / STEPS_PER_V
-          || vcm_v > {{ common_mode.warned.high }} + 1.0 / STEPS_PER_V) begin
+      if (vcm_v < {{ common_mode.warned.low }} - 1.0 / STEPS_PER_V ? 1'b1
+          : vcm_v > {{ common_mode.warned.high }} + 1.0 / STEPS_PER_V) begin
         common_mode_warnings = common_mode_warnings + 1;
         if (common_mode_warnings == 1) begin
           warn($sformatf("common mode %g V is outside %g V to %g V and clamped",
@@ -93,22 +93,20 @@
 
   task decide;
 {% include "systemverilog/weighing.sv" %}
-{% if aperture %}
-    if (decision_state == DECIDING) begin
-      #(delay_ticks - aperture_ticks);
-      if (void_waits == 0) show_decision;
-      else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
-      else void_waits = void_waits - 1;
-    end
-{% endif %}
   endtask
+
+  // Whether FORCE_UNRESOLVED_EVERY falls on a decision
+  function automatic bit is_forced(input logic [63:0] number);
+    if (FORCE_UNRESOLVED_EVERY > 0) return number % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0;
+    else return 1'b0;
+  endfunction
 {% if noise %}
 
   task add_noise;
-{% if sigma_on_demand %}
+{% if noise.sigma_v %}
     if (!sigma_known) begin
-      sigma_v = exact_exp(noise_ln);
-      noise_reach_v = CERTAIN_SIGMAS * sigma_v;
+      sigma_v = {{ noise.sigma_v }};
+      noise_reach_v = noise_on != 0 ? CERTAIN_SIGMAS * sigma_v : 0.0;
       sigma_known = 1'b1;
     end
     if (magnitude_v < noise_reach_v) begin

@@ -7,7 +7,8 @@
 {% endif %}
 {% if common_mode.matters %}
       vcm_steps = ({{ pins.inp }} + {{ pins.inn }}) * (0.5 * STEPS_PER_V) + 0.5;
-      if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step_end)) take_conditions;
+      if (vcm_steps < vcm_step) take_conditions;
+      else if (!(vcm_steps < vcm_step_end)) take_conditions;  // or it is not a number
 {% else %}
       input_lost = ({{ pins.inp }} - {{ pins.inp }}) + ({{ pins.inn }} - {{ pins.inn }}) != 0.0;
       if (input_lost) lose_input;
@@ -18,7 +19,7 @@
       if (!input_lost) begin
 {% if memory %}
         memory_v = 0.0;
-        if (MEMORY_ON != 0 && decision_state == DECIDED) begin
+        if (MEMORY_ON != 0 ? decision_state == DECIDED : 1'b0) begin
           if (edge_time - reset_time != shift_ticks) find_shift;
           memory_v = overdrive_v > 0.0 ? -shift_v : shift_v;
         end

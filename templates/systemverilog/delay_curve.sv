@@ -8,7 +8,7 @@
   task build_tail;
     first_s = {{ curve.node_s[0] }};
     tau_s = {{ curve.tau_s }};
-    tail_known = 1'b1;
+    segment_known[TAIL] = 1'b1;
   endtask
 
   // Of one segment, in s: delays at its nodes, slopes of the chords from node to node, of the curve

@@ -100,7 +100,7 @@
 {% if needs_exact_exp %}
 
   // exp(k ln 2 + r) = 2^k (1 + 2 r / (r coth(r/2) - r)), r coth(r/2) = 2 + r^2/6 - r^4/360 + ...
-  function automatic real exact_exp(input real arg);
+  function real exact_exp(input real arg);
     real power, rest, square;
     power = (arg * 1.4426950408889634 + ROUND) - ROUND;
     rest = (arg - power * 0.6931471803691238) - power * 1.9082149292705877e-10;

@@ -17,11 +17,7 @@
   endtask
 
   task take_reset_state;
-    returning = 1'b0;
-{% for output in outputs %}
-    {{ output }} = {{ reset_level }};
-{% endfor %}
-    x_cause = 0;
+{% include "systemverilog/reset_state.sv" %}
   endtask
 
   task call_off_return;

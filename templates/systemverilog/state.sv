@@ -76,8 +76,9 @@
   localparam real CERTAIN_SIGMAS = 8.3;     // no draw reaches it, so that none is made beyond
   real sigma_v = 0.0;                 // noise of one decision
   real noise_reach_v = 0.0;           // overdrives from which noise changes no bit
-{% if sigma_on_demand %}
-  bit sigma_known = 1'b0;             // if not, the reach is only an upper bound
+{% if noise.sigma_v %}
+  localparam real WIDEST_REACH_V = {{ noise.widest_v }};  // under any conditions
+  bit sigma_known = 1'b0;
 {% endif %}
 {% endif %}
 {% if memory %}
@@ -107,10 +108,10 @@
   localparam int LAST = {{ nodes[-1].number }};      // node
   // Segment k ends at node k: delay = cubic_0 + x (cubic_1 + x (cubic_2 + x cubic_3))
   real cubic_0[1:LAST], cubic_1[1:LAST], cubic_2[1:LAST], cubic_3[1:LAST];
-  bit [LAST:1] segment_known = '0;
+  localparam int TAIL = 0;          // the line before the first node counts as a segment
+  bit [LAST:0] segment_known = '0;
   real first_s = 0.0;           // delay at the first node
   real tau_s = 0.0;             // regeneration time constant
-  bit tail_known = 1'b0;
   real x_ln = 0.0;              // ln of an overdrive over that at the start of its segment
 {% endif %}
 {% if reset %}

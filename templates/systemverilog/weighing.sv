@@ -3,7 +3,7 @@
     magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
 {% endif %}
 {% if noise %}
-    if (magnitude_v < noise_reach_v) add_noise;
+    if (magnitude_v < {{ "WIDEST_REACH_V" if noise.sigma_v else "noise_reach_v" }}) add_noise;
 {% endif %}
 {% if delay == "curve" %}
     if (DELAY_ON != 0) begin
@@ -20,7 +20,7 @@
 {% endif %}
 {% endfor %}
       end else begin
-        if (!tail_known) build_tail;
+        if (!segment_known[TAIL]) build_tail;
         x_ln = $ln((magnitude_v < FLOOR_V ? FLOOR_V : magnitude_v) / {{ nodes[0].volts }});
         delay_s = first_s - tau_s * x_ln;
       end
@@ -37,21 +37,25 @@
     end
 {% endif %}
 {% if aperture %}
-    if (magnitude_v <= LARGEST_V) begin
-      decision_state = DECIDING;
-    end else begin  // an input is infinite or not a number
+    if (!(magnitude_v <= LARGEST_V)) begin  // an input is infinite or not a number
       decision_state = IDLE;
       lose_input;
+    end else if (FORCE_UNRESOLVED_EVERY > 0 ? is_forced(decision_count) : 1'b0) begin
+      decision_state = FORCED;
+    end else begin
+      decision_state = DECIDING;
+      #(delay_ticks - aperture_ticks);
+      if (void_waits == 0) begin  // show_decision, without the cost of its call
+{% filter indent(4, first=true) %}
+{% include "systemverilog/shown.sv" %}
+{% endfilter %}
+      end else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
+      else void_waits = void_waits - 1;
     end
 {% else %}
     decision_state = DECIDING;
-{% endif %}
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_state == DECIDING
-          && decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) begin
-        decision_state = FORCED;
-{% if not aperture %}
-        void_waits = void_waits + 1;
-{% endif %}
-      end
+    if (FORCE_UNRESOLVED_EVERY > 0 ? is_forced(decision_count) : 1'b0) begin
+      decision_state = FORCED;
+      void_waits = void_waits + 1;
     end
+{% endif %}

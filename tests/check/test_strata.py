@@ -1,5 +1,7 @@
 """Strata count what they name; a slice that was not looked at is short."""
 
+from dataclasses import fields, is_dataclass, replace
+
 import numpy as np
 import pytest
 
@@ -9,6 +11,8 @@ from behavgen.check.slices import PlayedRun
 from behavgen.check.stimulus import make_stimulus
 from behavgen.check.strata import count_strata
 from behavgen.check.waveform import Record, expect
+from behavgen.model import Process
+from behavgen.surface import Surface
 from tests.example_models import complete_model, full_model, minimal_model, renamed_pins_model
 
 EMPTY = Record(
@@ -36,16 +40,34 @@ def ideal(expected):
     return Record(time=times.ravel()[changed], state=states[changed], energy_j=energy[changed])
 
 
-def played(model, runs, record=ideal):
+def played(model, runs, record=ideal, seed=1):
     for run in runs:
-        stimulus = make_stimulus(model, run, seed=1)
+        stimulus = make_stimulus(model, run, seed=seed)
         expected = expect(model, run, stimulus)
         agreement = compare(expected, record(expected))
         yield PlayedRun(run=run, stimulus=stimulus, expected=expected, agreement=agreement)
 
 
-def runs_of(model):
-    return [run for batch in plan_batches(model) for run in batch.runs]
+def runs_of(model, seed=1):
+    return [run for batch in plan_batches(model, seed=seed) for run in batch.runs]
+
+
+def in_processes(value, processes):
+    """Return a model, or a part of it, whose first process is there several times."""
+    if isinstance(value, Surface):
+        first = value.variants[0]
+        return replace(value, variants=tuple(replace(first, process=p.name) for p in processes))
+    if isinstance(value, tuple):
+        return tuple(in_processes(one, processes) for one in value)
+    if is_dataclass(value):
+        parts = {f.name: in_processes(getattr(value, f.name), processes) for f in fields(value)}
+        return replace(value, **parts)
+    return value
+
+
+def in_twelve_processes(model):
+    processes = tuple(Process(name=f"p{code}", code=code) for code in range(12))
+    return replace(in_processes(model, processes), processes=processes)
 
 
 @pytest.mark.parametrize("model", MODELS, ids=lambda m: f"{m.cell.name} {m.cell.in_reset}")
@@ -53,6 +75,17 @@ def test_a_whole_plan_leaves_no_stratum_short(model):
     strata = count_strata(model, played(model, runs_of(model)))
     assert [stratum for stratum in strata if stratum.short] == []
     assert sum(stratum.disagreements for stratum in strata) == 0
+
+
+@pytest.mark.parametrize("seed", [2, 3])
+@pytest.mark.parametrize(
+    "model", [minimal_model(), complete_model(), in_twelve_processes(complete_model())],
+    ids=["one process", "two", "twelve"],
+)  # fmt: skip
+def test_no_stratum_is_filled_by_luck(model, seed):
+    for stratum in count_strata(model, played(model, runs_of(model, seed), seed=seed)):
+        placed_one_by_one = stratum.name == "draws beyond 6.7 sigma"
+        assert stratum.decisions >= stratum.required * (1.0 if placed_one_by_one else 1.15)
 
 
 def test_a_run_left_out_leaves_strata_short():

@@ -1,4 +1,4 @@
-"""Two instances side by side, in Icarus and in Verilator: the same decisions to the last place."""
+"""In Verilator: the same decisions to the last place, and the whole check of a small cell."""
 
 from pathlib import Path
 
@@ -10,11 +10,15 @@ from behavgen.check.runs import TOP, plan_batches
 from behavgen.check.simulation import play
 from behavgen.check.stimulus import make_stimulus
 from behavgen.check.waveform import expect, read_record
+from behavgen.demo import copy_demo
+from behavgen.fit.fit import fit
+from behavgen.project import load_project
 from behavgen.resources import sim_folder
 from behavgen.simulators.icarus import find_icarus
 from behavgen.simulators.process import run_logged
 from behavgen.simulators.verilator import find_verilator
-from tests.check.checking import emitted_text
+from behavgen.tables.read import read_tables
+from tests.check.checking import checked, emitted_text, failures
 from tests.example_models import full_model
 
 MODEL = full_model()
@@ -71,3 +75,18 @@ def test_instances_side_by_side_agree_in_every_decision(simulate, prepared):
         assert not found.fault.any()
         assert not found.delay_error.any()
         assert found.compared.sum() > 1000
+
+
+@pytest.mark.slow
+def test_a_small_cell_passes_the_whole_check_in_verilator(tmp_path):
+    project = load_project(copy_demo(tmp_path / "demo"))
+    report = checked(
+        fit(read_tables(project, "slicer")), tmp_path,
+        questions=("decisions", "tables", "distribution"), wishes={"simulator": "verilator"},
+    )  # fmt: skip
+    assert failures(report) == []
+    assert report.passed
+    assert report.simulator.startswith("Verilator ")
+    assert report.decisions >= 20_000
+    assert report.closure
+    assert report.distribution

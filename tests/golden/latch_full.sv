@@ -153,21 +153,21 @@ module latch_full #(
   localparam real CERTAIN_SIGMAS = 8.3;     // no draw reaches it, so that none is made beyond
   real sigma_v = 0.0;                 // noise of one decision
   real noise_reach_v = 0.0;           // overdrives from which noise changes no bit
-  bit sigma_known = 1'b0;             // if not, the reach is only an upper bound
+  localparam real WIDEST_REACH_V = 0.006134;  // under any conditions
+  bit sigma_known = 1'b0;
   real delay_ticks = 1.0;             // from the decision edge to the outputs
   localparam int LAST = 3;      // node
-  real gap[1:LAST];             // ln of the overdrive at a node over that at the node before
   // Segment k ends at node k: delay = cubic_0 + x (cubic_1 + x (cubic_2 + x cubic_3))
   real cubic_0[1:LAST], cubic_1[1:LAST], cubic_2[1:LAST], cubic_3[1:LAST];
-  bit [LAST:1] segment_known = '0;
+  localparam int TAIL = 0;          // the line before the first node counts as a segment
+  bit [LAST:0] segment_known = '0;
   real first_s = 0.0;           // delay at the first node
   real tau_s = 0.0;             // regeneration time constant
-  bit tail_known = 1'b0;
   real x_ln = 0.0;              // ln of an overdrive over that at the start of its segment
   real reset_ticks = 0.0;             // reset delay
   real x_t, x_v, x_c, x_t_low, x_t_high, x_v_low, x_v_high, x_c_low, x_c_high;
-  real offset_t0v0c0, offset_v0c0, offset_v1c0, offset_c0, offset_c1, offset_v;
-  real noise_t0v0c0, noise_v0c0, noise_c0, noise_ln;
+  real offset_t0v0c0, offset_v0c0, offset_v1c0, offset_c0, offset_c1;
+  real noise_t0v0c0, noise_v0c0, noise_c0;
   real tau_t0v0c0, tau_v0c0, tau_v1c0, tau_c0, tau_c1;
   real node0_t0v0c0, node0_v0c0, node0_v1c0, node0_c0, node0_c1;
   real node1_t0v0c0, node1_v0c0, node1_v1c0, node1_c0, node1_c1;
@@ -194,7 +194,6 @@ module latch_full #(
     take_keys;
     select_process;
     fold_temperature;
-    lay_out_curve;
     clk_level = clk;
     is_on = vdd >= SUPPLY_OFF_V;
     if (clk_level === 1'b0 && is_on) power_up;
@@ -246,46 +245,55 @@ module latch_full #(
   // -- Clock: only a clean step from one level to the other counts ------------------------------
 
   always @(clk) begin
-    if (clk === 1'b1 && clk_level === 1'b0) begin
-      decision_count = decision_count + 64'd1;
-      if (is_on) begin
-        edge_time = $realtime;
-        if (returning) begin
-          call_off_return;
-          if (is_due(reset_time + return_ticks)) take_reset_state;
+    case ({clk_level, clk})
+      2'b01: begin
+        decision_count = decision_count + 64'd1;
+        if (is_on) begin
+          edge_time = $realtime;
+          if (returning) begin
+            call_off_return;
+            if (is_due(reset_time + return_ticks)) take_reset_state;
+          end
+          vcm_steps = (inp + inn) * (0.5 * STEPS_PER_V) + 0.5;
+          if (vcm_steps < vcm_step) take_conditions;
+          else if (!(vcm_steps < vcm_step_end)) take_conditions;  // or it is not a number
+          if (!input_lost) begin
+            decide;
+            fork : show_when_ready
+              begin
+                #(delay_ticks);
+                if (void_waits == 0) show_decision;
+                else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
+                else void_waits = void_waits - 1;
+              end
+            join_none
+          end
         end
-        vcm_steps = (inp + inn) * (0.5 * STEPS_PER_V) + 0.5;
-        if (!(vcm_steps >= vcm_step && vcm_steps < vcm_step_end)) take_conditions;
-        if (!input_lost) begin
-          decide;
-          fork : show_when_ready
+      end
+      2'b10: begin
+        if (is_on) begin
+          reset_time = $realtime;
+          return_ticks = reset_ticks;
+          if (decision_state != DECIDED) end_undecided;
+          returning = 1'b1;
+          fork : return_when_due
             begin
-              #(delay_ticks);
-              if (void_waits == 0) show_decision;
-              else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
+              #(return_ticks);
+              if (void_waits == 0) begin  // take_reset_state, without the cost of its call
+                returning = 1'b0;
+                outp = 1'b1;
+                outn = 1'b1;
+                x_cause = 0;
+              end else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
               else void_waits = void_waits - 1;
             end
           join_none
         end
       end
-    end else if (clk === 1'b0 && clk_level === 1'b1) begin
-      if (is_on) begin
-        reset_time = $realtime;
-        return_ticks = reset_ticks;
-        if (decision_state != DECIDED) end_undecided;
-        returning = 1'b1;
-        fork : return_when_due
-          begin
-            #(return_ticks);
-            if (void_waits == 0) take_reset_state;
-            else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
-            else void_waits = void_waits - 1;
-          end
-        join_none
+      default: begin
+        if (is_on && clk !== clk_level) unclean_step;  // else it came back at once
       end
-    end else if (clk !== clk_level) begin  // else it came back within the same instant
-      if (is_on) unclean_step;
-    end
+    endcase
     clk_level = clk;
   end
 
@@ -314,8 +322,8 @@ module latch_full #(
       vcm_step = $floor(vcm_steps);
       vcm_step_end = vcm_step + 1.0;
       vcm_v = vcm_step / STEPS_PER_V;
-      if (vcm_v < x_c_low - 1.0 / STEPS_PER_V
-          || vcm_v > x_c_high + 1.0 / STEPS_PER_V) begin
+      if (vcm_v < x_c_low - 1.0 / STEPS_PER_V ? 1'b1
+          : vcm_v > x_c_high + 1.0 / STEPS_PER_V) begin
         common_mode_warnings = common_mode_warnings + 1;
         if (common_mode_warnings == 1) begin
           warn($sformatf("common mode %g V is outside %g V to %g V and clamped",
@@ -326,20 +334,16 @@ module latch_full #(
       clamped = vcm_v > x_c_low ? (vcm_v < x_c_high ? vcm_v : x_c_high) : x_c_low;
       x_c = (1.0 / (clamped * clamped) - 2.78) / 1.22;
       // Offset: the trip point in V
-      offset_v = (-4e-5 * x_c + offset_c1) * x_c + offset_c0;
-      trip_v = offset_v + OFFSET_SHIFT_V;
+      trip_v = ((-4e-5 * x_c + offset_c1) * x_c + offset_c0) + OFFSET_SHIFT_V;
       // Mismatch: components in V per sigma, and this instance's offset from the nominal
       if (mismatch_on != 0) begin
         mismatch0_v = 0.0003 * x_c + mismatch0_c0;
         mismatch_v = mismatch0_v * mismatch0_z + 0.0008 * mismatch1_z;
       end
-      // Noise: ln of its sigma in V, and overdrives from which it need not be known
-      noise_ln = (0.03 * x_c + 0.2) * x_c + noise_c0;
-      noise_reach_v = noise_on != 0 ? 1.01 * CERTAIN_SIGMAS * $exp(noise_ln) : 0.0;
+      // Noise: ln of its sigma in V, found when a small overdrive needs it
       sigma_known = 1'b0;
       // Delay: the curve is to be evaluated anew
       segment_known = '0;
-      tail_known = 1'b0;
     end
   endtask
 
@@ -368,27 +372,27 @@ module latch_full #(
   task decide;
     overdrive_v = ((inp - inn) - trip_v) - mismatch_v;
     magnitude_v = overdrive_v < 0.0 ? -overdrive_v : overdrive_v;
-    if (magnitude_v < noise_reach_v) add_noise;
+    if (magnitude_v < WIDEST_REACH_V) add_noise;
     if (DELAY_ON != 0) begin
       if (magnitude_v >= 0.3) begin
-        delay_s = node_delay(LAST);
+        delay_s = $exp((0.03 * x_c + node3_c1) * x_c + node3_c0);
       end else if (magnitude_v >= 0.03) begin
-        if (!segment_known[3]) build_segment(3);
+        if (!segment_known[3]) build_segment_3;
         x_ln = $ln(magnitude_v / 0.03);
         delay_s = cubic_0[3]
             + x_ln * (cubic_1[3] + x_ln * (cubic_2[3] + x_ln * cubic_3[3]));
       end else if (magnitude_v >= 0.005) begin
-        if (!segment_known[2]) build_segment(2);
+        if (!segment_known[2]) build_segment_2;
         x_ln = $ln(magnitude_v / 0.005);
         delay_s = cubic_0[2]
             + x_ln * (cubic_1[2] + x_ln * (cubic_2[2] + x_ln * cubic_3[2]));
       end else if (magnitude_v >= 0.001) begin
-        if (!segment_known[1]) build_segment(1);
+        if (!segment_known[1]) build_segment_1;
         x_ln = $ln(magnitude_v / 0.001);
         delay_s = cubic_0[1]
             + x_ln * (cubic_1[1] + x_ln * (cubic_2[1] + x_ln * cubic_3[1]));
       end else begin
-        if (!tail_known) build_tail;
+        if (!segment_known[TAIL]) build_tail;
         x_ln = $ln((magnitude_v < FLOOR_V ? FLOOR_V : magnitude_v) / 0.001);
         delay_s = first_s - tau_s * x_ln;
       end
@@ -396,19 +400,22 @@ module latch_full #(
       if (delay_ticks < 1.0) delay_ticks = 1.0;
     end
     decision_state = DECIDING;
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_state == DECIDING
-          && decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) begin
-        decision_state = FORCED;
-        void_waits = void_waits + 1;
-      end
+    if (FORCE_UNRESOLVED_EVERY > 0 ? is_forced(decision_count) : 1'b0) begin
+      decision_state = FORCED;
+      void_waits = void_waits + 1;
     end
   endtask
 
+  // Whether FORCE_UNRESOLVED_EVERY falls on a decision
+  function automatic bit is_forced(input logic [63:0] number);
+    if (FORCE_UNRESOLVED_EVERY > 0) return number % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0;
+    else return 1'b0;
+  endfunction
+
   task add_noise;
     if (!sigma_known) begin
-      sigma_v = exact_exp(noise_ln);
-      noise_reach_v = CERTAIN_SIGMAS * sigma_v;
+      sigma_v = exact_exp((0.03 * x_c + 0.2) * x_c + noise_c0);
+      noise_reach_v = noise_on != 0 ? CERTAIN_SIGMAS * sigma_v : 0.0;
       sigma_known = 1'b1;
     end
     if (magnitude_v < noise_reach_v) begin
@@ -423,73 +430,64 @@ module latch_full #(
   // of the parabola through three neighbours; from the last node on constant.
   // What an overdrive needs of it is built when it is first needed under the present conditions.
 
-  task lay_out_curve;
-    for (int node = 1; node <= LAST; node = node + 1) begin
-      case (node)
-        1: gap[node] = $ln(0.005 / 0.001);
-        2: gap[node] = $ln(0.03 / 0.005);
-        default: gap[node] = $ln(0.3 / 0.03);
-      endcase
-    end
-  endtask
-
   task build_tail;
-    first_s = node_delay(0);
-    tau_s = regeneration_tau();
-    tail_known = 1'b1;
+    first_s = $exp((0.03 * x_c + node0_c1) * x_c + node0_c0);
+    tau_s = $exp((0.02 * x_c + tau_c1) * x_c + tau_c0);
+    segment_known[TAIL] = 1'b1;
   endtask
 
-  task build_segment(input int k);
-    real width, first, last, chord, chord_before, chord_after;
-    real slope_first, slope_last, steepest, bend;
-    real width_before, width_after;
-    width = gap[k];
-    first = node_delay(k - 1);
-    last = node_delay(k);
-    chord = (last - first) / width;
+  // Of one segment, in s: delays at its nodes, slopes of the chords from node to node, of the curve
+  real begin_s, end_s, chord_before, chord, chord_after, slope_first, slope_last;
+
+  task build_segment_1;  // 1 mV to 5 mV
+    begin_s = $exp((0.03 * x_c + node0_c1) * x_c + node0_c0);
+    end_s = $exp((0.03 * x_c + node1_c1) * x_c + node1_c0);
+    chord = (end_s - begin_s) / 1.6094379124341003;
     chord_before = chord;
+    chord_after = ($exp((0.03 * x_c + node2_c1) * x_c + node2_c0) - end_s) / 1.791759469228055;
+    slope_first = -$exp((0.02 * x_c + tau_c1) * x_c + tau_c0);
+    slope_last = 0.5268025545616607 * chord + 0.4731974454383393 * chord_after;
+    keep_segment(1, 1.6094379124341003);
+  endtask
+
+  task build_segment_2;  // 5 mV to 30 mV
+    begin_s = $exp((0.03 * x_c + node1_c1) * x_c + node1_c0);
+    end_s = $exp((0.03 * x_c + node2_c1) * x_c + node2_c0);
+    chord = (end_s - begin_s) / 1.791759469228055;
+    chord_before = (begin_s - $exp((0.03 * x_c + node0_c1) * x_c + node0_c0)) / 1.6094379124341003;
+    chord_after = ($exp((0.03 * x_c + node3_c1) * x_c + node3_c0) - end_s) / 2.302585092994046;
+    slope_first = 0.5268025545616607 * chord_before + 0.4731974454383393 * chord;
+    slope_last = 0.5623818557528476 * chord + 0.4376181442471524 * chord_after;
+    keep_segment(2, 1.791759469228055);
+  endtask
+
+  task build_segment_3;  // 30 mV to 300 mV
+    begin_s = $exp((0.03 * x_c + node2_c1) * x_c + node2_c0);
+    end_s = $exp((0.03 * x_c + node3_c1) * x_c + node3_c0);
+    chord = (end_s - begin_s) / 2.302585092994046;
+    chord_before = (begin_s - $exp((0.03 * x_c + node1_c1) * x_c + node1_c0)) / 1.791759469228055;
     chord_after = chord;
-    if (k == 1) begin
-      slope_first = -regeneration_tau();
-    end else begin
-      width_before = gap[k-1];
-      chord_before = (first - node_delay(k - 2)) / width_before;
-      slope_first = (width * chord_before + width_before * chord) / (width + width_before);
-    end
-    if (k == LAST) begin
-      slope_last = chord + width * (chord - chord_before) / (width + width_before);
-    end else begin
-      width_after = gap[k+1];
-      chord_after = (node_delay(k + 1) - last) / width_after;
-      slope_last = (width_after * chord + width * chord_after) / (width_after + width);
-    end
-    // Limited, so that the curve falls wherever its nodes do
-    steepest = 3.0 * (chord_before > chord ? chord_before : chord);
-    if (slope_first < steepest) slope_first = steepest;
+    slope_first = 0.5623818557528476 * chord_before + 0.4376181442471524 * chord;
+    slope_last = chord + 0.5623818557528476 * (chord - chord_before);
+    keep_segment(3, 2.302585092994046);
+  endtask
+
+  // Width in ln(overdrive); slopes are limited, so that the curve falls wherever its nodes do
+  task keep_segment(input int k, input real width);
+    real bend;
+    if (slope_first < 3.0 * chord_before) slope_first = 3.0 * chord_before;
+    if (slope_first < 3.0 * chord) slope_first = 3.0 * chord;
     if (slope_first > 0.0) slope_first = 0.0;
-    steepest = 3.0 * (chord_after > chord ? chord_after : chord);
-    if (slope_last < steepest) slope_last = steepest;
+    if (slope_last < 3.0 * chord_after) slope_last = 3.0 * chord_after;
+    if (slope_last < 3.0 * chord) slope_last = 3.0 * chord;
     if (slope_last > 0.0) slope_last = 0.0;
     bend = (slope_first + slope_last - 2.0 * chord) / width;
-    cubic_0[k] = first;
+    cubic_0[k] = begin_s;
     cubic_1[k] = slope_first;
     cubic_2[k] = (chord - slope_first) / width - bend;
     cubic_3[k] = bend / width;
     segment_known[k] = 1'b1;
   endtask
-
-  function real regeneration_tau();
-    return $exp((0.02 * x_c + tau_c1) * x_c + tau_c0);
-  endfunction
-
-  function real node_delay(input int node);
-    case (node)
-      3: return $exp((0.03 * x_c + node3_c1) * x_c + node3_c0);
-      2: return $exp((0.03 * x_c + node2_c1) * x_c + node2_c0);
-      1: return $exp((0.03 * x_c + node1_c1) * x_c + node1_c0);
-      default: return $exp((0.03 * x_c + node0_c1) * x_c + node0_c0);
-    endcase
-  endfunction
 
   // -- Outputs ----------------------------------------------------------------------------------
 
@@ -612,7 +610,7 @@ module latch_full #(
     if (mismatch_on != 0) begin
       mismatch0_v0c0 = 0.0002 * x_t + 0.006;
     end
-    // Noise: ln of its sigma in V, and overdrives from which it need not be known
+    // Noise: ln of its sigma in V, found when a small overdrive needs it
     noise_v0c0 = 0.1 * x_t + noise_t0v0c0;
     // Delay: ln of the regeneration time constant in s
     tau_v0c0 = 0.04 * x_t + tau_t0v0c0;
@@ -652,7 +650,7 @@ module latch_full #(
     if (mismatch_on != 0) begin
       mismatch0_c0 = -0.0001 * x_v + mismatch0_v0c0;
     end
-    // Noise: ln of its sigma in V, and overdrives from which it need not be known
+    // Noise: ln of its sigma in V, found when a small overdrive needs it
     noise_c0 = -0.05 * x_v + noise_v0c0;
     // Delay: ln of the regeneration time constant in s
     tau_c0 = tau_v1c0 * x_v + tau_v0c0;
@@ -769,7 +767,7 @@ module latch_full #(
   endfunction
 
   // exp(k ln 2 + r) = 2^k (1 + 2 r / (r coth(r/2) - r)), r coth(r/2) = 2 + r^2/6 - r^4/360 + ...
-  function automatic real exact_exp(input real arg);
+  function real exact_exp(input real arg);
     real power, rest, square;
     power = (arg * 1.4426950408889634 + ROUND) - ROUND;
     rest = (arg - power * 0.6931471803691238) - power * 1.9082149292705877e-10;

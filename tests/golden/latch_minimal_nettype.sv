@@ -203,46 +203,54 @@ module latch_minimal_nettype_core #(
   // -- Clock: only a clean step from one level to the other counts ------------------------------
 
   always @(clk) begin
-    if (clk === 1'b1 && clk_level === 1'b0) begin
-      decision_count = decision_count + 64'd1;
-      if (is_on) begin
-        edge_time = $realtime;
-        if (returning) begin
-          call_off_return;
-          if (is_due(reset_time + return_ticks)) take_reset_state;
+    case ({clk_level, clk})
+      2'b01: begin
+        decision_count = decision_count + 64'd1;
+        if (is_on) begin
+          edge_time = $realtime;
+          if (returning) begin
+            call_off_return;
+            if (is_due(reset_time + return_ticks)) take_reset_state;
+          end
+          input_lost = (inp - inp) + (inn - inn) != 0.0;
+          if (input_lost) lose_input;
+          if (!input_lost) begin
+            decide;
+            fork : show_when_ready
+              begin
+                #(delay_ticks);
+                if (void_waits == 0) show_decision;
+                else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
+                else void_waits = void_waits - 1;
+              end
+            join_none
+          end
         end
-        input_lost = (inp - inp) + (inn - inn) != 0.0;
-        if (input_lost) lose_input;
-        if (!input_lost) begin
-          decide;
-          fork : show_when_ready
+      end
+      2'b10: begin
+        if (is_on) begin
+          reset_time = $realtime;
+          return_ticks = 0.0;
+          if (decision_state != DECIDED) end_undecided;
+          returning = 1'b1;
+          fork : return_when_due
             begin
-              #(delay_ticks);
-              if (void_waits == 0) show_decision;
-              else if (is_meant(DECIDING, edge_time + delay_ticks)) show_decision;
+              #(return_ticks);
+              if (void_waits == 0) begin  // take_reset_state, without the cost of its call
+                returning = 1'b0;
+                outp = 1'b1;
+                outn = 1'b1;
+                x_cause = 0;
+              end else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
               else void_waits = void_waits - 1;
             end
           join_none
         end
       end
-    end else if (clk === 1'b0 && clk_level === 1'b1) begin
-      if (is_on) begin
-        reset_time = $realtime;
-        return_ticks = 0.0;
-        if (decision_state != DECIDED) end_undecided;
-        returning = 1'b1;
-        fork : return_when_due
-          begin
-            #(return_ticks);
-            if (void_waits == 0) take_reset_state;
-            else if (returning && is_due(reset_time + return_ticks)) take_reset_state;
-            else void_waits = void_waits - 1;
-          end
-        join_none
+      default: begin
+        if (is_on && clk !== clk_level) unclean_step;  // else it came back at once
       end
-    end else if (clk !== clk_level) begin  // else it came back within the same instant
-      if (is_on) unclean_step;
-    end
+    endcase
     clk_level = clk;
   end
 
@@ -293,14 +301,17 @@ module latch_minimal_nettype_core #(
       if (delay_ticks < 1.0) delay_ticks = 1.0;
     end
     decision_state = DECIDING;
-    if (FORCE_UNRESOLVED_EVERY > 0) begin
-      if (decision_state == DECIDING
-          && decision_count % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0) begin
-        decision_state = FORCED;
-        void_waits = void_waits + 1;
-      end
+    if (FORCE_UNRESOLVED_EVERY > 0 ? is_forced(decision_count) : 1'b0) begin
+      decision_state = FORCED;
+      void_waits = void_waits + 1;
     end
   endtask
+
+  // Whether FORCE_UNRESOLVED_EVERY falls on a decision
+  function automatic bit is_forced(input logic [63:0] number);
+    if (FORCE_UNRESOLVED_EVERY > 0) return number % {32'd0, FORCE_UNRESOLVED_EVERY} == 64'd0;
+    else return 1'b0;
+  endfunction
 
   // -- Outputs ----------------------------------------------------------------------------------
 

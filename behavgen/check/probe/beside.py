@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from itertools import count, cycle, pairwise
+from itertools import count, cycle, pairwise, product
 from typing import Any
 
 import numpy as np
@@ -20,6 +20,7 @@ from behavgen.formulas.random_stream import path_seed
 from behavgen.model import ComparatorModel
 from behavgen.operating_point import VOLTAGE_STEPS_PER_V
 from behavgen.reference import Reference
+from behavgen.units import ZERO_CELSIUS_K
 
 __all__ = ["Beside", "beside_instances"]
 
@@ -71,13 +72,31 @@ def beside_instances(model: ComparatorModel, *, first_index: int) -> tuple[Besid
     return tuple(found)
 
 
+def _loudest(model: ComparatorModel, process: str) -> dict[str, Any]:
+    """Return the corner of the range at which a process has the largest noise."""
+    box, reference = model.box, Reference(model)
+    spans = {"temp_c": box.temperature_k, "vdd": box.vdd_v, "vcm": box.vcm_v}
+    ends = [(None,) if span is None else (span.low, span.high) for span in spans.values()]
+    corners = []
+    for levels in product(*ends):
+        at = {name: level for name, level in zip(spans, levels, strict=True) if level is not None}
+        if "temp_c" in at:
+            at["temp_c"] -= ZERO_CELSIUS_K
+        if model.cell.pins.vdd is None:
+            at.pop("vdd", None)
+        corners.append(at)
+    filled: dict[str, Any] = {"temp_c": middle_c(model), "process": process}
+    return max(corners, key=lambda at: float(reference.noise_sigma(**(filled | at))))
+
+
 def _settings(model: ComparatorModel) -> Iterator[tuple[str, Settings]]:
     for process in model.processes:
         base = Settings(process=process.name, temperature_c=middle_c(model), noise_on=False,
                         memory_on=False, seed=path_seed(f"beside {process.name}"))  # fmt: skip
         yield f"beside the nodes, {process.name}", base
         if model.noise is not None:
-            noisy = Settings(process=process.name, temperature_c=middle_c(model), memory_on=False,
+            hot = _loudest(model, process.name).get("temp_c", middle_c(model))
+            noisy = Settings(process=process.name, temperature_c=hot, memory_on=False,
                              seed=base.seed)  # fmt: skip
             yield f"beside the reach of the noise, {process.name}", noisy
         if model.memory is not None:
@@ -87,17 +106,28 @@ def _settings(model: ComparatorModel) -> Iterator[tuple[str, Settings]]:
             yield f"{_SAME_RESETS}, {process.name}", remembering
 
 
+def _levels(model: ComparatorModel, run: Run) -> tuple[float, float]:
+    """Return supply and common mode: where the noise is largest if it counts, else the middle."""
+    box = model.box
+    vdd_v = _UNCHARACTERISED_V if box.vdd_v is None else box.vdd_v.middle
+    vcm_v = 0.5 if box.vcm_v is None else box.vcm_v.middle
+    if not run.meant.noise_on:
+        return vdd_v, vcm_v
+    at = _loudest(model, run.meant.process)
+    return at.get("vdd", vdd_v), at.get("vcm", vcm_v)
+
+
 def _script(model: ComparatorModel, run: Run) -> Script:
     reference = reference_of(model, run)
     resting = LOW if model.cell.decides_on == "rising" else HIGH
     phase = _phase_ticks(reference, model)
-    vdd_v = _UNCHARACTERISED_V if model.box.vdd_v is None else model.box.vdd_v.middle
+    vdd_v, vcm_v = _levels(model, run)
     remembers = run.meant.memory_on
     resets = _RESETS_TAUS if not run.name.startswith(_SAME_RESETS) else _RESETS_TAUS[:1]
     longest = _memory_ticks(model, run, reference, vdd_v) if remembers else phase
     changes, now = [Change(time=0, pin="vdd", level=vdd_v)], _SETTLE_TICKS
     changes.append(Change(time=_SETTLE_TICKS // 2, pin="clk", level=resting))
-    inputs = _inputs(model, run, reference, vdd_v)
+    inputs = _inputs(model, run, reference, vdd_v, vcm_v)
     for (inp, inn), reset in zip(inputs, cycle(resets), strict=False):
         now += int(reset * longest)
         changes.append(Change(time=now, pin="inputs", level=(inp, inn)))
@@ -122,17 +152,16 @@ def _phase_ticks(reference: Reference, model: ComparatorModel) -> int:
 
 
 def _inputs(
-    model: ComparatorModel, run: Run, reference: Reference, vdd_v: float
+    model: ComparatorModel, run: Run, reference: Reference, vdd_v: float, vcm_v: float
 ) -> Iterator[tuple[float, float]]:
     """Return inputs, each with a common mode of its own, so that all is worked out anew."""
-    middle = 0.5 if model.box.vcm_v is None else model.box.vcm_v.middle
-    first = np.floor(middle * VOLTAGE_STEPS_PER_V)
+    first = np.floor(vcm_v * VOLTAGE_STEPS_PER_V)
     condition: dict[str, Any] = {
         "vdd": vdd_v,
         "temp_c": run.meant.temperature_c,
         "process": run.meant.process,
     }
-    for n, overdrive in enumerate(_overdrives(model, run, reference, middle, condition)):
+    for n, overdrive in enumerate(_overdrives(model, run, reference, vcm_v, condition)):
         stays = run.meant.memory_on and not run.name.startswith(_SAME_RESETS)
         apart = 0 if stays else _STEPS_APART
         vcm = float((first + apart * n) / VOLTAGE_STEPS_PER_V)

@@ -72,6 +72,9 @@ def functions_of(model: ComparatorModel, *, seed: int) -> Functions:
         bits = np.concatenate([draw, centred])
         called.append(("standard_normal", bits, standard_normal(bits)))
         share = np.exp(rng.uniform(np.log(2.0**-53), np.log(0.075), _COUNT))
+        exponent = -rng.integers(5, 53, _COUNT).astype(float)
+        seam = rng.uniform(0.69, 0.72, _COUNT) * 2.0**exponent
+        share = np.concatenate([share, seam])
         called.append(("exact_ln", share.view(np.uint64), exact_ln(share)))
     if model.noise is not None:
         power = rng.uniform(-40.0, 5.0, _COUNT)

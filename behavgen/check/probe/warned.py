@@ -34,7 +34,7 @@ _SHARES = (
 )  # fmt: skip
 """Of a step, and whether that is another step than the one before."""
 _ANOTHER_V = 1e-4
-"""Between two common modes inside the range."""
+"""Between two common modes; inside the range unless that is a single value."""
 _INFINITE = float("inf")
 _JUST_UNDER_HALF = 0.4975
 """Of a step: levels that far from its middle are still rounded to it."""
@@ -167,7 +167,9 @@ class _Tape:
         for beyond in self._supplies():
             self._apply("vdd", beyond)
             self._decide(vcm_v, "supply", self._outside("supply", "vdd_v", beyond))
-            self._decide(vcm_v - _ANOTHER_V)
+            another = vcm_v - _ANOTHER_V
+            self._decide(another, "common_mode", self._outside("common mode", "vcm_v", another)
+                         if self._is_outside("vcm_v", another) else "")  # fmt: skip
         self._apply("vdd", vdd_v)
         self._decide(vcm_v)
         self._lose_inputs(vcm_v)
@@ -224,6 +226,11 @@ class _Tape:
         if span is None or level == self._away(condition)[0]:
             return ""
         return f"{what} {level:g} V is outside {span.low:g} V to {span.high:g} V and clamped"
+
+    def _is_outside(self, condition: str, level: float) -> bool:
+        span = _range(self.model, self.run.meant.process, condition)
+        step = 1.0 / VOLTAGE_STEPS_PER_V
+        return span is not None and not span.low - step <= level <= span.high + step
 
     def _apply(self, pin: str, level: float | tuple[float, float]) -> None:
         self.changes.append(Change(time=self.now, pin=pin, level=level))

@@ -40,15 +40,16 @@ module latch_by_hand #(
 
   // exp(x) by the published steps of formulas/exact_math.py
   function automatic real exact_exp(input real x);
-    real k, r;
+    real k, r, square, below;
     longint biased;
     k = $floor(x * 1.4426950408889634 + 0.5);
     r = (x - k * 0.6931471803691238) - k * 1.9082149292705877e-10;
+    square = r * r;
+    below = (((((((-691.0 / 653837184000.0) * square + 1.0 / 23950080.0) * square
+        - 1.0 / 604800.0) * square + 1.0 / 15120.0) * square - 1.0 / 360.0) * square
+        + 1.0 / 6.0) * square + 2.0) - r;
     biased = longint'(k) + 1023;
-    return (((((((((((((1.0 / 6227020800.0 * r + 1.0 / 479001600.0) * r + 1.0 / 39916800.0) * r
-        + 1.0 / 3628800.0) * r + 1.0 / 362880.0) * r + 1.0 / 40320.0) * r + 1.0 / 5040.0) * r
-        + 1.0 / 720.0) * r + 1.0 / 120.0) * r + 1.0 / 24.0) * r + 1.0 / 6.0) * r + 0.5) * r
-        + 1.0) * r + 1.0) * $bitstoreal({1'b0, biased[10:0], 52'd0});
+    return (2.0 * r / below + 1.0) * $bitstoreal({1'b0, biased[10:0], 52'd0});
   endfunction
 
   function automatic real memory_v(input real rest_s);
