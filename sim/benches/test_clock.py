@@ -43,6 +43,8 @@ async def a_clock_from_x_to_the_reset_level_powers_up(top) -> None:
     await cell.settle()
     cell.must_show(cell.reset_state or cell.unknown, "a tick after the clock is known again")
     await cell.wait(1)
+    if cell.delay(cell.large_v) <= 2:
+        return  # the decision itself would show at once
     cell.clock("X")
     await cell.wait(20)
     cell.release()
