@@ -54,7 +54,7 @@ def test_the_page_comes_with_the_check(checked: Path, capsys: pytest.CaptureFixt
 
 
 def with_decision_turned(text: str) -> str:
-    turned, count = re.subn(r"> 0\.0;", "< 0.0;", text)
+    turned, count = re.subn(r"if \(overdrive_v > 0\.0\)", "if (overdrive_v < 0.0)", text)
     assert count
     return turned
 
