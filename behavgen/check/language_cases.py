@@ -16,10 +16,10 @@ from behavgen.formulas.polynomial import quantise
 from behavgen.model import ComparatorModel, Range
 from behavgen.operating_point import TEMPERATURE_STEPS_PER_K, VOLTAGE_STEPS_PER_V
 from behavgen.reference import Reference
+from behavgen.units import ZERO_CELSIUS_K
 
 __all__ = ["LanguageCase", "Phase", "language_cases"]
 
-_ZERO_CELSIUS_K = 273.15
 _UNKNOWN = {
     "vdd_v": Range(low=1.0, high=1.0),
     "temperature_k": Range(low=300.15, high=300.15),
@@ -110,7 +110,7 @@ def _spot(model: ComparatorModel, vdd: float, temp: float, vcm: float, process: 
     return _Spot(
         process=process or model.processes[0].name,
         vdd_v=float(quantise(_at(_span(model, "vdd_v"), vdd), VOLTAGE_STEPS_PER_V)),
-        temp_c=float(kelvin) - _ZERO_CELSIUS_K,
+        temp_c=float(kelvin) - ZERO_CELSIUS_K,
         vcm_v=float(quantise(_at(_span(model, "vcm_v"), vcm), VOLTAGE_STEPS_PER_V)),
     )
 

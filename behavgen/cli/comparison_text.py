@@ -52,7 +52,8 @@ def quiet_lines(findings: Iterable[Finding]) -> Iterator[str]:
 
 def comparison_lines(comparison: Comparison) -> Iterator[str]:
     """Yield the rows that drive a drift and what the drift does."""
-    from behavgen.regress.words import condition_words, estimate_words  # noqa: PLC0415  numpy
+    from behavgen.condition_words import condition_words  # noqa: PLC0415
+    from behavgen.regress.words import estimate_words  # noqa: PLC0415  numpy
 
     rows = [
         (row.place or row.quantity, row.residual_text, condition_words(row.condition))

@@ -20,9 +20,10 @@ from behavgen.cli.wording import (
     shown_path,
     state_text,
 )
-from behavgen.model import ComparatorModel, Condition, ConditionFit, Parameter, Surface
+from behavgen.condition_words import condition_words
+from behavgen.model import ComparatorModel, ConditionFit, Parameter, Surface
 from behavgen.pipeline import CellPlace, FittedCell, fit_cell
-from behavgen.units import format_celsius, format_si
+from behavgen.units import format_si
 
 ABOUT = """\
 Fit a model to the tables of each cell and write it to <out>/<cell>/<cell>.model.json.
@@ -203,21 +204,10 @@ def _condition_row(fit: ConditionFit) -> tuple[str, ...]:
     own = ", ".join(f"{p.name} {estimate_text(p.estimate, p.unit)}" for p in fit.parameters)
     return (
         fit.quantity,
-        _condition_text(fit.condition),
+        condition_words(fit.condition) or "all conditions",
         f"{fit.rows} rows",
         share("rms", fit.rms_relative),
         share("worst", fit.worst_relative),
         share("held out", fit.held_out_rms_relative),
         own,
     )
-
-
-def _condition_text(condition: Condition) -> str:
-    parts = [condition.process] if condition.process else []
-    if condition.vdd_v is not None:
-        parts.append(format_si(condition.vdd_v, "V", 4))
-    if condition.temperature_k is not None:
-        parts.append(format_celsius(condition.temperature_k))
-    if condition.vcm_v is not None:
-        parts.append(f"vcm {format_si(condition.vcm_v, 'V', 4)}")
-    return ", ".join(parts) or "all conditions"

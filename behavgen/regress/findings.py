@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 
+from behavgen.condition_words import condition_words
 from behavgen.limits import quantity_words
 from behavgen.regress.comparison import (
     DRIVEN_BY,
@@ -25,7 +26,6 @@ from behavgen.regress.verdict import (
     RunVerdict,
 )
 from behavgen.regress.words import (
-    condition_words,
     drift_words,
     estimate_words,
 )

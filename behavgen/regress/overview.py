@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
+from behavgen.condition_words import condition_words
 from behavgen.regress.findings import Finding, Spot
 from behavgen.regress.verdict import CellVerdict, RunVerdict
-from behavgen.regress.words import condition_words, estimate_words
+from behavgen.regress.words import estimate_words
 from behavgen.report.overview_page import (
     OverviewCell,
     OverviewNote,

@@ -5,9 +5,10 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Iterator, Sequence
 
+from behavgen.condition_words import condition_words
 from behavgen.regress.findings import Finding
 from behavgen.regress.verdict import CellVerdict, RunVerdict
-from behavgen.regress.words import condition_words, estimate_words
+from behavgen.regress.words import estimate_words
 
 __all__ = ["markdown_summary"]
 

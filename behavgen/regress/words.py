@@ -4,31 +4,19 @@ from __future__ import annotations
 
 import math
 
+from behavgen.condition_words import condition_words
 from behavgen.limits import quantity_words, value_words
-from behavgen.model import Condition, Estimate
+from behavgen.model import Estimate
 from behavgen.regress.comparison import Drift
-from behavgen.units import format_celsius, format_si
+from behavgen.units import format_si
 
 __all__ = [
-    "condition_words",
     "drift_words",
     "estimate_words",
     "number_words",
     "place_words",
     "share_words",
 ]
-
-
-def condition_words(condition: Condition) -> str:
-    """Write a condition: ``ss, 1.62 V, 125 degC, vcm 900 mV``; "" where nothing is said."""
-    parts = [condition.process] if condition.process else []
-    if condition.vdd_v is not None:
-        parts.append(format_si(condition.vdd_v, "V", 4))
-    if condition.temperature_k is not None:
-        parts.append(format_celsius(condition.temperature_k))
-    if condition.vcm_v is not None:
-        parts.append(f"vcm {format_si(condition.vcm_v, 'V', 4)}")
-    return ", ".join(parts)
 
 
 def number_words(value: float, unit: str) -> str:

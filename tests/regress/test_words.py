@@ -6,9 +6,9 @@ import math
 
 import pytest
 
+from behavgen.condition_words import condition_words
 from behavgen.model import Condition, Estimate
 from behavgen.regress.words import (
-    condition_words,
     estimate_words,
     number_words,
     share_words,
