@@ -17,7 +17,8 @@ if TYPE_CHECKING:
     from behavgen.check.check import check
     from behavgen.emit.emit import emit
     from behavgen.fit.fit import fit
-    from behavgen.model import ComparatorModel, load_model
+    from behavgen.model import ComparatorModel
+    from behavgen.model_file import load_model
     from behavgen.project import load_project
     from behavgen.reference import Reference
     from behavgen.tables.read import read_tables
@@ -42,7 +43,7 @@ _HOMES = {
     "check": "behavgen.check.check",
     "emit": "behavgen.emit.emit",
     "fit": "behavgen.fit.fit",
-    "load_model": "behavgen.model",
+    "load_model": "behavgen.model_file",
     "load_project": "behavgen.project",
     "read_tables": "behavgen.tables.read",
 }

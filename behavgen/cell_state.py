@@ -10,7 +10,7 @@ from behavgen.check.verdict import CheckReport, load_report
 from behavgen.errors import ModelFileError, ToolError
 from behavgen.files import files_named, sha256_of_file
 from behavgen.freshness import Step, content_hash
-from behavgen.model import load_model
+from behavgen.model_file import load_model
 
 __all__ = [
     "STEP_NAMES",

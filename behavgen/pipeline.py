@@ -36,7 +36,8 @@ from behavgen.check.wishes import Wishes
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.errors import Fault, ProjectError, TableError
 from behavgen.files import write_whole
-from behavgen.model import ComparatorModel, dump_model, load_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import dump_model, load_model
 
 if TYPE_CHECKING:
     from behavgen.check.languages import LanguageComparison

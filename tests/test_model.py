@@ -7,7 +7,8 @@ from pathlib import Path
 import pytest
 
 from behavgen.errors import ModelFileError
-from behavgen.model import dump_model, load_model, significant
+from behavgen.model import significant
+from behavgen.model_file import dump_model, load_model
 from tests.example_models import complete_model, full_model, minimal_model, renamed_pins_model
 
 

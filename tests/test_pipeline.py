@@ -11,7 +11,7 @@ from behavgen import cell_place, pipeline
 from behavgen.errors import TableError
 from behavgen.files import files_named
 from behavgen.freshness import RECORD_FILE
-from behavgen.model import load_model
+from behavgen.model_file import load_model
 from behavgen.pipeline import CellPlace, emit_cell, fit_cell, report_cell, step_states
 from behavgen.project import load_project
 from behavgen.tables.read import read_tables

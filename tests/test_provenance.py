@@ -6,7 +6,7 @@ import pytest
 
 from behavgen.errors import ProjectError
 from behavgen.fit.fit import fit
-from behavgen.model import dump_model, load_model
+from behavgen.model_file import dump_model, load_model
 from behavgen.project import load_project
 from behavgen.provenance import Provenance, mixed_provenance
 from behavgen.tables.read import read_tables

@@ -36,7 +36,8 @@ from behavgen.check.wishes import Wishes
 from behavgen.emit.emitted_file import EmittedFile
 from behavgen.errors import Fault, ProjectError
 from behavgen.files import sha256_of_text, write_whole
-from behavgen.model import ComparatorModel, dump_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import dump_model
 from behavgen.simulators.icarus import find_icarus
 from behavgen.simulators.verilator import find_verilator
 

@@ -16,7 +16,8 @@ from behavgen.check.language_cases import LanguageCase, language_cases
 from behavgen.check.language_runs import RUNS, Found, Played
 from behavgen.errors import Fault, ModelFileError
 from behavgen.files import sha256_of_text, write_whole
-from behavgen.model import ComparatorModel, Pins, dump_model
+from behavgen.model import ComparatorModel, Pins
+from behavgen.model_file import dump_model
 from behavgen.reference import Reference
 
 __all__ = [

@@ -11,7 +11,8 @@ from behavgen.cli.terminal import Terminal
 from behavgen.cli.verdict import Outcome
 from behavgen.cli.wording import labelled, shown_path
 from behavgen.errors import ProjectError
-from behavgen.model import ComparatorModel, load_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import load_model
 
 if TYPE_CHECKING:
     from behavgen.limits import DriftLimit, Limit

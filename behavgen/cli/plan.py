@@ -18,7 +18,8 @@ from behavgen.cli.terminal import Terminal
 from behavgen.cli.verdict import Outcome
 from behavgen.errors import Fault, ProjectError
 from behavgen.fit.planning.goals import Goals, Guess
-from behavgen.model import Box, Cell, ComparatorModel, load_model
+from behavgen.model import Box, Cell, ComparatorModel
+from behavgen.model_file import load_model
 from behavgen.pipeline import CellPlace, fit_cell
 from behavgen.project import PROJECT_FILE, find_project_file
 from behavgen.units import UnitError, parse_si

@@ -9,7 +9,8 @@ from behavgen.files import sha256_of_text
 from behavgen.handoff.packed_file import PackedFile
 from behavgen.handoff.ports import Setting, ports, settings
 from behavgen.handoff.standing import CAUTION, Standing
-from behavgen.model import ComparatorModel, dump_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import dump_model
 
 __all__ = ["EDITIONS", "ipxact_file"]
 

@@ -22,7 +22,8 @@ from behavgen.handoff.packed_file import PackedFile
 from behavgen.handoff.properties import properties_file
 from behavgen.handoff.standing import CAUTION, Standing, standing_of
 from behavgen.handoff.symbol import symbol_file, symbol_of
-from behavgen.model import ComparatorModel, dump_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import dump_model
 from behavgen.project import SymbolSettings
 
 __all__ = ["Wishes", "package_files", "package_name"]

@@ -20,7 +20,8 @@ from pathlib import Path
 
 from behavgen.errors import BehavgenError, Fault, ModelFileError, ProjectError
 from behavgen.files import sha256_of_file
-from behavgen.model import ComparatorModel, load_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import load_model
 
 __all__ = [
     "INDEX_FILE",

@@ -21,7 +21,8 @@ from behavgen.cell_place import CellPlace
 from behavgen.cell_state import current_check, is_current
 from behavgen.check.verdict import CheckReport
 from behavgen.errors import BehavgenError, Fault, ModelFileError, ProjectError, ToolError
-from behavgen.model import ComparatorModel, load_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import load_model
 from behavgen.project import Project
 from behavgen.regress.cache import ResultCache
 from behavgen.regress.cell_work import Products, put_files, result_key, task_of, work_on

@@ -9,7 +9,8 @@ from behavgen.check.mutation.summary import MutationSummary
 from behavgen.check.power_words import power_words
 from behavgen.check.verdict import CheckReport, Disagreement, Stratum
 from behavgen.files import sha256_of_text
-from behavgen.model import ComparatorModel, dump_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import dump_model
 from behavgen.report.closure_tables import (
     closure_table,
     distribution_table,

@@ -6,7 +6,8 @@ from dataclasses import replace
 
 import pytest
 
-from behavgen.model import Process, dump_model
+from behavgen.model import Process
+from behavgen.model_file import dump_model
 from behavgen.provenance import Provenance
 from tests.cli.commands import run
 from tests.example_models import full_model, minimal_model

@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pytest
 
-from behavgen.model import load_model
+from behavgen.model_file import load_model
 from tests.cli.commands import run
 from tests.small_project import PROJECT_TEXT, write_small_project
 

@@ -19,7 +19,7 @@ from behavgen.cli import mutants
 from behavgen.cli.cells import CellResult
 from behavgen.errors import ModelFileError
 from behavgen.files import sha256_of_text
-from behavgen.model import dump_model
+from behavgen.model_file import dump_model
 from tests.example_models import minimal_model
 
 MODEL = minimal_model()

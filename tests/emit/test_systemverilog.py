@@ -14,7 +14,8 @@ from behavgen.emit.emit import emit
 from behavgen.emit.systemverilog import systemverilog
 from behavgen.emit.systemverilog_nettype import systemverilog_nettype
 from behavgen.errors import ProjectError
-from behavgen.model import Pins, dump_model, load_model
+from behavgen.model import Pins
+from behavgen.model_file import dump_model, load_model
 from behavgen.simulators.icarus import find_icarus
 from behavgen.simulators.slang import elaborate
 from behavgen.simulators.verible import find_verible

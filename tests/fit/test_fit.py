@@ -9,7 +9,7 @@ import pytest
 
 from behavgen.errors import FitError
 from behavgen.fit.fit import fit
-from behavgen.model import dump_model
+from behavgen.model_file import dump_model
 from behavgen.project import load_project
 from behavgen.reference import Reference
 from behavgen.tables.characterisation import (

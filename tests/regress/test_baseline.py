@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from behavgen.errors import ModelFileError, ProjectError
-from behavgen.model import dump_model
+from behavgen.model_file import dump_model
 from behavgen.regress.baseline import (
     INDEX_FILE,
     ToRecord,

@@ -15,7 +15,8 @@ import pytest
 
 from behavgen.errors import TableError, ToolError
 from behavgen.freshness import RECORD_FILE
-from behavgen.model import ComparatorModel, load_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import load_model
 from behavgen.pipeline import CellPlace, fit_cell
 from behavgen.project import load_project
 from behavgen.regress import runs

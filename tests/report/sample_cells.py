@@ -9,7 +9,8 @@ from dataclasses import replace
 import numpy as np
 
 from behavgen.check.verdict import BenchResult, CheckReport, Disagreement, Stratum
-from behavgen.model import ComparatorModel, Condition, ConditionFit, CurvePoints, dump_model
+from behavgen.model import ComparatorModel, Condition, ConditionFit, CurvePoints
+from behavgen.model_file import dump_model
 from behavgen.reference import Reference
 from tests.example_models import full_model
 

@@ -9,7 +9,8 @@ from typing import TYPE_CHECKING
 
 from behavgen.errors import Fault, ModelFileError
 from behavgen.files import sha256_of_text
-from behavgen.model import ComparatorModel, dump_model
+from behavgen.model import ComparatorModel
+from behavgen.model_file import dump_model
 
 if TYPE_CHECKING:
     from behavgen.check.mutation.mutation import MutationReport
